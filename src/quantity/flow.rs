@@ -6,8 +6,8 @@
 
 use super::{AbsolutePressure, STANDARD_ATMOSPHERE_PA, Temperature, ZERO_CELSIUS_K};
 
-/// Cubic metres per second in one litre per minute.
-const M3_S_PER_L_MIN: f64 = 1e-3 / 60.0;
+/// Litres per minute in one cubic metre per second, exact; dividing by it rounds once, as [`super::unit`] does.
+const L_MIN_PER_M3_S: f64 = 60_000.0;
 
 /// A volume flow at STPD (0 °C, 101.325 kPa, dry), in m³/s inside.
 #[derive(Debug, Clone, Copy, PartialEq, PartialOrd)]
@@ -41,20 +41,44 @@ pub struct IndicatedFlow(f64);
 pub struct ActualFlow(f64);
 
 impl StpdFlow {
+    /// From cubic metres per second STPD.
+    #[must_use]
+    pub const fn from_m3_s(m3_s: f64) -> Self {
+        Self(m3_s)
+    }
+
+    /// In cubic metres per second STPD.
+    #[must_use]
+    pub const fn as_m3_s(self) -> f64 {
+        self.0
+    }
+
     /// From litres per minute STPD.
     #[must_use]
     pub fn from_l_min(l_min: f64) -> Self {
-        Self(l_min * M3_S_PER_L_MIN)
+        Self(l_min / L_MIN_PER_M3_S)
     }
 
     /// In litres per minute STPD.
     #[must_use]
     pub fn as_l_min(self) -> f64 {
-        self.0 / M3_S_PER_L_MIN
+        self.0 * L_MIN_PER_M3_S
     }
 }
 
 impl IndicatedFlow {
+    /// From cubic metres per second of the meter's scale.
+    #[must_use]
+    pub fn from_m3_s(m3_s: f64) -> Self {
+        Self(m3_s * L_MIN_PER_M3_S)
+    }
+
+    /// In cubic metres per second of the meter's scale.
+    #[must_use]
+    pub fn as_m3_s(self) -> f64 {
+        self.0 / L_MIN_PER_M3_S
+    }
+
     /// From litres per minute of the meter's scale.
     #[must_use]
     pub const fn from_l_min(l_min: f64) -> Self {
@@ -98,13 +122,13 @@ impl ReferenceFlow {
     /// From litres per minute at the reference conditions `at`.
     #[must_use]
     pub fn from_l_min(l_min: f64, at: ReferenceConditions) -> Self {
-        Self { m3_s: l_min * M3_S_PER_L_MIN, at }
+        Self { m3_s: l_min / L_MIN_PER_M3_S, at }
     }
 
     /// In litres per minute at its own reference conditions.
     #[must_use]
     pub fn as_l_min(self) -> f64 {
-        self.m3_s / M3_S_PER_L_MIN
+        self.m3_s * L_MIN_PER_M3_S
     }
 
     /// The conditions it is stated at.
@@ -124,13 +148,13 @@ impl ActualFlow {
     /// From litres per minute.
     #[must_use]
     pub fn from_l_min(l_min: f64) -> Self {
-        Self(l_min * M3_S_PER_L_MIN)
+        Self(l_min / L_MIN_PER_M3_S)
     }
 
     /// In litres per minute.
     #[must_use]
     pub fn as_l_min(self) -> f64 {
-        self.0 / M3_S_PER_L_MIN
+        self.0 * L_MIN_PER_M3_S
     }
 
     /// The dry gas in it at STPD: `vapour` is the partial pressure of water in the gas at the meter (zero when dry).

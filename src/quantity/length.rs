@@ -22,7 +22,7 @@ impl Length {
     /// From micrometres.
     #[must_use]
     pub fn from_um(um: f64) -> Self {
-        Self(um * 1e-6)
+        Self(um / 1e6)
     }
 
     /// In metres.
@@ -53,10 +53,22 @@ impl Mass {
 }
 
 impl Volume {
+    /// From cubic metres.
+    #[must_use]
+    pub const fn from_m3(m3: f64) -> Self {
+        Self(m3)
+    }
+
+    /// In cubic metres.
+    #[must_use]
+    pub const fn as_m3(self) -> f64 {
+        self.0
+    }
+
     /// From litres.
     #[must_use]
     pub fn from_l(l: f64) -> Self {
-        Self(l * 1e-3)
+        Self(l / 1e3)
     }
 
     /// In litres.

@@ -7,14 +7,31 @@
 mod flow;
 mod length;
 mod pressure;
+mod pressure_rate;
+mod share;
 mod temperature;
 mod time;
-pub mod text;
+mod typed;
 pub mod unit;
+mod error;
+mod number;
+pub mod text;
+mod reference;
+pub mod show;
 
+#[cfg(test)]
+mod tests;
+
+pub use error::{Impossible, QuantityError};
 pub use flow::{ActualFlow, IndicatedFlow, ReferenceConditions, ReferenceFlow, StpdFlow};
 pub use length::{Length, Mass, Volume};
 pub use pressure::{AbsolutePressure, GaugePressure, PressureDifference, STANDARD_ATMOSPHERE_PA};
+pub use pressure_rate::PressureRate;
+pub use reference::{PRESETS, Preset, presets_listed};
+pub use share::Share;
+pub use show::Shown;
 pub use temperature::{Temperature, TemperatureDifference, ZERO_CELSIUS_K};
-pub use text::{QuantityError, Uncertain};
+pub use text::Uncertain;
 pub use time::Span;
+pub use typed::Quantity;
+pub use unit::{Kind, Unit};
