@@ -161,27 +161,29 @@ fn exact<T: Quantity>(quantity: T, units: impl Iterator<Item = Unit>) -> String 
         .unwrap_or_else(|| format!("{} {}", digits(quantity.si()), T::KIND.si_unit().symbol))
 }
 
-/// The shortest number within a few doubles of what `unit` shows that comes back as the same quantity.
+/// The number with the fewest digits, at what `unit` shows or within a few doubles of it, that comes back as the same
+/// quantity.
 fn exact_number<T: Quantity>(quantity: T, unit: Unit) -> Option<String> {
     const STEPS: usize = 4;
+    let comes_back = |x: &f64| x.is_finite() && T::from_shown(*x, unit) == quantity;
     let shown = quantity.shown(unit);
-    let up = std::iter::successors(Some(shown), |x| Some(x.next_up()));
-    let down = std::iter::successors(Some(shown), |x| Some(x.next_down())).skip(1);
-    up.take(STEPS + 1)
-        .chain(down.take(STEPS))
-        .filter(|x| x.is_finite() && T::from_shown(*x, unit) == quantity)
+    // A double has at most 17 digits that matter. Where the unit has a zero of its own fewer do: 0.1 °C is kept to
+    // the bits of 273.25 K, and is shown again as 0.10000000000002274.
+    let mut rounded = (0..16).filter_map(|places| format!("{shown:.places$e}").parse().ok());
+    let up = std::iter::successors(Some(shown), |x| Some(x.next_up())).take(STEPS + 1);
+    let down = std::iter::successors(Some(shown), |x| Some(x.next_down())).skip(1).take(STEPS);
+    rounded
+        .find(comes_back)
         .map(digits)
-        .min_by_key(String::len)
+        .or_else(|| up.chain(down).filter(comes_back).map(digits).min_by_key(String::len))
 }
 
-/// The shortest digits that are this double, with an exponent where zeros would be counted.
+/// The shortest digits that are this double, with an exponent where it would otherwise be zeros that one counts.
 fn digits(x: f64) -> String {
-    let size = x.abs();
-    if size == 0.0 {
-        "0".to_owned()
-    } else if (1e-5..1e15).contains(&size) {
-        format!("{x}")
-    } else {
-        format!("{x:e}")
+    if x.abs() == 0.0 {
+        return "0".to_owned();
     }
+    let (plain, with_exponent) = (format!("{x}"), format!("{x:e}"));
+    let readable = (1e-5..1e15).contains(&x.abs()) || plain.len() <= with_exponent.len();
+    if readable { plain } else { with_exponent }
 }

@@ -8,7 +8,7 @@ use super::{
 };
 
 /// A typed quantity that people write as a number and a unit.
-pub trait Quantity: Sized + Copy + PartialEq {
+pub trait Quantity: Sized + Copy + PartialEq + std::fmt::Debug {
     /// Its kind, which says the units it is understood in.
     const KIND: Kind;
     /// What the difference of two of it is, and so its uncertainty.
