@@ -25,7 +25,7 @@ fn close(got: f64, want: f64, relative: f64) {
 }
 
 #[test]
-fn every_text_of_the_interface_is_understood() {
+fn every_form_of_quantity_text_is_understood() {
     assert_eq!(value("10.5 bar"), Ok(GaugePressure::from_bar(10.5)));
     close(value::<GaugePressure>("152 psi").unwrap().as_bar(), 10.480_03, 1e-6);
     assert_eq!(value("700 mL/min"), Ok(IndicatedFlow::from_l_min(0.7)));

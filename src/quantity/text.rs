@@ -2,7 +2,7 @@
 //!
 //! Comes in: what people write in files and flags ("10.5 bar", "7.5 L ± 1.0 L", "0.02 L/min to 2 L/min", "00:08:30",
 //! "20 °C, 101.325 kPa"). Goes out: a typed quantity in SI, or one sentence that says what is wrong and what to do.
-//! The grammar is that of `interface.md`, "Quantities, times, text". The way back is in [`super::show`].
+//! The way back is in [`super::show`].
 //!
 //! Left out: decimal commas (the reader of CSV files knows where they are meant), fractions, sums, uncertainties
 //! in parentheses, and relative uncertainties: the part after ± has a unit of the same kind as the value.

@@ -99,7 +99,7 @@ impl Quantity for IndicatedFlow {
     }
 
     // A meter's reading is kept in litres per minute, and one that was read in them stays as it is to the last bit:
-    // the way over m³/s would move one reading in ten by one bit.
+    // the way over m³/s would move one four-digit reading in thirteen by one bit (7.7 % of 200 000 drawn).
     fn from_shown(shown: f64, unit: Unit) -> Self {
         Self::from_l_min(unit.shown_in(shown, unit::L_MIN))
     }
