@@ -5,7 +5,7 @@
 //! `d` first of `n` for which `Σ_{i≥d} e_i² / (n − d)²` is least, with at most half left out. The residuals `e` are
 //! about the mean, or about a straight line for a signal that may go on creeping. Noise alone also has a least place
 //! somewhere; so the cut is made only if the mean of what it would cut off stands away from the rest by more than
-//! three of its standard uncertainties, autocorrelation included, and by more than a floor that would matter.
+//! four of its standard uncertainties, autocorrelation included, and by more than a floor that would matter.
 
 use super::mean::mean_of_span;
 
@@ -20,8 +20,9 @@ pub enum Settled {
 
 /// Fewest means that must be left after the cut: below that a line has no scatter worth the name.
 const LEAST_LEFT: usize = 4;
-/// Standard uncertainties that make a difference (common practice, no source).
-const SIGNIFICANT: f64 = 3.0;
+/// Standard uncertainties that make a difference: more than for one test, since the rule has looked at many places (common
+/// practice, no source).
+const SIGNIFICANT: f64 = 4.0;
 
 /// How many of the first values belong to the settling. `floor` is the deviation that would not matter.
 #[must_use]

@@ -10,9 +10,10 @@
 //!    Every place that can be covered by such a pair of windows without a step is quiet; so quiet stretches reach up to
 //!    the step and not only to within a window of it. The last block before a step is given up: a hand may have been
 //!    on the knob.
-//! 3. The start is cut where the pressure, and then the flow reduced to the mean pressure, has settled
-//!    ([`super::settle`]). Reduced means `q·(p̄ + p_amb)/(p + p_amb)`: a choked flow follows the absolute pressure, so what
-//!    is left is the meter's own lag, while a creeping pressure that the flow follows is not held against it.
+//! 3. The ends are cut to where the pressure has settled and where it begins to leave, and the start to where the flow
+//!    reduced to the mean pressure has settled ([`super::settle`]). Reduced means `q·(p̄ + p_amb)/(p + p_amb)`: a choked
+//!    flow follows the absolute pressure, so what is left is the meter's own lag, while a creeping pressure that the flow
+//!    follows is not held against it.
 //! 4. What is left must be long enough; its drift of pressure and of reduced flow must be below a limit or within three
 //!    of its standard uncertainties, autocorrelation included.
 //!
@@ -308,7 +309,10 @@ impl Columns<'_> {
         });
         let pressures: Vec<f64> = all[dead..].iter().map(|b| b.pressure).collect();
         let settling = unsettled(&pressures, Settled::Line, NEGLIGIBLE * options.most_pressure_drift_pa);
-        let held = &all[dead + settling..];
+        // A hand that turns the knob slowly leaves the level as gently as it was reached.
+        let backward: Vec<f64> = pressures[settling..].iter().rev().copied().collect();
+        let leaving = unsettled(&backward, Settled::Line, NEGLIGIBLE * options.most_pressure_drift_pa);
+        let held = &all[dead + settling..all.len() - leaving];
         let least_s = options.least_duration_s;
         let lasts_s = self.lasts_s(held);
         if lasts_s < least_s {
