@@ -211,7 +211,7 @@ fn a_tenth_of_a_bar_is_a_step_in_the_noise_of_a_transducer() {
         println!(
             "rho {rho} at {rate_hz} Hz: {once} of {holds} holds once, {prompt} of them to a few seconds"
         );
-        assert!(once * 100 >= holds * 98 && prompt * 100 >= once * 97, "{holds} {once} {prompt}");
+        assert!(once * 100 >= holds * 98 && prompt * 100 >= once * 93, "{holds} {once} {prompt}");
     }
 }
 
@@ -298,8 +298,8 @@ fn the_mean_lies_within_three_of_its_uncertainties_and_they_are_no_larger_than_t
     {
         let (mut holds, mut used) = (0, 0);
         let mut within = [0, 0];
-        let mut errors = [0.0, 0.0];
-        let mut stated = [0.0, 0.0];
+        let mut errors = [0.0_f64; 2];
+        let mut stated = [0.0_f64; 2];
         for seed in 0..25 {
             let bench = Bench {
                 rate_hz,
@@ -332,7 +332,7 @@ fn the_mean_lies_within_three_of_its_uncertainties_and_they_are_no_larger_than_t
         assert!(used * 100 >= holds * 99, "{used} of {holds} holds");
         for i in 0..2 {
             let share = within[i] as f64 / used as f64;
-            let ratio: f64 = (stated[i] / errors[i] as f64).sqrt();
+            let ratio = (stated[i] / errors[i]).sqrt();
             let of = format!("rho {rho} at {rate_hz} Hz, channel {i}, {used} holds");
             println!("{of}: {share:.3} within 3 u, u is {ratio:.2} of the error");
             assert!(share > 0.95, "{of}: {share} within 3 u");
@@ -412,7 +412,7 @@ fn points_carry_the_mean_the_middle_of_the_span_and_the_slower_channels() {
     assert_eq!(found.points.len(), 13);
     for (point, span) in found.points.iter().zip(&found.spans) {
         assert_eq!(point.time_s, Some((span.from_s + span.to_s) / 2.0));
-        assert_eq!(point.temperature.unwrap().as_k(), 294.25);
+        assert_eq!(point.temperature.map(|t| t.as_k()), Some(294.25));
         assert_eq!(point.meter_temperature, None);
         // The barometer's reading at 60 s serves spans that begin until 180 s.
         let near = span.from_s - 60.0 <= 120.0;
@@ -529,7 +529,7 @@ fn a_display_coarser_than_its_noise_repeats_honestly() {
     assert_eq!(found.remarks, vec![]);
     logged.assert_each_hold_once(&found, 15.0, 3.0);
     for point in &found.points {
-        assert_eq!(point.pressure_scatter.unwrap().as_pa(), 0.0);
+        assert_eq!(point.pressure_scatter.map(|u| u.as_pa()), Some(0.0));
         // The flow's independent readings count, the pressure shows none.
         assert!(point.averaged > 50.0, "{point:?}");
     }
@@ -641,7 +641,8 @@ proptest! {
         flow_l_min in proptest::collection::vec(anything(), 0..80),
         other in proptest::collection::vec(anything(), 0..80),
         sorted in any::<bool>(),
-        least in prop_oneof![Just(0.0), Just(1e-3), Just(10.0), Just(1e4)],
+        least in prop_oneof![Just(0.0), Just(1e-3), Just(10.0), Just(1e4), Just(f64::NAN), Just(-1.0)],
+        step in prop_oneof![Just(1500.0), Just(0.0), Just(f64::NAN)],
     ) {
         let mut time_s = time_s;
         if sorted {
@@ -655,9 +656,12 @@ proptest! {
             barometer_pa: Some(other),
             ..SeriesReadings::default()
         };
-        let options = SteadyOptions { least_duration_s: least, ..SteadyOptions::default() };
+        let options = SteadyOptions { least_duration_s: least, least_step_pa: step, ..SteadyOptions::default() };
         let found = steady_points(&series, &options);
         prop_assert_eq!(found.points.len(), found.spans.len());
+        for point in &found.points {
+            prop_assert!(gauge_pa(point.pressure).is_finite() && point.flow.as_l_min().is_finite());
+        }
     }
 
     #[test]

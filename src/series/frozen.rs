@@ -3,8 +3,8 @@
 //! Takes columns (seconds, readings; NaN is a missing reading) and returns [`Stretch`]es of rows. A hole is an
 //! interval between readings longer than a limit; shorter ones are bridged, so that a channel read at every tenth row
 //! is not "missing". A channel has frozen when it repeats one value exactly, for longer than its own habit makes
-//! plausible, while the other channel moves: both are asked for, because a reading that is finer than its noise
-//! repeats honestly for minutes. Left out: a logger that repeats *all* its channels, which cannot be told from a
+//! plausible, while the other channel moves: both are asked for, because a display coarser than its noise repeats
+//! honestly for minutes. Left out: a logger that repeats *all* its channels, which cannot be told from a
 //! quiet bench.
 
 use std::ops::Range;

@@ -11,14 +11,18 @@
 //! `τ = (1 + ρ)/(1 − ρ) − 2ρ(1 − ρⁿ)/(n(1 − ρ)²)`, and `σ² = Σe²/(n − 2τ)`, because the line takes with it what is
 //! as slow as itself. White noise over a slow wander would hide the wander from neighbours, so the same is done with
 //! means of two, four, … readings (blocking, Flyvbjerg and Petersen 1989) down to [`LEAST_BLOCKS`] of them, and the
-//! largest uncertainty counts. A negative `ρ` counts as zero. Left out: anything slower than the span itself.
+//! largest uncertainty counts. A negative `ρ` counts as zero.
+//!
+//! On simulated noise (white, `ρ` = 0.5 and 0.9, white over a slow wander) the stated uncertainty comes out at 1.05 to 1.5
+//! times the true one. A span of fewer than about five independent readings does not know its scatter: at three, one mean in
+//! twelve lies further off than three of its uncertainties. Left out: anything slower than the span itself.
 
 /// Fewest block means from which an autocorrelation is taken: their scatter is then known to about 15 %.
 pub const LEAST_BLOCKS: usize = 32;
 /// Fewest independent readings that a span may come out with before its scatter cannot be told from its drift.
 const LEAST_EFFECTIVE: f64 = 3.0;
-/// Doublings: more than the readings of any file.
-const LEVELS: usize = 40;
+/// Doublings, enough for 32 blocks of a quarter of a thousand million readings.
+const LEVELS: usize = 24;
 
 /// Mean, scatter and drift of a span; all but the counts in the unit of the readings.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -45,7 +49,8 @@ impl MeanOfSpan {
     }
 }
 
-/// Mean of the finite readings among `values`; none when there are fewer than three.
+/// Mean of the finite readings among `values`; none when there are fewer than three, or when they are so large that
+/// their squares overflow.
 #[must_use]
 pub fn mean_of_span(values: &[f64]) -> Option<MeanOfSpan> {
     let finite = || values.iter().copied().filter(|x| x.is_finite());
@@ -79,7 +84,7 @@ pub fn mean_of_span(values: &[f64]) -> Option<MeanOfSpan> {
         .map(|(_, level)| level.variance_of_mean())
         .fold(0.0, f64::max);
     let effective = if variance > 0.0 { (single / variance).clamp(1.0, n) } else { 1.0 };
-    Some(MeanOfSpan {
+    (mean.is_finite() && variance.is_finite() && single.is_finite()).then(|| MeanOfSpan {
         mean: offset + mean,
         scatter: variance.sqrt(),
         deviation: single.sqrt(),

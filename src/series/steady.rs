@@ -224,7 +224,7 @@ fn step_limit(changes: &[Vec<f64>], least_step_pa: f64) -> f64 {
     let every = total / SAMPLE + 1;
     let mut sample: Vec<f64> = changes.iter().flatten().step_by(every).map(|c| c.abs()).collect();
     let usual = quantile(&mut sample, 0.25).unwrap_or(0.0) / NORMAL_QUARTER;
-    (STEP_DEVIATIONS * usual).clamp(least_step_pa, (MOST_STEP * least_step_pa).max(least_step_pa))
+    (STEP_DEVIATIONS * usual).min(MOST_STEP * least_step_pa).max(least_step_pa)
 }
 
 /// Blocks that may be a steady span.
