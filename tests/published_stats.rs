@@ -4,7 +4,7 @@
 //! the last printed digit unless the file's remark says otherwise. Not covered, because no free print was at hand: ISO/TS
 //! 28037 clauses 8 and 9 (which the room does not hold), JCGM 101 clause 9.4 and 9.5.
 
-#![allow(clippy::unwrap_used, reason = "a test may panic, also in its helpers")]
+#![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
 #![allow(clippy::float_cmp, reason = "counts and labels read from a file are whole numbers")]
 
 #[path = "common/published.rs"]

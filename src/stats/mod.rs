@@ -4,7 +4,7 @@
 //! results in the same set. In reading order:
 //!
 //! - [`distribution`]: normal, Student, chi-squared and F probabilities, with the same bits on every machine.
-//! - [`line`]: straight line with uncertainties in both coordinates (ISO/TS 28037:2010, clauses 6, 7 and 11).
+//! - [`mod@line`]: straight line with uncertainties in both coordinates (ISO/TS 28037:2010, clauses 6, 7 and 11).
 //! - [`correlated`]: the same line when the points are correlated (ISO/TS 28037:2010, clause 10).
 //! - [`ordinary`]: ordinary least squares, for the diagnostics that stand beside the line.
 //! - [`outlier`], [`lack_of_fit`]: is a point strange, is the model the wrong shape?
