@@ -1,1 +1,15 @@
-//! Room `report`.
+//! Results to words: rounding, display units, every sentence and caution, the JSON of the interface.
+//!
+//! Comes in: results of the rooms above. Goes out: text. Nothing is computed here but rounding. Left out: drawing
+//! (`plot`), and the decision where a text goes (`cli`).
+
+pub mod bench_fit;
+pub mod bench_json;
+pub mod cautions;
+pub mod check_sentences;
+pub mod layout;
+pub mod number;
+pub mod units;
+pub mod warning_sentences;
+
+pub use units::Units;
