@@ -330,18 +330,22 @@ fn column<T: Quantity>(key: &'static str, customary: &str, values: Vec<T>) -> Co
     Column { key, name, unit: Some(unit), absolute: false, cells }
 }
 
-/// The shortest number near what `unit` shows that comes back as the same quantity; empty for a missing reading.
+/// The shortest number that comes back as the same quantity; none when the unit has no such number, empty for a
+/// missing reading.
 fn cell<T: Quantity>(value: T, unit: Unit) -> Option<String> {
     if value.si().is_nan() {
         return Some(String::new());
     }
     let shown = value.shown(unit);
+    // The fewest significant digits first: a temperature in °C has more doubles than in K, so the double nearest to
+    // what is shown (20.800000000000011) is seldom the one that was read. Then the neighbours, one step of which the
+    // factor of a unit may cost.
+    let rounded = (0..=16).filter_map(|decimals| format!("{shown:.decimals$e}").parse().ok());
     let (up, down) = (shown.next_up(), shown.next_down());
-    [shown, up, down, up.next_up(), down.next_down()]
-        .into_iter()
-        .filter(|number| number.is_finite() && T::from_shown(*number, unit) == value)
+    rounded
+        .chain([shown, up, down, up.next_up(), down.next_down()])
+        .find(|number: &f64| number.is_finite() && T::from_shown(*number, unit) == value)
         .map(digits)
-        .min_by_key(String::len)
 }
 
 /// A unit as the end of a column's name.
