@@ -2,6 +2,9 @@
 //!
 //! All files are invented (`fixtures/runs`). A refusal is compared whole: its words are what a person at the bench reads.
 
+#![allow(clippy::unwrap_used, reason = "a test that cannot read its own files fails")]
+#![allow(clippy::float_cmp, reason = "what is read must be the very double that was written")]
+
 use std::io::{Cursor, Read};
 use std::path::Path;
 
@@ -193,6 +196,17 @@ fn a_coverage_factor_of_the_conditions_is_brought_to_two() {
 }
 
 #[test]
+fn a_gas_factor_is_brought_to_two_and_written_as_its_papers_state_it() {
+    let toml = with(FLOAT, "scale = \"reference\"", "scale = \"reference\"\ncoverage = 1.7");
+    let given = run(&toml, FLOAT_CSV);
+    let MeterKind::Float { gas_factor: Some(factor), .. } = &given.meter.kind else { panic!("float") };
+    assert_eq!(factor.expanded, Some(0.03 * (2.0 / 1.7)));
+    let (toml, csv) = write_run(&given, "again.csv");
+    assert!(toml.contains("gas_factor = \"0.95 ± 0.03\""), "{toml}");
+    assert_eq!(run(&toml, &csv), given);
+}
+
+#[test]
 fn every_refusal_names_its_place_and_says_what_to_do() {
     let cases: toml::Table = include_str!("../fixtures/runs/refused.toml").parse().unwrap();
     let cases = cases["case"].as_array().unwrap();
@@ -344,6 +358,11 @@ fn entries_of_registers_are_asked_for() {
     let files = &mut |_: &str| -> Result<Box<dyn Read>, RecordError> { Ok(Box::new(POINTS_CSV.as_bytes())) };
     assert!(parse_run_with(&toml, "run.toml", files, &NoRegisters).is_err());
     assert_eq!(parse_run_with(&toml, "run.toml", files, &One(plain.meter.clone())).unwrap().value, plain);
+    let of_air = with(&toml, "gas = \"oxygen\"\noxygen = \"99.5 % ± 0.3 %\"\n", "gas = \"air\"\n");
+    let other_gas = parse_run_with(&of_air, "run.toml", files, &One(plain.meter.clone())).unwrap_err();
+    let sentence = "run.toml, line 1, meter: the gas is air and the meter was made for oxygen; give gas_factor from the \
+                    meter's papers (true flow over shown flow)";
+    assert_eq!(other_gas.to_string(), sentence);
     let toml = format!("acceptance = \"SHOP-5\"\n{}", &POINTS[..POINTS.find("[acceptance]").unwrap()]);
     assert!(
         refusal(&toml, POINTS_CSV).starts_with("run.toml, line 1, acceptance: \"SHOP-5\" would be an entry")
@@ -359,6 +378,10 @@ fn tables_without_a_table_in_them_are_refused() {
     for (csv, sentence) in [
         (format!("{header}\n"), no_rows),
         (format!("{header}\n\n,,,,,\n"), no_rows),
+        (
+            POINTS_CSV.replace('\n', "\r"),
+            "line 1: the lines end with a carriage return alone; save the file with LF or CRLF at the ends of its lines",
+        ),
         (String::new(), empty),
         (" \n\n".to_owned(), empty),
         (

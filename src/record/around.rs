@@ -3,7 +3,7 @@
 use super::columns::Columns;
 use super::document::{Field, Table};
 use super::error::{RecordError, Refusal};
-use super::instruments::{GASES, share};
+use super::instruments::{COVERAGE, GASES, coverage, is_share, share};
 use super::note::Note;
 use crate::entry::{Acceptance, Conditions, Influence, LeftOut, Limits, Rule, Tolerance, ZeroAndLeak};
 use crate::quantity::text::{expanded_only, range, uncertain, value, zero_reading};
@@ -11,9 +11,6 @@ use crate::quantity::{
     AbsolutePressure, GaugePressure, IndicatedFlow, PressureDifference, PressureRate, Quantity, Share,
     StpdFlow, Temperature,
 };
-
-/// The coverage factor of what stands after a `±` in a table that states none; entries keep all of them at it.
-const COVERAGE: f64 = 2.0;
 
 /// The words for decision rules, in files.
 pub(super) const RULES: [(&str, Rule); 2] = [("guarded", Rule::Guarded), ("simple", Rule::Simple)];
@@ -40,8 +37,7 @@ pub(super) fn conditions(
         "water_temperature",
         "coverage",
     ])?;
-    let coverage = |field: Field<'_>| field.number("a coverage factor above zero", |k| k > 0.0);
-    let to_k2 = COVERAGE / table.field("coverage").map_or(Ok(COVERAGE), coverage)?;
+    let to_k2 = COVERAGE / coverage(&table)?;
     for (key, used, why) in [
         ("humidity", uses_volume, "only a meter that shows the volume that passes needs it"),
         ("meter_temperature", uses_volume, "only a meter that shows the volume that passes needs it"),
@@ -116,7 +112,7 @@ pub(super) fn acceptance(table: &Table<'_>) -> Result<Acceptance, RecordError> {
     let flow = table.required("flow", "flow = \"0.48 L/min\"")?;
     let flow = above_zero(&flow, flow.quantity(value::<StpdFlow>)?)?;
     let tolerance = table.required("tolerance", "tolerance = \"5 %\"")?;
-    let tolerance = if tolerance.quantity_text()?.contains('%') {
+    let tolerance = if is_share(tolerance.quantity_text()?) {
         Tolerance::Relative(above_zero(&tolerance, tolerance.quantity(value::<Share>)?)?.as_ratio())
     } else {
         Tolerance::Flow(above_zero(&tolerance, tolerance.quantity(value::<StpdFlow>)?)?)
@@ -220,6 +216,7 @@ impl Reader<'_, '_> {
             (Some(given.value).filter(|_| alone != Alone::Column), given.expanded)
         };
         let scaled = |u: T::Difference| T::difference_from_si(u.si() * self.to_k2);
+        // By way of SI a flow may move by its last bit, so what is at k = 2 already is left alone.
         let as_given = self.to_k2.to_bits() == 1_f64.to_bits();
         Ok(Influence { value, expanded: expanded.map(|u| if as_given { u } else { scaled(u) }) })
     }

@@ -284,6 +284,11 @@ pub enum Refusal {
     /// A quoted cell without an end.
     #[error("a quoted cell does not end on its line; close the quote")]
     OpenQuote,
+    /// Lines that only a carriage return ends.
+    #[error(
+        "the lines end with a carriage return alone; save the file with LF or CRLF at the ends of its lines"
+    )]
+    BareReturn,
     /// A line no logger writes.
     #[error("the line is longer than 64 KiB; this is not a table of readings")]
     LongLine,

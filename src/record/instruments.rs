@@ -11,8 +11,8 @@ use crate::gas::Species;
 use crate::quantity::text::{expanded_only, range, reference_conditions, value};
 use crate::quantity::{GaugePressure, Quantity, ReferenceConditions, Share, Uncertain, presets_listed};
 
-/// The coverage factor of papers that state none.
-const COVERAGE: f64 = 2.0;
+/// The coverage factor of what stands after a `±`, and of papers, in a table that states none.
+pub(super) const COVERAGE: f64 = 2.0;
 
 const PAPERS: [&str; 9] =
     ["id", "gain", "zero", "noise", "resolution", "coverage", "range", "certificate", "due"];
@@ -67,12 +67,7 @@ pub(super) fn meter(table: &Table<'_>, gas: Species) -> Result<Meter, RecordErro
         Kind::Mass => {
             let reads_at = reads_at(table, name)?;
             let made_for = made_for(table)?;
-            let gas_factor = gas_factor(table, gas, made_for)?;
-            if gas != made_for && gas_factor.is_none() {
-                let refusal = Refusal::GasDiffers { gas: gas.name(), made_for: made_for.name() };
-                return Err(table.refuse("gas_factor", refusal));
-            }
-            MeterKind::Mass { reads_at, made_for, gas_factor }
+            MeterKind::Mass { reads_at, made_for, gas_factor: gas_factor(table, gas, made_for)? }
         }
         Kind::Float => {
             let reads_at = reads_at(table, name)?;
@@ -87,7 +82,18 @@ pub(super) fn meter(table: &Table<'_>, gas: Species) -> Result<Meter, RecordErro
             MeterKind::Float { reads_at, made_for, scale, made_at, gas_factor }
         }
     };
+    suits(&kind, gas).map_err(|refusal| table.refuse("gas_factor", refusal))?;
     Ok(Meter { id: table.field("id").map(|id| id.id()).transpose()?, kind, papers: papers(table)? })
+}
+
+/// Whether a meter can say anything about `gas`: a mass-reading one made for another gas needs the maker's factor.
+pub(super) fn suits(kind: &MeterKind, gas: Species) -> Result<(), Refusal> {
+    match kind {
+        MeterKind::Mass { made_for, gas_factor: None, .. } if *made_for != gas => {
+            Err(Refusal::GasDiffers { gas: gas.name(), made_for: made_for.name() })
+        }
+        _ => Ok(()),
+    }
 }
 
 /// A pressure transducer.
@@ -95,6 +101,11 @@ pub(super) fn transducer(table: &Table<'_>) -> Result<Transducer, RecordError> {
     table.only(&PAPERS)?;
     let id = table.field("id").map(|id| id.id()).transpose()?;
     Ok(Transducer { id, papers: papers::<GaugePressure>(table)? })
+}
+
+/// Whether a text that may be a share or a quantity is a share.
+pub(super) fn is_share(text: &str) -> bool {
+    text.contains('%') || text.contains("percent")
 }
 
 /// A share written with its unit, as "0.8 %".
@@ -107,22 +118,27 @@ fn expanded_share(field: &Field<'_>) -> Result<f64, RecordError> {
     field.quantity(expanded_only::<Share>).map(Share::as_ratio)
 }
 
+/// The coverage factor of a table.
+pub(super) fn coverage(table: &Table<'_>) -> Result<f64, RecordError> {
+    let stated = |field: Field<'_>| field.number("a coverage factor above zero", |k| k > 0.0);
+    table.field("coverage").map_or(Ok(COVERAGE), stated)
+}
+
 fn papers<R: Quantity>(table: &Table<'_>) -> Result<Papers<R::Difference, R>, RecordError> {
     let expanded = |field: Field<'_>| field.quantity(expanded_only::<R>);
     let noise = |field: Field<'_>| {
-        if field.quantity_text()?.contains('%') {
+        if is_share(field.quantity_text()?) {
             expanded_share(&field).map(Amount::OfReading)
         } else {
             expanded(field).map(Amount::Fixed)
         }
     };
-    let coverage = |field: Field<'_>| field.number("a coverage factor above zero", |k| k > 0.0);
     Ok(Papers {
         gain: table.field("gain").map(|field| expanded_share(&field)).transpose()?,
         zero: table.field("zero").map(expanded).transpose()?,
         noise: table.field("noise").map(noise).transpose()?,
         resolution: table.field("resolution").map(expanded).transpose()?,
-        coverage: table.field("coverage").map_or(Ok(COVERAGE), coverage)?,
+        coverage: coverage(table)?,
         range: table.field("range").map(|field| field.quantity(range::<R>)).transpose()?,
         certificate: table.field("certificate").map(|field| field.free_text()).transpose()?.flatten(),
         due: table.field("due").map(|field| field.date()).transpose()?,
@@ -152,5 +168,8 @@ fn gas_factor(
         let why = "the meter was made for this gas";
         field.note(Note::NotUsed { place: field.place(), why });
     }
-    field.uncertain_number().map(Some)
+    let Uncertain { value, expanded } = field.uncertain_number()?;
+    // The entry keeps what stands after a ± at k = 2, whatever the papers' own coverage factor is.
+    let to_k2 = COVERAGE / coverage(table)?;
+    Ok(Some(Uncertain { value, expanded: expanded.map(|u| u * to_k2) }))
 }

@@ -179,9 +179,10 @@ fn run(
     around::left_out(&leave_out, None)?;
 
     let readings = file.required("readings", "readings = \"cmf-0417.csv\"")?;
-    let csv = readings.text()?;
-    let csv_name = Path::new(name).parent().unwrap_or(Path::new("")).join(csv).display().to_string();
-    let mut sheet = Sheet::open(&csv_name, files(csv)?, &columns.names())?;
+    // The name comes back in refusals, so it is held to what free text is held to.
+    let Some(csv) = readings.free_text()? else { return Err(readings.refuse(Refusal::EmptyText)) };
+    let csv_name = Path::new(name).parent().unwrap_or(Path::new("")).join(&csv).display().to_string();
+    let mut sheet = Sheet::open(&csv_name, files(&csv)?, &columns.names())?;
     let readings = if series {
         readings::series(&mut sheet, &columns)?
     } else {
@@ -245,7 +246,9 @@ fn meter(file: &Table<'_>, gas: Species, registers: &dyn Registers) -> Result<Me
         return instruments::meter(&field.table("meter")?, gas);
     }
     let id = field.id()?;
-    registers.meter(&id).ok_or_else(|| field.refuse(not_registered(&id, "meter")))
+    let meter = registers.meter(&id).ok_or_else(|| field.refuse(not_registered(&id, "meter")))?;
+    instruments::suits(&meter.kind, gas).map_err(|refusal| field.refuse(refusal))?;
+    Ok(meter)
 }
 
 fn transducer(file: &Table<'_>, registers: &dyn Registers) -> Result<Transducer, RecordError> {

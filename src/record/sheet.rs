@@ -249,6 +249,9 @@ fn first_line(file: &str, source: &mut impl BufRead) -> Result<(Vec<u8>, u64), R
         if line.contains(&0) {
             return Err(RecordError::unreadable(file, Fault::Binary));
         }
+        if line.trim_ascii().contains(&b'\r') {
+            return Err(refuse(number, Refusal::BareReturn));
+        }
         if line.len() > LONGEST_LINE {
             return Err(refuse(number, Refusal::LongLine));
         }

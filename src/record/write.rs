@@ -10,6 +10,7 @@
 
 use std::fmt::Write;
 
+use super::instruments::COVERAGE;
 use crate::entry::{
     Acceptance, Amount, Build, FloatScale, Indication, Influence, Meter, MeterKind, Papers, PointReading,
     Readings, Rule, Run, SeriesReadings, Sweep, Tolerance, Transducer, ZeroAndLeak,
@@ -153,7 +154,8 @@ fn meter(toml: &mut Toml, meter: &Meter) {
     toml.text("kind", meter.kind.name());
     let factor = |toml: &mut Toml, given: &Option<Uncertain<f64>>| match given {
         Some(Uncertain { value, expanded: Some(expanded) }) => {
-            toml.text("gas_factor", &format!("{} ± {}", digits(*value), digits(*expanded)));
+            let stated = at_coverage(*expanded, meter.papers.coverage);
+            toml.text("gas_factor", &format!("{} ± {}", digits(*value), digits(stated)));
         }
         Some(Uncertain { value, expanded: None }) => toml.line("gas_factor", &number(*value)),
         None => {}
@@ -180,6 +182,15 @@ fn meter(toml: &mut Toml, meter: &Meter) {
         }
     }
     papers(toml, &meter.papers);
+}
+
+/// An expanded uncertainty at k = 2 as a table with another coverage factor states it.
+fn at_coverage(expanded: f64, coverage: f64) -> f64 {
+    let to_k2 = COVERAGE / coverage;
+    let near = expanded / to_k2;
+    let (up, down) = (near.next_up(), near.next_down());
+    let comes_back = |stated: &f64| (stated * to_k2).to_bits() == expanded.to_bits();
+    [near, up, down, up.next_up(), down.next_down()].into_iter().find(comes_back).unwrap_or(near)
 }
 
 fn transducer(toml: &mut Toml, transducer: &Transducer) {
