@@ -1,3 +1,7 @@
-//! The binary: parses arguments, calls the library, prints the error chain, sets the exit status.
+//! The binary: hands its arguments to the library and sets the exit status.
 
-fn main() {}
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    ExitCode::from(ebbline::cli::run(std::env::args_os()))
+}

@@ -9,6 +9,7 @@ pub mod cautions;
 pub mod check_sentences;
 pub mod layout;
 pub mod number;
+pub mod series_notes;
 pub mod units;
 pub mod warning_sentences;
 

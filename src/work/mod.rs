@@ -1,1 +1,11 @@
-//! Room `work`.
+//! What each verb does, one file a verb: load, compute, store, hand back a result.
+//!
+//! The only place with a sequence of steps, and, with `record`, the only one that touches files.
+
+pub mod demo;
+pub mod error;
+pub mod fit;
+pub mod output;
+pub mod png;
+
+pub use error::{ExitStatus, WorkError};

@@ -1,0 +1,147 @@
+//! What can be typed. Quantities carry their unit in the value; clap's words stop at this file's structs.
+
+use std::path::PathBuf;
+
+use clap::{Args, Parser, Subcommand};
+
+use crate::quantity::text;
+use crate::quantity::{AbsolutePressure, GaugePressure, PressureDifference, QuantityError, Shown, StpdFlow, Uncertain};
+
+/// Bench calibration of constant-mass-flow orifices for manual closed-circuit rebreathers: readings of flow against
+/// intermediate pressure become a line with its uncertainty, checks and a verdict.
+#[derive(Debug, Parser)]
+#[command(
+    name = "ebbline",
+    version,
+    disable_help_subcommand = true,
+    after_help = "Exit status: 0 done and favourable; 1 done, the verdict is fail or undecided; 2 the input or the call \
+                  is wrong; 3 a disk or output file failed.\n\nAn aid to trained people, no life-support monitor. \
+                  Training, the unit's manual, the regulator maker's limits and local rules come first."
+)]
+pub struct Arguments {
+    /// Options of every verb.
+    #[command(flatten)]
+    pub global: Global,
+    /// The verb.
+    #[command(subcommand)]
+    pub command: Command,
+}
+
+/// Options of every verb, before or after it.
+#[derive(Debug, Args)]
+pub struct Global {
+    /// The record file (else EBBLINE_BOOK, else the platform's data folder)
+    #[arg(long, global = true, value_name = "FILE")]
+    pub book: Option<PathBuf>,
+    /// Write the result as JSON
+    #[arg(long, global = true)]
+    pub json: bool,
+    /// Units shown, as in psi,mL/min,ft,F; what is typed carries its own
+    #[arg(long, global = true, value_name = "UNITS", default_value = "", hide_default_value = true, value_parser = Shown::parse)]
+    pub show: Shown,
+    /// No colour; NO_COLOR is honoured too
+    #[arg(long, global = true)]
+    pub no_color: bool,
+}
+
+/// The verbs.
+#[derive(Debug, Subcommand)]
+pub enum Command {
+    /// Runs the whole job on an invented shop's orifices and leaves files and plots
+    Demo(Demo),
+    /// Bench runs of orifices
+    #[command(subcommand)]
+    Bench(Bench),
+    /// Prints a completion script for a shell
+    Completions {
+        /// The shell
+        shell: clap_complete::Shell,
+    },
+    /// Prints the manual page
+    Man,
+}
+
+/// Options of `demo`.
+#[derive(Debug, Args)]
+pub struct Demo {
+    /// The folder that is filled
+    #[arg(long, value_name = "DIR", default_value = "ebbline-demo")]
+    pub into: PathBuf,
+}
+
+/// Verbs of bench runs.
+#[derive(Debug, Subcommand)]
+pub enum Bench {
+    /// Fits a run: line, uncertainty, checks, verdict
+    Fit(Fit),
+}
+
+/// Options of `bench fit`.
+#[derive(Debug, Args)]
+pub struct Fit {
+    /// A run file (a name with a slash, or ending in .toml)
+    #[arg(value_name = "RUN|FILE.toml")]
+    pub run: String,
+    /// Flow at this IP, as in "9.4 bar"; repeat, or list with commas
+    #[arg(long, value_name = "IP", value_delimiter = ',', allow_hyphen_values = true, value_parser = text::value::<GaugePressure>)]
+    pub at: Vec<GaugePressure>,
+    /// The IP that gives this flow (STPD), as in "0.31 L/min"; repeat, or list with commas
+    #[arg(long, value_name = "FLOW", value_delimiter = ',', allow_hyphen_values = true, value_parser = text::value::<StpdFlow>)]
+    pub for_flow: Vec<StpdFlow>,
+    /// Ambient pressure for these answers instead of 1.01325 bar, as in "830 hPa" or "1009 hPa ± 1 hPa"
+    #[arg(long, value_name = "PRESSURE", allow_hyphen_values = true, value_parser = barometer)]
+    pub barometer: Option<Uncertain<AbsolutePressure, PressureDifference>>,
+    /// Draw the run; the ending says how
+    #[arg(long, value_name = "FILE.svg|.png")]
+    pub plot: Option<PathBuf>,
+    /// Check the budget by Monte Carlo with this many trials
+    #[arg(long, value_name = "N")]
+    pub monte_carlo: Option<usize>,
+}
+
+fn barometer(text: &str) -> Result<Uncertain<AbsolutePressure, PressureDifference>, QuantityError> {
+    text::uncertain(text)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use clap::CommandFactory as _;
+
+    #[test]
+    fn the_definitions_are_sound() {
+        Arguments::command().debug_assert();
+    }
+
+    #[test]
+    fn every_quantity_flag_refuses_a_bare_number() {
+        let mut seen = 0;
+        for flag in ["--at", "--for-flow", "--barometer"] {
+            let error = Arguments::try_parse_from(["ebbline", "bench", "fit", "x.toml", flag, "9.4"]).unwrap_err();
+            assert_eq!(error.exit_code(), 2);
+            assert!(error.to_string().contains("9.4"), "{error}");
+            seen += 1;
+        }
+        // A new quantity flag has to be listed above: all others take no quantity.
+        let command = Arguments::command();
+        let fit = command.find_subcommand("bench").and_then(|b| b.find_subcommand("fit")).unwrap();
+        let plain = ["run", "plot", "monte_carlo"];
+        let quantities = fit.get_arguments().filter(|a| !plain.contains(&a.get_id().as_str())).count();
+        assert_eq!(quantities, seen);
+    }
+
+    #[test]
+    fn quantity_flags_take_negative_values_and_lists() {
+        let parsed = Arguments::try_parse_from(["ebbline", "bench", "fit", "x.toml", "--at", "-0.5 bar,9 bar", "--at", "10bar"]);
+        let Command::Bench(Bench::Fit(fit)) = parsed.unwrap().command else { panic!("not fit") };
+        let bars: Vec<f64> = fit.at.iter().map(|p| p.as_bar()).collect();
+        assert_eq!(bars, [-0.5, 9.0, 10.0]);
+    }
+
+    #[test]
+    fn global_options_stand_before_or_after_the_verb() {
+        for line in [["ebbline", "--json", "bench", "fit", "x.toml"], ["ebbline", "bench", "fit", "x.toml", "--json"]] {
+            assert!(Arguments::try_parse_from(line).unwrap().global.json);
+        }
+    }
+}

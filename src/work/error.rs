@@ -1,0 +1,112 @@
+//! Why a verb could not be done, and the exit status that says so.
+
+use std::path::PathBuf;
+
+use super::png::PngError;
+use crate::bench::BenchError;
+use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
+use crate::record::RecordError;
+
+/// How a call ended.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum ExitStatus {
+    /// Done, and favourable.
+    Done,
+    /// Done, and the verdict is not favourable.
+    Unfavourable,
+    /// The input or the call is wrong.
+    Wrong,
+    /// An instrument, port, disk, output file or database failed.
+    Failed,
+}
+
+impl ExitStatus {
+    /// The number for the operating system.
+    #[must_use]
+    pub const fn code(self) -> u8 {
+        match self {
+            Self::Done => 0,
+            Self::Unfavourable => 1,
+            Self::Wrong => 2,
+            Self::Failed => 3,
+        }
+    }
+}
+
+/// Why a verb could not be done.
+#[derive(Debug, thiserror::Error)]
+pub enum WorkError {
+    /// A file cannot be read or its content is refused.
+    #[error(transparent)]
+    Record(#[from] RecordError),
+    /// A run cannot be analysed.
+    #[error("{file}: {error}", file = file.display())]
+    Bench {
+        /// The run file.
+        file: PathBuf,
+        /// What is wrong; its cause, if it has one, comes after it.
+        #[source]
+        error: BenchError,
+    },
+    /// A time series holds too few steady spans.
+    #[error(
+        "{file}: the time series holds {found} steady spans and a line needs {needed}: hold each pressure for at least \
+         {hold_s:.0} s{nearly}", file = file.display()
+    )]
+    TooFewSteady {
+        /// The run file.
+        file: PathBuf,
+        /// Steady spans found.
+        found: usize,
+        /// Spans needed.
+        needed: usize,
+        /// Least duration of a span, seconds.
+        hold_s: f64,
+        /// What nearly was steady and why it is not, ready to be appended.
+        nearly: String,
+    },
+    /// A run of the book was named.
+    #[error(
+        "\"{0}\" is not a file (a file's name has a slash or ends in .toml), and there is no book to look a run up in: \
+         give the run's file"
+    )]
+    NoBook(String),
+    /// A number of trials outside the bounds.
+    #[error("--monte-carlo takes {FEWEST_TRIALS} to {MOST_TRIALS} trials, not {0}")]
+    Trials(usize),
+    /// No interval came out of the trials.
+    #[error("too few of the {0} Monte Carlo trials converged for an interval: look at the checks of the run first")]
+    NoMonteCarlo(usize),
+    /// A plot's file name has another ending.
+    #[error("{0}: a plot is written as .svg or .png, name the file so")]
+    PlotKind(PathBuf),
+    /// A picture cannot be made.
+    #[error("the plot cannot be turned into a picture")]
+    Png(#[from] PngError),
+    /// A file or folder cannot be written.
+    #[error("{path} cannot be written: look at the folder, its permissions and the space on the disk", path = path.display())]
+    Write {
+        /// Where.
+        path: PathBuf,
+        /// What the system said.
+        #[source]
+        source: std::io::Error,
+    },
+}
+
+impl WorkError {
+    /// The exit status that goes with it.
+    #[must_use]
+    pub const fn status(&self) -> ExitStatus {
+        match self {
+            Self::Record(_)
+            | Self::Bench { .. }
+            | Self::TooFewSteady { .. }
+            | Self::NoBook(_)
+            | Self::Trials(_)
+            | Self::NoMonteCarlo(_)
+            | Self::PlotKind(_) => ExitStatus::Wrong,
+            Self::Png(_) | Self::Write { .. } => ExitStatus::Failed,
+        }
+    }
+}
