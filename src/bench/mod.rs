@@ -29,7 +29,7 @@ pub use sources::{CommonSource, DEFAULT_BAROMETER_EXPANDED_PA, DEFAULT_TEMPERATU
 pub use verdict::{Judgement, Verdict};
 pub use warning::Warning;
 
-use checks::Check;
+use checks::{Check, CheckKind};
 use choke::{ChokePoint, ChokeRatio, CommonEffect};
 use convert::gas_ratio;
 use correct::{Correction, REFERENCE_TEMPERATURE_K, Raw, Shift, Source};
@@ -185,9 +185,6 @@ pub fn analyse(
     leave_out(&mut points, &choke);
     let line_points = usable(&points, &warnings)?;
     let line = fit_orifice_line(&line_points, &correction, &sources)?;
-    if line.widened > 1.0 && !line_points.flow_u_from_scatter {
-        warnings.push(Warning::RandomPartWidened(line.widened.sqrt()));
-    }
     for point in &mut points {
         point.residual_l_min = point.flow_l_min - line.random.at(point.pressure_bar_abs);
     }
@@ -215,6 +212,11 @@ pub fn analyse(
         limits: &limits,
         before: questions.before,
     });
+    if line.widened > 1.0 && !line_points.flow_u_from_scatter {
+        let straight = checks.iter().find(|c| c.kind == CheckKind::Straight);
+        let bent = straight.and_then(|c| c.p_value).is_some_and(|p| p < limits.significance);
+        warnings.push(Warning::RandomPartWidened { factor: line.widened.sqrt(), bent });
+    }
     let judgement = run.acceptance.as_ref().map(|a| judge(run, a, &nominal, &checks, &mut warnings));
     if run.gas != Species::Oxygen {
         warnings.push(Warning::BenchGasIsNotOxygen);

@@ -39,7 +39,12 @@ pub struct Judgement {
 
 /// Judges a flow by an acceptance whose nominal flow, in the gas of the run, is `nominal_l_min`.
 #[must_use]
-pub(super) fn judge(acceptance: &Acceptance, nominal_l_min: f64, flow: &FlowAt, checks: &[Check]) -> Judgement {
+pub(super) fn judge(
+    acceptance: &Acceptance,
+    nominal_l_min: f64,
+    flow: &FlowAt,
+    checks: &[Check],
+) -> Judgement {
     let half_width = match acceptance.tolerance {
         Tolerance::Relative(share) => share * nominal_l_min,
         Tolerance::Flow(q) => q.as_l_min() * nominal_l_min / acceptance.flow.as_l_min(),

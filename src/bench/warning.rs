@@ -28,8 +28,13 @@ pub enum Warning {
     },
     /// The meter's papers state no noise and no resolution: the scatter about the line was used.
     FlowNoiseFromScatter,
-    /// The points scatter more than their uncertainties: the random part was widened by this factor.
-    RandomPartWidened(f64),
+    /// The points scatter more than their uncertainties, so the random part was widened.
+    RandomPartWidened {
+        /// By this factor.
+        factor: f64,
+        /// Whether a bend of the line, not chance, is part of it.
+        bent: bool,
+    },
     /// The choke model does not describe the points; the choke ratio stays as wide as it was known beforehand.
     ChokeModelFails,
     /// The acceptance names no gas and the run's gas is not oxygen: the nominal flow was taken for the run's gas.

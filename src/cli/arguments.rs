@@ -5,7 +5,9 @@ use std::path::PathBuf;
 use clap::{Args, Parser, Subcommand};
 
 use crate::quantity::text;
-use crate::quantity::{AbsolutePressure, GaugePressure, PressureDifference, QuantityError, Shown, StpdFlow, Uncertain};
+use crate::quantity::{
+    AbsolutePressure, GaugePressure, PressureDifference, QuantityError, Shown, StpdFlow, Uncertain,
+};
 
 /// Bench calibration of constant-mass-flow orifices for manual closed-circuit rebreathers: readings of flow against
 /// intermediate pressure become a line with its uncertainty, checks and a verdict.
@@ -117,7 +119,8 @@ mod tests {
     fn every_quantity_flag_refuses_a_bare_number() {
         let mut seen = 0;
         for flag in ["--at", "--for-flow", "--barometer"] {
-            let error = Arguments::try_parse_from(["ebbline", "bench", "fit", "x.toml", flag, "9.4"]).unwrap_err();
+            let error =
+                Arguments::try_parse_from(["ebbline", "bench", "fit", "x.toml", flag, "9.4"]).unwrap_err();
             assert_eq!(error.exit_code(), 2);
             assert!(error.to_string().contains("9.4"), "{error}");
             seen += 1;
@@ -132,7 +135,16 @@ mod tests {
 
     #[test]
     fn quantity_flags_take_negative_values_and_lists() {
-        let parsed = Arguments::try_parse_from(["ebbline", "bench", "fit", "x.toml", "--at", "-0.5 bar,9 bar", "--at", "10bar"]);
+        let parsed = Arguments::try_parse_from([
+            "ebbline",
+            "bench",
+            "fit",
+            "x.toml",
+            "--at",
+            "-0.5 bar,9 bar",
+            "--at",
+            "10bar",
+        ]);
         let Command::Bench(Bench::Fit(fit)) = parsed.unwrap().command else { panic!("not fit") };
         let bars: Vec<f64> = fit.at.iter().map(|p| p.as_bar()).collect();
         assert_eq!(bars, [-0.5, 9.0, 10.0]);
@@ -140,7 +152,9 @@ mod tests {
 
     #[test]
     fn global_options_stand_before_or_after_the_verb() {
-        for line in [["ebbline", "--json", "bench", "fit", "x.toml"], ["ebbline", "bench", "fit", "x.toml", "--json"]] {
+        for line in
+            [["ebbline", "--json", "bench", "fit", "x.toml"], ["ebbline", "bench", "fit", "x.toml", "--json"]]
+        {
             assert!(Arguments::try_parse_from(line).unwrap().global.json);
         }
     }

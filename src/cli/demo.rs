@@ -19,7 +19,8 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
         text.push('\n');
         return say(&text, ExitStatus::Done);
     }
-    let mut text = String::from("The demonstration: every orifice, instrument and person in it is invented.\n");
+    let mut text =
+        String::from("The demonstration: every orifice, instrument and person in it is invented.\n");
     for run in &runs {
         text.push('\n');
         text.push_str(&wrapped("", "  ", &format!("{}: {}", run.outcome.run.orifice, run.about)));

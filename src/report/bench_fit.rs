@@ -3,7 +3,7 @@
 use super::cautions::BENCH;
 use super::check_sentences::{name_key_unit, sentence};
 use super::layout::{table, wrapped};
-use super::number::{figures, fixed, percent, probability, u_alone, value_and_u};
+use super::number::{figures, fixed, percent, probability, shortest, u_alone, value_and_u};
 use super::{Units, warning_sentences};
 use crate::bench::advice::LowPoints;
 use crate::bench::checks::CheckVerdict;
@@ -200,7 +200,7 @@ fn flows(fitted: &Fitted<'_>, units: &Units) -> String {
         let dof = if flow.dof.is_finite() { fixed(flow.dof, 0) } else { "infinite".into() };
         vec![
             fixed(units.pressure(at.ip.as_bar()), 2),
-            fixed(units.pressure(at.ambient.as_bar()), 4),
+            shortest(units.pressure(at.ambient.as_bar()), 6),
             value,
             u,
             percent(flow.expanded() / flow.flow_l_min),
@@ -219,7 +219,7 @@ fn flows(fitted: &Fitted<'_>, units: &Units) -> String {
     let (p, q) = (units.pressure_symbol(), units.flow_symbol());
     let gauge = format!("{p} gauge");
     text.push_str(&table(
-        &["IP", "ambient", "flow", "± U", "", "k", "dof", "gas"],
+        &["IP", "ambient", "flow", "± U", "U/flow", "k", "dof", "gas"],
         &[&gauge, p, q, q, "", "", "", ""],
         &rows,
         true,
@@ -296,10 +296,14 @@ fn line(fitted: &Fitted<'_>, units: &Units) -> String {
         analysis.points.len()
     ));
     text.push_str("  standard errors  those of ISO/TS 28037:2010, clause 7\n");
-    let (diameter, diameter_u) = value_and_u(analysis.effective_diameter_um.0, analysis.effective_diameter_um.1);
+    let (diameter, diameter_u) =
+        value_and_u(analysis.effective_diameter_um.0, analysis.effective_diameter_um.1);
     text.push_str(&format!("  effective hole   {diameter} µm, u = {diameter_u} (discharge coefficient 1)\n"));
-    let (conductance, conductance_u) = value_and_u(analysis.sonic_conductance.0, analysis.sonic_conductance.1);
-    text.push_str(&format!("  conductance C    {conductance} dm³/(s·bar) ANR, u = {conductance_u} (ISO 6358)\n"));
+    let (conductance, conductance_u) =
+        value_and_u(analysis.sonic_conductance.0, analysis.sonic_conductance.1);
+    text.push_str(&format!(
+        "  conductance C    {conductance} dm³/(s·bar) ANR, u = {conductance_u} (ISO 6358)\n"
+    ));
     let choke = &analysis.choke;
     let (b, _) = value_and_u(choke.value, choke.standard_uncertainty);
     let origin = match choke.origin {
@@ -312,7 +316,9 @@ fn line(fitted: &Fitted<'_>, units: &Units) -> String {
             let list: Vec<String> = gauge.iter().map(|g| fixed(units.pressure(*g), 2)).collect();
             format!("; points at {} {} gauge would settle it", list.join(", "), units.pressure_symbol())
         }
-        Some(LowPoints::NotWithTheseInstruments) => "; no low points would settle it with these instruments".into(),
+        Some(LowPoints::NotWithTheseInstruments) => {
+            "; no low points would settle it with these instruments".into()
+        }
     };
     text.push_str(&wrapped(
         "  choke ratio b    ",
@@ -331,8 +337,9 @@ fn line(fitted: &Fitted<'_>, units: &Units) -> String {
 
 fn monte_carlo(fitted: &Fitted<'_>, mc: &MonteCarlo, units: &Units) -> String {
     let decimals = decimals_of(&value_and_u(units.flow(mc.mean), units.flow(mc.standard_uncertainty)).0) + 1;
-    let interval =
-        |i: (f64, f64)| format!("{} to {}", fixed(units.flow(i.0), decimals), fixed(units.flow(i.1), decimals));
+    let interval = |i: (f64, f64)| {
+        format!("{} to {}", fixed(units.flow(i.0), decimals), fixed(units.flow(i.1), decimals))
+    };
     let outcome = if mc.agrees { "they agree" } else { "they differ by more than rounding" };
     let failed = if mc.failed > 0 { format!(", {} without a fit", mc.failed) } else { String::new() };
     wrapped(
@@ -403,8 +410,10 @@ fn shortened(text: &str, columns: usize) -> String {
 fn budget(fitted: &Fitted<'_>, units: &Units) -> String {
     let nominal = &fitted.analysis.nominal;
     let mut text = format!(
-        "Budget of the flow at {} IP, 1.01325 bar ambient; standard uncertainties\n",
-        units.pressure_text(nominal.ip.as_bar())
+        "Budget of the flow at {} IP, {} {} ambient; standard uncertainties\n",
+        units.pressure_text(nominal.ip.as_bar()),
+        shortest(units.pressure(nominal.ambient.as_bar()), 6),
+        units.pressure_symbol()
     );
     let mut parts = nominal.flow.parts.clone();
     parts.sort_by(|a, b| b.1.abs().total_cmp(&a.1.abs()));
@@ -422,11 +431,6 @@ fn budget(fitted: &Fitted<'_>, units: &Units) -> String {
         .collect();
     let dof = if nominal.flow.dof.is_finite() { fixed(nominal.flow.dof, 0) } else { "infinite".into() };
     rows.push(vec![u_alone(units.flow(total)), "100".into(), dof, "combined".into()]);
-    text.push_str(&table(
-        &["u", "share", "dof", "source"],
-        &[units.flow_symbol(), "%", "", ""],
-        &rows,
-        true,
-    ));
+    text.push_str(&table(&["u", "share", "dof", "source"], &[units.flow_symbol(), "%", "", ""], &rows, true));
     text
 }

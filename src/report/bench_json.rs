@@ -259,14 +259,14 @@ impl Document {
                 Verdict::None => "none",
             },
             conformity_probability: analysis.judgement.as_ref().map(|j| Plain(j.probability)),
-            acceptance: analysis.judgement.as_ref().zip(fitted.run.acceptance.as_ref()).map(|(judgement, acceptance)| {
-                JsonAcceptance {
+            acceptance: analysis.judgement.as_ref().zip(fitted.run.acceptance.as_ref()).map(
+                |(judgement, acceptance)| JsonAcceptance {
                     ip_bar_gauge: Plain(acceptance.ip.as_bar()),
                     lower_l_min: Plain(judgement.limits_l_min.0),
                     upper_l_min: Plain(judgement.limits_l_min.1),
                     rule: bench_fit::rule_name(acceptance.rule),
-                }
-            }),
+                },
+            ),
             monte_carlo: fitted.monte_carlo.map(|m| JsonMonteCarlo {
                 at_ip_bar_gauge: nominal_ip,
                 trials: m.trials,

@@ -1,8 +1,8 @@
 //! The checks of a bench run: their names, and one sentence for the technician.
 
-use super::layout::numbers;
-use super::number::{figures, fixed, percent};
 use super::Units;
+use super::layout::numbers;
+use super::number::{figures, fixed, limit_percent, percent};
 use crate::bench::checks::{CannotTell, Check, CheckKind, CheckVerdict, CrossingCause, Finding};
 use crate::bench::instruments::{Instrument, InstrumentFinding, When};
 
@@ -72,14 +72,18 @@ fn trend(check: &Check, holds: &str, fails: &str, advice: &str) -> String {
     let (value, limit) = (check.value.unwrap_or(f64::NAN), check.limit.unwrap_or(f64::NAN));
     let size = percent(value.abs());
     match check.verdict {
-        CheckVerdict::Pass => format!("{holds} within {} ({size})", percent(limit)),
+        CheckVerdict::Pass => format!("{holds} within {} ({size})", limit_percent(limit)),
         CheckVerdict::Fail => {
             let space = if advice.starts_with(':') { "" } else { " " };
-            format!("{fails} by {size} of the flow, more than {}{space}{advice}{}", percent(limit), lack_of_fit(check))
+            format!(
+                "{fails} by {size} of the flow, more than {}{space}{advice}{}",
+                limit_percent(limit),
+                lack_of_fit(check)
+            )
         }
         CheckVerdict::Note => format!(
             "{size} of the flow would be more than {}, but chance explains it (p = {}): more points would tell",
-            percent(limit),
+            limit_percent(limit),
             figures(check.p_value.unwrap_or(f64::NAN), 2)
         ),
     }
@@ -87,7 +91,9 @@ fn trend(check: &Check, holds: &str, fails: &str, advice: &str) -> String {
 
 fn lack_of_fit(check: &Check) -> String {
     match check.finding {
-        Finding::Bent { lack_of_fit_p: Some(p) } => format!(" (lack of fit against repeated points: p = {})", figures(p, 2)),
+        Finding::Bent { lack_of_fit_p: Some(p) } => {
+            format!(" (lack of fit against repeated points: p = {})", figures(p, 2))
+        }
         _ => String::new(),
     }
 }
@@ -95,13 +101,17 @@ fn lack_of_fit(check: &Check) -> String {
 fn repeatable(check: &Check) -> String {
     let (value, limit) = (check.value.unwrap_or(f64::NAN), check.limit.unwrap_or(f64::NAN));
     if check.verdict == CheckVerdict::Pass {
-        format!("repeated points scatter by {} of the flow (standard deviation), within {}", percent(value), percent(limit))
+        format!(
+            "repeated points scatter by {} of the flow (standard deviation), within {}",
+            percent(value),
+            limit_percent(limit)
+        )
     } else {
         format!(
             "repeated points scatter by {} of the flow (standard deviation), more than {}: wait longer at each point, \
              and look for a loose fitting",
             percent(value),
-            percent(limit)
+            limit_percent(limit)
         )
     }
 }
@@ -109,8 +119,11 @@ fn repeatable(check: &Check) -> String {
 fn through_zero(check: &Check, units: &Units) -> String {
     let Finding::Crossing { interval_bar, cause } = check.finding else { return String::new() };
     // Kilopascals, as in the limits, unless another unit was asked for.
-    let (factor, symbol) =
-        if units.pressure_symbol() == "bar" { (100.0, "kPa") } else { (units.pressure(1.0), units.pressure_symbol()) };
+    let (factor, symbol) = if units.pressure_symbol() == "bar" {
+        (100.0, "kPa")
+    } else {
+        (units.pressure(1.0), units.pressure_symbol())
+    };
     let at = fixed(check.value.unwrap_or(f64::NAN) / 100.0 * factor, 1);
     let interval = if interval_bar.0.is_finite() {
         format!("{} to {}", fixed(interval_bar.0 * factor, 1), fixed(interval_bar.1 * factor, 1))

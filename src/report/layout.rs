@@ -10,20 +10,41 @@ pub fn wrapped(first: &str, rest: &str, text: &str) -> String {
     let mut lines: Vec<String> = Vec::new();
     let mut line = first.to_owned();
     let mut empty = true;
-    for word in text.split_whitespace() {
+    for word in glued(text) {
         let gap = usize::from(!empty);
-        if !empty && columns(&line) + gap + columns(word) > WIDTH {
+        if !empty && columns(&line) + gap + columns(&word) > WIDTH {
             lines.push(std::mem::replace(&mut line, rest.to_owned()));
             empty = true;
         }
         if !empty {
             line.push(' ');
         }
-        line.push_str(word);
+        line.push_str(&word);
         empty = false;
     }
     lines.push(line);
     lines.join("\n") + "\n"
+}
+
+/// The words of a text, with a number and what belongs to it (its unit, the ± after it) kept together.
+fn glued(text: &str) -> Vec<String> {
+    const AFTER_A_NUMBER: [&str; 16] = [
+        "%", "bar", "kPa", "hPa", "mbar", "psi", "L/min", "mL/min", "L/h", "mL/h", "°C", "°F", "K", "µm",
+        "s", "±",
+    ];
+    let mut words: Vec<String> = Vec::new();
+    for word in text.split_whitespace() {
+        let bare = word.trim_end_matches([',', '.', ';', ':', ')']);
+        let belongs = AFTER_A_NUMBER.contains(&bare) || words.last().is_some_and(|w| w.ends_with('±'));
+        match words.last_mut() {
+            Some(last) if belongs && last.chars().any(|c| c.is_ascii_digit()) => {
+                last.push(' ');
+                last.push_str(word);
+            }
+            _ => words.push(word.to_owned()),
+        }
+    }
+    words
 }
 
 /// A table: heads, units under them, rows; numbers to the right, the last column to the left when `last_left`.
@@ -101,6 +122,14 @@ mod tests {
     }
 
     #[test]
+    fn a_number_keeps_its_unit_on_its_line() {
+        assert_eq!(
+            glued("at 10.0 bar (0.5 %), 1 ± 2 L/min; a bar"),
+            ["at", "10.0 bar", "(0.5 %),", "1 ± 2 L/min;", "a", "bar"]
+        );
+    }
+
+    #[test]
     fn lists_of_numbers_read_as_a_person_writes_them() {
         assert_eq!(numbers(&[1]), "1");
         assert_eq!(numbers(&[1, 2]), "1 and 2");
@@ -109,7 +138,10 @@ mod tests {
 
     #[test]
     fn tables_are_aligned() {
-        let rows = vec![vec!["1".into(), "10.25".into(), "left".into()], vec!["12".into(), "9.5".into(), "x".into()]];
+        let rows = vec![
+            vec!["1".into(), "10.25".into(), "left".into()],
+            vec!["12".into(), "9.5".into(), "x".into()],
+        ];
         let text = table(&["no", "IP", "why"], &["", "bar", ""], &rows, true);
         assert_eq!(text, "  no    IP  why\n       bar\n   1 10.25  left\n  12   9.5  x\n");
     }

@@ -96,6 +96,23 @@ pub fn percent(share: f64) -> String {
     format!("{} %", figures(share * 100.0, 2))
 }
 
+/// A limit that somebody set, as a percentage in as few digits as it was set with.
+#[must_use]
+pub fn limit_percent(share: f64) -> String {
+    format!("{} %", significant(share * 100.0, 6))
+}
+
+/// A number with up to `count` significant figures and no noughts at its end.
+#[must_use]
+pub fn shortest(value: f64, count: i32) -> String {
+    let text = figures(value, count);
+    if text.contains('.') && !text.contains('e') {
+        text.trim_end_matches('0').trim_end_matches('.').to_owned()
+    } else {
+        text
+    }
+}
+
 /// A probability as a percentage that never claims certainty.
 #[must_use]
 pub fn probability(p: f64) -> String {
@@ -154,6 +171,15 @@ mod tests {
         assert_eq!(serde_json::to_string(&Plain(-0.0)).unwrap(), "0.0");
         assert_eq!(serde_json::to_string(&Plain(f64::INFINITY)).unwrap(), "null");
         assert_eq!(serde_json::to_string(&Plain(1.0 / 3.0)).unwrap(), "0.333333333333");
+    }
+
+    #[test]
+    fn limits_are_as_short_as_they_were_set() {
+        assert_eq!(limit_percent(0.005), "0.5 %");
+        assert_eq!(limit_percent(0.0025), "0.25 %");
+        assert_eq!(shortest(1.013_25, 6), "1.01325");
+        assert_eq!(shortest(10.0, 4), "10");
+        assert_eq!(shortest(200.0, 2), "200");
     }
 
     #[test]

@@ -22,7 +22,10 @@ pub fn notes(series: &SeriesReadings, steady: &SteadyPoints) -> Vec<String> {
     }
     notes.extend(steady.remarks.iter().take(TOLD).map(remark));
     if steady.remarks.len() > TOLD {
-        notes.push(format!("{} more gaps, frozen stretches or spikes were passed over", steady.remarks.len() - TOLD));
+        notes.push(format!(
+            "{} more gaps, frozen stretches or spikes were passed over",
+            steady.remarks.len() - TOLD
+        ));
     }
     notes
 }
@@ -51,16 +54,26 @@ fn one_rejected(rejected: &Rejected) -> String {
     let why = match rejected.why {
         Rejection::KeptMoving => "the pressure kept moving".to_owned(),
         Rejection::TooShort { lasts_s, least_s } => {
-            format!("only {} s were left after settling, {} s are needed", fixed(lasts_s, 1), fixed(least_s, 0))
+            format!(
+                "only {} s were left after settling, {} s are needed",
+                fixed(lasts_s, 1),
+                fixed(least_s, 0)
+            )
         }
-        Rejection::TooFewReadings { readings, least } => format!("{readings} readings where {least} are needed"),
+        Rejection::TooFewReadings { readings, least } => {
+            format!("{readings} readings where {least} are needed")
+        }
         Rejection::PressureDrifts { drift_pa, most_pa } => format!(
             "the pressure drifted {} mbar, at most {} is allowed",
             figures(drift_pa / 100.0, 2),
             figures(most_pa / 100.0, 2)
         ),
         Rejection::FlowSettlesLate { lasts_s, least_s } => {
-            format!("the flow settled late: {} s were left, {} s are needed", fixed(lasts_s, 1), fixed(least_s, 0))
+            format!(
+                "the flow settled late: {} s were left, {} s are needed",
+                fixed(lasts_s, 1),
+                fixed(least_s, 0)
+            )
         }
         Rejection::FlowDrifts { drift, most } => {
             format!("the flow drifted {}, at most {} is allowed", percent(drift), percent(most))
@@ -92,7 +105,11 @@ fn remark(remark: &Remark) -> String {
         Remark::Spikes { channel: which, rows } => {
             let some: Vec<usize> = rows.iter().take(5).map(|r| r + 1).collect();
             let more = if rows.len() > 5 { format!(" and {} more", rows.len() - 5) } else { String::new() };
-            format!("the {} has spikes that were passed over, at row {}{more}", channel(which), numbers(&some))
+            format!(
+                "the {} has spikes that were passed over, at row {}{more}",
+                channel(which),
+                numbers(&some)
+            )
         }
     }
 }

@@ -65,7 +65,7 @@ impl Units {
     /// A pressure with its symbol.
     #[must_use]
     pub fn pressure_text(&self, bar: f64) -> String {
-        format!("{} {}", super::number::figures(self.pressure(bar), 4), self.pressure_symbol())
+        format!("{} {}", super::number::shortest(self.pressure(bar), 4), self.pressure_symbol())
     }
 
     /// A flow with its symbol.

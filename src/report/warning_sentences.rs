@@ -1,7 +1,7 @@
 //! The warnings of a bench run as sentences that say what to do.
 
 use super::Units;
-use super::number::{fixed, significant};
+use super::number::{figures, fixed};
 use crate::bench::{DEFAULT_BAROMETER_EXPANDED_PA, DEFAULT_TEMPERATURE_EXPANDED_K, Warning};
 
 /// One warning as one sentence.
@@ -44,11 +44,19 @@ pub fn sentence(warning: &Warning, units: &Units) -> String {
         Warning::FlowNoiseFromScatter => "the flow meter's papers state neither noise nor resolution: the scatter \
             about the line was used for the random part. State noise and resolution in [meter]"
             .into(),
-        Warning::RandomPartWidened(factor) => format!(
-            "the points scatter {} times as much as their stated uncertainties; the random part was widened by \
-             that (Birge), with n − 2 degrees of freedom. Look at the residuals, and wait longer at each point",
-            significant(*factor, 2)
-        ),
+        Warning::RandomPartWidened { factor, bent } => {
+            let advice = if *bent {
+                "Part of it is a bend, as the discharge coefficient of a small hole makes it over a wide span: points \
+                 nearer the nominal IP would lie straighter"
+            } else {
+                "Look at the residuals, and wait longer at each point"
+            };
+            format!(
+                "the points scatter {} times as much as their stated uncertainties; the random part was widened by \
+                 that (Birge), with n − 2 degrees of freedom. {advice}",
+                figures(*factor, 2)
+            )
+        }
         Warning::ChokeModelFails => "no choke ratio and discharge coefficient describe these points, so nothing \
             was learnt about the choke ratio: look first at the checks that do not hold"
             .into(),

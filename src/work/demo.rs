@@ -12,20 +12,22 @@ use super::WorkError;
 use super::fit::{FitOutcome, FitRequest, fit};
 use super::output::{make_folder, write_whole};
 use crate::entry::{
-    Acceptance, Amount, Build, Conditions, Id, Indication, Influence, LeftOut, Limits, Meter, MeterKind, Papers,
-    PointReading, Purity, Purpose, Readings, Rule, Run, SeriesReadings, Sweep, Tolerance, Transducer, ZeroAndLeak,
+    Acceptance, Amount, Build, Conditions, Id, Indication, Influence, LeftOut, Limits, Meter, MeterKind,
+    Papers, PointReading, Purity, Purpose, Readings, Rule, Run, SeriesReadings, Sweep, Tolerance, Transducer,
+    ZeroAndLeak,
 };
 use crate::gas::{self, Species};
 use crate::quantity::{
-    AbsolutePressure, GaugePressure, IndicatedFlow, PressureDifference, ReferenceConditions, StpdFlow, Temperature,
-    TemperatureDifference,
+    AbsolutePressure, GaugePressure, IndicatedFlow, PressureDifference, ReferenceConditions, StpdFlow,
+    Temperature, TemperatureDifference,
 };
 use crate::record::write_run;
 use crate::report::Units;
 use crate::stats::monte_carlo::Random;
 
 /// First line of every file.
-const INVENTED: &str = "# Invented for the demonstration: no such shop, orifice, instrument or certificate exists.\n";
+const INVENTED: &str =
+    "# Invented for the demonstration: no such shop, orifice, instrument or certificate exists.\n";
 /// Seed of all drawing.
 const SEED: u64 = 2_026;
 /// Barometer, gas temperature and downstream pressure of the invented bench.
@@ -83,8 +85,8 @@ struct Invented {
 const UP_AND_DOWN: &[f64] =
     &[4.0, 5.0, 6.0, 7.0, 8.0, 9.0, 10.0, 11.0, 12.0, 13.0, 12.0, 11.0, 10.0, 9.0, 8.0, 7.0, 6.0, 5.0, 4.0];
 const DOWN_TO_LOW: &[f64] = &[
-    0.25, 0.45, 0.7, 1.0, 1.4, 2.0, 3.0, 4.0, 5.0, 6.0, 7.0, 8.0, 9.0, 10.0, 11.0, 12.0, 13.0, 11.0, 9.0, 7.0, 5.0,
-    3.0, 1.4, 1.0, 0.7, 0.45,
+    0.25, 0.45, 0.7, 1.0, 1.4, 2.0, 3.0, 4.0, 5.0, 6.0, 7.0, 8.0, 9.0, 10.0, 11.0, 12.0, 13.0, 11.0, 9.0,
+    7.0, 5.0, 3.0, 1.4, 1.0, 0.7, 0.45,
 ];
 const A_FEW: &[f64] = &[5.0, 7.0, 9.0, 11.0, 13.0, 12.0, 10.0, 8.0, 6.0, 4.0];
 
@@ -92,7 +94,7 @@ fn invented() -> Vec<Invented> {
     let plain = Invented {
         id: "",
         about: "",
-        diameter_um: 74.4,
+        diameter_um: 73.6,
         choke_ratio: 0.50,
         k: 2.0,
         build: Build::ShortTube,
@@ -108,7 +110,13 @@ fn invented() -> Vec<Invented> {
             left_out: Some((12, "hose touched while reading")),
             ..plain
         },
-        Invented { id: "demo-half-blocked", about: "the same kind, half blocked", diameter_um: 54.0, k: 3.0, ..plain },
+        Invented {
+            id: "demo-half-blocked",
+            about: "the same kind, half blocked",
+            diameter_um: 54.0,
+            k: 3.0,
+            ..plain
+        },
         Invented {
             id: "demo-gauge-as-absolute",
             about: "gauge readings in a column said to be absolute: the line crosses one atmosphere off",
@@ -227,7 +235,8 @@ impl Bench<'_> {
             let target_pa = (step + 0.02 * random.normal()) * 1e5;
             for j in 0..each {
                 gauge_pa += (target_pa - gauge_pa) * (1.0 - libm::exp(-EVERY_S / PRESSURE_SETTLES_S));
-                meter += (self.true_flow_l_min(gauge_pa) - meter) * (1.0 - libm::exp(-EVERY_S / METER_SETTLES_S));
+                meter +=
+                    (self.true_flow_l_min(gauge_pa) - meter) * (1.0 - libm::exp(-EVERY_S / METER_SETTLES_S));
                 let pressure_pa = Self::shown_pa(gauge_pa) + 200.0 * random.normal();
                 let flow = Self::shown_l_min(meter) * (1.0 + 0.001 * random.normal());
                 series.time_s.push((i * each + j) as f64 * EVERY_S);
@@ -260,7 +269,10 @@ fn run_of(orifice: &Invented, readings: Readings) -> Run {
             },
             ..Conditions::default()
         },
-        before: ZeroAndLeak { zero: Some(IndicatedFlow::from_l_min(-0.000_1)), leak_pa_s: Some(0.002e5 / 60.0) },
+        before: ZeroAndLeak {
+            zero: Some(IndicatedFlow::from_l_min(-0.000_1)),
+            leak_pa_s: Some(0.002e5 / 60.0),
+        },
         after: ZeroAndLeak { zero: Some(IndicatedFlow::from_l_min(0.0)), leak_pa_s: None },
         meter: Meter {
             id: None,
@@ -307,7 +319,10 @@ fn run_of(orifice: &Invented, readings: Readings) -> Run {
 }
 
 fn meter_reads_at() -> ReferenceConditions {
-    ReferenceConditions { temperature: Temperature::from_c(20.0), pressure: AbsolutePressure::STANDARD_ATMOSPHERE }
+    ReferenceConditions {
+        temperature: Temperature::from_c(20.0),
+        pressure: AbsolutePressure::STANDARD_ATMOSPHERE,
+    }
 }
 
 /// An afternoon, with the offset of no place in particular.

@@ -75,7 +75,9 @@ pub enum WorkError {
     #[error("--monte-carlo takes {FEWEST_TRIALS} to {MOST_TRIALS} trials, not {0}")]
     Trials(usize),
     /// No interval came out of the trials.
-    #[error("too few of the {0} Monte Carlo trials converged for an interval: look at the checks of the run first")]
+    #[error(
+        "too few of the {0} Monte Carlo trials converged for an interval: look at the checks of the run first"
+    )]
     NoMonteCarlo(usize),
     /// A plot's file name has another ending.
     #[error("{0}: a plot is written as .svg or .png, name the file so")]

@@ -112,8 +112,8 @@ pub fn fit(request: &FitRequest) -> Result<FitOutcome, WorkError> {
         ambient: request.barometer,
         before: None,
     };
-    let analysis =
-        analyse(&run, readings, &questions).map_err(|error| WorkError::Bench { file: file.clone(), error })?;
+    let analysis = analyse(&run, readings, &questions)
+        .map_err(|error| WorkError::Bench { file: file.clone(), error })?;
     let monte_carlo = match request.monte_carlo {
         None => None,
         Some(trials) => Some(
