@@ -62,16 +62,22 @@ pub fn sheet(fitted: &Fitted<'_>, units: &Units) -> String {
     text
 }
 
-/// The verdict and its reason in a few words: the first lines of the sheet, and what goes to stderr with exit 1.
+/// The verdict and its reason in a few words: what goes to stderr with exit 1.
 #[must_use]
 pub fn verdict_line(fitted: &Fitted<'_>, units: &Units) -> String {
-    let word = match fitted.analysis.judgement.as_ref().map_or(Verdict::None, |j| j.verdict) {
-        Verdict::Pass => "PASS",
-        Verdict::Fail => "FAIL",
-        Verdict::Undecided => "UNDECIDED",
-        Verdict::None => "NO VERDICT",
-    };
-    format!("{word}: {}", reason(fitted, units))
+    format!("{}: {}", verdict_word(fitted), reason(fitted, units))
+}
+
+const fn verdict_word(fitted: &Fitted<'_>) -> &'static str {
+    match &fitted.analysis.judgement {
+        None => "NO VERDICT",
+        Some(judgement) => match judgement.verdict {
+            Verdict::Pass => "PASS",
+            Verdict::Fail => "FAIL",
+            Verdict::Undecided => "UNDECIDED",
+            Verdict::None => "NO VERDICT",
+        },
+    }
 }
 
 /// The name of a decision rule.
@@ -121,7 +127,8 @@ pub const fn source_name(part: Part) -> &'static str {
 
 fn head(fitted: &Fitted<'_>, units: &Units) -> String {
     let run = fitted.run;
-    let mut text = wrapped("", "  ", &format!("{}  {}", run.orifice, verdict_line(fitted, units)));
+    let mut text =
+        wrapped("", "  ", &format!("{} — {}: {}", verdict_word(fitted), run.orifice, reason(fitted, units)));
     let who = run.technician.as_ref().map(|t| format!(", {t}")).unwrap_or_default();
     let purity = match (&run.purity, run.gas) {
         (Some(p), crate::gas::Species::Oxygen) => format!(" {} %", figures(p.fraction * 100.0, 3)),
