@@ -60,6 +60,14 @@ fn a_number_without_its_unit() {
 }
 
 #[test]
+fn conditions_in_another_unit_than_they_say() {
+    let toml = with("1009.2 hPa ± 1.0 hPa", "1009.2 bar ± 1.0 hPa");
+    refused("barometer-in-bar", &toml, readings().as_bytes(), &["barometer", "hPa", "unit"]);
+    let toml = with("21.0 °C ± 1.0 °C", "21.0 K ± 1.0 °C");
+    refused("kelvins", &toml, readings().as_bytes(), &["temperature", "°C", "unit"]);
+}
+
+#[test]
 fn fewer_than_five_usable_points() {
     let few: String = readings().lines().take(5).map(|l| format!("{l}\n")).collect();
     refused("four-points", RUN, few.as_bytes(), &["5", "4"]);

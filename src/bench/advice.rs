@@ -122,6 +122,7 @@ fn as_reading(raw: &Raw) -> PointReading {
     PointReading {
         pressure,
         flow: IndicatedFlow::from_l_min(raw.shown_l_min),
+        timed: None,
         pressure_scatter: None,
         flow_scatter: None,
         averaged: 1.0,

@@ -47,6 +47,10 @@ use crate::stats::line::{CalibrationPoints, LineError, fit};
 pub const METHOD_REVISION: u32 = 1;
 /// Fewest points a line is fitted to.
 pub const FEWEST_POINTS: usize = 5;
+/// Barometers a bench can stand at: the highest road passes to the lowest shores (common practice, no source).
+const PLAUSIBLE_BAROMETER_PA: (f64, f64) = (45_000.0, 112_000.0);
+/// Gas temperatures on a bench, −10 to 60 °C, in kelvins (common practice, no source).
+const PLAUSIBLE_TEMPERATURE_K: (f64, f64) = (263.15, 333.15);
 /// Points within this much pressure of one another are at one pressure, bar.
 const ONE_PRESSURE_BAR: f64 = 0.1;
 
@@ -153,6 +157,18 @@ pub enum BenchError {
         "point {0} has an absolute pressure of {1:.3} bar, below vacuum: check gauge and absolute and the unit"
     )]
     BelowVacuum(usize, f64),
+    /// A barometer no bench stands at.
+    #[error(
+        "point {0} has a barometer of {1:.0} hPa; where people work it is {low} to {high} hPa: check its unit",
+        low = PLAUSIBLE_BAROMETER_PA.0 / 100.0, high = PLAUSIBLE_BAROMETER_PA.1 / 100.0
+    )]
+    ImplausibleBarometer(usize, f64),
+    /// A temperature no bench has.
+    #[error(
+        "point {0} has a gas temperature of {1:.0} °C; on a bench it is {low} to {high} °C: check its unit",
+        low = PLAUSIBLE_TEMPERATURE_K.0 - 273.15, high = PLAUSIBLE_TEMPERATURE_K.1 - 273.15
+    )]
+    ImplausibleTemperature(usize, f64),
     /// A pressure asked for that cannot be.
     #[error("{0:.2} bar gauge is below vacuum at this barometer: ask for a higher pressure")]
     AskedBelowVacuum(f64),
@@ -249,6 +265,7 @@ fn corrected_points(
     for (i, reading) in readings.iter().enumerate() {
         let index = i + 1;
         let raw = Raw::of(reading, run).ok_or(BenchError::MissingCondition(index))?;
+        plausible(index, &raw)?;
         let corrected = correction.apply(&raw, &Shift::NONE);
         if corrected.p1_bar <= 0.0 {
             return Err(BenchError::BelowVacuum(index, corrected.p1_bar));
@@ -287,6 +304,18 @@ fn corrected_points(
         points.iter_mut().for_each(|p| p.flow_u = p.flow_u.max(scatter));
     }
     Ok(points)
+}
+
+/// A wrong unit in a condition moves every point without leaving a trace in the line, so it is refused.
+fn plausible(index: usize, raw: &Raw) -> Result<(), BenchError> {
+    let within = |value: f64, (low, high): (f64, f64)| (low..=high).contains(&value);
+    if !within(raw.ambient_pa, PLAUSIBLE_BAROMETER_PA) {
+        return Err(BenchError::ImplausibleBarometer(index, raw.ambient_pa / 100.0));
+    }
+    if !within(raw.temperature_k, PLAUSIBLE_TEMPERATURE_K) {
+        return Err(BenchError::ImplausibleTemperature(index, raw.temperature_k - 273.15));
+    }
+    Ok(())
 }
 
 /// Residual standard deviation about a line through the points well above choking, L/min.

@@ -13,5 +13,5 @@ pub use id::{Id, IdError};
 pub use papers::{Amount, FloatScale, Meter, MeterKind, Papers, Transducer};
 pub use run::{
     Build, Conditions, Indication, Influence, LeftOut, PointReading, Purity, Purpose, Readings, Run,
-    SeriesReadings, Sweep, ZeroAndLeak,
+    SeriesReadings, Sweep, TimedVolume, ZeroAndLeak,
 };

@@ -5,8 +5,8 @@ use chrono::{DateTime, FixedOffset};
 use super::{Acceptance, Id, Meter, Transducer};
 use crate::gas::Species;
 use crate::quantity::{
-    AbsolutePressure, GaugePressure, IndicatedFlow, PressureDifference, Temperature, TemperatureDifference,
-    Uncertain,
+    AbsolutePressure, GaugePressure, IndicatedFlow, PressureDifference, Span, Temperature,
+    TemperatureDifference, Uncertain, Volume,
 };
 
 /// One orifice, one gas, one afternoon: readings and what is known about them.
@@ -142,6 +142,8 @@ pub struct PointReading {
     pub pressure: Indication,
     /// The flow meter's indication (for a timed meter: volume over duration).
     pub flow: IndicatedFlow,
+    /// What a timed meter was read as, where volume and duration were recorded.
+    pub timed: Option<TimedVolume>,
     /// Standard uncertainty of the mean of the indicated pressure from its own scatter, when it is a mean.
     pub pressure_scatter: Option<PressureDifference>,
     /// Standard uncertainty of the mean of the indicated flow from its own scatter, when it is a mean.
@@ -160,6 +162,15 @@ pub struct PointReading {
     pub sweep: Option<Sweep>,
     /// Seconds since the first reading of the run.
     pub time_s: Option<f64>,
+}
+
+/// A volume and the time it took.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct TimedVolume {
+    /// The volume that passed.
+    pub volume: Volume,
+    /// How long it took, above zero.
+    pub duration: Span,
 }
 
 /// What was read.

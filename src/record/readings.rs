@@ -8,8 +8,10 @@ use super::columns::{Column, Columns, Flow, Placed, Time};
 use super::error::{RecordError, Refusal};
 use super::sheet::Sheet;
 use super::times::Times;
-use crate::entry::{Indication, PointReading, Readings, SeriesReadings, Sweep};
-use crate::quantity::{AbsolutePressure, GaugePressure, IndicatedFlow, PressureDifference, Temperature};
+use crate::entry::{Indication, PointReading, Readings, SeriesReadings, Sweep, TimedVolume};
+use crate::quantity::{
+    AbsolutePressure, GaugePressure, IndicatedFlow, PressureDifference, Span, Temperature, Volume,
+};
 
 /// Most rows of steady points.
 pub const MOST_POINTS: usize = 5_000;
@@ -39,13 +41,15 @@ pub(super) fn points(sheet: &mut Sheet, columns: &Columns) -> Result<Readings, R
             return Err(sheet.refuse_row(Refusal::TooManyRows(MOST_POINTS)));
         }
         let shown_pa = pressure.needed(sheet)?;
+        let (shown, timed) = flow.needed(sheet)?;
         points.push(PointReading {
             pressure: if columns.absolute {
                 Indication::Absolute(AbsolutePressure::from_pa(shown_pa))
             } else {
                 Indication::Gauge(GaugePressure::from_pa(shown_pa))
             },
-            flow: flow.needed(sheet)?,
+            flow: shown,
+            timed,
             pressure_scatter: needed(&pressure_scatter, sheet)?.map(PressureDifference::from_pa),
             flow_scatter: needed(&flow_scatter, sheet)?.map(IndicatedFlow::from_l_min),
             averaged: needed(&averaged, sheet)?.unwrap_or(1.0),
@@ -134,12 +138,14 @@ impl<'c> PlacedFlow<'c> {
         })
     }
 
-    fn needed(&self, sheet: &mut Sheet) -> Result<IndicatedFlow, RecordError> {
+    fn needed(&self, sheet: &mut Sheet) -> Result<(IndicatedFlow, Option<TimedVolume>), RecordError> {
         match self {
-            Self::Read(column) => column.needed(sheet).map(IndicatedFlow::from_l_min),
+            Self::Read(column) => Ok((IndicatedFlow::from_l_min(column.needed(sheet)?), None)),
             Self::Timed { volume, duration } => {
-                let volume_m3 = volume.needed(sheet)?;
-                Ok(IndicatedFlow::from_m3_s(volume_m3 / duration.needed(sheet)?))
+                let (volume_m3, duration_s) = (volume.needed(sheet)?, duration.needed(sheet)?);
+                let timed =
+                    TimedVolume { volume: Volume::from_m3(volume_m3), duration: Span::from_s(duration_s) };
+                Ok((IndicatedFlow::from_m3_s(volume_m3 / duration_s), Some(timed)))
             }
         }
     }

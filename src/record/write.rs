@@ -257,6 +257,7 @@ struct Column {
 
 fn of_points(points: &[PointReading]) -> Vec<Column> {
     let absolute = points.iter().any(|point| matches!(point.pressure, Indication::Absolute(_)));
+    let timed = points.iter().all(|point| point.timed.is_some());
     let means = points.iter().any(|point| point.averaged.to_bits() != 1_f64.to_bits());
     let sweeps = points.iter().any(|point| point.sweep.is_some()).then(|| Column {
         key: "sweep",
@@ -277,7 +278,9 @@ fn of_points(points: &[PointReading]) -> Vec<Column> {
         each(points, "time", "s", |point| point.time_s.map(Span::from_s)),
         sweeps,
         each(points, "pressure", "bar", pressure).map(|column| Column { absolute, ..column }),
-        each(points, "flow", "L/min", |point| Some(point.flow)),
+        each(points, "flow", "L/min", |point| Some(point.flow)).filter(|_| !timed),
+        each(points, "volume", "L", |point| point.timed.map(|t| t.volume)),
+        each(points, "duration", "s", |point| point.timed.map(|t| t.duration)),
         each(points, "temperature", "°C", |point| point.temperature),
         each(points, "barometer", "hPa", |point| point.barometer),
         each(points, "meter_temperature", "°C", |point| point.meter_temperature),

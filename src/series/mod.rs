@@ -197,6 +197,7 @@ fn point(
             Indication::Gauge(GaugePressure::from_pa(pressure.mean))
         },
         flow: IndicatedFlow::from_l_min(flow.mean),
+        timed: None,
         pressure_scatter: Some(PressureDifference::from_pa(pressure.scatter)),
         flow_scatter: Some(IndicatedFlow::from_l_min(flow.scatter)),
         averaged: averaged.unwrap_or(1.0),

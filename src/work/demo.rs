@@ -208,6 +208,7 @@ impl Bench<'_> {
             PointReading {
                 pressure,
                 flow: IndicatedFlow::from_l_min(rounded(flow * 1e4, 1.0) / 1e4),
+                timed: None,
                 pressure_scatter: None,
                 flow_scatter: None,
                 averaged: 1.0,
