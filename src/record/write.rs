@@ -100,6 +100,27 @@ impl Toml {
         self.quantity(key, ratio.map(Share::from_ratio));
     }
 
+    /// As [`Toml::influence`], in a customary unit where value and ± both come back in it.
+    fn influence_in<T: Quantity>(&mut self, customary: &str, key: &str, given: Influence<T, T::Difference>) {
+        let text = |value: Option<T>| {
+            let unit = unit::lookup(T::KIND, customary).ok()?;
+            let value = value.map(|v| cell(v, unit)).unwrap_or_else(|| Some(String::new()))?;
+            let expanded = match given.expanded {
+                Some(d) => {
+                    let unit = unit::lookup(<T::Difference as Quantity>::KIND, customary).ok()?;
+                    format!("± {} {customary}", cell(d, unit)?)
+                }
+                None => String::new(),
+            };
+            let value = if value.is_empty() { value } else { format!("{value} {customary}") };
+            Some([value, expanded].into_iter().filter(|part| !part.is_empty()).collect::<Vec<_>>().join(" "))
+        };
+        match text(given.value).filter(|text| !text.is_empty()) {
+            Some(text) => self.text(key, &text),
+            None => self.influence(key, given),
+        }
+    }
+
     fn influence<T: Quantity>(&mut self, key: &str, given: Influence<T, T::Difference>) {
         let text = match (given.value, given.expanded) {
             (Some(value), expanded) => uncertain_to_text(Uncertain { value, expanded }),
@@ -128,7 +149,7 @@ fn conditions(toml: &mut Toml, run: &Run) {
     let given = &run.conditions;
     toml.table("conditions");
     toml.influence("temperature", given.temperature);
-    toml.influence("barometer", given.barometer);
+    toml.influence_in("hPa", "barometer", given.barometer);
     toml.influence("back_pressure", given.back_pressure);
     let humidity = Influence {
         value: given.humidity.value.map(Share::from_ratio),
@@ -136,7 +157,7 @@ fn conditions(toml: &mut Toml, run: &Run) {
     };
     toml.influence("humidity", humidity);
     toml.influence("meter_temperature", given.meter_temperature);
-    toml.influence("meter_pressure", given.meter_pressure);
+    toml.influence_in("hPa", "meter_pressure", given.meter_pressure);
     toml.influence("water_temperature", given.water_temperature);
 }
 

@@ -199,15 +199,14 @@ impl Bench<'_> {
             let gauge_pa = (step + 0.02 * random.normal()) * 1e5;
             let pressure_pa = Self::shown_pa(gauge_pa) + 200.0 * random.normal();
             let flow = Self::shown_l_min(self.true_flow_l_min(gauge_pa)) * (1.0 + 0.001 * random.normal());
-            let pressure_pa = rounded(pressure_pa, 100.0);
             let pressure = if self.orifice.gauge_as_absolute {
-                Indication::Absolute(AbsolutePressure::from_pa(pressure_pa))
+                Indication::Absolute(AbsolutePressure::from_bar(to_decimals(pressure_pa / 1e5, 3)))
             } else {
-                Indication::Gauge(GaugePressure::from_pa(pressure_pa))
+                Indication::Gauge(GaugePressure::from_bar(to_decimals(pressure_pa / 1e5, 3)))
             };
             PointReading {
                 pressure,
-                flow: IndicatedFlow::from_l_min(rounded(flow * 1e4, 1.0) / 1e4),
+                flow: IndicatedFlow::from_l_min(to_decimals(flow, 4)),
                 timed: None,
                 pressure_scatter: None,
                 flow_scatter: None,
@@ -241,8 +240,8 @@ impl Bench<'_> {
                 let pressure_pa = Self::shown_pa(gauge_pa) + 200.0 * random.normal();
                 let flow = Self::shown_l_min(meter) * (1.0 + 0.001 * random.normal());
                 series.time_s.push((i * each + j) as f64 * EVERY_S);
-                series.pressure_pa.push(rounded(pressure_pa, 100.0));
-                series.flow_l_min.push(rounded(flow * 1e4, 1.0) / 1e4);
+                series.pressure_pa.push(GaugePressure::from_bar(to_decimals(pressure_pa / 1e5, 3)).as_pa());
+                series.flow_l_min.push(to_decimals(flow, 4));
             }
         }
         Readings::Series(series)
@@ -336,6 +335,7 @@ fn id(name: &str) -> Id {
     Id::new(name).unwrap_or_else(|_| unreachable!("the demonstration's own names are sound"))
 }
 
-fn rounded(value: f64, step: f64) -> f64 {
-    (value / step).round() * step
+/// What a display of so many decimals shows.
+fn to_decimals(value: f64, decimals: usize) -> f64 {
+    format!("{value:.decimals$}").parse().unwrap_or(value)
 }
