@@ -155,6 +155,18 @@ pub fn choke_ratio(
     )
 }
 
+/// Flow in L/min STPD that the model of this file passes at `p1_bar` for a hole of conductance `c` (L/min per bar at
+/// endless Reynolds number), discharge constant `k` and choke ratio `b`.
+pub(super) fn modelled_flow(species: Species, (c, k, b): (f64, f64, f64), p1_bar: f64, p2_bar: f64) -> f64 {
+    let t = Temperature::from_k(super::correct::REFERENCE_TEMPERATURE_K);
+    let c_star = |bar: f64| gas::critical_flow_function(species, AbsolutePressure::from_bar(bar), t);
+    let diameter =
+        gas::effective_diameter(species, StpdFlow::from_l_min(c), AbsolutePressure::from_bar(1.0), t);
+    let full = c * p1_bar * c_star(p1_bar) / c_star(10.0) * gas::subsonic_factor(p2_bar / p1_bar, b);
+    let reynolds = gas::reynolds_number(species, StpdFlow::from_l_min(full), diameter).max(1.0);
+    full * (1.0 - k / reynolds.sqrt()).max(0.0)
+}
+
 /// One value of `b` on the grid.
 #[derive(Debug, Clone, Copy)]
 struct Slice {
