@@ -6,7 +6,8 @@
 //! is worked out again. A plan is named when the chance that it settles the matter, averaged over those choke ratios,
 //! is high enough. Left out: plans made for one orifice alone.
 
-use super::choke::{LARGEST_K, MEASURED_HALF_WIDTH, Origin, modelled_flow};
+use super::choke::{LARGEST_K, MEASURED_HALF_WIDTH, Origin};
+use super::choke_model::modelled_flow;
 use super::correct::{Correction, Raw, Shift};
 use super::{Analysis, known_of_choking};
 use crate::entry::{Indication, PointReading, Run};

@@ -13,6 +13,7 @@
 pub mod advice;
 pub mod checks;
 pub mod choke;
+mod choke_model;
 pub mod convert;
 pub mod correct;
 pub mod history;

@@ -1,0 +1,290 @@
+//! The likelihood of the choke ratio: one value of `b` at a time, everything else integrated out.
+//!
+//! Comes in: the points of a run and the effects of the common sources on them. Goes out: a [`Slice`] for each `b` of
+//! an even grid. The model (see [`super::choke`]) is `m = a − k·c` with `a = choked·ψ` and `c = a/√Re`, so that every
+//! quadratic form in `m` is a polynomial in `k`. The covariance is `V = Λ + D·Dᵀ`, Λ diagonal (random parts) and a
+//! column of `D` for each common source; `V⁻¹` is applied by the Woodbury identity, for which sums over the points are
+//! all that is needed. A point that is choked for one `b` is choked for every larger one, so its share of the sums is
+//! worked out once; only the points still below choking are added anew for each `b`.
+
+use super::choke::{ChokePoint, CommonEffect, LARGEST_K};
+use crate::gas::{self, Species};
+use crate::quantity::{AbsolutePressure, StpdFlow, Temperature};
+
+/// Steps of the grid over `k`.
+const K_STEPS: usize = 15;
+
+/// One value of `b` on the grid.
+#[derive(Debug, Clone, Copy)]
+pub(super) struct Slice {
+    pub(super) b: f64,
+    /// Logarithm of its weight, up to a constant.
+    pub(super) log_weight: f64,
+    /// χ² at the best `C`, `k` and common errors.
+    pub(super) least_chi_square: f64,
+}
+
+/// Flow in L/min STPD that the model passes at `p1_bar` for a hole of conductance `c` (L/min per bar at
+/// endless Reynolds number), discharge constant `k` and choke ratio `b`.
+pub(super) fn modelled_flow(species: Species, (c, k, b): (f64, f64, f64), p1_bar: f64, p2_bar: f64) -> f64 {
+    let t = Temperature::from_k(super::correct::REFERENCE_TEMPERATURE_K);
+    let c_star = |bar: f64| gas::critical_flow_function(species, AbsolutePressure::from_bar(bar), t);
+    let diameter =
+        gas::effective_diameter(species, StpdFlow::from_l_min(c), AbsolutePressure::from_bar(1.0), t);
+    let full = c * p1_bar * c_star(p1_bar) / c_star(10.0) * gas::subsonic_factor(p2_bar / p1_bar, b);
+    let reynolds = gas::reynolds_number(species, StpdFlow::from_l_min(full), diameter).max(1.0);
+    full * (1.0 - k / reynolds.sqrt()).max(0.0)
+}
+
+/// Everything about the points that does not depend on `b` or `k`, points in rising order of their pressure ratio.
+pub(super) struct Model {
+    points: Vec<ModelPoint>,
+    /// Effects of the common sources on `p1`, `p2` and flow, all sources of a point together.
+    effects: Vec<[f64; 3]>,
+    sources: usize,
+    /// A first estimate of `C`, L/min per bar.
+    scale: f64,
+}
+
+struct ModelPoint {
+    p1_bar: f64,
+    ratio: f64,
+    flow_l_min: f64,
+    pressure_variance: f64,
+    flow_variance: f64,
+    /// `p1 · C*(p1)/C*(10 bar)`, bar.
+    choked: f64,
+    /// `1/√Re`.
+    inverse_root_re: f64,
+}
+
+impl Model {
+    pub(super) fn new(species: Species, points: &[ChokePoint], effects: &[CommonEffect]) -> Self {
+        let t = Temperature::from_k(super::correct::REFERENCE_TEMPERATURE_K);
+        let c_star = |bar: f64| gas::critical_flow_function(species, AbsolutePressure::from_bar(bar), t);
+        let reference = c_star(10.0);
+        let choked = |p: &ChokePoint| p.corrected.p1_bar * c_star(p.corrected.p1_bar) / reference;
+        let scale =
+            points.iter().map(|p| p.corrected.flow_l_min / choked(p)).fold(f64::MIN_POSITIVE, f64::max);
+        let diameter =
+            gas::effective_diameter(species, StpdFlow::from_l_min(scale), AbsolutePressure::from_bar(1.0), t);
+        let model_point = |p: &ChokePoint| {
+            // A reading of almost nothing still has a jet; one per cent of the largest flow keeps 1/√Re finite.
+            let flow = StpdFlow::from_l_min(p.corrected.flow_l_min.max(0.01 * scale));
+            ModelPoint {
+                p1_bar: p.corrected.p1_bar,
+                ratio: p.corrected.p2_bar / p.corrected.p1_bar,
+                flow_l_min: p.corrected.flow_l_min,
+                pressure_variance: p.pressure_u * p.pressure_u,
+                flow_variance: p.flow_u * p.flow_u,
+                choked: choked(p),
+                inverse_root_re: 1.0 / gas::reynolds_number(species, flow, diameter).max(1.0).sqrt(),
+            }
+        };
+        let ratio = |i: usize| points[i].corrected.p2_bar / points[i].corrected.p1_bar;
+        let mut order: Vec<usize> = (0..points.len()).collect();
+        order.sort_by(|&i, &j| ratio(i).total_cmp(&ratio(j)));
+        let effect_on = |i: usize| effects.iter().map(move |e| [e.p1_bar[i], e.p2_bar[i], e.flow_l_min[i]]);
+        Self {
+            effects: order.iter().flat_map(|&i| effect_on(i)).collect(),
+            points: order.iter().map(|&i| model_point(&points[i])).collect(),
+            sources: effects.len(),
+            scale,
+        }
+    }
+
+    /// A slice for each of `steps` values of `b` from `low` to `high`.
+    pub(super) fn posterior(&self, low: f64, high: f64, steps: usize) -> Vec<Slice> {
+        let mut slices: Vec<Slice> = Vec::with_capacity(steps);
+        let mut choked = Sums::new(self.sources);
+        let mut all = Sums::new(self.sources);
+        let mut solver = Solver::new(self.sources);
+        let mut choked_points = 0;
+        for i in 0..steps {
+            let b = low + (high - low) * i as f64 / (steps - 1) as f64;
+            // With every point choked already, a larger b changes nothing.
+            if let Some(last) = slices.last().copied().filter(|_| choked_points == self.points.len()) {
+                slices.push(Slice { b, ..last });
+                continue;
+            }
+            while choked_points < self.points.len() && self.points[choked_points].ratio <= b {
+                self.add(choked_points, b, &mut choked);
+                choked_points += 1;
+            }
+            all.copy_from(&choked);
+            for point in choked_points..self.points.len() {
+                self.add(point, b, &mut all);
+            }
+            slices.push(solver.slice(b, &all));
+        }
+        slices
+    }
+
+    /// Adds what one point contributes for one `b`.
+    fn add(&self, index: usize, b: f64, sums: &mut Sums) {
+        let p = &self.points[index];
+        let (psi, psi_slope) = psi_and_slope(p.ratio, b);
+        let a = p.choked * psi;
+        // dq/dp1 and dq/dp2 of the model without k, which changes them by a few per cent only.
+        let by_p1 = self.scale * (psi - psi_slope * p.ratio) * p.choked / p.p1_bar;
+        let by_p2 = self.scale * psi_slope * p.choked / p.p1_bar;
+        let variance = p.flow_variance + by_p1 * by_p1 * p.pressure_variance;
+        let effects = &self.effects[index * self.sources..(index + 1) * self.sources];
+        for (d, [p1, p2, flow]) in sums.d.iter_mut().zip(effects) {
+            *d = flow - by_p1 * p1 - by_p2 * p2;
+        }
+        sums.add([a, a * p.inverse_root_re, p.flow_l_min], 1.0 / variance);
+        sums.product *= variance / p.flow_variance.max(f64::MIN_POSITIVE);
+        if !(1e-200..1e200).contains(&sums.product) {
+            sums.log_diagonal += libm::log(sums.product);
+            sums.product = 1.0;
+        }
+    }
+}
+
+/// ψ of ISO 6358-1 and its slope by the pressure ratio.
+fn psi_and_slope(ratio: f64, b: f64) -> (f64, f64) {
+    let psi = gas::subsonic_factor(ratio, b);
+    if ratio <= b || psi <= 0.0 {
+        return (psi, 0.0);
+    }
+    let one_minus_b = 1.0 - b;
+    // Very near p2 = p1 the slope grows without bound; a tenth of full flow is as far as it is followed.
+    (psi, -(ratio - b) / (one_minus_b * one_minus_b) / psi.max(0.1))
+}
+
+/// Pairs of the vectors a, c, q in the order their forms are kept: aa, ac, cc, aq, cq, qq.
+const PAIRS: [(usize, usize); 6] = [(0, 0), (0, 1), (1, 1), (0, 2), (1, 2), (2, 2)];
+
+/// Sums over points.
+struct Sums {
+    /// Lower triangle of `Dᵀ·Λ⁻¹·D`, row by row.
+    gram: Vec<f64>,
+    /// `Dᵀ·Λ⁻¹·v` for v = a, c, q, the three of a source together.
+    projected: Vec<[f64; 3]>,
+    /// `vᵀ·Λ⁻¹·w` for the [`PAIRS`].
+    forms: [f64; 6],
+    /// Logarithm of the product of the variances, each over its flow part; `product` is still to be taken in.
+    log_diagonal: f64,
+    product: f64,
+    /// One row of `D`, scratch.
+    d: Vec<f64>,
+}
+
+impl Sums {
+    fn new(s: usize) -> Self {
+        Self {
+            gram: vec![0.0; s * (s + 1) / 2],
+            projected: vec![[0.0; 3]; s],
+            forms: [0.0; 6],
+            log_diagonal: 0.0,
+            product: 1.0,
+            d: vec![0.0; s],
+        }
+    }
+
+    fn copy_from(&mut self, other: &Self) {
+        self.gram.copy_from_slice(&other.gram);
+        self.projected.copy_from_slice(&other.projected);
+        self.forms = other.forms;
+        self.log_diagonal = other.log_diagonal;
+        self.product = other.product;
+    }
+
+    fn add(&mut self, v: [f64; 3], weight: f64) {
+        for (form, (i, j)) in self.forms.iter_mut().zip(PAIRS) {
+            *form += v[i] * v[j] * weight;
+        }
+        let mut gram = self.gram.iter_mut();
+        for (row, projected) in self.projected.iter_mut().enumerate() {
+            let weighted = self.d[row] * weight;
+            projected.iter_mut().zip(v).for_each(|(p, v)| *p += weighted * v);
+            for (d, entry) in self.d[..=row].iter().zip(gram.by_ref()) {
+                *entry += weighted * d;
+            }
+        }
+    }
+}
+
+/// Takes the common errors, `C` and `k` out of the sums.
+struct Solver {
+    /// Lower Cholesky factor of `I + Dᵀ·Λ⁻¹·D`, row by row, rows of full length.
+    cholesky: Vec<f64>,
+    projected: Vec<[f64; 3]>,
+}
+
+impl Solver {
+    fn new(s: usize) -> Self {
+        Self { cholesky: vec![0.0; s * s], projected: vec![[0.0; 3]; s] }
+    }
+
+    fn slice(&mut self, b: f64, sums: &Sums) -> Slice {
+        let log_determinant = sums.log_diagonal + libm::log(sums.product) + self.factor(&sums.gram);
+        let [aa, ac, cc, aq, cq, qq] = self.forms(sums);
+        let at_k = |j: usize| {
+            let k = LARGEST_K * j as f64 / (K_STEPS - 1) as f64;
+            let mm = aa - k * (2.0 * ac - k * cc);
+            let mq = aq - k * cq;
+            (qq - mq * mq / mm, mm)
+        };
+        let mut grid = [(0.0, 0.0); K_STEPS];
+        grid.iter_mut().enumerate().for_each(|(j, at)| *at = at_k(j));
+        let least = grid.iter().map(|(chi_square, _)| *chi_square).fold(f64::INFINITY, f64::min);
+        let sum: f64 = grid
+            .iter()
+            .enumerate()
+            .map(|(j, (chi_square, mm))| {
+                // Trapezoidal rule: the two ends count half.
+                let share = if j == 0 || j == K_STEPS - 1 { 0.5 } else { 1.0 };
+                // `C` integrated out leaves 1/√mm.
+                share * libm::exp(-0.5 * (chi_square - least)) / mm.sqrt()
+            })
+            .sum();
+        Slice { b, log_weight: libm::log(sum) - 0.5 * (least + log_determinant), least_chi_square: least }
+    }
+
+    /// Factorises `I + Dᵀ·Λ⁻¹·D` and returns the logarithm of its determinant.
+    fn factor(&mut self, gram: &[f64]) -> f64 {
+        let s = self.projected.len();
+        let mut determinant_root = 1.0;
+        let mut entries = gram.iter();
+        for row in 0..s {
+            for (column, entry) in (0..=row).zip(entries.by_ref()) {
+                let mut sum = if row == column { 1.0 + entry } else { *entry };
+                for j in 0..column {
+                    sum -= self.cholesky[row * s + j] * self.cholesky[column * s + j];
+                }
+                if row == column {
+                    // The matrix is the identity plus a sum of squares, so the pivot is at least one but for rounding.
+                    let pivot = sum.max(f64::EPSILON).sqrt();
+                    self.cholesky[row * s + row] = pivot;
+                    determinant_root *= pivot;
+                } else {
+                    self.cholesky[row * s + column] = sum / self.cholesky[column * s + column];
+                }
+            }
+        }
+        2.0 * libm::log(determinant_root)
+    }
+
+    /// The quadratic forms through `V⁻¹`, in the order of [`PAIRS`].
+    fn forms(&mut self, sums: &Sums) -> [f64; 6] {
+        let s = self.projected.len();
+        for row in 0..s {
+            let mut sum = sums.projected[row];
+            for j in 0..row {
+                let factor = self.cholesky[row * s + j];
+                let earlier = self.projected[j];
+                sum.iter_mut().zip(earlier).for_each(|(sum, e)| *sum -= factor * e);
+            }
+            self.projected[row] = sum.map(|v| v / self.cholesky[row * s + row]);
+        }
+        let mut forms = sums.forms;
+        for projected in &self.projected {
+            for (form, (i, j)) in forms.iter_mut().zip(PAIRS) {
+                *form -= projected[i] * projected[j];
+            }
+        }
+        forms
+    }
+}
