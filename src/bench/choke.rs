@@ -4,10 +4,9 @@
 //! them. Goes out: the posterior of `b`, and the share of flow each point is expected to have lost against full
 //! choking. Model: `q = C · p1 · C*(p1)/C*(10 bar) · (1 − k/√Re) · ψ(p2/p1; b)` with ψ of ISO 6358-1; `C` flat,
 //! `k` uniform between 0 and 3.5, `b` uniform over what the build allows. `C` and the common errors are
-//! integrated out in closed form (they enter linearly), `k` and `b` on a grid. Leaving `k` out would pull `b`
-//! down and claim to know it far too well. Left out: any other shape of the transition than the ellipse (an ideal
-//! nozzle is covered all the same), and the curvature of ψ within a common error: a transducer zero known to ±0.2 bar
-//! only makes the 95 % interval cover in 88 % of simulated runs, one known to ±0.1 bar does no harm.
+//! integrated out in closed form (they enter linearly, the common error of `p1` to second order), `k` and `b` on a
+//! grid. Leaving `k` out would pull `b` down and claim to know it far too well. Left out: any other shape of the
+//! transition than the ellipse; an ideal nozzle is covered all the same, a plate that never chokes has no `b`.
 
 use super::choke_model::{Model, Slice};
 use super::correct::Corrected;

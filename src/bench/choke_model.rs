@@ -3,8 +3,9 @@
 //! Comes in: the points of a run and the effects of the common sources on them. Goes out: a [`Slice`] for each `b` of
 //! an even grid. The model (see [`super::choke`]) is `m = a − k·c` with `a = choked·ψ` and `c = a/√Re`, so that every
 //! quadratic form in `m` is a polynomial in `k`. The covariance is `V = Λ + D·Dᵀ`, Λ diagonal (random parts) and a
-//! column of `D` for each common source; `V⁻¹` is applied by the Woodbury identity, for which sums over the points are
-//! all that is needed. A point that is choked for one `b` is choked for every larger one, so its share of the sums is
+//! column of `D` for each common source, and one for the second order of all that is common to `p1`: near `p2 = p1` ψ
+//! bends within an error of a tenth of a bar. `V⁻¹` is applied by the Woodbury identity, for which sums over the points
+//! are all that is needed. A point that is choked for one `b` is choked for every larger one, so its share of the sums is
 //! worked out once; only the points still below choking are added anew for each `b`.
 
 use super::choke::{ChokePoint, CommonEffect, LARGEST_K};
@@ -51,6 +52,8 @@ struct ModelPoint {
     ratio: f64,
     flow_l_min: f64,
     pressure_variance: f64,
+    /// Variance of `p1` from all common sources together, bar².
+    common_variance: f64,
     flow_variance: f64,
     /// `p1 · C*(p1)/C*(10 bar)`, bar.
     choked: f64,
@@ -68,7 +71,8 @@ impl Model {
             points.iter().map(|p| p.corrected.flow_l_min / choked(p)).fold(f64::MIN_POSITIVE, f64::max);
         let diameter =
             gas::effective_diameter(species, StpdFlow::from_l_min(scale), AbsolutePressure::from_bar(1.0), t);
-        let model_point = |p: &ChokePoint| {
+        let model_point = |i: usize| {
+            let p = &points[i];
             // A reading of almost nothing still has a jet; one per cent of the largest flow keeps 1/√Re finite.
             let flow = StpdFlow::from_l_min(p.corrected.flow_l_min.max(0.01 * scale));
             ModelPoint {
@@ -76,6 +80,7 @@ impl Model {
                 ratio: p.corrected.p2_bar / p.corrected.p1_bar,
                 flow_l_min: p.corrected.flow_l_min,
                 pressure_variance: p.pressure_u * p.pressure_u,
+                common_variance: effects.iter().map(|e| e.p1_bar[i] * e.p1_bar[i]).sum(),
                 flow_variance: p.flow_u * p.flow_u,
                 choked: choked(p),
                 inverse_root_re: 1.0 / gas::reynolds_number(species, flow, diameter).max(1.0).sqrt(),
@@ -87,7 +92,7 @@ impl Model {
         let effect_on = |i: usize| effects.iter().map(move |e| [e.p1_bar[i], e.p2_bar[i], e.flow_l_min[i]]);
         Self {
             effects: order.iter().flat_map(|&i| effect_on(i)).collect(),
-            points: order.iter().map(|&i| model_point(&points[i])).collect(),
+            points: order.iter().map(|&i| model_point(i)).collect(),
             sources: effects.len(),
             scale,
         }
@@ -96,9 +101,9 @@ impl Model {
     /// A slice for each of `steps` values of `b` from `low` to `high`.
     pub(super) fn posterior(&self, low: f64, high: f64, steps: usize) -> Vec<Slice> {
         let mut slices: Vec<Slice> = Vec::with_capacity(steps);
-        let mut choked = Sums::new(self.sources);
-        let mut all = Sums::new(self.sources);
-        let mut solver = Solver::new(self.sources);
+        let mut choked = Sums::new(self.sources + 1);
+        let mut all = Sums::new(self.sources + 1);
+        let mut solver = Solver::new(self.sources + 1);
         let mut choked_points = 0;
         for i in 0..steps {
             let b = low + (high - low) * i as f64 / (steps - 1) as f64;
@@ -123,8 +128,10 @@ impl Model {
     /// Adds what one point contributes for one `b`.
     fn add(&self, index: usize, b: f64, sums: &mut Sums) {
         let p = &self.points[index];
-        let (psi, psi_slope) = psi_and_slope(p.ratio, b);
-        let a = p.choked * psi;
+        let Psi { psi, slope: psi_slope, curvature } = Psi::of(p.ratio, b);
+        // d²(p1·ψ)/dp1² times the variance of what is common to all p1: its half is the mean shift of the flow.
+        let second_order = curvature * p.ratio * p.ratio / p.p1_bar * p.common_variance;
+        let a = p.choked * (psi + 0.5 * second_order / p.p1_bar);
         // dq/dp1 and dq/dp2 of the model without k, which changes them by a few per cent only.
         let by_p1 = self.scale * (psi - psi_slope * p.ratio) * p.choked / p.p1_bar;
         let by_p2 = self.scale * psi_slope * p.choked / p.p1_bar;
@@ -133,6 +140,8 @@ impl Model {
         for (d, [p1, p2, flow]) in sums.d.iter_mut().zip(effects) {
             *d = flow - by_p1 * p1 - by_p2 * p2;
         }
+        // z² of a standard normal z has the standard deviation √2 and is not correlated with z.
+        sums.d[self.sources] = self.scale * p.choked / p.p1_bar * second_order / std::f64::consts::SQRT_2;
         sums.add([a, a * p.inverse_root_re, p.flow_l_min], 1.0 / variance);
         sums.product *= variance / p.flow_variance.max(f64::MIN_POSITIVE);
         if !(1e-200..1e200).contains(&sums.product) {
@@ -142,15 +151,25 @@ impl Model {
     }
 }
 
-/// ψ of ISO 6358-1 and its slope by the pressure ratio.
-fn psi_and_slope(ratio: f64, b: f64) -> (f64, f64) {
-    let psi = gas::subsonic_factor(ratio, b);
-    if ratio <= b || psi <= 0.0 {
-        return (psi, 0.0);
+/// ψ of ISO 6358-1 with its slope and curvature by the pressure ratio.
+struct Psi {
+    psi: f64,
+    slope: f64,
+    curvature: f64,
+}
+
+impl Psi {
+    fn of(ratio: f64, b: f64) -> Self {
+        let psi = gas::subsonic_factor(ratio, b);
+        if ratio <= b || psi <= 0.0 {
+            return Self { psi, slope: 0.0, curvature: 0.0 };
+        }
+        let one_minus_b = 1.0 - b;
+        // Very near p2 = p1 both grow without bound; a tenth of full flow is as far as they are followed.
+        let floor = psi.max(0.1);
+        let slope = -(ratio - b) / (one_minus_b * one_minus_b) / floor;
+        Self { psi, slope, curvature: -1.0 / (one_minus_b * one_minus_b * floor * floor * floor) }
     }
-    let one_minus_b = 1.0 - b;
-    // Very near p2 = p1 the slope grows without bound; a tenth of full flow is as far as it is followed.
-    (psi, -(ratio - b) / (one_minus_b * one_minus_b) / psi.max(0.1))
 }
 
 /// Pairs of the vectors a, c, q in the order their forms are kept: aa, ac, cc, aq, cq, qq.
