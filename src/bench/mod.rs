@@ -42,6 +42,7 @@ use crate::gas::{self, Species};
 use crate::quantity::{
     AbsolutePressure, GaugePressure, PressureDifference, StpdFlow, Temperature, Uncertain,
 };
+use crate::stats::distribution::chi_squared_upper;
 use crate::stats::line::{CalibrationPoints, LineError, fit};
 
 /// Revision of the method: rises when any printed figure could change.
@@ -229,7 +230,9 @@ pub fn analyse(
         limits: &limits,
         before: questions.before,
     });
-    if line.widened > 1.0 && !line_points.flow_u_from_scatter {
+    // Every second honest run scatters a little more than stated; only what chance does not explain is a warning.
+    let chance = chi_squared_upper(line.random.chi_square, line.random.dof as f64);
+    if line.widened > 1.0 && !line_points.flow_u_from_scatter && chance < limits.significance {
         let straight = checks.iter().find(|c| c.kind == CheckKind::Straight);
         let bent = straight.and_then(|c| c.p_value).is_some_and(|p| p < limits.significance);
         warnings.push(Warning::RandomPartWidened { factor: line.widened.sqrt(), bent });

@@ -302,6 +302,13 @@ fn line(fitted: &Fitted<'_>, units: &Units) -> String {
         used,
         analysis.points.len()
     ));
+    if analysis.line.random_dof.is_finite() {
+        text.push_str(&format!(
+            "  random part      times {} (Birge), with {} degrees of freedom\n",
+            figures(analysis.line.widened.sqrt(), 3),
+            fixed(analysis.line.random_dof, 0)
+        ));
+    }
     text.push_str("  standard errors  those of ISO/TS 28037:2010, clause 7\n");
     let (diameter, diameter_u) =
         value_and_u(analysis.effective_diameter_um.0, analysis.effective_diameter_um.1);
@@ -324,7 +331,7 @@ fn line(fitted: &Fitted<'_>, units: &Units) -> String {
             format!("; points at {} {} gauge would settle it", list.join(", "), units.pressure_symbol())
         }
         Some(LowPoints::NotWithTheseInstruments) => {
-            "; no low points would settle it with these instruments".into()
+            "; no plan of up to 24 low points is sure to settle it with these instruments".into()
         }
     };
     text.push_str(&wrapped(

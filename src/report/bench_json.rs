@@ -61,6 +61,7 @@ struct Line {
     random_slope_u: Plain,
     random_intercept_u: Plain,
     random_covariance: Plain,
+    random_widened_by: Plain,
     random_degrees_of_freedom: Option<Plain>,
     standard_errors: &'static str,
 }
@@ -189,6 +190,7 @@ impl Document {
                 random_slope_u: Plain(random.slope_u),
                 random_intercept_u: Plain(random.intercept_u),
                 random_covariance: Plain(random.covariance),
+                random_widened_by: Plain(analysis.line.widened.sqrt()),
                 random_degrees_of_freedom: finite(analysis.line.random_dof),
                 standard_errors: "ISO/TS 28037:2010, clause 7",
             },

@@ -289,6 +289,7 @@ impl Trial {
                 Indication::Gauge(GaugePressure::from_bar(shown_bar))
             },
             flow: IndicatedFlow::from_l_min(rounded(shown_flow + noise_l_min, papers.meter_step_l_min)),
+            timed: None,
             pressure_scatter: None,
             flow_scatter: None,
             averaged: 1.0,
