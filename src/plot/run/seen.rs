@@ -1,0 +1,269 @@
+//! What is drawn, in the units it is shown in.
+//!
+//! Comes in: a run, its analysis, the units. Goes out: [`Seen`]: points, window and ranges as plain finite numbers.
+//! Equations: none but changes of unit. Left out: pixels.
+
+use super::{RunPlot, ShownUnit};
+use crate::bench::convert::gas_ratio;
+use crate::bench::{Analysis, Point, WhyNot};
+use crate::entry::{Run, Sweep};
+use crate::quantity::AbsolutePressure;
+
+/// Coverage factor of the bars: for the random part of one point, as the papers of instruments state theirs.
+pub(super) const BAR_COVERAGE: f64 = 2.0;
+/// How far beyond the other points, in spans of theirs, a point left out still widens the range.
+const LEFT_OUT_REACH: f64 = 0.6;
+/// How far beyond the points, in spans of theirs, the acceptance window still widens the range.
+const WINDOW_REACH: f64 = 6.0;
+/// An axis begins at nought when its lowest number is under this share of its highest.
+const FROM_NOUGHT: f64 = 0.3;
+/// Room left between the outermost number and the frame, as a share of the range.
+const PADDING: f64 = 0.04;
+
+/// Which sign a point is drawn with.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) enum Shape {
+    Rising,
+    Falling,
+    Neither,
+}
+
+/// Whether the line uses a point.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub(super) enum Use {
+    InTheLine,
+    NotChoked,
+    LeftOut(String),
+}
+
+/// A point, in shown units; bars are half their length.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) struct Mark {
+    pub index: usize,
+    pub pressure: f64,
+    pub pressure_bar: f64,
+    pub flow: f64,
+    pub flow_bar: f64,
+    pub residual: f64,
+    pub residual_bar: f64,
+    pub shape: Shape,
+    pub how: Use,
+}
+
+/// What a residual is a number of.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) enum ResidualUnit {
+    /// Per cent of the flow at the nominal pressure.
+    Percent,
+    /// The unit of flows, where there is no such flow to take shares of.
+    Flow,
+}
+
+/// The flow at the nominal pressure.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(super) struct Nominal {
+    /// Absolute, where the line is read.
+    pub pressure: f64,
+    /// Gauge, as asked for.
+    pub ip: f64,
+    pub flow: f64,
+    pub expanded: f64,
+    pub coverage_factor: f64,
+}
+
+/// What the flow may be, in the gas of the run.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(super) struct Window {
+    pub low: f64,
+    pub nominal: f64,
+    pub high: f64,
+    /// Whether the limits are meant for another gas and were converted.
+    pub converted: bool,
+}
+
+/// All of it.
+pub(super) struct Seen {
+    pub units: Units,
+    pub marks: Vec<Mark>,
+    pub nominal: Option<Nominal>,
+    pub window: Option<Window>,
+    /// Lowest and highest pressure of the points of the line; twice nought when there are none.
+    pub span: (f64, f64),
+    /// Range of the pressure axis.
+    pub pressures: (f64, f64),
+    /// Range of the flow axis.
+    pub flows: (f64, f64),
+    /// The residual strip goes from minus this to this.
+    pub residual_reach: f64,
+}
+
+/// Factors from the units of `bench` to the shown ones.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(super) struct Units {
+    pub pressure: ShownUnit,
+    pub flow: ShownUnit,
+    /// Shown pressure in one bar.
+    pub per_bar: f64,
+    /// Shown flow in one litre per minute.
+    pub per_l_min: f64,
+    pub residual: ResidualUnit,
+    /// Shown residual in one litre per minute.
+    pub residual_per_l_min: f64,
+}
+
+impl Seen {
+    pub(super) fn new(run: &Run, analysis: &Analysis, options: &RunPlot) -> Self {
+        let units = Units::new(analysis, options);
+        let slope = analysis.line.random.slope;
+        let marks: Vec<Mark> = analysis.points.iter().filter_map(|p| mark(p, slope, &units)).collect();
+        let used = || marks.iter().filter(|m| m.how == Use::InTheLine);
+        let span = hull(used().map(|m| (m.pressure, 0.0))).unwrap_or((0.0, 0.0));
+        let nominal = nominal(analysis, &units);
+        let window = window(run, analysis, &units);
+        let pressures = {
+            let core = hull(
+                used().map(|m| (m.pressure, m.pressure_bar)).chain(nominal.iter().map(|n| (n.pressure, 0.0))),
+            );
+            let others = marks.iter().filter(|m| m.how != Use::InTheLine).map(|m| m.pressure);
+            framed(reaching(core.unwrap_or((0.0, 1.0)), others, LEFT_OUT_REACH))
+        };
+        let flows = {
+            let core =
+                hull(used().map(|m| (m.flow, m.flow_bar)).chain(nominal.iter().map(|n| (n.flow, 0.0))));
+            let others = marks.iter().filter(|m| m.how != Use::InTheLine).map(|m| m.flow);
+            let core = reaching(core.unwrap_or((0.0, 1.0)), others, LEFT_OUT_REACH);
+            let ends = nominal.iter().flat_map(|n| [n.flow - n.expanded, n.flow + n.expanded]);
+            let core = reaching(core, ends, WINDOW_REACH);
+            framed(reaching(core, window.iter().flat_map(|w| [w.low, w.high]), WINDOW_REACH))
+        };
+        let residual_reach = used().map(|m| m.residual.abs() + m.residual_bar).fold(0.0, f64::max);
+        // Residuals that are nothing but rounding are not blown up to the height of the strip.
+        let least = units.least_residual();
+        let residual_reach = if residual_reach > 1e-3 * least { 1.08 * residual_reach } else { least };
+        Self { units, marks, nominal, window, span, pressures, flows, residual_reach }
+    }
+
+    /// Whether the window is near enough the points to be drawn.
+    pub(super) fn window_in_view(&self) -> Option<Window> {
+        self.window.filter(|w| w.low >= self.flows.0 && w.high <= self.flows.1)
+    }
+}
+
+impl Units {
+    fn new(analysis: &Analysis, options: &RunPlot) -> Self {
+        let per_l_min = ShownUnit::L_MIN.si / options.flow.si;
+        let nominal = analysis.nominal.flow.flow_l_min;
+        let (residual, residual_per_l_min) = if nominal.is_finite() && nominal > 1e-9 {
+            (ResidualUnit::Percent, 100.0 / nominal)
+        } else {
+            (ResidualUnit::Flow, per_l_min)
+        };
+        Self {
+            pressure: options.pressure,
+            flow: options.flow,
+            per_bar: ShownUnit::BAR.si / options.pressure.si,
+            per_l_min,
+            residual,
+            residual_per_l_min,
+        }
+    }
+
+    /// The standard atmosphere: what the gauge axis is below the absolute one.
+    pub(super) fn ambient(&self) -> f64 {
+        AbsolutePressure::STANDARD_ATMOSPHERE.as_pa() / self.pressure.si
+    }
+
+    /// Half the height of a strip whose residuals are all nought.
+    fn least_residual(&self) -> f64 {
+        match self.residual {
+            ResidualUnit::Percent => 0.1,
+            ResidualUnit::Flow => 1e-3 * self.per_l_min,
+        }
+    }
+}
+
+fn mark(p: &Point, slope: f64, units: &Units) -> Option<Mark> {
+    let bar = |u: f64, factor: f64| {
+        let bar = BAR_COVERAGE * u.abs() * factor;
+        if bar.is_finite() { bar } else { 0.0 }
+    };
+    let mark = Mark {
+        index: p.index,
+        pressure: p.pressure_bar_abs * units.per_bar,
+        pressure_bar: bar(p.pressure_u, units.per_bar),
+        flow: p.flow_l_min * units.per_l_min,
+        flow_bar: bar(p.flow_u, units.per_l_min),
+        residual: p.residual_l_min * units.residual_per_l_min,
+        residual_bar: bar(p.combined_u(slope), units.residual_per_l_min),
+        shape: match p.sweep {
+            Some(Sweep::Rising) => Shape::Rising,
+            Some(Sweep::Falling) => Shape::Falling,
+            None => Shape::Neither,
+        },
+        how: match &p.why_not {
+            None => Use::InTheLine,
+            Some(WhyNot::NotChoked) => Use::NotChoked,
+            Some(WhyNot::LeftOut(why)) => Use::LeftOut(why.clone()),
+        },
+    };
+    [mark.pressure, mark.flow, mark.residual].iter().all(|x| drawable(*x)).then_some(mark)
+}
+
+fn nominal(analysis: &Analysis, units: &Units) -> Option<Nominal> {
+    let at = &analysis.nominal;
+    let nominal = Nominal {
+        pressure: at.flow.p1_bar * units.per_bar,
+        ip: at.ip.as_pa() / units.pressure.si,
+        flow: at.flow.flow_l_min * units.per_l_min,
+        expanded: at.flow.expanded() * units.per_l_min,
+        coverage_factor: at.flow.coverage_factor,
+    };
+    [nominal.pressure, nominal.ip, nominal.flow, nominal.expanded]
+        .iter()
+        .all(|x| drawable(*x))
+        .then_some(nominal)
+}
+
+/// The limits, brought to the gas of the run where they are meant for another.
+fn window(run: &Run, analysis: &Analysis, units: &Units) -> Option<Window> {
+    let acceptance = run.acceptance.as_ref()?;
+    let (low, high) = analysis.judgement.as_ref()?.limits_l_min;
+    let at = &analysis.nominal.flow;
+    let converted = acceptance.gas.is_some_and(|gas| gas != run.gas);
+    let ratio = acceptance.gas.map_or(1.0, |gas| gas_ratio(run.gas, gas, at.p1_bar, at.flow_l_min).value);
+    let shown = |l_min: f64| l_min / ratio * units.per_l_min;
+    let window =
+        Window { low: shown(low), nominal: shown(acceptance.flow.as_l_min()), high: shown(high), converted };
+    ([window.low, window.nominal, window.high].iter().all(|x| drawable(*x)) && window.low <= window.high)
+        .then_some(window)
+}
+
+/// Whether a number can stand on an axis: finite, and not so large that differences drown.
+fn drawable(x: f64) -> bool {
+    x.is_finite() && x.abs() < 1e12
+}
+
+/// Lowest and highest of values with bars.
+fn hull(values: impl Iterator<Item = (f64, f64)>) -> Option<(f64, f64)> {
+    values.fold(None, |hull, (x, bar)| match hull {
+        None => Some((x - bar, x + bar)),
+        Some((low, high)) => Some((f64::min(low, x - bar), f64::max(high, x + bar))),
+    })
+}
+
+/// A range widened to values that lie no further than `reach` spans beyond it.
+fn reaching(range: (f64, f64), values: impl Iterator<Item = f64>, reach: f64) -> (f64, f64) {
+    let span = (range.1 - range.0).max(0.05 * range.1.abs());
+    let near = (range.0 - reach * span, range.1 + reach * span);
+    values.filter(|v| (near.0..=near.1).contains(v)).fold(range, |(low, high), v| (low.min(v), high.max(v)))
+}
+
+/// A range with room around it, from nought when it nearly begins there, and never without width.
+fn framed((low, high): (f64, f64)) -> (f64, f64) {
+    let least = (1e-3 * low.abs().max(high.abs())).max(1e-9);
+    let (low, high) = if high - low < least { (low - least, high + least) } else { (low, high) };
+    let from_nought = low >= 0.0 && low < FROM_NOUGHT * high;
+    let low = if from_nought { 0.0 } else { low };
+    let room = PADDING * (high - low);
+    (if from_nought { 0.0 } else { low - room }, high + room)
+}
