@@ -479,11 +479,7 @@ fn any_reason() -> impl Strategy<Value = Option<WhyNot>> {
 type AnyPoint = (f64, f64, f64, f64, Option<WhyNot>, u8);
 
 /// An analysis whose points, line, flow and limits are whatever they are.
-fn broken(
-    points: &[AnyPoint],
-    numbers: &[f64],
-    technician: &str,
-) -> (Run, Analysis) {
+fn broken(points: &[AnyPoint], numbers: &[f64], technician: &str) -> (Run, Analysis) {
     static WHOLE: OnceLock<(Run, Analysis)> = OnceLock::new();
     let whole = WHOLE.get_or_init(|| analysed(&Made { ips: up_and_down(5.0, 9.0, 1.0), ..Made::default() }));
     let (mut run, mut analysis) = whole.clone();

@@ -25,6 +25,18 @@ impl Units {
         self.shown.pressure.symbol
     }
 
+    /// Pascals in one unit of pressure.
+    #[must_use]
+    pub fn pressure_pa(&self) -> f64 {
+        self.shown.pressure.factor
+    }
+
+    /// Cubic metres per second in one unit of flow.
+    #[must_use]
+    pub fn flow_m3_s(&self) -> f64 {
+        self.shown.flow.factor
+    }
+
     /// Symbol of the flow unit.
     #[must_use]
     pub fn flow_symbol(&self) -> &'static str {
