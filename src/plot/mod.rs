@@ -18,4 +18,4 @@ mod svg;
 mod axis;
 mod run;
 
-pub use run::{RunPlot, ShownUnit, run_plot};
+pub use run::{RunPlot, run_plot};

@@ -1,12 +1,10 @@
-//! Numbers as text: coordinates, and values as people read them.
+//! Numbers as text: coordinates, and the labels of axes.
 //!
-//! Comes in: a number. Goes out: a text that never says NaN, an infinity or a negative nought; for people the minus
-//! sign is the real one. Left out: units.
+//! Comes in: a number. Goes out: a text that never says NaN, an infinity or a negative nought; on axes the minus sign
+//! is the real one. Left out: values with their uncertainty, which are rounded as the report does it.
 
 /// Digits after the point of every coordinate: a hundredth of a pixel.
 const COORDINATE_DECIMALS: usize = 2;
-/// Significant digits of an uncertainty as it is shown (JCGM 100:2008, 7.2.6: at most two).
-const UNCERTAINTY_DIGITS: i32 = 2;
 /// Beyond these sizes digits are counted with an exponent, else a label would run on.
 const PLAIN: std::ops::Range<f64> = 1e-6..1e7;
 
@@ -16,7 +14,7 @@ pub(super) fn coordinate(x: f64) -> String {
     without_negative_zero(text)
 }
 
-/// A value with a fixed number of decimals, for people.
+/// A value with a fixed number of decimals, on an axis.
 pub(super) fn fixed(value: f64, decimals: usize) -> String {
     let size = value.abs();
     let text = if size == 0.0 || PLAIN.contains(&size) || (size < PLAIN.start && decimals <= 6) {
@@ -36,21 +34,6 @@ pub(super) fn short(value: f64) -> String {
     } else {
         text
     }
-}
-
-/// How many decimals a value has whose expanded uncertainty is `expanded`: two significant digits of it. Without a
-/// usable uncertainty, those of four significant digits of the value.
-pub(super) fn decimals_for(value: f64, expanded: f64) -> usize {
-    let last = if expanded.is_finite() && expanded > 0.0 {
-        // 0.0996 is shown as 0.10: the exponent is that of the rounded number.
-        let e = exponent(expanded);
-        let rounded = (expanded / 10f64.powi(e - UNCERTAINTY_DIGITS + 1)).round();
-        let e = if rounded >= 10f64.powi(UNCERTAINTY_DIGITS) { e + 1 } else { e };
-        UNCERTAINTY_DIGITS - 1 - e
-    } else {
-        3 - exponent(value)
-    };
-    last.clamp(0, 9) as usize
 }
 
 /// The decimal exponent of a number's first digit; nought for nought and for what is not finite.
@@ -81,17 +64,6 @@ mod tests {
         assert_eq!(coordinate(12.345_6), "12.35");
         assert_eq!(coordinate(f64::NAN), "0.00");
         assert_eq!(coordinate(f64::NEG_INFINITY), "0.00");
-    }
-
-    #[test]
-    fn an_uncertainty_is_shown_with_two_digits() {
-        for (expanded, decimals) in
-            [(0.0049, 4), (0.000_996, 4), (0.0996, 2), (0.5, 2), (12.0, 0), (480.0, 0)]
-        {
-            assert_eq!(decimals_for(1.0, expanded), decimals, "{expanded}");
-        }
-        assert_eq!(decimals_for(0.4831, 0.0), 4);
-        assert_eq!(decimals_for(0.4831, f64::NAN), 4);
     }
 
     #[test]

@@ -3,7 +3,7 @@
 //! Comes in: shapes in pixels, texts. Goes out: well-formed SVG 1.1 whose texts are escaped and cleaned. Left out:
 //! where anything goes.
 
-use super::ink::{INK, PAPER};
+use super::ink::INK;
 use super::letters::{Weight, clean};
 use super::number::coordinate;
 
@@ -45,8 +45,6 @@ pub(super) struct Text<'a> {
     pub fill: &'static str,
     /// Quieter than the rest.
     pub muted: bool,
-    /// Drawn with an edge of paper, where it stands on marks.
-    pub halo: bool,
     pub class: &'static str,
     pub pieces: &'a [(&'a str, Weight)],
 }
@@ -142,14 +140,6 @@ impl Svg {
         }
         if text.muted {
             self.attributes(&[("fill-opacity", "0.72")]);
-        }
-        if text.halo {
-            self.attributes(&[
-                ("stroke", PAPER),
-                ("stroke-width", "3"),
-                ("stroke-linejoin", "round"),
-                ("paint-order", "stroke"),
-            ]);
         }
         self.out.push('>');
         for (piece, weight) in text.pieces {

@@ -4,14 +4,14 @@
 //! frame by arithmetic, so that no clipping path is needed.
 
 use super::layout::{Frame, Layout};
+use super::limits;
 use super::marks::{DRAWING_ORDER, arrow, begin, cross_of, hair, radius, sign, told};
 use super::seen::{Mark, Nominal, Seen};
 use crate::bench::Analysis;
 
 use super::super::ink::{INK, SAND, SEA_GLASS};
-use super::super::letters::{Weight, width};
-use super::super::number::{coordinate, short};
-use super::super::svg::{Anchor, Path, Svg, Text};
+use super::super::number::coordinate;
+use super::super::svg::{Path, Svg};
 
 /// Places at which the curved edges of the band are worked out.
 const BAND_STEPS: u32 = 64;
@@ -26,22 +26,23 @@ pub(super) fn draw(svg: &mut Svg, seen: &Seen, analysis: &Analysis, layout: &Lay
     draw_window(svg, seen, layout);
     draw_bars(svg, seen, layout);
     draw_points(svg, seen, layout);
-    draw_limits(svg, seen, layout, &line);
+    limits::draw(svg, seen, layout, &line);
 }
 
 /// The line in shown units, and between which pressures it is drawn.
-struct Drawn {
+pub(super) struct Drawn {
     intercept: f64,
     slope: f64,
     /// Where it lies within the panel and above no flow; none when nowhere.
-    reach: Option<(f64, f64)>,
+    pub(super) reach: Option<(f64, f64)>,
 }
 
 impl Drawn {
     fn of(seen: &Seen, analysis: &Analysis) -> Self {
         let fit = &analysis.line.random;
-        let intercept = fit.intercept * seen.units.per_l_min;
-        let slope = fit.slope * seen.units.per_l_min / seen.units.per_bar;
+        let units = &seen.shown.units;
+        let intercept = units.flow(fit.intercept);
+        let slope = units.slope(fit.slope);
         let (low, high) = (seen.flows.0.max(0.0), seen.flows.1);
         let reach = if !(intercept.is_finite() && slope.is_finite()) || low >= high {
             None
@@ -54,7 +55,7 @@ impl Drawn {
         Self { intercept, slope, reach: reach.filter(|(from, to)| from < to) }
     }
 
-    fn at(&self, pressure: f64) -> f64 {
+    pub(super) fn at(&self, pressure: f64) -> f64 {
         self.intercept + self.slope * pressure
     }
 
@@ -67,14 +68,14 @@ impl Drawn {
 }
 
 fn draw_band(svg: &mut Svg, seen: &Seen, analysis: &Analysis, layout: &Layout, line: &Drawn) {
+    let units = &seen.shown.units;
     let places = ["plot-band-beyond", "plot-band", "plot-band-beyond"];
     for (part, class) in line.parts(seen.span).into_iter().zip(places) {
         let Some((from, to)) = part else { continue };
         let (mut upper, mut lower) = (Vec::new(), Vec::new());
         for i in 0..=BAND_STEPS {
             let pressure = from + (to - from) * f64::from(i) / f64::from(BAND_STEPS);
-            let expanded =
-                analysis.line.flow_at(pressure / seen.units.per_bar).expanded() * seen.units.per_l_min;
+            let expanded = units.flow(analysis.line.flow_at(pressure / units.pressure(1.0)).expanded());
             if expanded.is_finite() {
                 let x = layout.x.at(pressure);
                 upper.push((x, layout.flow.clamped(line.at(pressure) + expanded)));
@@ -135,7 +136,7 @@ fn draw_line(svg: &mut Svg, seen: &Seen, layout: &Layout, line: &Drawn) {
 }
 
 /// Half the width of the window in pixels.
-fn window_half_width(layout: &Layout) -> f64 {
+pub(super) fn window_half_width(layout: &Layout) -> f64 {
     1.25 * layout.body
 }
 
@@ -286,94 +287,6 @@ fn arrow_beyond(m: &Mark, seen: &Seen, layout: &Layout) -> Path {
 pub(super) fn in_view(m: &Mark, seen: &Seen) -> bool {
     (seen.pressures.0..=seen.pressures.1).contains(&m.pressure)
         && (seen.flows.0..=seen.flows.1).contains(&m.flow)
-}
-
-/// The two limits in numbers, beside the brackets where nothing else is.
-fn draw_limits(svg: &mut Svg, seen: &Seen, layout: &Layout, line: &Drawn) {
-    let (Some(nominal), Some(window)) = (seen.nominal, seen.window) else { return };
-    let size = 0.92 * layout.body;
-    let x = layout.x.at(nominal.pressure);
-    svg.group("plot-limit-labels", &[]);
-    if seen.window_in_view().is_some() {
-        // Clear of the ticks of the nominal flow.
-        let half = window_half_width(layout) + 0.7 * layout.body;
-        let mut taken: Vec<Frame> = Vec::new();
-        // A rising line leaves the upper left and the lower right free.
-        for (limit, first) in [(window.high, -1.0), (window.low, 1.0)] {
-            let text = short(limit);
-            let wide = width(&text, size, Weight::Regular);
-            let middle = layout.flow.at(limit);
-            let place = |side: f64, shift: f64| {
-                let left = if side < 0.0 { x - half - wide } else { x + half };
-                let middle = middle + shift * size;
-                Frame { left, top: middle - 0.6 * size, right: left + wide, bottom: middle + 0.6 * size }
-            };
-            let outward = if limit > window.nominal { -0.7 } else { 0.7 };
-            let shifts = [0.0, outward, -outward];
-            let places = shifts.map(|shift| [first, -first].map(|side| place(side, shift))).concat();
-            let free = |f: &&Frame| {
-                layout.main.holds(f) && !taken.iter().any(|t| t.meets(f)) && is_free(f, seen, layout, line)
-            };
-            let inside = |f: &&Frame| layout.main.holds(f) && !taken.iter().any(|t| t.meets(f));
-            if let Some(frame) = places.iter().find(free).or_else(|| places.iter().find(inside)) {
-                limit_label(
-                    svg,
-                    &text,
-                    frame.left,
-                    (frame.top + frame.bottom) / 2.0 + 0.36 * size,
-                    size,
-                    layout,
-                );
-                taken.push(*frame);
-            }
-        }
-    } else {
-        let text = format!("limits {} to {}", short(window.low), short(window.high));
-        let wide = width(&text, size, Weight::Regular);
-        let left =
-            if x + layout.body + wide < layout.main.right { x + layout.body } else { x - layout.body - wide };
-        let y = if window.nominal > seen.flows.1 {
-            layout.main.top + 1.3 * size
-        } else {
-            layout.main.bottom - 0.6 * size
-        };
-        if left > layout.main.left {
-            limit_label(svg, &text, left, y, size, layout);
-        }
-    }
-    svg.end();
-}
-
-fn limit_label(svg: &mut Svg, text: &str, x: f64, y: f64, size: f64, layout: &Layout) {
-    svg.text(&Text {
-        x,
-        y,
-        size,
-        anchor: Anchor::Start,
-        fill: INK,
-        muted: false,
-        halo: !layout.transparent,
-        class: "plot-limit",
-        pieces: &[(text, Weight::Regular)],
-    });
-}
-
-/// Whether neither a point nor the line passes through a frame.
-fn is_free(frame: &Frame, seen: &Seen, layout: &Layout, line: &Drawn) -> bool {
-    let r = radius(seen, layout.body);
-    let around = |x: f64, y: f64| Frame { left: x - r, top: y - r, right: x + r, bottom: y + r };
-    let a_point = seen
-        .marks
-        .iter()
-        .filter(|m| in_view(m, seen))
-        .any(|m| around(layout.x.at(m.pressure), layout.flow.at(m.flow)).meets(frame));
-    let the_line = line.reach.is_some_and(|(from, to)| {
-        (0..=BAND_STEPS).any(|i| {
-            let pressure = from + (to - from) * f64::from(i) / f64::from(BAND_STEPS);
-            around(layout.x.at(pressure), layout.flow.at(line.at(pressure))).meets(frame)
-        })
-    });
-    !a_point && !the_line
 }
 
 #[cfg(test)]

@@ -122,7 +122,7 @@ impl Layout {
         let left = edge + label_width.min(0.25 * width_px) + 0.7 * body;
 
         let x = Scale::new(seen.pressures.0, seen.pressures.1, left, right);
-        let ambient = seen.units.ambient();
+        let ambient = seen.shown.ambient();
         let gauge = Scale::new(seen.pressures.0 - ambient, seen.pressures.1 - ambient, left, right);
         let apart = |labels: &[(f64, String)]| {
             let widest = labels.iter().map(|(_, l)| width(l, tick_size(body), Weight::Regular));
@@ -243,7 +243,6 @@ impl Layout {
                 anchor,
                 fill: INK,
                 muted: false,
-                halo: false,
                 class: "plot-tick-label",
                 pieces: &[(text, Weight::Regular)],
             });
@@ -279,7 +278,6 @@ impl Layout {
                 anchor,
                 fill: INK,
                 muted: false,
-                halo: false,
                 class: "plot-axis-title",
                 pieces: &[(text, Weight::Regular)],
             });

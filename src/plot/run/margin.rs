@@ -24,7 +24,7 @@ const LEADING: f64 = 1.32;
 /// Room of a sign in the legend, in sizes of body text.
 const SIGN_ROOM: f64 = 2.7;
 /// The margin below takes at most this share of the height, if leaving something out achieves it.
-const MOST_BELOW: f64 = 0.32;
+const MOST_BELOW: f64 = 0.28;
 
 /// The margin with everything in it.
 pub(super) struct Margin {
@@ -135,7 +135,6 @@ impl Margin {
                 anchor: Anchor::Start,
                 fill: INK,
                 muted: weight == Weight::Regular,
-                halo: false,
                 class,
                 pieces: &[(content, weight)],
             });
@@ -161,7 +160,6 @@ impl Margin {
                 anchor: Anchor::Start,
                 fill: line.fill,
                 muted: line.muted,
-                halo: false,
                 class: line.class,
                 pieces: &pieces,
             });
@@ -309,7 +307,7 @@ impl Writer {
     fn beside(words: &Words, legend: &[Entry], body: f64, width: f64, room: f64, fullness: Fullness) -> Self {
         let mut w = Self::new(body, width);
         let fill = if words.bad { BRICK } else { INK };
-        w.line(words.verdict, 1.55 * body, fill, Weight::Bold, "plot-verdict");
+        w.line(&words.verdict, 1.55 * body, fill, Weight::Bold, "plot-verdict");
         w.space(0.15);
         w.paragraph(&words.why, body, false, fullness.reason_lines, "plot-why");
         w.space(1.0);
@@ -341,7 +339,12 @@ impl Writer {
     fn below(words: &Words, legend: &[Entry], body: f64, width: f64, fullness: Fullness) -> Self {
         let mut w = Self::new(body, width);
         w.verdict_row(words, fullness.reason_lines.min(3));
-        let mut result = format!("{}: {}, {}", words.flow_head, words.flow, words.flow_detail);
+        // The reason of a verdict mostly says the flow already.
+        let mut result = if words.why.contains(&words.flow) {
+            format!("Flow of {}", words.flow_detail)
+        } else {
+            format!("{}: {}, {}", words.flow_head, words.flow, words.flow_detail)
+        };
         if let Some(text) = &words.as_oxygen {
             result.push_str(&format!("; {text}"));
         }
@@ -373,7 +376,7 @@ impl Writer {
                     fill,
                     false,
                     "plot-verdict",
-                    vec![(words.verdict.to_owned(), Weight::Bold)],
+                    vec![(words.verdict.clone(), Weight::Bold)],
                 );
                 self.push(bold, y, self.body, INK, false, "plot-why", vec![(rest, Weight::Regular)]);
                 self.y += LEADING * size - 0.93 * size;

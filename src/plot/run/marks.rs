@@ -5,6 +5,7 @@
 //! outline, empty, with an upright cross when not choked and a slanting one when a person left it out.
 
 use super::seen::{Mark, Seen, Shape, Use};
+use crate::report::number::value_and_u;
 
 use super::super::ink::{INK, PAPER, SAND};
 use super::super::svg::{Path, Svg};
@@ -118,9 +119,7 @@ pub(super) fn arrow(tip: (f64, f64), (dx, dy): (f64, f64), size: f64) -> Path {
 
 /// What a point says when it is pointed at.
 pub(super) fn told(mark: &Mark, seen: &Seen) -> String {
-    use super::super::number::{decimals_for, fixed};
-    let units = &seen.units;
-    let shown = |value: f64, bar: f64| fixed(value, decimals_for(value, bar));
+    let units = &seen.shown.units;
     let how = match &mark.how {
         Use::InTheLine => String::new(),
         Use::NotChoked => "; not choked".to_owned(),
@@ -129,9 +128,9 @@ pub(super) fn told(mark: &Mark, seen: &Seen) -> String {
     format!(
         "point {}: {} {} absolute, {} {} STPD{how}",
         mark.index,
-        shown(mark.pressure, mark.pressure_bar),
-        units.pressure.symbol,
-        shown(mark.flow, mark.flow_bar),
-        units.flow.symbol,
+        value_and_u(mark.pressure, mark.pressure_bar).0,
+        units.pressure_symbol(),
+        value_and_u(mark.flow, mark.flow_bar).0,
+        units.flow_symbol(),
     )
 }

@@ -11,6 +11,7 @@ mod words;
 mod layout;
 mod marks;
 mod flow_panel;
+mod limits;
 mod residual_strip;
 mod margin;
 
@@ -18,6 +19,7 @@ use super::ink::PAPER;
 use super::svg::{Head, Svg};
 use crate::bench::Analysis;
 use crate::entry::Run;
+use crate::report::Units;
 use layout::Layout;
 use margin::Margin;
 use seen::Seen;
@@ -26,15 +28,6 @@ use words::Words;
 /// Smallest and largest width and height in pixels; beyond them the nearer end is taken.
 const WIDTH: (u32, u32) = (400, 8000);
 const HEIGHT: (u32, u32) = (320, 8000);
-
-/// A unit results are shown in.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub struct ShownUnit {
-    /// Its symbol.
-    pub symbol: &'static str,
-    /// SI units in one of it (Pa for a pressure, m³/s for a flow).
-    pub si: f64,
-}
 
 /// How a run is drawn.
 #[derive(Debug, Clone, PartialEq)]
@@ -47,10 +40,8 @@ pub struct RunPlot {
     pub id_prefix: String,
     /// Without the ground of paper.
     pub transparent: bool,
-    /// Unit of pressures.
-    pub pressure: ShownUnit,
-    /// Unit of flows.
-    pub flow: ShownUnit,
+    /// The units of pressures and flows.
+    pub units: Units,
 }
 
 /// Draws an analysed run as SVG text.
@@ -82,13 +73,6 @@ pub fn run_plot(run: &Run, analysis: &Analysis, options: &RunPlot) -> String {
     svg.finish()
 }
 
-impl ShownUnit {
-    /// bar.
-    pub const BAR: Self = Self { symbol: "bar", si: 1e5 };
-    /// Litres per minute.
-    pub const L_MIN: Self = Self { symbol: "L/min", si: 1e-3 / 60.0 };
-}
-
 impl Default for RunPlot {
     fn default() -> Self {
         Self {
@@ -96,8 +80,7 @@ impl Default for RunPlot {
             height: 720,
             id_prefix: "ebb".to_owned(),
             transparent: false,
-            pressure: ShownUnit::BAR,
-            flow: ShownUnit::L_MIN,
+            units: Units::default(),
         }
     }
 }
@@ -107,16 +90,12 @@ impl RunPlot {
         let id_prefix: String =
             self.id_prefix.chars().filter(|c| c.is_ascii_alphanumeric() || matches!(c, '-' | '_')).collect();
         let named = id_prefix.starts_with(|c: char| c.is_ascii_alphabetic());
-        let unit = |unit: ShownUnit, default: ShownUnit| {
-            if unit.si.is_finite() && unit.si > 0.0 { unit } else { default }
-        };
         Self {
             width: self.width.clamp(WIDTH.0, WIDTH.1),
             height: self.height.clamp(HEIGHT.0, HEIGHT.1),
             id_prefix: if named { id_prefix } else { "ebb".to_owned() },
             transparent: self.transparent,
-            pressure: unit(self.pressure, ShownUnit::BAR),
-            flow: unit(self.flow, ShownUnit::L_MIN),
+            units: self.units,
         }
     }
 }

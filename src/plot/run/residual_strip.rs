@@ -47,8 +47,8 @@ fn draw_band(svg: &mut Svg, seen: &Seen, analysis: &Analysis, layout: &Layout) {
     let edge: Option<Vec<(f64, f64)>> = (0..=BAND_STEPS)
         .map(|i| {
             let pressure = from + (to - from) * f64::from(i) / f64::from(BAND_STEPS);
-            let expanded = analysis.line.flow_at(pressure / seen.units.per_bar).expanded();
-            let expanded = expanded * seen.units.residual_per_l_min;
+            let expanded = analysis.line.flow_at(pressure / seen.shown.units.pressure(1.0)).expanded();
+            let expanded = expanded * seen.shown.residual_per_l_min;
             (expanded <= seen.residual_reach).then_some((pressure, expanded))
         })
         .collect();
@@ -172,7 +172,6 @@ fn draw_values_beyond(svg: &mut Svg, seen: &Seen, layout: &Layout) {
                 anchor: Anchor::Start,
                 fill: INK,
                 muted: false,
-                halo: false,
                 class: "plot-value-beyond",
                 pieces: &[(&text, Weight::Regular)],
             });

@@ -3,11 +3,13 @@
 //! Comes in: a run, its analysis, the units. Goes out: [`Seen`]: points, window and ranges as plain finite numbers.
 //! Equations: none but changes of unit. Left out: pixels.
 
-use super::{RunPlot, ShownUnit};
+use super::RunPlot;
 use crate::bench::convert::gas_ratio;
 use crate::bench::{Analysis, Point, WhyNot};
 use crate::entry::{Run, Sweep};
 use crate::quantity::AbsolutePressure;
+use crate::report::Units;
+use crate::report::number::value_and_u;
 
 /// Coverage factor of the bars: for the random part of one point, as the papers of instruments state theirs.
 pub(super) const BAR_COVERAGE: f64 = 2.0;
@@ -83,7 +85,7 @@ pub(super) struct Window {
 
 /// All of it.
 pub(super) struct Seen {
-    pub units: Units,
+    pub shown: Shown,
     pub marks: Vec<Mark>,
     pub nominal: Option<Nominal>,
     pub window: Option<Window>,
@@ -97,29 +99,26 @@ pub(super) struct Seen {
     pub residual_reach: f64,
 }
 
-/// Factors from the units of `bench` to the shown ones.
+/// How numbers of `bench` become shown ones.
 #[derive(Debug, Clone, Copy, PartialEq)]
-pub(super) struct Units {
-    pub pressure: ShownUnit,
-    pub flow: ShownUnit,
-    /// Shown pressure in one bar.
-    pub per_bar: f64,
-    /// Shown flow in one litre per minute.
-    pub per_l_min: f64,
+pub(super) struct Shown {
+    pub units: Units,
     pub residual: ResidualUnit,
     /// Shown residual in one litre per minute.
     pub residual_per_l_min: f64,
+    /// Decimals of flows as they are said: those of the flow at the nominal pressure with its uncertainty.
+    pub flow_decimals: i32,
 }
 
 impl Seen {
     pub(super) fn new(run: &Run, analysis: &Analysis, options: &RunPlot) -> Self {
-        let units = Units::new(analysis, options);
+        let shown = Shown::new(analysis, options);
         let slope = analysis.line.random.slope;
-        let marks: Vec<Mark> = analysis.points.iter().filter_map(|p| mark(p, slope, &units)).collect();
+        let marks: Vec<Mark> = analysis.points.iter().filter_map(|p| mark(p, slope, &shown)).collect();
         let used = || marks.iter().filter(|m| m.how == Use::InTheLine);
         let span = hull(used().map(|m| (m.pressure, 0.0))).unwrap_or((0.0, 0.0));
-        let nominal = nominal(analysis, &units);
-        let window = window(run, analysis, &units);
+        let nominal = nominal(analysis, &shown.units);
+        let window = window(run, analysis, &shown.units);
         let pressures = {
             let core = hull(
                 used().map(|m| (m.pressure, m.pressure_bar)).chain(nominal.iter().map(|n| (n.pressure, 0.0))),
@@ -138,9 +137,9 @@ impl Seen {
         };
         let residual_reach = used().map(|m| m.residual.abs() + m.residual_bar).fold(0.0, f64::max);
         // Residuals that are nothing but rounding are not blown up to the height of the strip.
-        let least = units.least_residual();
+        let least = shown.least_residual();
         let residual_reach = if residual_reach > 1e-3 * least { 1.08 * residual_reach } else { least };
-        Self { units, marks, nominal, window, span, pressures, flows, residual_reach }
+        Self { shown, marks, nominal, window, span, pressures, flows, residual_reach }
     }
 
     /// Whether the window is near enough the points to be drawn.
@@ -149,52 +148,48 @@ impl Seen {
     }
 }
 
-impl Units {
+impl Shown {
     fn new(analysis: &Analysis, options: &RunPlot) -> Self {
-        let per_l_min = ShownUnit::L_MIN.si / options.flow.si;
-        let nominal = analysis.nominal.flow.flow_l_min;
-        let (residual, residual_per_l_min) = if nominal.is_finite() && nominal > 1e-9 {
-            (ResidualUnit::Percent, 100.0 / nominal)
+        let units = options.units;
+        let at = &analysis.nominal.flow;
+        let (residual, residual_per_l_min) = if at.flow_l_min.is_finite() && at.flow_l_min > 1e-9 {
+            (ResidualUnit::Percent, 100.0 / at.flow_l_min)
         } else {
-            (ResidualUnit::Flow, per_l_min)
+            (ResidualUnit::Flow, units.flow(1.0))
         };
-        Self {
-            pressure: options.pressure,
-            flow: options.flow,
-            per_bar: ShownUnit::BAR.si / options.pressure.si,
-            per_l_min,
-            residual,
-            residual_per_l_min,
-        }
+        let (value, _) = value_and_u(units.flow(at.flow_l_min), units.flow(at.expanded()));
+        let decimals = value.split_once('.').map_or(0, |(_, decimals)| decimals.len());
+        Self { units, residual, residual_per_l_min, flow_decimals: decimals as i32 }
     }
 
     /// The standard atmosphere: what the gauge axis is below the absolute one.
     pub(super) fn ambient(&self) -> f64 {
-        AbsolutePressure::STANDARD_ATMOSPHERE.as_pa() / self.pressure.si
+        self.units.pressure(AbsolutePressure::STANDARD_ATMOSPHERE.as_bar())
     }
 
     /// Half the height of a strip whose residuals are all nought.
     fn least_residual(&self) -> f64 {
         match self.residual {
             ResidualUnit::Percent => 0.1,
-            ResidualUnit::Flow => 1e-3 * self.per_l_min,
+            ResidualUnit::Flow => self.units.flow(1e-3),
         }
     }
 }
 
-fn mark(p: &Point, slope: f64, units: &Units) -> Option<Mark> {
-    let bar = |u: f64, factor: f64| {
-        let bar = BAR_COVERAGE * u.abs() * factor;
+fn mark(p: &Point, slope: f64, shown: &Shown) -> Option<Mark> {
+    let units = &shown.units;
+    let bar = |u: f64| {
+        let bar = BAR_COVERAGE * u.abs();
         if bar.is_finite() { bar } else { 0.0 }
     };
     let mark = Mark {
         index: p.index,
-        pressure: p.pressure_bar_abs * units.per_bar,
-        pressure_bar: bar(p.pressure_u, units.per_bar),
-        flow: p.flow_l_min * units.per_l_min,
-        flow_bar: bar(p.flow_u, units.per_l_min),
-        residual: p.residual_l_min * units.residual_per_l_min,
-        residual_bar: bar(p.combined_u(slope), units.residual_per_l_min),
+        pressure: units.pressure(p.pressure_bar_abs),
+        pressure_bar: bar(units.pressure(p.pressure_u)),
+        flow: units.flow(p.flow_l_min),
+        flow_bar: bar(units.flow(p.flow_u)),
+        residual: p.residual_l_min * shown.residual_per_l_min,
+        residual_bar: bar(p.combined_u(slope) * shown.residual_per_l_min),
         shape: match p.sweep {
             Some(Sweep::Rising) => Shape::Rising,
             Some(Sweep::Falling) => Shape::Falling,
@@ -212,10 +207,10 @@ fn mark(p: &Point, slope: f64, units: &Units) -> Option<Mark> {
 fn nominal(analysis: &Analysis, units: &Units) -> Option<Nominal> {
     let at = &analysis.nominal;
     let nominal = Nominal {
-        pressure: at.flow.p1_bar * units.per_bar,
-        ip: at.ip.as_pa() / units.pressure.si,
-        flow: at.flow.flow_l_min * units.per_l_min,
-        expanded: at.flow.expanded() * units.per_l_min,
+        pressure: units.pressure(at.flow.p1_bar),
+        ip: units.pressure(at.ip.as_bar()),
+        flow: units.flow(at.flow.flow_l_min),
+        expanded: units.flow(at.flow.expanded()),
         coverage_factor: at.flow.coverage_factor,
     };
     [nominal.pressure, nominal.ip, nominal.flow, nominal.expanded]
@@ -231,7 +226,7 @@ fn window(run: &Run, analysis: &Analysis, units: &Units) -> Option<Window> {
     let at = &analysis.nominal.flow;
     let converted = acceptance.gas.is_some_and(|gas| gas != run.gas);
     let ratio = acceptance.gas.map_or(1.0, |gas| gas_ratio(run.gas, gas, at.p1_bar, at.flow_l_min).value);
-    let shown = |l_min: f64| l_min / ratio * units.per_l_min;
+    let shown = |l_min: f64| units.flow(l_min / ratio);
     let window =
         Window { low: shown(low), nominal: shown(acceptance.flow.as_l_min()), high: shown(high), converted };
     ([window.low, window.nominal, window.high].iter().all(|x| drawable(*x)) && window.low <= window.high)

@@ -1,18 +1,19 @@
 //! What the plate says in words and numbers.
 //!
 //! Comes in: a run, its analysis, and what is drawn. Goes out: [`Words`], each already cleaned of what cannot be
-//! drawn. Values are rounded to two digits of their expanded uncertainty. Left out: the sentences of the checks and
-//! warnings, which are the report's.
+//! drawn. The verdict with its reason is the report's sentence, and values are rounded as the report does it, so
+//! that sheet and plate say the same. Left out: the sentences of checks and warnings.
 
 use super::seen::{ResidualUnit, Seen, Use};
-use crate::bench::checks::CheckKind;
 use crate::bench::choke::Origin;
 use crate::bench::line::FlowAt;
-use crate::bench::{Analysis, Judgement, Verdict};
-use crate::entry::{Rule, Run, Tolerance};
+use crate::bench::{Analysis, Verdict};
+use crate::entry::{Run, Tolerance};
+use crate::report::bench_fit::{Fitted, verdict_line};
+use crate::report::number::{figures, fixed, value_and_u};
 
 use super::super::letters::clean;
-use super::super::number::{decimals_for, fixed, short};
+use super::super::number::short;
 
 /// All texts of the plate but tick labels and legend.
 pub(super) struct Words {
@@ -21,7 +22,7 @@ pub(super) struct Words {
     pub description: String,
     pub orifice: String,
     pub about: String,
-    pub verdict: &'static str,
+    pub verdict: String,
     /// Whether the verdict is one to be afraid of.
     pub bad: bool,
     pub why: String,
@@ -32,6 +33,7 @@ pub(super) struct Words {
     pub choke: String,
     pub choke_detail: String,
     pub acceptance: Option<String>,
+    /// Titles of axes: in full, and for where that has no room.
     pub flow_axis: [String; 2],
     pub pressure_axis: [String; 2],
     pub gauge_axis: [String; 2],
@@ -42,30 +44,29 @@ pub(super) struct Words {
 
 impl Words {
     pub(super) fn new(run: &Run, analysis: &Analysis, seen: &Seen) -> Self {
-        let (pressure, flow_unit) = (seen.units.pressure.symbol, seen.units.flow.symbol);
+        let units = &seen.shown.units;
+        let (pressure, flow_unit) = (units.pressure_symbol(), units.flow_symbol());
         let gas = run.gas.name();
         let orifice = clean(run.orifice.as_str());
         let ip = ip(seen);
-        let flow = with_uncertainty(&analysis.nominal.flow, seen);
-        let (verdict, bad, why) = verdict(run, analysis.judgement.as_ref(), seen);
+        let (verdict, why) = verdict(run, analysis, seen);
         let (choke, choke_detail) = choke(analysis);
-        let ambient =
-            fixed(seen.units.ambient(), decimals_for(seen.units.ambient(), 1e-4 * seen.units.ambient()));
+        let ambient = figures(seen.shown.ambient(), 6);
         Self {
             title: format!("Orifice {orifice}: flow of {gas} against upstream pressure"),
-            description: describe(run, analysis, seen, &flow, verdict),
+            description: describe(run, analysis, seen, &verdict),
             about: about(run),
+            bad: analysis.judgement.as_ref().is_some_and(|j| j.verdict == Verdict::Fail),
             verdict,
-            bad,
             why,
             flow_head: format!("Flow at {ip}"),
-            flow_detail: format!("{gas} STPD, 95\u{a0}%, k\u{a0}=\u{a0}{}", coverage(seen)),
+            flow: kept_together(&with_uncertainty(&analysis.nominal.flow, seen)),
+            flow_detail: kept_together(&format!("{gas} STPD, 95 %, k = {}", coverage(seen))),
             as_oxygen: analysis
                 .nominal
                 .as_oxygen
                 .as_ref()
-                .map(|o| format!("{}\u{a0}{flow_unit} as oxygen", with_uncertainty(o, seen))),
-            flow: format!("{flow}\u{a0}{flow_unit}"),
+                .map(|o| kept_together(&format!("{} as oxygen", with_uncertainty(o, seen)))),
             choke,
             choke_detail,
             acceptance: acceptance(run, seen),
@@ -78,21 +79,22 @@ impl Words {
                 format!("intermediate pressure (IP), {pressure} gauge at {ambient} {pressure} ambient"),
                 format!("IP, {pressure} gauge at {ambient} {pressure}"),
             ],
-            residual_axis: match seen.units.residual {
-                ResidualUnit::Percent => {
-                    [format!("residual (flow less line), % of the flow at {ip}"), "residual (flow less line), %".to_owned()]
-                }
-                ResidualUnit::Flow => [
-                    format!("residual (flow less line), {flow_unit} STPD"),
-                    format!("residual, {flow_unit}"),
+            residual_axis: match seen.shown.residual {
+                ResidualUnit::Percent => [
+                    format!("residual (flow less line), % of the flow at {ip}"),
+                    "residual (flow less line), %".to_owned(),
                 ],
+                ResidualUnit::Flow => {
+                    [format!("residual (flow less line), {flow_unit} STPD"), format!("residual, {flow_unit}")]
+                }
             },
             notes: [
-                "Bars, where the signs do not hide them: expanded uncertainty of the random part, k\u{a0}=\u{a0}2; \
-                 below, of both axes together. Band: random and common parts, 95\u{a0}%. Gas at 20\u{a0}°C; litres \
-                 at 0\u{a0}°C, 101.325\u{a0}kPa, dry."
-                    .to_owned(),
-                "Bars: random part, k\u{a0}=\u{a0}2. Band: all parts, 95\u{a0}%.".to_owned(),
+                kept_together(
+                    "Bars, where the signs do not hide them: expanded uncertainty of the random part, k = 2; below, \
+                     of both axes together. Band: random and common parts, 95 %. Gas at 20 °C; litres at 0 °C, \
+                     101.325 kPa, dry.",
+                ),
+                kept_together("Bars: random part, k = 2. Band: all parts, 95 %."),
             ],
             orifice,
         }
@@ -102,173 +104,107 @@ impl Words {
 /// The nominal pressure, as "10 bar gauge".
 pub(super) fn ip(seen: &Seen) -> String {
     let value = seen.nominal.map_or("?".to_owned(), |n| short(n.ip));
-    format!("{value}\u{a0}{} gauge", seen.units.pressure.symbol)
+    format!("{value}\u{a0}{} gauge", seen.shown.units.pressure_symbol())
+}
+
+/// A text whose numbers are not parted from their units at the end of a line.
+fn kept_together(text: &str) -> String {
+    const INSEPARABLE: [&str; 11] =
+        [" %", " ± ", " = ", " °C", " kPa", " L/min", " mL/min", " L/h", " bar", " psi", " ft³/h"];
+    INSEPARABLE.iter().fold(text.to_owned(), |text, part| text.replace(part, &part.replace(' ', "\u{a0}")))
 }
 
 fn coverage(seen: &Seen) -> String {
     seen.nominal.map_or("?".to_owned(), |n| fixed(n.coverage_factor, 2))
 }
 
-/// "0.4831 ± 0.0049" in the shown unit, without it.
+/// "0.4831 ± 0.0049 L/min".
 fn with_uncertainty(flow: &FlowAt, seen: &Seen) -> String {
-    let (value, expanded) = (flow.flow_l_min * seen.units.per_l_min, flow.expanded() * seen.units.per_l_min);
-    if !value.is_finite() {
-        return "not known".to_owned();
-    }
-    let decimals = decimals_for(value, expanded);
-    if expanded.is_finite() {
-        format!("{}\u{a0}±\u{a0}{}", fixed(value, decimals), fixed(expanded, decimals))
+    let units = &seen.shown.units;
+    let (value, expanded) = value_and_u(units.flow(flow.flow_l_min), units.flow(flow.expanded()));
+    if expanded.is_empty() {
+        format!("{value} {}", units.flow_symbol())
     } else {
-        format!("{}, uncertainty not known", fixed(value, decimals))
+        format!("{value} ± {expanded} {}", units.flow_symbol())
     }
 }
 
 fn about(run: &Run) -> String {
-    let mut parts = vec![
-        run.gas.name().to_owned(),
-        run.purpose.name().to_owned(),
-        run.taken.format("%Y-%m-%d").to_string(),
-    ];
+    let date = run.taken.format("%Y-%m-%d").to_string();
+    let mut parts = vec![run.gas.name().to_owned(), run.purpose.name().to_owned(), date];
     parts.extend(run.technician.iter().map(|t| clean(t).trim().to_owned()).filter(|t| !t.is_empty()));
     parts.join(" · ")
 }
 
-fn verdict(run: &Run, judgement: Option<&Judgement>, seen: &Seen) -> (&'static str, bool, String) {
-    let Some(j) = judgement else {
-        return ("Not judged", false, "The run names no acceptance".to_owned());
-    };
-    let flow = seen.units.flow.symbol;
-    let limit = |l_min: f64| short(l_min * seen.units.per_l_min);
-    let gas = run.acceptance.as_ref().and_then(|a| a.gas).filter(|gas| *gas != run.gas);
-    let limits = match gas {
-        Some(gas) => {
-            format!(
-                "{} to {}\u{a0}{flow} of {}",
-                limit(j.limits_l_min.0),
-                limit(j.limits_l_min.1),
-                gas.name()
-            )
-        }
-        None => format!("{} to {}\u{a0}{flow}", limit(j.limits_l_min.0), limit(j.limits_l_min.1)),
-    };
-    let chance = format!("probability of conformity {}", probability(j.probability));
-    let failed: Vec<&str> = j.failed_checks.iter().map(|k| check_name(*k)).collect();
-    let does_not_hold = || format!("Does not hold: {}", failed.join(", "));
-    let guarded = run.acceptance.as_ref().is_some_and(|a| a.rule == Rule::Guarded);
-    let by_flow = match (j.by_flow, guarded) {
-        (Verdict::Pass, true) => format!("Flow with its uncertainty within {limits}"),
-        (Verdict::Pass, false) => format!("Flow within {limits}"),
-        (Verdict::Fail, true) => format!("Flow with its uncertainty outside {limits}"),
-        (Verdict::Fail, false) => format!("Flow outside {limits}"),
-        (Verdict::Undecided | Verdict::None, _) => {
-            format!("A limit of {limits} lies within the uncertainty of the flow")
-        }
-    };
-    let why = if failed.is_empty() {
-        format!("{by_flow}; {chance}")
-    } else if j.by_flow == Verdict::Pass {
-        format!("{}. {by_flow}", does_not_hold())
-    } else {
-        format!("{by_flow}; {chance}. {}", does_not_hold())
-    };
-    match j.verdict {
-        Verdict::Pass => ("Pass", false, why),
-        Verdict::Fail => ("Fail", true, why),
-        Verdict::Undecided => ("Undecided", false, why),
-        Verdict::None => ("Not judged", false, "Nothing to judge by".to_owned()),
-    }
+/// The report's verdict, as its word and its reason.
+fn verdict(run: &Run, analysis: &Analysis, seen: &Seen) -> (String, String) {
+    let fitted = Fitted { run, analysis, monte_carlo: None, low_points: None, notes: &[] };
+    let line = clean(&verdict_line(&fitted, &seen.shown.units));
+    let (word, why) = line.split_once(": ").unwrap_or((&line, ""));
+    (as_in_a_sentence(&word.to_lowercase()), kept_together(&as_in_a_sentence(why)))
 }
 
-fn probability(p: f64) -> String {
-    match p {
-        p if !p.is_finite() => "not known".to_owned(),
-        p if p >= 0.995 => "over 99\u{a0}%".to_owned(),
-        p if p < 0.005 => "under 1\u{a0}%".to_owned(),
-        p => format!("{}\u{a0}%", fixed(100.0 * p, 0)),
-    }
-}
-
-fn check_name(kind: CheckKind) -> &'static str {
-    match kind {
-        CheckKind::Choked => "choked",
-        CheckKind::Straight => "straight",
-        CheckKind::Hysteresis => "rising = falling",
-        CheckKind::Repeatable => "repeatable",
-        CheckKind::Steady => "steady",
-        CheckKind::ThroughZero => "through zero",
-        CheckKind::Outlier => "outlier",
-        CheckKind::SameAsBefore => "same as last time",
-        CheckKind::Instruments => "instruments",
-    }
+/// With a capital at its beginning.
+fn as_in_a_sentence(text: &str) -> String {
+    let mut letters = text.chars();
+    letters.next().map_or(String::new(), |first| first.to_uppercase().chain(letters).collect())
 }
 
 /// The choke ratio's value, and how it is known.
 fn choke(analysis: &Analysis) -> (String, String) {
     let choke = &analysis.choke;
     let (low, high) = choke.interval_95;
-    if ![choke.value, low, high].iter().all(|x| x.is_finite()) {
-        return ("not known".to_owned(), "no interval".to_owned());
-    }
-    let decimals = decimals_for(choke.value, (high - low) / 2.0).clamp(2, 3);
-    let interval = format!("{} to {}", fixed(low, decimals), fixed(high, decimals));
+    let interval = |decimals| format!("{} to {}", fixed(low, decimals), fixed(high, decimals));
     match choke.origin {
-        Origin::Measured => (fixed(choke.value, decimals), format!("95\u{a0}%: {interval}, measured")),
-        Origin::Bounded => (interval, "95\u{a0}%, bounded, not measured".to_owned()),
+        Origin::Measured => {
+            let (value, _) = value_and_u(choke.value, choke.standard_uncertainty);
+            let decimals = value.split_once('.').map_or(0, |(_, decimals)| decimals.len()).clamp(2, 3) as i32;
+            let known = kept_together(&format!("measured, 95 %: {}", interval(decimals)));
+            (fixed(choke.value, decimals), known)
+        }
+        Origin::Bounded => (interval(2), kept_together("only bounded, 95 %")),
     }
 }
 
 fn acceptance(run: &Run, seen: &Seen) -> Option<String> {
     let a = run.acceptance.as_ref()?;
     let window = seen.window?;
-    let flow = seen.units.flow.symbol;
+    let units = &seen.shown.units;
+    let flow = units.flow_symbol();
     let tolerance = match a.tolerance {
-        Tolerance::Relative(share) => format!("{}\u{a0}%", short(100.0 * share)),
-        Tolerance::Flow(q) => format!("{}\u{a0}{flow}", short(q.as_l_min() * seen.units.per_l_min)),
+        Tolerance::Relative(share) => format!("{} %", short(100.0 * share)),
+        Tolerance::Flow(q) => format!("{} {flow}", short(units.flow(q.as_l_min()))),
     };
-    let nominal = short(a.flow.as_l_min() * seen.units.per_l_min);
-    Some(match a.gas {
+    let nominal = short(units.flow(a.flow.as_l_min()));
+    Some(kept_together(&match a.gas {
         Some(gas) if window.converted => {
-            format!(
-                "acceptance: {nominal}\u{a0}{flow} of {} ±\u{a0}{tolerance}, as {}",
-                gas.name(),
-                run.gas.name()
-            )
+            format!("acceptance: {nominal} {flow} of {} ± {tolerance}, as {}", gas.name(), run.gas.name())
         }
-        _ => format!("acceptance: {nominal}\u{a0}{flow} ±\u{a0}{tolerance}"),
-    })
+        _ => format!("acceptance: {nominal} {flow} ± {tolerance}"),
+    }))
 }
 
 /// The result in sentences, for readers who do not see the picture.
-fn describe(run: &Run, analysis: &Analysis, seen: &Seen, flow: &str, verdict: &str) -> String {
-    let units = &seen.units;
-    let (pressure, flow_unit) = (units.pressure.symbol, units.flow.symbol);
+fn describe(run: &Run, analysis: &Analysis, seen: &Seen, verdict: &str) -> String {
+    let units = &seen.shown.units;
+    let (pressure, flow) = (units.pressure_symbol(), units.flow_symbol());
     let used = seen.marks.iter().filter(|m| m.how == Use::InTheLine).count();
     let total = analysis.line.total();
-    let slope = total.slope * units.per_l_min / units.per_bar;
-    let slope_u = total.slope_u * units.per_l_min / units.per_bar;
-    let intercept = total.intercept * units.per_l_min;
-    let intercept_u = total.intercept_u * units.per_l_min;
-    let known = |value: f64, u: f64| {
-        if value.is_finite() && u.is_finite() {
-            let decimals = decimals_for(value, u);
-            format!("{} (standard uncertainty {})", fixed(value, decimals), fixed(u, decimals))
-        } else {
-            "not known".to_owned()
-        }
-    };
+    let (slope, slope_u) = value_and_u(units.slope(total.slope), units.slope(total.slope_u));
+    let (intercept, intercept_u) = value_and_u(units.flow(total.intercept), units.flow(total.intercept_u));
     let mut text = format!(
-        "Orifice {}, {}, {used} points. Line: slope {} {flow_unit} STPD per {pressure}, intercept {} {flow_unit} at \
-         0 {pressure} absolute. Flow at {}: {flow} {flow_unit} STPD (95 %, k = {}). Verdict: {}.",
+        "Orifice {}, {}, {used} points in the line. Flow at {}: {} STPD (95 %, k = {}). Verdict: {}. Line: slope \
+         {slope} {flow} per {pressure} (standard uncertainty {slope_u}), intercept {intercept} {flow} at 0 {pressure} \
+         absolute (standard uncertainty {intercept_u}).",
         clean(run.orifice.as_str()),
         run.gas.name(),
-        known(slope, slope_u),
-        known(intercept, intercept_u),
         ip(seen),
+        with_uncertainty(&analysis.nominal.flow, seen),
         coverage(seen),
         verdict.to_lowercase(),
     );
     let not_choked = seen.marks.iter().filter(|m| m.how == Use::NotChoked).count();
-    let reasons: Vec<String> = seen
+    let left_out: Vec<String> = seen
         .marks
         .iter()
         .filter_map(|m| match &m.how {
@@ -276,16 +212,14 @@ fn describe(run: &Run, analysis: &Analysis, seen: &Seen, flow: &str, verdict: &s
             _ => None,
         })
         .collect();
-    match (not_choked, reasons.len()) {
-        (0, 0) => text.push_str(" No point is left out."),
-        _ => {
-            if not_choked > 0 {
-                text.push_str(&format!(" Not in the line because not choked: {not_choked}."));
-            }
-            if !reasons.is_empty() {
-                text.push_str(&format!(" Left out by a person: {}.", reasons.join(", ")));
-            }
-        }
+    if not_choked > 0 {
+        text.push_str(&format!(" Not in the line because not choked: {not_choked}."));
+    }
+    if !left_out.is_empty() {
+        text.push_str(&format!(" Left out by a person: {}.", left_out.join(", ")));
+    }
+    if not_choked == 0 && left_out.is_empty() {
+        text.push_str(" No point is left out.");
     }
     text
 }
