@@ -8,7 +8,7 @@ use crate::bench::advice::{LowPoints, low_points};
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS, MonteCarlo, monte_carlo};
 use crate::bench::{Analysis, FEWEST_POINTS, Questions, Verdict, analyse};
 use crate::entry::{PointReading, Readings, Run, SeriesReadings};
-use crate::plot::{RunPlot, ShownUnit, run_plot};
+use crate::plot::{RunPlot, run_plot};
 use crate::quantity::{AbsolutePressure, GaugePressure, PressureDifference, StpdFlow, Uncertain};
 use crate::record::read_run;
 use crate::report::Units;
@@ -171,12 +171,7 @@ fn plot_kind(path: &Path) -> Result<PlotKind, WorkError> {
 }
 
 fn draw(run: &Run, analysis: &Analysis, units: &Units, kind: PlotKind, path: &Path) -> Result<(), WorkError> {
-    let options = RunPlot {
-        pressure: ShownUnit { symbol: units.pressure_symbol(), si: units.pressure_pa() },
-        flow: ShownUnit { symbol: units.flow_symbol(), si: units.flow_m3_s() },
-        ..RunPlot::default()
-    };
-    let svg = run_plot(run, analysis, &options);
+    let svg = run_plot(run, analysis, &RunPlot { units: *units, ..RunPlot::default() });
     match kind {
         PlotKind::Svg => write_whole(path, svg.as_bytes()),
         PlotKind::Png => write_whole(path, &png::render(&svg, 2.0)?),

@@ -123,6 +123,7 @@ impl Made {
                     pressure_scatter: None,
                     flow_scatter: None,
                     averaged: 1.0,
+                    timed: None,
                     temperature: Some(Temperature::from_k(293.15 + 0.02 * i as f64)),
                     barometer: None,
                     meter_temperature: None,
