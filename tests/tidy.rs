@@ -157,23 +157,31 @@ fn impurities(file: &RoomFile) -> Vec<String> {
         match segments.as_slice() {
             ["std", "fs" | "net" | "env" | "process" | "io" | "os" | "path", ..] => true,
             ["std", "time", item, ..] => *item != "Duration",
-            ["rand", ..] | ["getrandom", ..] | [.., "from_os_rng" | "from_entropy" | "thread_rng" | "OsRng"] => true,
+            ["rand", ..]
+            | ["getrandom", ..]
+            | [.., "from_os_rng" | "from_entropy" | "thread_rng" | "OsRng"] => true,
             _ => false,
         }
     };
     let names = file.working_names().filter(impure);
-    names.map(|n| format!("{}: {} in the pure room {}", file.at(n), n.segments.join("::"), file.room)).collect()
+    names
+        .map(|n| format!("{}: {} in the pure room {}", file.at(n), n.segments.join("::"), file.room))
+        .collect()
 }
 
 /// Only `cli` speaks to the terminal; only `clock` asks for the time.
 fn out_of_place(file: &RoomFile) -> Vec<String> {
     let wrong = |named: &&Named| match named.segments.last().map(String::as_str) {
-        Some("println" | "print" | "eprintln" | "eprint" | "stdout" | "stderr" | "stdin") => file.room != "cli",
+        Some("println" | "print" | "eprintln" | "eprint" | "stdout" | "stderr" | "stdin") => {
+            file.room != "cli"
+        }
         Some("now") => file.room != "clock",
         _ => false,
     };
     let names = file.working_names().filter(wrong);
-    names.map(|n| format!("{}: {} does not belong into {}", file.at(n), n.segments.join("::"), file.room)).collect()
+    names
+        .map(|n| format!("{}: {} does not belong into {}", file.at(n), n.segments.join("::"), file.room))
+        .collect()
 }
 
 #[test]
@@ -197,7 +205,8 @@ fn only_cli_speaks_to_the_terminal_and_only_clock_asks_for_the_time() {
 #[test]
 fn the_library_declares_its_rooms_in_reading_order() {
     let declared = Source::of(&text_of("src/lib.rs")).modules;
-    let built: Vec<&str> = ROOMS.iter().map(|room| room.name).filter(|r| declared.iter().any(|d| d == r)).collect();
+    let built: Vec<&str> =
+        ROOMS.iter().map(|room| room.name).filter(|r| declared.iter().any(|d| d == r)).collect();
     assert_eq!(declared, built);
 }
 
@@ -241,7 +250,10 @@ fn a_forbidden_arrow_is_found_however_it_is_written() {
 fn an_allowed_arrow_and_a_mere_mention_are_not() {
     for (path, text) in [
         ("src/gas/orifice.rs", "use crate::quantity::{Length, text};"),
-        ("src/gas/orifice.rs", "use super::{Species, water};\nmod tests { use super::*; use super::super::Species; }"),
+        (
+            "src/gas/orifice.rs",
+            "use super::{Species, water};\nmod tests { use super::*; use super::super::Species; }",
+        ),
         ("src/gas/orifice.rs", "//! See [`crate::bench`].\n/* use crate::bench; /* crate::cli */ */"),
         ("src/gas/orifice.rs", "const A: &str = \"crate::bench\"; const B: &str = r#\"\"crate::bench\"#;"),
         ("src/gas/orifice.rs", "fn f<'a>(x: &'a str) -> (char, char) { ('\"', '\\'') } // crate::bench"),
@@ -266,14 +278,18 @@ fn an_impure_line_is_found_outside_tests_alone() {
         assert_eq!(about(impurities, "src/bench/mod.rs", text), 1, "{text}");
         assert_eq!(about(impurities, "src/work/mod.rs", text), 0, "{text}");
     }
-    for text in ["use std::time::Duration;", "#[cfg(test)]\nmod tests { use std::fs; }", "use std::fmt::Write as _;"] {
+    for text in
+        ["use std::time::Duration;", "#[cfg(test)]\nmod tests { use std::fs; }", "use std::fmt::Write as _;"]
+    {
         assert_eq!(about(impurities, "src/bench/mod.rs", text), 0, "{text}");
     }
 }
 
 #[test]
 fn a_word_to_the_terminal_or_to_the_clock_is_found() {
-    for text in ["fn f() { println!(\"x\"); }", "fn f() { std::io::stderr(); }", "fn f() { io::stdout().lock(); }"] {
+    for text in
+        ["fn f() { println!(\"x\"); }", "fn f() { std::io::stderr(); }", "fn f() { io::stdout().lock(); }"]
+    {
         assert_eq!(about(out_of_place, "src/work/mod.rs", text), 1, "{text}");
         assert_eq!(about(out_of_place, "src/cli/mod.rs", text), 0, "{text}");
     }
@@ -281,7 +297,10 @@ fn a_word_to_the_terminal_or_to_the_clock_is_found() {
         assert_eq!(about(out_of_place, "src/cli/mod.rs", text), 1, "{text}");
         assert_eq!(about(out_of_place, "src/clock/mod.rs", text), 0, "{text}");
     }
-    assert_eq!(about(out_of_place, "src/work/mod.rs", "#[cfg(test)] mod tests { fn t() { print!(\"x\"); } }"), 0);
+    assert_eq!(
+        about(out_of_place, "src/work/mod.rs", "#[cfg(test)] mod tests { fn t() { print!(\"x\"); } }"),
+        0
+    );
 }
 
 // ---- habits of the tree ----
@@ -304,12 +323,16 @@ fn unfinished_or_local(text: &str) -> Vec<String> {
         for folder in folders {
             let path = format!("/{folder}");
             // The folder of a machine starts a path; `src/work` does not.
-            bad.extend(line.match_indices(&path).filter(|(i, _)| {
-                let before = line[..*i].chars().next_back();
-                let after = line[i + path.len()..].chars().next();
-                !before.is_some_and(|c| c.is_alphanumeric() || "._-~/}{)$".contains(c))
-                    && after.is_none_or(|c| c == '/' || !(c.is_alphanumeric() || "_-.".contains(c)))
-            }).map(|(_, found)| found.to_owned()));
+            bad.extend(
+                line.match_indices(&path)
+                    .filter(|(i, _)| {
+                        let before = line[..*i].chars().next_back();
+                        let after = line[i + path.len()..].chars().next();
+                        !before.is_some_and(|c| c.is_alphanumeric() || "._-~/}{)$".contains(c))
+                            && after.is_none_or(|c| c == '/' || !(c.is_alphanumeric() || "_-.".contains(c)))
+                    })
+                    .map(|(_, found)| found.to_owned()),
+            );
         }
         complaints.extend(bad.into_iter().map(|what| format!("line {}: {what}", number + 1)));
     }
@@ -326,7 +349,11 @@ fn nothing_is_unfinished_and_no_path_of_a_machine_is_named() {
     }
     none(&complaints);
     let slash = "/";
-    for line in [format!("cd {slash}work && ls"), format!("\"{slash}home/ada/x\""), format!("// {}: later", concat!("TO", "DO"))] {
+    for line in [
+        format!("cd {slash}work && ls"),
+        format!("\"{slash}home/ada/x\""),
+        format!("// {}: later", concat!("TO", "DO")),
+    ] {
         assert_eq!(unfinished_or_local(&line).len(), 1, "{line}");
     }
     assert!(unfinished_or_local("src/work/fit.rs, /working, https://example.org/home, bar/home").is_empty());
@@ -337,7 +364,8 @@ fn no_source_is_longer_than_one_subject_needs() {
     let mut complaints = Vec::new();
     for path in files_below("src").into_iter().chain(files_below("tests")).filter(|p| p.ends_with(".rs")) {
         let lines = text_of(&path).lines().count();
-        let most = LONGER.iter().find(|(longer, _, _)| *longer == path).map_or(MOST_LINES, |(_, most, _)| *most);
+        let most =
+            LONGER.iter().find(|(longer, _, _)| *longer == path).map_or(MOST_LINES, |(_, most, _)| *most);
         if lines > most {
             complaints.push(format!("{path}: {lines} lines, at most {most}"));
         }
@@ -362,7 +390,9 @@ fn says_its_source(path: &str, text: &str) -> bool {
         let document = source.and_then(|s| s.get("document")).and_then(toml::Value::as_str);
         return document.is_some_and(|d| !d.is_empty());
     }
-    text.lines().take_while(|l| l.starts_with('#')).any(|l| l.strip_prefix("# source: ").is_some_and(|s| s.len() > 10))
+    text.lines()
+        .take_while(|l| l.starts_with('#'))
+        .any(|l| l.strip_prefix("# source: ").is_some_and(|s| s.len() > 10))
 }
 
 #[test]
@@ -391,3 +421,43 @@ fn continuous_integration_runs_the_command_of_the_readme() {
     assert!(text_of(".ci/run").lines().any(|line| line.trim() == "cargo test"));
 }
 
+/// The verbs that do something, with the ones they stand under: `bench fit`.
+fn verbs(command: &clap::Command, before: &str) -> Vec<String> {
+    let mut found = Vec::new();
+    for verb in command.get_subcommands().filter(|verb| verb.get_name() != "help") {
+        let name = format!("{before}{}", verb.get_name());
+        if verb.has_subcommands() {
+            found.extend(verbs(verb, &format!("{name} ")));
+        } else {
+            found.push(name);
+        }
+    }
+    found
+}
+
+/// The verbs in the table under "Commands": in the first cell, the words before an argument or an option.
+fn verbs_of_readme(readme: &str) -> Vec<String> {
+    let rows =
+        readme.lines().skip_while(|l| *l != "## Commands").skip(1).take_while(|l| !l.starts_with("## "));
+    let cells = rows.filter_map(|row| row.strip_prefix("| `")?.split_once('`').map(|(cell, _)| cell));
+    let is_word = |w: &&str| w.chars().all(|c| c.is_lowercase() || c == '-') && !w.starts_with('-');
+    let verbs = cells.map(|cell| cell.split(' ').take_while(is_word).collect::<Vec<_>>().join(" "));
+    // The table of options beside it has no word before its dash.
+    verbs.filter(|verb| !verb.is_empty()).collect()
+}
+
+#[test]
+fn the_readme_lists_the_verbs_there_are() {
+    use clap::CommandFactory as _;
+    let mut there = verbs(&ebbline::cli::arguments::Arguments::command(), "");
+    let mut listed = verbs_of_readme(&text_of("README.md"));
+    there.sort();
+    listed.sort();
+    assert_eq!(listed, there);
+    assert_eq!(
+        verbs_of_readme(
+            "## Commands\n| `a b FILE [--x]` | y |\n| `man` | z |\n| `--y` | w |\n## Next\n| `no` |"
+        ),
+        ["a b", "man"]
+    );
+}

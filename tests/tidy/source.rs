@@ -45,7 +45,11 @@ impl Source {
                 "}" => {
                     open.pop();
                 }
-                "#" if ["#", "[", "cfg", "(", "test", ")", "]"].iter().enumerate().all(|(k, w)| word(i + k) == *w) => {
+                "#" if ["#", "[", "cfg", "(", "test", ")", "]"]
+                    .iter()
+                    .enumerate()
+                    .all(|(k, w)| word(i + k) == *w) =>
+                {
                     test_attribute = true;
                     i += 7;
                     continue;
@@ -192,7 +196,8 @@ fn raw_string(chars: &[char], i: usize) -> Option<usize> {
     if chars.get(open) != Some(&'"') {
         return None;
     }
-    let ends = |k: usize| chars[k] == '"' && chars[k + 1..].iter().take_while(|c| **c == '#').count() >= hashes;
+    let ends =
+        |k: usize| chars[k] == '"' && chars[k + 1..].iter().take_while(|c| **c == '#').count() >= hashes;
     let close = (open + 1..chars.len()).find(|k| ends(*k))?;
     Some(close + 1 + hashes)
 }
