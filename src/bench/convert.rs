@@ -2,7 +2,7 @@
 //!
 //! Choked standard-volume flow goes with `C*/sqrt(M)`, times the discharge coefficient, which depends on the Reynolds
 //! number and so on the gas too: `1 − k/√Re`, with `k` known only to lie between 0 and
-//! [`LARGEST_K`](super::choke::LARGEST_K). The middle of that range is used and its width is uncertainty. Left out:
+//! [`LARGEST_K`]. The middle of that range is used and its width is uncertainty. Left out:
 //! oxygen of less than full purity on the bench, whose molar mass differs by under 0.1 %.
 
 use super::choke::LARGEST_K;

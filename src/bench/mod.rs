@@ -2,7 +2,7 @@
 //!
 //! Comes in: an [`entry::Run`](crate::entry::Run) whose readings are steady points. Goes out: an [`Analysis`].
 //! The steps, each a plain function of its own file: [`correct`] (what the meters show → absolute pressure and flow
-//! at STPD, gas of 20 °C), `sources` (what each may be off by), [`choke`] (which points are choked), [`line`] (the
+//! at STPD, gas of 20 °C), `sources` (what each may be off by), [`choke`] (which points are choked), [`mod@line`] (the
 //! fit, random and common parts apart), `checks` and `instruments`, `verdict`; on demand [`monte_carlo`] and
 //! [`advice`]; [`history`] compares two runs and [`convert`] two gases.
 //!

@@ -32,7 +32,7 @@ impl Species {
     }
 
     /// Molar mass in kg/mol. Oxygen, nitrogen, helium: CIAAW values as used by the equations of state cited in
-    /// [`super::critical_flow`]; dry air: CIPM-2007, 400 ppm carbon dioxide.
+    /// `critical_flow`; dry air: CIPM-2007, 400 ppm carbon dioxide.
     #[must_use]
     pub const fn molar_mass(self) -> f64 {
         match self {
