@@ -4,6 +4,8 @@
 //! block: commands behind `$ `, each with what it prints; `[...]` on a line of its own stands for lines left out. The
 //! files stay in the folder of Cargo for such things, where `.ci/run` finds them.
 
+#![allow(clippy::unwrap_used, reason = "a test that cannot read or write its own files fails")]
+
 use std::fs;
 use std::path::{Path, PathBuf};
 use std::process::Command;
