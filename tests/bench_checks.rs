@@ -1,5 +1,7 @@
 //! Each check catches what it is for, and keeps quiet otherwise; each verdict follows its rule.
 
+#![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
+
 #[path = "common/bench_files.rs"]
 #[allow(dead_code)]
 mod bench_files;

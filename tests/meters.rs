@@ -1,6 +1,7 @@
 //! Every meter kind from what it shows to STPD, worked by hand or against a published table.
 
 #[path = "common/runs.rs"]
+#[allow(dead_code)]
 mod runs;
 
 use ebbline::bench::correct::{Correction, FloatLaws, Raw, Shift};

@@ -1,5 +1,7 @@
 //! A run file and its readings, invented, for tests that call the program.
 
+#![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
+
 use std::path::{Path, PathBuf};
 use std::process::{Command, Output};
 
