@@ -238,7 +238,7 @@ fn a_forbidden_arrow_is_found_however_it_is_written() {
         ("src/stats/line.rs", "use crate::quantity::Length;"),
         ("src/entry/run.rs", "use crate::gas::saturation_pressure;"),
         ("src/book/rows.rs", "use crate::bench::Analysis;"),
-        ("src/book/rows.rs", "use crate::gas::{Species, Water};"),
+        ("src/book/rows.rs", "use crate::gas::{Species, at_depth};"),
         ("src/page/mod.rs", "use crate::bench::Analysis;"),
         ("src/cli/mod.rs", "use crate::record::read_run;"),
         ("src/report/mod.rs", "use crate::cli;"),

@@ -39,8 +39,8 @@ pub(crate) const ROOMS: &[Room] = &[
     room("gas", Kind::Pure, Uses::AllAbove),
     // Knows no gas, no orifice and no unit: plain numbers in and out.
     room("stats", Kind::Pure, Uses::Only(&[])),
-    // Plain data without formulas; which gas it was is data, the gas laws are not.
-    room("entry", Kind::Pure, Uses::Only(&["quantity", "gas::Species"])),
+    // Plain data without formulas; which gas and which water it was is data, their laws are not.
+    room("entry", Kind::Pure, Uses::Only(&["quantity", "gas::Species", "gas::Water"])),
     room("series", Kind::Pure, Uses::AllAbove),
     room("bench", Kind::Pure, Uses::AllAbove),
     room("uptake", Kind::Pure, Uses::AllAbove),
@@ -48,13 +48,13 @@ pub(crate) const ROOMS: &[Room] = &[
     room("report", Kind::Pure, Uses::AllAbove),
     room("plot", Kind::Pure, Uses::AllAbove),
     room("clock", Kind::World, Uses::AllAbove),
-    // Files to entries and back: reading a file computes nothing. The words for gases are `Species`'s own.
-    room("record", Kind::World, Uses::Only(&["quantity", "gas::Species", "entry", "clock"])),
-    // Rows to entries and back; `Species` as in `record`.
+    // Files to entries and back: reading a file computes nothing. `Species` and `Water` as in `entry`.
+    room("record", Kind::World, Uses::Only(&["quantity", "gas::Species", "gas::Water", "entry", "clock"])),
+    // Rows to entries and back; `Species` and `Water` as in `entry`.
     room(
         "book",
         Kind::World,
-        Uses::Only(&["quantity", "gas::Species", "entry", "series", "clock", "record"]),
+        Uses::Only(&["quantity", "gas::Species", "gas::Water", "entry", "series", "clock", "record"]),
     ),
     room("instrument", Kind::World, Uses::AllAbove),
     room("rig", Kind::World, Uses::AllAbove),
