@@ -1,0 +1,70 @@
+//! A copy of the whole book.
+//!
+//! Written under another name from one state of the book, whoever writes meanwhile; checked from its first record to
+//! its last; only then given its name. The copy is one file without a log, which opens from a medium that cannot be
+//! written, and is a book like any other.
+
+use std::path::Path;
+
+use super::body::{Body, CopyKind};
+use super::chain::{Head, Stamp, last_link};
+use super::check::Check;
+use super::error::{BookError, Inside};
+use super::open::{Book, Options, place, remove_scratch, scratch_beside};
+
+impl Book {
+    /// Copies the book to `to`; what the check of the copy found. `replace` allows that a file is there.
+    ///
+    /// # Errors
+    /// [`BookError::CopyThere`]; [`BookError::BadCopy`] when the copy does not hold; those of writing a file, and of
+    /// every read.
+    pub fn backup(&self, to: &Path, replace: bool, stamp: &mut Stamp<'_>) -> Result<Check, BookError> {
+        if !replace && to.exists() {
+            return Err(BookError::CopyThere { path: to.to_owned() });
+        }
+        let scratch = scratch_beside(to, stamp);
+        let copied = self.copy_to(&scratch, to).and_then(|check| {
+            let placed = place(&scratch, to, replace)?;
+            if placed { Ok(check) } else { Err(BookError::CopyThere { path: to.to_owned() }) }
+        });
+        remove_scratch(&scratch);
+        copied
+    }
+
+    /// Records that a copy was made, so that an erasure can name it.
+    ///
+    /// # Errors
+    /// Those of every write.
+    pub fn note_copy(&mut self, kind: CopyKind, place: &str, stamp: &mut Stamp<'_>) -> Result<(), BookError> {
+        self.write(stamp, |writing| {
+            writing.append(Body::CopyMade { kind, place: place.to_owned() })?;
+            Ok(())
+        })
+    }
+
+    fn copy_to(&self, scratch: &Path, to: &Path) -> Result<Check, BookError> {
+        let before = self.read(last_link)?;
+        self.vacuum_into(scratch).map_err(|error| match self.outside(error) {
+            // What fails while writing the copy is said of the copy.
+            BookError::Full { .. } => BookError::Full { path: to.to_owned() },
+            BookError::Permission { doing, .. } => BookError::Permission { path: to.to_owned(), doing },
+            BookError::Io { doing, says, .. } => BookError::Io { path: to.to_owned(), doing, says },
+            other => other,
+        })?;
+        let copy = Book::open_to_read(scratch, &Options::default())?;
+        let kept: &[Head] = if before == Head::NONE { &[] } else { &[before] };
+        let check = copy.check(kept)?;
+        match &check.wrong {
+            Some(wrong) => Err(BookError::BadCopy { path: to.to_owned(), what: wrong.to_string() }),
+            None => Ok(check),
+        }
+    }
+
+    fn vacuum_into(&self, scratch: &Path) -> Result<(), Inside> {
+        let refused = || Inside::Damaged("the name of the copy is no text".into());
+        let name = scratch.to_str().ok_or_else(refused)?;
+        // SQLite would take `file:` at the front for a URI only when asked to; `./` keeps that from ever mattering.
+        self.connection.execute("VACUUM INTO ?", [name])?;
+        Ok(())
+    }
+}
