@@ -6,11 +6,13 @@
 
 use std::path::Path;
 
+use rusqlite::OpenFlags;
+
 use super::body::{Body, CopyKind};
 use super::chain::{Head, Stamp, last_link};
 use super::check::Check;
 use super::error::{BookError, Inside};
-use super::open::{Book, Options, place, remove_scratch, scratch_beside};
+use super::open::{Book, Options, connect, place, remove_scratch, scratch_beside};
 
 impl Book {
     /// Copies the book to `to`; what the check of the copy found. `replace` allows that a file is there.
@@ -60,11 +62,14 @@ impl Book {
         }
     }
 
+    /// Through a connection of its own: SQLite does not distinguish writing the copy from writing the book, so one for
+    /// reading only refuses it.
     fn vacuum_into(&self, scratch: &Path) -> Result<(), Inside> {
         let refused = || Inside::Damaged("the name of the copy is no text".into());
         let name = scratch.to_str().ok_or_else(refused)?;
-        // SQLite would take `file:` at the front for a URI only when asked to; `./` keeps that from ever mattering.
-        self.connection.execute("VACUUM INTO ?", [name])?;
+        let options = Options { busy: self.busy() };
+        let connection = connect(self.path(), &options, OpenFlags::SQLITE_OPEN_READ_WRITE)?;
+        connection.execute("VACUUM INTO ?", [name])?;
         Ok(())
     }
 }

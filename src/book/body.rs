@@ -12,8 +12,7 @@ use super::canonical::{self, Bytes, Canonical, Reader, Unreadable, Writer};
 use super::registers::Entry;
 use super::runs::{Origin, SourceFiles};
 use crate::entry::{
-    Decision, Diver, FirstStage, Instrument, LeftOut, Orifice, PointReading, Readings, Run, RunNumber,
-    Shop,
+    Decision, Diver, FirstStage, Instrument, LeftOut, Orifice, PointReading, Readings, Run, RunNumber, Shop,
 };
 
 /// First byte of every payload: the form of the bytes that follow it.
@@ -294,7 +293,9 @@ pub(super) fn read(kind: u16, bytes: &[u8]) -> Result<Record<'static>, Unreadabl
             left_out: Canonical::read(from)?,
             by: Canonical::read(from)?,
         },
-        Kind::Decided => Body::Decided { run: Canonical::read(from)?, decision: Box::new(Canonical::read(from)?) },
+        Kind::Decided => {
+            Body::Decided { run: Canonical::read(from)?, decision: Box::new(Canonical::read(from)?) }
+        }
         Kind::Orifice => entry(from, |from| Orifice::read(from).map(Entry::Orifice))?,
         Kind::Instrument => entry(from, |from| Instrument::read(from).map(Entry::Instrument))?,
         Kind::FirstStage => entry(from, |from| FirstStage::read(from).map(Entry::FirstStage))?,

@@ -131,8 +131,9 @@ impl<'t, 's, 'f> Writing<'t, 's, 'f> {
         let digest = payload_digest(&salt, &bytes);
         let head = self.head.followed_by(kind, &digest);
         let place = body::place(head.seq);
-        let mut chain =
-            self.transaction.prepare_cached("INSERT INTO record (seq, kind, digest, link) VALUES (?, ?, ?, ?)")?;
+        let mut chain = self
+            .transaction
+            .prepare_cached("INSERT INTO record (seq, kind, digest, link) VALUES (?, ?, ?, ?)")?;
         chain.execute(params![place, kind, digest, head.link])?;
         let mut payload =
             self.transaction.prepare_cached("INSERT INTO payload (seq, salt, bytes) VALUES (?, ?, ?)")?;
@@ -147,8 +148,9 @@ impl<'t, 's, 'f> Writing<'t, 's, 'f> {
     /// Makes everything appended permanent; only then may it be acknowledged.
     pub(super) fn commit(self) -> Result<(), Inside> {
         {
-            let mut head =
-                self.transaction.prepare_cached("INSERT OR REPLACE INTO head (one, seq, link) VALUES (1, ?, ?)")?;
+            let mut head = self
+                .transaction
+                .prepare_cached("INSERT OR REPLACE INTO head (one, seq, link) VALUES (1, ?, ?)")?;
             head.execute(params![body::place(self.head.seq), self.head.link])?;
         }
         Ok(self.transaction.commit()?)
@@ -167,7 +169,10 @@ fn insert(connection: &Connection, row: &Row) -> Result<(), Inside> {
 /// The last link of the chain.
 pub(super) fn last_link(connection: &Connection) -> Result<Head, Inside> {
     let mut last = connection.prepare_cached("SELECT seq, link FROM record ORDER BY seq DESC LIMIT 1")?;
-    Ok(last.query_row([], |row| Ok(Head { seq: row.get(0)?, link: row.get(1)? })).optional()?.unwrap_or(Head::NONE))
+    Ok(last
+        .query_row([], |row| Ok(Head { seq: row.get(0)?, link: row.get(1)? }))
+        .optional()?
+        .unwrap_or(Head::NONE))
 }
 
 /// The head that the last transaction left.
@@ -183,7 +188,9 @@ pub(super) fn record_at(connection: &Connection, seq: u64) -> Result<Option<Reco
     let found = statement
         .query_row([body::place(seq)], |row| Ok((row.get::<_, u16>(0)?, row.get::<_, Vec<u8>>(1)?)))
         .optional()?;
-    found.map(|(kind, bytes)| body::read(kind, &bytes).map_err(|why| Inside::Unreadable(seq, why))).transpose()
+    found
+        .map(|(kind, bytes)| body::read(kind, &bytes).map_err(|why| Inside::Unreadable(seq, why)))
+        .transpose()
 }
 
 #[cfg(test)]
@@ -198,14 +205,25 @@ mod tests {
         assert_eq!(hex(digest), "232e7bd449f390ea24edc01fbe89d2c8eea08febb444337e8d5124cf174bb061");
         let head = Head::NONE.followed_by(2, &digest).followed_by(1000, &digest);
         assert_eq!(head.to_string(), "2-a4cbf274438856030959709e75613f6918ea8df0bc3d94a8dcc140c2e4ce7061");
-        assert_eq!(hex(source_digest(b"toml", b"csv")), "4e1916c264b80299c42a0e31ca5b17deb482c82566092ddb818cdd8e156821cc");
+        assert_eq!(
+            hex(source_digest(b"toml", b"csv")),
+            "4e1916c264b80299c42a0e31ca5b17deb482c82566092ddb818cdd8e156821cc"
+        );
     }
 
     #[test]
     fn a_printed_head_is_read_back_and_anything_else_refused() {
         let head = Head { seq: 1234, link: [0xA5; 32] };
         assert_eq!(head.to_string().parse(), Ok(head));
-        for bad in ["", "12", "-", "x-00", "1-é", &format!("+1-{}", "0".repeat(64)), &format!("1-{}", "é".repeat(32))] {
+        for bad in [
+            "",
+            "12",
+            "-",
+            "x-00",
+            "1-é",
+            &format!("+1-{}", "0".repeat(64)),
+            &format!("1-{}", "é".repeat(32)),
+        ] {
             assert!(bad.parse::<Head>().is_err(), "{bad}");
         }
     }

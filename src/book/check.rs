@@ -233,21 +233,14 @@ fn is_listed(connection: &Connection, row: &Row) -> Result<bool, Inside> {
     let mut statement = connection.prepare_cached(&sql)?;
     let listed = statement.query_row(params![key], |listed| {
         for (index, (_, value)) in row.columns.iter().enumerate() {
-            if !same(&listed.get::<_, Value>(index)?, value) {
+            // Equal as numbers: SQLite keeps a negative nought as nought.
+            if listed.get::<_, Value>(index)? != *value {
                 return Ok(false);
             }
         }
         Ok(true)
     });
     Ok(listed.optional()? == Some(true))
-}
-
-/// Floats by their bits.
-fn same(here: &Value, there: &Value) -> bool {
-    match (here, there) {
-        (Value::Real(here), Value::Real(there)) => here.to_bits() == there.to_bits(),
-        (here, there) => here == there,
-    }
 }
 
 /// What can only be said at the end of the chain.

@@ -8,7 +8,7 @@
 use rusqlite::params;
 
 use super::body::{Body, FIRST_PERSONAL_KIND, place};
-use super::chain::{Stamp, record_at};
+use super::chain::Stamp;
 use super::error::{BookError, Inside};
 use super::lists::{CopyMade, copies, count};
 use super::open::Book;
@@ -53,7 +53,8 @@ impl Book {
                 return if count(&writing.transaction, "SELECT count(*) FROM wiping")? > 0 {
                     Ok((0, copies))
                 } else {
-                    Err(BookError::Unknown { register: Register::Diver, id: diver.as_str().to_owned() }.into())
+                    Err(BookError::Unknown { register: Register::Diver, id: diver.as_str().to_owned() }
+                        .into())
                 };
             }
             let erased = records_of(&writing.transaction, diver)?;
@@ -83,7 +84,9 @@ impl Book {
 
     /// Writes the file anew without what was deleted and empties its log; whether that could be done.
     fn wipe(&self) -> Result<bool, Inside> {
-        self.connection.execute_batch("VACUUM")?;
+        // The copy SQLite makes on the way may be as large as the book, so it does not go into memory; nothing that was
+        // erased is in it.
+        self.connection.execute_batch("PRAGMA temp_store = FILE; VACUUM; PRAGMA temp_store = MEMORY;")?;
         if !self.empty_log()? {
             return Ok(false);
         }
@@ -93,9 +96,9 @@ impl Book {
 
     /// Whether everything in the log went into the file and the log has no byte left.
     fn empty_log(&self) -> Result<bool, Inside> {
-        let (busy, logged): (bool, i64) = self
-            .connection
-            .query_row("PRAGMA wal_checkpoint(TRUNCATE)", [], |row| Ok((row.get(0)?, row.get(1)?)))?;
+        let (busy, logged): (bool, i64) =
+            self.connection
+                .query_row("PRAGMA wal_checkpoint(TRUNCATE)", [], |row| Ok((row.get(0)?, row.get(1)?)))?;
         let log = std::fs::metadata(super::header::log_of(self.path()));
         let bytes = log.map_or(0, |about| about.len());
         Ok(!busy && logged == 0 && bytes == 0)

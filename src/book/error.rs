@@ -282,7 +282,9 @@ impl Inside {
             Self::Said(error) => error,
             Self::NoSuchRun(run) => BookError::NoSuchRun { path: path.to_owned(), run },
             Self::Damaged(what) => BookError::damaged(path, what),
-            Self::Unreadable(seq, why) => BookError::damaged(path, format!("record {seq} cannot be read, {why}")),
+            Self::Unreadable(seq, why) => {
+                BookError::damaged(path, format!("record {seq} cannot be read, {why}"))
+            }
             Self::Sql(error) => of_sql(&error, path, waited_s),
         }
     }

@@ -49,10 +49,7 @@ pub(super) fn peek(path: &Path, known: u32) -> Result<u32, BookError> {
         return Err(BookError::stranger(path, Stranger::Folder));
     }
     let mut front = Vec::with_capacity(HEADER_BYTES);
-    (&mut file)
-        .take(HEADER_BYTES as u64)
-        .read_to_end(&mut front)
-        .map_err(|error| unreadable(&error))?;
+    (&mut file).take(HEADER_BYTES as u64).read_to_end(&mut front).map_err(|error| unreadable(&error))?;
     if front.is_empty() {
         return Err(BookError::stranger(path, Stranger::Empty));
     }

@@ -94,7 +94,8 @@ impl Book {
                 .query_row(params![key_of(orifice.as_str()), run.get()], |row| Ok((row.get(0)?, row.get(1)?)))
                 .optional()?;
             let Some((number, seq)) = found else { return Ok(None) };
-            let number = RunNumber::new(number).ok_or_else(|| Inside::Damaged("a run has number 0".into()))?;
+            let number =
+                RunNumber::new(number).ok_or_else(|| Inside::Damaged("a run has number 0".into()))?;
             Ok(Some((number, decision_at(connection, seq)?)))
         })
     }

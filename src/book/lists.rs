@@ -139,8 +139,7 @@ impl Book {
         self.read(|connection| {
             let sql = format!("{COLUMNS} WHERE orifice_key = ? ORDER BY taken_s DESC, number DESC LIMIT ?");
             let mut statement = connection.prepare_cached(&sql)?;
-            let mut rows =
-                statement.query(params![key_of(orifice.as_str()), limit.map_or(-1, i64::from)])?;
+            let mut rows = statement.query(params![key_of(orifice.as_str()), limit.map_or(-1, i64::from)])?;
             let mut history = Vec::new();
             while let Some(row) = rows.next()? {
                 let decided: Option<u64> = row.get(8)?;

@@ -3,7 +3,7 @@
 //! Comes in: values of [`crate::entry`], the time of writing and random salts. Goes out: the same values to the last
 //! bit, lists, and what a check found. Nothing is computed: figures of a decision are stored as they are handed in.
 //!
-//! Everything recorded is one record of a single chain ([`chain`](self)): canonical bytes with a salt of their own, a
+//! Everything recorded is one record of a single chain (`chain`): canonical bytes with a salt of their own, a
 //! digest of both, and a link over the link before. A correction is a new record that names the old one; tables for
 //! lists repeat what stands in the records, and [`Book::check`] derives each of their rows again. Personal records can
 //! be erased ([`Book::forget_diver`]); their places in the chain stay.

@@ -80,11 +80,8 @@ impl Book {
     /// Those of [`Book::open`].
     pub fn open_to_read(path: &Path, options: &Options) -> Result<Self, BookError> {
         let version = header::peek(path, schema::VERSION)?;
-        let opening = if version < schema::VERSION {
-            Self::open(path, options)?.opening()
-        } else {
-            Opening::Found
-        };
+        let opening =
+            if version < schema::VERSION { Self::open(path, options)?.opening() } else { Opening::Found };
         Self::open_for(path, options, true, opening)
     }
 
@@ -112,6 +109,11 @@ impl Book {
     #[must_use]
     pub const fn opening(&self) -> Opening {
         self.opening
+    }
+
+    /// How long is waited for another program.
+    pub(super) const fn busy(&self) -> Duration {
+        self.busy
     }
 
     fn open_for(
@@ -238,9 +240,7 @@ fn begin_write(connection: &Connection, busy: Duration) -> Result<Transaction<'_
     let mut waited = Duration::ZERO;
     let begun = loop {
         match Transaction::new_unchecked(connection, TransactionBehavior::Immediate) {
-            Err(error)
-                if error.sqlite_error_code() == Some(ErrorCode::DatabaseBusy) && waited < busy =>
-            {
+            Err(error) if error.sqlite_error_code() == Some(ErrorCode::DatabaseBusy) && waited < busy => {
                 std::thread::sleep(PAUSE);
                 waited += PAUSE;
             }
@@ -257,7 +257,11 @@ fn begin(path: &Path, options: &Options, stamp: &mut Stamp<'_>) -> Result<Openin
     let opening = if folder.is_dir() { Opening::Begun } else { Opening::BegunWithFolder };
     std::fs::create_dir_all(folder).map_err(|error| BookError::of_io(folder, "created", &error))?;
     let scratch = scratch_beside(path, stamp);
-    let made = make(&scratch, options, stamp).map_err(|error| error.at(path, options.busy.as_secs_f64()));
+    let made = make(&scratch, options, stamp);
+    let made = made.map_err(|error| match error.at(path, options.busy.as_secs_f64()) {
+        BookError::Permission { path, .. } => BookError::Permission { path, doing: "created" },
+        other => other,
+    });
     let placed = made.and_then(|()| place(&scratch, path, false));
     remove_scratch(&scratch);
     Ok(if placed? { opening } else { Opening::Found })

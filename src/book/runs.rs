@@ -304,8 +304,7 @@ fn import_one(writing: &mut Writing<'_, '_, '_>, item: ToImport<'_>) -> Result<R
 
 /// Puts the orifice of a run into the register where it is unknown; whether it was.
 fn orifice_of(writing: &mut Writing<'_, '_, '_>, run: &Run) -> Result<bool, Inside> {
-    let unknown =
-        registers::latest(&writing.transaction, Register::Orifice, run.orifice.as_str())?.is_none();
+    let unknown = registers::latest(&writing.transaction, Register::Orifice, run.orifice.as_str())?.is_none();
     if unknown {
         registers::append(writing, Entry::Orifice(Orifice::bare(run.orifice.clone())), None)?;
     }

@@ -17,13 +17,4 @@ impl Canonical for Logo {
 }
 
 canonical_struct!(Signatory { name, role });
-canonical_struct!(Shop {
-    name,
-    address,
-    contact,
-    logo,
-    accent,
-    number_pattern,
-    signatories,
-    statements,
-});
+canonical_struct!(Shop { name, address, contact, logo, accent, number_pattern, signatories, statements });

@@ -29,7 +29,9 @@ pub(crate) fn id() -> BoxedStrategy<Id> {
         Just("𐐷𐐷"),
         Just("a"),
     ];
-    (letters, "[A-Za-z0-9._-]{0,20}").prop_filter_map("an id", |(a, b)| Id::new(&format!("{a}{b}")).ok()).boxed()
+    (letters, "[A-Za-z0-9._-]{0,20}")
+        .prop_filter_map("an id", |(a, b)| Id::new(&format!("{a}{b}")).ok())
+        .boxed()
 }
 
 /// A time RFC 3339 can say: its offsets are of whole minutes.
@@ -105,8 +107,11 @@ fn meter_kind() -> BoxedStrategy<MeterKind> {
     let factor = || of(uncertain(|v| v, |v| v));
     let scale = prop_oneof![Just(FloatScale::Actual), Just(FloatScale::Reference)];
     prop_oneof![
-        (reference(), species(), factor())
-            .prop_map(|(reads_at, made_for, gas_factor)| MeterKind::Mass { reads_at, made_for, gas_factor }),
+        (reference(), species(), factor()).prop_map(|(reads_at, made_for, gas_factor)| MeterKind::Mass {
+            reads_at,
+            made_for,
+            gas_factor
+        }),
         any::<bool>().prop_map(|wet| MeterKind::Volumetric { wet }),
         any::<bool>().prop_map(|wet| MeterKind::Timed { wet }),
         (reference(), species(), scale, of(reference()), factor()).prop_map(
@@ -139,18 +144,10 @@ pub(crate) fn acceptance(id: BoxedStrategy<Option<Id>>) -> BoxedStrategy<Accepta
         float().prop_map(Tolerance::Relative),
         float().prop_map(|flow| Tolerance::Flow(StpdFlow::from_m3_s(flow))),
     ];
-    let limits = ((float(), float(), float(), float()), float(), (float(), float()), float(), float()).prop_map(
-        |((straight, hysteresis, repeat, steady), significance, crossing_pa, en, leak_pa_s)| Limits {
-            straight,
-            hysteresis,
-            repeat,
-            steady,
-            significance,
-            crossing_pa,
-            en,
-            leak_pa_s,
-        },
-    );
+    let limits = ((float(), float(), float(), float()), float(), (float(), float()), float(), float())
+        .prop_map(|((straight, hysteresis, repeat, steady), significance, crossing_pa, en, leak_pa_s)| {
+            Limits { straight, hysteresis, repeat, steady, significance, crossing_pa, en, leak_pa_s }
+        });
     let rule = prop_oneof![Just(Rule::Simple), Just(Rule::Guarded)];
     (id, float(), float(), of(species()), tolerance, rule, limits)
         .prop_map(|(id, ip, flow, gas, tolerance, rule, limits)| Acceptance {
@@ -191,18 +188,22 @@ pub(crate) fn point() -> BoxedStrategy<PointReading> {
 
 fn readings() -> BoxedStrategy<Readings> {
     let column = || vec(float(), 0..8);
-    let series = (column(), column(), any::<bool>(), column(), of(column()), of(column()), of(column()), of(column()))
-        .prop_map(|(time_s, pressure_pa, pressure_is_absolute, flow_l_min, t, b, mt, mp)| SeriesReadings {
-            time_s,
-            pressure_pa,
-            pressure_is_absolute,
-            flow_l_min,
-            temperature_k: t,
-            barometer_pa: b,
-            meter_temperature_k: mt,
-            meter_pressure_pa: mp,
-        });
-    prop_oneof![3 => vec(point(), 0..12).prop_map(Readings::Points), 1 => series.prop_map(Readings::Series)].boxed()
+    let series =
+        (column(), column(), any::<bool>(), column(), of(column()), of(column()), of(column()), of(column()))
+            .prop_map(|(time_s, pressure_pa, pressure_is_absolute, flow_l_min, t, b, mt, mp)| {
+                SeriesReadings {
+                    time_s,
+                    pressure_pa,
+                    pressure_is_absolute,
+                    flow_l_min,
+                    temperature_k: t,
+                    barometer_pa: b,
+                    meter_temperature_k: mt,
+                    meter_pressure_pa: mp,
+                }
+            });
+    prop_oneof![3 => vec(point(), 0..12).prop_map(Readings::Points), 1 => series.prop_map(Readings::Series)]
+        .boxed()
 }
 
 fn conditions() -> BoxedStrategy<Conditions> {
@@ -280,32 +281,43 @@ pub(crate) fn decision() -> BoxedStrategy<Decision> {
         StoredVerdict::Undecided,
         StoredVerdict::None,
     ]);
-    let part = (text(), float(), float()).prop_map(|(source, u_l_min, dof)| StoredPart { source, u_l_min, dof });
+    let part =
+        (text(), float(), float()).prop_map(|(source, u_l_min, dof)| StoredPart { source, u_l_min, dof });
     let against = of((1..=u32::MAX, float()).prop_map(|(run, en)| (RunNumber::new(run).unwrap(), en)));
     let flow = (any::<u32>(), species(), float(), float(), float(), float(), float(), float());
     let rest = (vec(part, 0..5), of((float(), float())), of(float()), vec(text(), 0..3), any::<u32>());
-    let figures = (flow, rest, of(text()), of(text()), against).prop_map(|(flow, rest, meter, transducer, against)| {
-        let (method_revision, gas, ip, p1_bar, flow_l_min, standard_uncertainty_l_min, dof, coverage_factor) = flow;
-        let (parts, limits_l_min, conformity_probability, failed_checks, points_used) = rest;
-        StoredFigures {
-            method_revision,
-            gas,
-            ip: GaugePressure::from_pa(ip),
-            p1_bar,
-            flow_l_min,
-            standard_uncertainty_l_min,
-            dof,
-            coverage_factor,
-            parts,
-            limits_l_min,
-            conformity_probability,
-            failed_checks,
-            points_used,
-            meter_certificate: meter,
-            transducer_certificate: transducer,
-            against,
-        }
-    });
+    let figures =
+        (flow, rest, of(text()), of(text()), against).prop_map(|(flow, rest, meter, transducer, against)| {
+            let (
+                method_revision,
+                gas,
+                ip,
+                p1_bar,
+                flow_l_min,
+                standard_uncertainty_l_min,
+                dof,
+                coverage_factor,
+            ) = flow;
+            let (parts, limits_l_min, conformity_probability, failed_checks, points_used) = rest;
+            StoredFigures {
+                method_revision,
+                gas,
+                ip: GaugePressure::from_pa(ip),
+                p1_bar,
+                flow_l_min,
+                standard_uncertainty_l_min,
+                dof,
+                coverage_factor,
+                parts,
+                limits_l_min,
+                conformity_probability,
+                failed_checks,
+                points_used,
+                meter_certificate: meter,
+                transducer_certificate: transducer,
+                against,
+            }
+        });
     (verdict, figures, time(), of(text()), of(text()))
         .prop_map(|(verdict, figures, at, by, remark)| Decision { verdict, figures, at, by, remark })
         .boxed()
@@ -314,23 +326,28 @@ pub(crate) fn decision() -> BoxedStrategy<Decision> {
 pub(crate) fn orifice() -> BoxedStrategy<Orifice> {
     let words = (of(text()), of(text()), of(text()), of(text()));
     (id(), words, build(), of(float()), of(float()), of(id()))
-        .prop_map(|(id, (description, serial, maker, customer), build, length, diameter, acceptance)| Orifice {
-            id,
-            description,
-            serial,
-            maker,
-            customer,
-            build,
-            length: length.map(Length::from_m),
-            nominal_diameter: diameter.map(Length::from_m),
-            acceptance,
+        .prop_map(|(id, (description, serial, maker, customer), build, length, diameter, acceptance)| {
+            Orifice {
+                id,
+                description,
+                serial,
+                maker,
+                customer,
+                build,
+                length: length.map(Length::from_m),
+                nominal_diameter: diameter.map(Length::from_m),
+                acceptance,
+            }
         })
         .boxed()
 }
 
 pub(crate) fn first_stage() -> BoxedStrategy<FirstStage> {
     let gauge = (of(float()), of(float()), of(float()), of(float()), of(float()));
-    let trapped = (of(uncertain(Volume::from_m3, Volume::from_m3)), of(uncertain(PressureRate::from_pa_s, PressureRate::from_pa_s)));
+    let trapped = (
+        of(uncertain(Volume::from_m3, Volume::from_m3)),
+        of(uncertain(PressureRate::from_pa_s, PressureRate::from_pa_s)),
+    );
     (id(), any::<bool>(), (float(), float()), float(), gauge, trapped, of(text()), of(text()))
         .prop_map(|(id, compensated, (low, high), division, gauge, trapped, maker, serial)| FirstStage {
             id,
@@ -351,7 +368,8 @@ pub(crate) fn first_stage() -> BoxedStrategy<FirstStage> {
 }
 
 pub(crate) fn diver() -> BoxedStrategy<Diver> {
-    let diluent = prop_oneof![Just(Diluent::Air), float().prop_map(|o| Diluent::Oxygen(Share::from_ratio(o)))];
+    let diluent =
+        prop_oneof![Just(Diluent::Air), float().prop_map(|o| Diluent::Oxygen(Share::from_ratio(o)))];
     (id(), of(text()), of(float()), of(uncertain(Volume::from_m3, Volume::from_m3)), of(diluent))
         .prop_map(|(id, name, mass, loop_volume, diluent)| Diver {
             id,

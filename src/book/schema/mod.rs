@@ -68,7 +68,10 @@ mod tests {
 
     const STEPS: [Migration; 2] = [
         Migration { version: 1, sql: "CREATE TABLE a (x INTEGER) STRICT; INSERT INTO a VALUES (7);" },
-        Migration { version: 2, sql: "CREATE TABLE b (y INTEGER) STRICT; INSERT INTO b SELECT x + 1 FROM a;" },
+        Migration {
+            version: 2,
+            sql: "CREATE TABLE b (y INTEGER) STRICT; INSERT INTO b SELECT x + 1 FROM a;",
+        },
     ];
 
     #[test]
@@ -97,7 +100,10 @@ mod tests {
         let mut book = Connection::open_in_memory().unwrap();
         let broken = [
             Migration { version: 1, sql: STEPS[0].sql },
-            Migration { version: 2, sql: "CREATE TABLE b (y INTEGER) STRICT; INSERT INTO nowhere VALUES (1);" },
+            Migration {
+                version: 2,
+                sql: "CREATE TABLE b (y INTEGER) STRICT; INSERT INTO nowhere VALUES (1);",
+            },
         ];
         assert!(migrate(&mut book, &broken).is_err());
         assert_eq!(version_of(&book).unwrap(), 1);
