@@ -1,5 +1,7 @@
 //! Backups, and books of every form there was.
 
+#![allow(clippy::unwrap_used, reason = "a failed step of a test is a failed test")]
+
 mod book_support;
 
 use std::path::{Path, PathBuf};
@@ -28,6 +30,16 @@ fn a_backup_is_a_book_of_one_file_with_the_same_chain_taken_while_others_write()
     stamped(|stamp| book.decide(number, decision(0.48), stamp)).unwrap();
     stamped(|stamp| book.backup(&copy, true, stamp)).unwrap();
     assert_eq!(folder.names().iter().filter(|name| name.starts_with("copy.db")).count(), 1);
+    // Neither the book itself nor one that is in use is replaced.
+    let other = folder.0.join("other.db");
+    let mut in_use = begin(&other);
+    import(&mut in_use, &run("A", 20), "another");
+    for path in [folder.book(), other] {
+        let refused = stamped(|stamp| book.backup(&path, true, stamp)).unwrap_err();
+        assert!(matches!(refused, BookError::CopyThere { .. }), "{refused}");
+    }
+    assert_eq!(in_use.check(&[]).unwrap().wrong, None);
+    drop(in_use);
     let nowhere = folder.0.join("no/such/folder/copy.db");
     assert!(stamped(|stamp| book.backup(&nowhere, false, stamp)).is_err());
 

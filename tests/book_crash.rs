@@ -1,5 +1,7 @@
 //! Ten programs at once, and programs killed at random moments: nothing acknowledged is lost, the chain holds.
 
+#![allow(clippy::unwrap_used, reason = "a failed step of a test is a failed test")]
+
 mod book_support;
 
 use std::io::{BufRead, BufReader, Write};

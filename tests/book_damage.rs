@@ -1,5 +1,7 @@
 //! Nothing recorded changes unnoticed: by statement, by a flipped byte, by removed, moved or cut records.
 
+#![allow(clippy::unwrap_used, reason = "a failed step of a test is a failed test")]
+
 mod book_support;
 
 use std::collections::BTreeSet;

@@ -1,5 +1,7 @@
 //! Registers: entries are added, edited by new revisions, found whatever their case, and listed by name.
 
+#![allow(clippy::unwrap_used, reason = "a failed step of a test is a failed test")]
+
 mod book_support;
 
 use book_support::{Folder, begin, id, stamped, time};

@@ -1,5 +1,7 @@
 //! Runs in the book: imported, entered, judged, listed.
 
+#![allow(clippy::unwrap_used, reason = "a failed step of a test is a failed test")]
+
 mod book_support;
 
 use book_support::{Folder, QUICK, begin, decision, files, id, import, point, run, stamped, time};

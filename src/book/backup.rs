@@ -12,16 +12,19 @@ use super::body::{Body, CopyKind};
 use super::chain::{Head, Stamp, last_link};
 use super::check::Check;
 use super::error::{BookError, Inside};
+use super::header::has_log;
 use super::open::{Book, Options, connect, place, remove_scratch, scratch_beside};
 
 impl Book {
     /// Copies the book to `to`; what the check of the copy found. `replace` allows that a file is there.
     ///
     /// # Errors
-    /// [`BookError::CopyThere`]; [`BookError::BadCopy`] when the copy does not hold; those of writing a file, and of
+    /// [`BookError::CopyThere`], also with `replace` for this book itself and for one that another program has open; [`BookError::BadCopy`] when the copy does not hold; those of writing a file, and of
     /// every read.
     pub fn backup(&self, to: &Path, replace: bool, stamp: &mut Stamp<'_>) -> Result<Check, BookError> {
-        if !replace && to.exists() {
+        // A book in use is never replaced: what stands in its log would be read into the copy.
+        let in_use = has_log(to) || same_file(to, self.path());
+        if in_use || (!replace && to.exists()) {
             return Err(BookError::CopyThere { path: to.to_owned() });
         }
         let scratch = scratch_beside(to, stamp);
@@ -72,4 +75,8 @@ impl Book {
         connection.execute("VACUUM INTO ?", [name])?;
         Ok(())
     }
+}
+
+fn same_file(a: &Path, b: &Path) -> bool {
+    matches!((a.canonicalize(), b.canonicalize()), (Ok(a), Ok(b)) if a == b)
 }

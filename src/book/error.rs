@@ -166,7 +166,7 @@ pub enum BookError {
         id: String,
     },
     /// A file where the copy would go.
-    #[error("{} is there already: name another file, or say that it may be replaced", path.display())]
+    #[error("{} is there already: name another file, or say that it may be replaced (a book in use never is)", path.display())]
     CopyThere {
         /// The file.
         path: PathBuf,

@@ -39,6 +39,13 @@ pub(super) fn peek(path: &Path, known: u32) -> Result<u32, BookError> {
     let unreadable = |error: &std::io::Error| BookError::of_io(path, "read", error);
     let mut file = match File::open(path) {
         Ok(file) => file,
+        // SQLite would read the log of a book that is gone into whatever is put in its place.
+        Err(error) if error.kind() == ErrorKind::NotFound && has_log(path) => {
+            return Err(BookError::damaged(
+                path,
+                "the file is gone and its log (the name with -wal) is there",
+            ));
+        }
         Err(error) if error.kind() == ErrorKind::NotFound => {
             return Err(BookError::NoBook { path: path.to_owned() });
         }
@@ -124,7 +131,8 @@ pub(super) fn with_suffix(path: &Path, suffix: &str) -> PathBuf {
     PathBuf::from(name)
 }
 
-fn has_log(path: &Path) -> bool {
+/// Whether something stands in the log that belongs to a book.
+pub(super) fn has_log(path: &Path) -> bool {
     std::fs::metadata(log_of(path)).is_ok_and(|about| about.len() > 0)
 }
 

@@ -74,6 +74,10 @@ impl Register {
 
 /// An entry of any register.
 #[derive(Debug, Clone, PartialEq)]
+#[expect(
+    clippy::large_enum_variant,
+    reason = "entries are handled one at a time; a box would only be in the way"
+)]
 pub enum Entry {
     /// An orifice.
     Orifice(Orifice),

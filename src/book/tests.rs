@@ -167,6 +167,8 @@ fn sample_run() -> Run {
     let point = |bar: f64, flow: f64, sweep| PointReading {
         pressure: Indication::Gauge(GaugePressure::from_bar(bar)),
         flow: IndicatedFlow::from_l_min(flow),
+        timed: (bar > 9.0)
+            .then_some(TimedVolume { volume: Volume::from_l(1.0), duration: Span::from_s(114.0) }),
         pressure_scatter: None,
         flow_scatter: Some(IndicatedFlow::from_l_min(0.0002)),
         averaged: 12.0,

@@ -1,7 +1,7 @@
 //! Books to test with: folders that go by themselves, invented runs, salts that are numbers.
 
-// Each test file uses its own part of this.
-#![allow(dead_code)]
+#![allow(clippy::unwrap_used, reason = "a failed step of a test is a failed test")]
+#![allow(dead_code, reason = "each test file uses its own part of this")]
 
 use std::path::{Path, PathBuf};
 use std::sync::atomic::{AtomicU64, Ordering};
@@ -85,6 +85,7 @@ pub(crate) fn point(index: usize) -> PointReading {
     PointReading {
         pressure: Indication::Gauge(GaugePressure::from_bar(bar)),
         flow: IndicatedFlow::from_l_min(0.045 * (bar + 1.0) + 1e-5 * index as f64),
+        timed: None,
         pressure_scatter: None,
         flow_scatter: None,
         averaged: 1.0,

@@ -3,7 +3,7 @@
 use super::{Canonical, Reader, Unreadable, Writer, canonical_choice, canonical_struct};
 use crate::entry::{
     Build, Conditions, Indication, Influence, LeftOut, PointReading, Purity, Purpose, Readings, Run,
-    SeriesReadings, Sweep, ZeroAndLeak,
+    SeriesReadings, Sweep, TimedVolume, ZeroAndLeak,
 };
 
 canonical_choice!(Build, "build" { ThinPlate = 1, ShortTube = 2, Nozzle = 3, Unknown = 4 });
@@ -11,6 +11,7 @@ canonical_choice!(Purpose, "purpose" { Acceptance = 1, AsFound = 2, AsLeft = 3, 
 canonical_choice!(Sweep, "sweep" { Rising = 1, Falling = 2 });
 canonical_choice!(Indication, "indication" { Gauge(pressure) = 1, Absolute(pressure) = 2 });
 canonical_struct!(Purity { fraction, expanded });
+canonical_struct!(TimedVolume { volume, duration });
 canonical_struct!(ZeroAndLeak { zero, leak_pa_s });
 canonical_struct!(LeftOut { point, why });
 canonical_struct!(Conditions {
@@ -25,6 +26,7 @@ canonical_struct!(Conditions {
 canonical_struct!(PointReading {
     pressure,
     flow,
+    timed,
     pressure_scatter,
     flow_scatter,
     averaged,

@@ -167,12 +167,18 @@ pub(crate) fn point() -> BoxedStrategy<PointReading> {
         float().prop_map(|p| Indication::Gauge(GaugePressure::from_pa(p))),
         float().prop_map(|p| Indication::Absolute(AbsolutePressure::from_pa(p))),
     ];
+    let timed = (float(), float()).prop_map(|(volume, duration)| TimedVolume {
+        volume: Volume::from_m3(volume),
+        duration: Span::from_s(duration),
+    });
+    let flow = (float(), of(timed));
     let around = (of(float()), of(float()), of(float()), of(float()));
     let sweep = of(prop_oneof![Just(Sweep::Rising), Just(Sweep::Falling)]);
-    (pressure, float(), of(float()), of(float()), float(), around, sweep, of(float()))
-        .prop_map(|(pressure, flow, pu, fu, averaged, (t, b, mt, mp), sweep, time_s)| PointReading {
+    (pressure, flow, of(float()), of(float()), float(), around, sweep, of(float()))
+        .prop_map(|(pressure, (flow, timed), pu, fu, averaged, (t, b, mt, mp), sweep, time_s)| PointReading {
             pressure,
             flow: IndicatedFlow::from_l_min(flow),
+            timed,
             pressure_scatter: pu.map(PressureDifference::from_pa),
             flow_scatter: fu.map(IndicatedFlow::from_l_min),
             averaged,
