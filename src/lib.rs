@@ -52,5 +52,6 @@ pub mod bench;
 pub mod report;
 pub mod plot;
 pub mod record;
+pub mod book;
 pub mod work;
 pub mod cli;

@@ -3,15 +3,31 @@
 //! Numbers stand here as they were given: an uncertainty stays expanded with its coverage factor beside it, an
 //! indication stays an indication. `record` fills these types from files; the rooms below compute with them.
 
-mod acceptance;
 mod id;
+mod number;
+mod acceptance;
 mod papers;
 mod run;
+mod judgement;
+mod orifice;
+mod instrument;
+mod first_stage;
+mod diver;
+mod shop;
 
 pub use acceptance::{Acceptance, Limits, Rule, Tolerance};
+pub use diver::{Diluent, Diver};
+pub use first_stage::FirstStage;
 pub use id::{Id, IdError};
+pub use instrument::{
+    Instrument, InstrumentPapers, Measures, ModbusNumber, ModbusTable, Protocol, Socket, WordOrder,
+};
+pub use judgement::{Decision, StoredFigures, StoredPart, StoredVerdict};
+pub use number::RunNumber;
+pub use orifice::Orifice;
 pub use papers::{Amount, FloatScale, Meter, MeterKind, Papers, Transducer};
 pub use run::{
     Build, Conditions, Indication, Influence, LeftOut, PointReading, Purity, Purpose, Readings, Run,
     SeriesReadings, Sweep, TimedVolume, ZeroAndLeak,
 };
+pub use shop::{Logo, Shop, Signatory};

@@ -1,0 +1,428 @@
+//! What a record says: its kind, its canonical bytes, and the rows by which it is found.
+//!
+//! Comes in: what is to be recorded. Goes out: the bytes the chain runs over, and back; and from the same value the
+//! rows of the tables for lists, so that writing and checking cannot disagree about them.
+
+use std::borrow::Cow;
+
+use chrono::{DateTime, FixedOffset};
+use rusqlite::types::Value;
+
+use super::canonical::{self, Bytes, Canonical, Reader, Unreadable, Writer};
+use super::registers::Entry;
+use super::runs::{Origin, SourceFiles};
+use crate::entry::{
+    Decision, Diver, FirstStage, Instrument, LeftOut, Orifice, PointReading, Readings, Run, RunNumber, Shop,
+};
+
+/// First byte of every payload: the form of the bytes that follow it.
+///
+/// When a type of `entry` gains a field, new records get the next number, and [`read`] keeps reading the old ones.
+pub(super) const FORMAT: u8 = 1;
+
+/// Kinds from here on are personal: their payloads can be erased. The triggers know the same number.
+pub(super) const FIRST_PERSONAL_KIND: u16 = 1000;
+
+/// The kind of a record, as its number stands in the chain; a number is never given twice.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) enum Kind {
+    Begun = 1,
+    Run = 2,
+    Readings = 3,
+    Source = 4,
+    PointCorrected = 5,
+    PointStruck = 6,
+    RunRestated = 7,
+    RunFinished = 8,
+    LeftOut = 9,
+    Decided = 10,
+    Orifice = 11,
+    Instrument = 12,
+    FirstStage = 13,
+    Acceptance = 14,
+    Shop = 15,
+    Erasure = 16,
+    CopyMade = 17,
+    Diver = 1000,
+}
+
+impl Kind {
+    const ALL: [Self; 18] = [
+        Self::Begun,
+        Self::Run,
+        Self::Readings,
+        Self::Source,
+        Self::PointCorrected,
+        Self::PointStruck,
+        Self::RunRestated,
+        Self::RunFinished,
+        Self::LeftOut,
+        Self::Decided,
+        Self::Orifice,
+        Self::Instrument,
+        Self::FirstStage,
+        Self::Acceptance,
+        Self::Shop,
+        Self::Erasure,
+        Self::CopyMade,
+        Self::Diver,
+    ];
+
+    /// The kind of a number, if this program knows it.
+    pub(super) fn of(number: u16) -> Option<Self> {
+        Self::ALL.into_iter().find(|kind| kind.number() == number)
+    }
+
+    /// Its number in the chain.
+    pub(super) const fn number(self) -> u16 {
+        self as u16
+    }
+}
+
+/// A file the record was copied to.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum CopyKind {
+    /// A backup of the whole book.
+    Backup,
+    /// An export with divers.
+    Export,
+}
+
+/// What a record says.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) enum Body<'a> {
+    /// The book was begun.
+    Begun,
+    /// A run was begun; its header.
+    Run { number: RunNumber, origin: Origin, source: Option<[u8; 32]>, header: Cow<'a, Run> },
+    /// A block of readings of a run.
+    Readings { run: RunNumber, readings: Cow<'a, Readings> },
+    /// The files a run was imported from.
+    Source { run: RunNumber, files: Cow<'a, SourceFiles> },
+    /// A point was typed wrong; `replaces` is the record that held it.
+    PointCorrected { run: RunNumber, point: u32, replaces: u64, reading: PointReading },
+    /// A point was struck; `replaces` is the record that held it.
+    PointStruck { run: RunNumber, point: u32, replaces: u64, why: String },
+    /// What stands around the readings was corrected; `replaces` is the header before.
+    RunRestated { run: RunNumber, replaces: u64, header: Cow<'a, Run> },
+    /// All points are in.
+    RunFinished { run: RunNumber },
+    /// A point was left out of the line.
+    LeftOut { run: RunNumber, left_out: LeftOut, by: Option<String> },
+    /// A run was decided upon.
+    Decided { run: RunNumber, decision: Box<Decision> },
+    /// An entry of a register; `replaces` is the record of the revision before.
+    Entry { revision: u32, replaces: Option<u64>, entry: Box<Entry> },
+    /// Payloads were erased.
+    Erasure { erased: Vec<u64>, why: String },
+    /// A copy was made.
+    CopyMade { kind: CopyKind, place: String },
+}
+
+/// A record: when it was written and what it says.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) struct Record<'a> {
+    pub(super) at: DateTime<FixedOffset>,
+    pub(super) body: Body<'a>,
+}
+
+/// A row of a table for lists: the table and its columns; the first column is its key.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) struct Row {
+    pub(super) table: &'static str,
+    pub(super) columns: Vec<(&'static str, Value)>,
+}
+
+impl Body<'_> {
+    /// Its kind.
+    pub(super) const fn kind(&self) -> Kind {
+        match self {
+            Self::Begun => Kind::Begun,
+            Self::Run { .. } => Kind::Run,
+            Self::Readings { .. } => Kind::Readings,
+            Self::Source { .. } => Kind::Source,
+            Self::PointCorrected { .. } => Kind::PointCorrected,
+            Self::PointStruck { .. } => Kind::PointStruck,
+            Self::RunRestated { .. } => Kind::RunRestated,
+            Self::RunFinished { .. } => Kind::RunFinished,
+            Self::LeftOut { .. } => Kind::LeftOut,
+            Self::Decided { .. } => Kind::Decided,
+            Self::Entry { entry, .. } => entry.register().kind(),
+            Self::Erasure { .. } => Kind::Erasure,
+            Self::CopyMade { .. } => Kind::CopyMade,
+        }
+    }
+
+    /// The run it belongs to.
+    pub(super) const fn run(&self) -> Option<RunNumber> {
+        match self {
+            Self::Run { number: run, .. }
+            | Self::Readings { run, .. }
+            | Self::Source { run, .. }
+            | Self::PointCorrected { run, .. }
+            | Self::PointStruck { run, .. }
+            | Self::RunRestated { run, .. }
+            | Self::RunFinished { run }
+            | Self::LeftOut { run, .. }
+            | Self::Decided { run, .. } => Some(*run),
+            Self::Begun | Self::Entry { .. } | Self::Erasure { .. } | Self::CopyMade { .. } => None,
+        }
+    }
+}
+
+/// The canonical bytes of a record.
+pub(super) fn write(record: &Record<'_>) -> Vec<u8> {
+    let mut bytes = Writer::default();
+    let out = &mut bytes;
+    out.raw(&[FORMAT]);
+    record.at.write(out);
+    match &record.body {
+        Body::Begun => {}
+        Body::Run { number, origin, source, header } => {
+            number.write(out);
+            origin.write(out);
+            source.write(out);
+            canonical::header::write(header, out);
+        }
+        Body::Readings { run, readings } => {
+            run.write(out);
+            readings.write(out);
+        }
+        Body::Source { run, files } => {
+            run.write(out);
+            files.write(out);
+        }
+        Body::PointCorrected { run, point, replaces, reading } => {
+            run.write(out);
+            point.write(out);
+            replaces.write(out);
+            reading.write(out);
+        }
+        Body::PointStruck { run, point, replaces, why } => {
+            run.write(out);
+            point.write(out);
+            replaces.write(out);
+            why.write(out);
+        }
+        Body::RunRestated { run, replaces, header } => {
+            run.write(out);
+            replaces.write(out);
+            canonical::header::write(header, out);
+        }
+        Body::RunFinished { run } => run.write(out),
+        Body::LeftOut { run, left_out, by } => {
+            run.write(out);
+            left_out.write(out);
+            by.write(out);
+        }
+        Body::Decided { run, decision } => {
+            run.write(out);
+            decision.write(out);
+        }
+        Body::Entry { revision, replaces, entry } => {
+            revision.write(out);
+            replaces.write(out);
+            match entry.as_ref() {
+                Entry::Orifice(entry) => entry.write(out),
+                Entry::Instrument(entry) => entry.write(out),
+                Entry::FirstStage(entry) => entry.write(out),
+                Entry::Acceptance(entry) => entry.write(out),
+                Entry::Shop(entry) => entry.write(out),
+                Entry::Diver(entry) => entry.write(out),
+            }
+        }
+        Body::Erasure { erased, why } => {
+            erased.write(out);
+            why.write(out);
+        }
+        Body::CopyMade { kind, place } => {
+            kind.write(out);
+            place.write(out);
+        }
+    }
+    bytes.into_bytes()
+}
+
+/// The record of a kind from its canonical bytes.
+///
+/// # Errors
+/// A kind or a form that this program does not know; bytes that are not that kind's.
+pub(super) fn read(kind: u16, bytes: &[u8]) -> Result<Record<'static>, Unreadable> {
+    let kind = Kind::of(kind).ok_or(Unreadable::Choice(u32::from(kind), "record"))?;
+    let mut reader = Reader::new(bytes);
+    let from = &mut reader;
+    let format = u8::read(from)?;
+    if format != FORMAT {
+        return Err(Unreadable::Choice(u32::from(format), "form"));
+    }
+    let at = Canonical::read(from)?;
+    let body = match kind {
+        Kind::Begun => Body::Begun,
+        Kind::Run => Body::Run {
+            number: Canonical::read(from)?,
+            origin: Canonical::read(from)?,
+            source: Canonical::read(from)?,
+            header: Cow::Owned(canonical::header::read(from)?),
+        },
+        Kind::Readings => {
+            Body::Readings { run: Canonical::read(from)?, readings: Cow::Owned(Canonical::read(from)?) }
+        }
+        Kind::Source => {
+            Body::Source { run: Canonical::read(from)?, files: Cow::Owned(Canonical::read(from)?) }
+        }
+        Kind::PointCorrected => Body::PointCorrected {
+            run: Canonical::read(from)?,
+            point: Canonical::read(from)?,
+            replaces: Canonical::read(from)?,
+            reading: Canonical::read(from)?,
+        },
+        Kind::PointStruck => Body::PointStruck {
+            run: Canonical::read(from)?,
+            point: Canonical::read(from)?,
+            replaces: Canonical::read(from)?,
+            why: Canonical::read(from)?,
+        },
+        Kind::RunRestated => Body::RunRestated {
+            run: Canonical::read(from)?,
+            replaces: Canonical::read(from)?,
+            header: Cow::Owned(canonical::header::read(from)?),
+        },
+        Kind::RunFinished => Body::RunFinished { run: Canonical::read(from)? },
+        Kind::LeftOut => Body::LeftOut {
+            run: Canonical::read(from)?,
+            left_out: Canonical::read(from)?,
+            by: Canonical::read(from)?,
+        },
+        Kind::Decided => {
+            Body::Decided { run: Canonical::read(from)?, decision: Box::new(Canonical::read(from)?) }
+        }
+        Kind::Orifice => entry(from, |from| Orifice::read(from).map(Entry::Orifice))?,
+        Kind::Instrument => entry(from, |from| Instrument::read(from).map(Entry::Instrument))?,
+        Kind::FirstStage => entry(from, |from| FirstStage::read(from).map(Entry::FirstStage))?,
+        Kind::Acceptance => entry(from, |from| Canonical::read(from).map(Entry::Acceptance))?,
+        Kind::Shop => entry(from, |from| Shop::read(from).map(Entry::Shop))?,
+        Kind::Diver => entry(from, |from| Diver::read(from).map(Entry::Diver))?,
+        Kind::Erasure => Body::Erasure { erased: Canonical::read(from)?, why: Canonical::read(from)? },
+        Kind::CopyMade => Body::CopyMade { kind: Canonical::read(from)?, place: Canonical::read(from)? },
+    };
+    reader.finish()?;
+    Ok(Record { at, body })
+}
+
+fn entry(
+    from: &mut Reader<'_>,
+    read: impl FnOnce(&mut Reader<'_>) -> Result<Entry, Unreadable>,
+) -> Result<Body<'static>, Unreadable> {
+    let (revision, replaces) = (Canonical::read(from)?, Canonical::read(from)?);
+    Ok(Body::Entry { revision, replaces, entry: Box::new(read(from)?) })
+}
+
+/// The rows by which a record is found.
+pub(super) fn rows(seq: u64, body: &Body<'_>) -> Vec<Row> {
+    let mut rows = Vec::new();
+    if let Some(run) = body.run() {
+        let kind = Value::Integer(i64::from(body.kind().number()));
+        let columns = vec![("seq", place(seq)), ("run", number(run)), ("kind", kind)];
+        rows.push(Row { table: "of_run", columns });
+    }
+    match body {
+        Body::Run { number: run, origin, source, header } => {
+            let digest = source.map_or(Value::Null, |digest| Value::Blob(digest.to_vec()));
+            let columns = vec![
+                ("seq", place(seq)),
+                ("number", number(*run)),
+                ("orifice", text(header.orifice.as_str())),
+                ("orifice_key", text(&super::registers::key_of(header.orifice.as_str()))),
+                ("gas", code(&header.gas)),
+                ("purpose", code(&header.purpose)),
+                ("taken", text(&header.taken.to_rfc3339())),
+                ("taken_s", Value::Integer(header.taken.timestamp())),
+                ("technician", header.technician.as_deref().map_or(Value::Null, text)),
+                ("origin", code(origin)),
+                ("source", digest),
+            ];
+            rows.push(Row { table: "run", columns });
+        }
+        Body::Decided { run, decision } => {
+            let figures = &decision.figures;
+            let columns = vec![
+                ("seq", place(seq)),
+                ("run", number(*run)),
+                ("verdict", code(&decision.verdict)),
+                ("method", Value::Integer(i64::from(figures.method_revision))),
+                ("ip_pa", real(figures.ip.as_pa())),
+                ("flow_l_min", real(figures.flow_l_min)),
+                ("expanded_l_min", real(figures.expanded_l_min())),
+                ("decided", text(&decision.at.to_rfc3339())),
+            ];
+            rows.push(Row { table: "decision", columns });
+        }
+        Body::Entry { revision, entry, .. } => {
+            let columns = vec![
+                ("seq", place(seq)),
+                ("register", Value::Integer(entry.register().number())),
+                ("key", text(&super::registers::key_of(entry.name()))),
+                ("id", text(entry.name())),
+                ("revision", Value::Integer(i64::from(*revision))),
+            ];
+            rows.push(Row { table: "register", columns });
+        }
+        Body::Erasure { erased, .. } => {
+            for target in erased {
+                let columns = vec![("seq", place(*target)), ("erasure", place(seq))];
+                rows.push(Row { table: "erased", columns });
+            }
+        }
+        _ => {}
+    }
+    rows
+}
+
+/// A place in the chain as SQLite keeps it; SQLite counts rows to 2⁶³ − 1, and a place comes from there.
+pub(super) fn place(seq: u64) -> Value {
+    Value::Integer(i64::try_from(seq).unwrap_or(i64::MAX))
+}
+
+fn number(run: RunNumber) -> Value {
+    Value::Integer(i64::from(run.get()))
+}
+
+fn text(text: &str) -> Value {
+    Value::Text(text.to_owned())
+}
+
+/// SQLite has no NaN; unknown stays unknown.
+fn real(figure: f64) -> Value {
+    if figure.is_nan() { Value::Null } else { Value::Real(figure) }
+}
+
+/// The byte of a choice, the same as in the canonical bytes.
+fn code(choice: &impl Canonical) -> Value {
+    let mut out = Writer::default();
+    choice.write(&mut out);
+    Value::Integer(out.into_bytes().first().copied().map_or(0, i64::from))
+}
+
+canonical::choice!(Origin, "origin" { Imported = 1, Entered = 2 });
+canonical::choice!(CopyKind, "copy" { Backup = 1, Export = 2 });
+
+impl Canonical for SourceFiles {
+    fn write(&self, out: &mut Writer) {
+        let Self { run_file_name, run_file, readings_name, readings } = self;
+        run_file_name.write(out);
+        out.length(run_file.len());
+        out.raw(run_file);
+        readings_name.write(out);
+        out.length(readings.len());
+        out.raw(readings);
+    }
+
+    fn read(from: &mut Reader<'_>) -> Result<Self, Unreadable> {
+        Ok(Self {
+            run_file_name: Canonical::read(from)?,
+            run_file: Bytes::read(from)?.0,
+            readings_name: Canonical::read(from)?,
+            readings: Bytes::read(from)?.0,
+        })
+    }
+}

@@ -1,0 +1,312 @@
+//! What can go wrong with a book, in sentences.
+
+use std::path::{Path, PathBuf};
+
+use rusqlite::ErrorCode;
+
+use super::canonical::Unreadable;
+use super::registers::Register;
+use crate::entry::RunNumber;
+
+/// Why the book could not do what was asked.
+#[derive(Debug, thiserror::Error)]
+pub enum BookError {
+    /// There is no file of that name.
+    #[error("there is no book at {}: name another, or begin one by entering or importing a run", path.display())]
+    NoBook {
+        /// Where it was looked for.
+        path: PathBuf,
+    },
+    /// The file is something else.
+    #[error("{} is not a book: {what}; name another file", path.display())]
+    NotABook {
+        /// The file.
+        path: PathBuf,
+        /// What it is.
+        what: Stranger,
+    },
+    /// A later program made it.
+    #[error(
+        "{} was written by a newer program (form {found}, this program knows up to {known}): use that program, or a \
+         backup from before",
+        path.display()
+    )]
+    Newer {
+        /// The file.
+        path: PathBuf,
+        /// The form it has.
+        found: u32,
+        /// The last form known here.
+        known: u32,
+    },
+    /// Its content is not what it was.
+    #[error("{} is damaged: {what}; it was left as it is, go back to a backup", path.display())]
+    Damaged {
+        /// The file.
+        path: PathBuf,
+        /// What was found.
+        what: String,
+    },
+    /// Another program holds it.
+    #[error(
+        "{} is in use by another program, and was still after {waited_s} s: close that program or try again",
+        path.display()
+    )]
+    Locked {
+        /// The file.
+        path: PathBuf,
+        /// How long was waited, in seconds.
+        waited_s: f64,
+    },
+    /// No room.
+    #[error("the disk that holds {} is full: nothing was recorded, make room and try again", path.display())]
+    Full {
+        /// The file.
+        path: PathBuf,
+    },
+    /// Not allowed.
+    #[error("{} may not be {doing} by this user: check the rights of the file and of its folder", path.display())]
+    Permission {
+        /// The file.
+        path: PathBuf,
+        /// What was tried: `read`, `opened`, `written`, `created`.
+        doing: &'static str,
+    },
+    /// The disk failed.
+    #[error("{} could not be {doing}: the disk or the network it is on reports \"{says}\"", path.display())]
+    Io {
+        /// The file.
+        path: PathBuf,
+        /// What was tried.
+        doing: &'static str,
+        /// What the system says.
+        says: String,
+    },
+    /// More than a row of the book holds.
+    #[error("that is too large for {}: a file or a block of readings may have at most a thousand million bytes", path.display())]
+    TooLarge {
+        /// The file.
+        path: PathBuf,
+    },
+    /// The book is open for reading only.
+    #[error("{} was opened for reading only", path.display())]
+    ReadingOnly {
+        /// The file.
+        path: PathBuf,
+    },
+    /// SQLite reports something that none of the above is.
+    #[error("{} could not be used: {says}", path.display())]
+    Other {
+        /// The file.
+        path: PathBuf,
+        /// What SQLite says.
+        says: String,
+    },
+    /// A run that was never recorded.
+    #[error("there is no run {run} in {}", path.display())]
+    NoSuchRun {
+        /// The book.
+        path: PathBuf,
+        /// The run asked for.
+        run: RunNumber,
+    },
+    /// A point that the run does not have.
+    #[error("run {run} has no point {point}: its points are 1 to {points}")]
+    NoSuchPoint {
+        /// The run.
+        run: RunNumber,
+        /// The point asked for.
+        point: usize,
+        /// The points it has.
+        points: usize,
+    },
+    /// A point that was struck or left out before.
+    #[error("point {point} of run {run} is already left out")]
+    AlreadyLeftOut {
+        /// The run.
+        run: RunNumber,
+        /// The point.
+        point: usize,
+    },
+    /// A run that is complete.
+    #[error("run {run} is complete: a point is left out with its reason, and new points make a new run")]
+    Complete {
+        /// The run.
+        run: RunNumber,
+    },
+    /// A run that is still being entered.
+    #[error("run {run} is still being entered: finish it first")]
+    Incomplete {
+        /// The run.
+        run: RunNumber,
+    },
+    /// A correction of what identifies a run.
+    #[error("run {run} keeps its orifice, gas, purpose, time and technician: enter another run")]
+    AnotherRun {
+        /// The run.
+        run: RunNumber,
+    },
+    /// A run to be entered that brings a time series.
+    #[error("a run that is entered has points, not a time series")]
+    NotPoints,
+    /// A name that is there.
+    #[error("{} {id} is already in the register: names that differ only in case are the same, so edit it or choose another", register.name())]
+    Taken {
+        /// The register.
+        register: Register,
+        /// The name as it stands there.
+        id: String,
+    },
+    /// A name that is not there.
+    #[error("there is no {} {id} in the register", register.name())]
+    Unknown {
+        /// The register.
+        register: Register,
+        /// The name asked for.
+        id: String,
+    },
+    /// A file where the copy would go.
+    #[error("{} is there already: name another file, or say that it may be replaced (a book in use never is)", path.display())]
+    CopyThere {
+        /// The file.
+        path: PathBuf,
+    },
+    /// The copy is not what it should be.
+    #[error("the copy {} does not hold what the book holds: {what}; it was removed", path.display())]
+    BadCopy {
+        /// The file.
+        path: PathBuf,
+        /// What was found.
+        what: String,
+    },
+}
+
+/// What a file is that is no book.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, thiserror::Error)]
+pub enum Stranger {
+    /// Nothing in it.
+    #[error("it is empty")]
+    Empty,
+    /// A folder.
+    #[error("it is a folder")]
+    Folder,
+    /// Text, or anything else.
+    #[error("it is no database")]
+    NoDatabase,
+    /// SQLite, but of another program.
+    #[error("it is the database of another program")]
+    OtherApplication,
+}
+
+impl BookError {
+    /// Whether the call is wrong (exit status 2), not the book or the disk (exit status 3).
+    #[must_use]
+    pub const fn is_of_the_call(&self) -> bool {
+        match self {
+            Self::NotABook { .. }
+            | Self::Newer { .. }
+            | Self::Damaged { .. }
+            | Self::Locked { .. }
+            | Self::Full { .. }
+            | Self::Permission { .. }
+            | Self::Io { .. }
+            | Self::Other { .. }
+            | Self::BadCopy { .. }
+            | Self::ReadingOnly { .. } => false,
+            Self::NoBook { .. }
+            | Self::TooLarge { .. }
+            | Self::NoSuchRun { .. }
+            | Self::NoSuchPoint { .. }
+            | Self::AlreadyLeftOut { .. }
+            | Self::Complete { .. }
+            | Self::Incomplete { .. }
+            | Self::AnotherRun { .. }
+            | Self::NotPoints
+            | Self::Taken { .. }
+            | Self::Unknown { .. }
+            | Self::CopyThere { .. } => true,
+        }
+    }
+
+    pub(super) fn stranger(path: &Path, what: Stranger) -> Self {
+        Self::NotABook { path: path.to_owned(), what }
+    }
+
+    pub(super) fn damaged(path: &Path, what: impl Into<String>) -> Self {
+        Self::Damaged { path: path.to_owned(), what: what.into() }
+    }
+
+    /// From an error of the system; `doing` is a participle.
+    pub(super) fn of_io(path: &Path, doing: &'static str, error: &std::io::Error) -> Self {
+        use std::io::ErrorKind;
+        let path = path.to_owned();
+        match error.kind() {
+            ErrorKind::PermissionDenied | ErrorKind::ReadOnlyFilesystem => Self::Permission { path, doing },
+            ErrorKind::StorageFull | ErrorKind::QuotaExceeded => Self::Full { path },
+            _ => Self::Io { path, doing, says: error.to_string() },
+        }
+    }
+}
+
+/// What goes wrong inside the room, where the path of the book is not at hand.
+#[derive(Debug)]
+pub(super) enum Inside {
+    /// SQLite.
+    Sql(rusqlite::Error),
+    /// A record that no longer reads as one.
+    Unreadable(u64, Unreadable),
+    /// The content contradicts itself.
+    Damaged(String),
+    /// A run that was never recorded.
+    NoSuchRun(RunNumber),
+    /// A sentence that needs no path.
+    Said(BookError),
+}
+
+impl From<rusqlite::Error> for Inside {
+    fn from(error: rusqlite::Error) -> Self {
+        Self::Sql(error)
+    }
+}
+
+impl From<BookError> for Inside {
+    fn from(error: BookError) -> Self {
+        Self::Said(error)
+    }
+}
+
+impl Inside {
+    /// The sentence for a person; `waited_s` is how long is waited for a lock.
+    pub(super) fn at(self, path: &Path, waited_s: f64) -> BookError {
+        match self {
+            Self::Said(error) => error,
+            Self::NoSuchRun(run) => BookError::NoSuchRun { path: path.to_owned(), run },
+            Self::Damaged(what) => BookError::damaged(path, what),
+            Self::Unreadable(seq, why) => {
+                BookError::damaged(path, format!("record {seq} cannot be read, {why}"))
+            }
+            Self::Sql(error) => of_sql(&error, path, waited_s),
+        }
+    }
+}
+
+fn of_sql(error: &rusqlite::Error, path: &Path, waited_s: f64) -> BookError {
+    let owned = path.to_owned();
+    let says = error.to_string();
+    match error.sqlite_error_code() {
+        Some(ErrorCode::DatabaseBusy | ErrorCode::DatabaseLocked | ErrorCode::FileLockingProtocolFailed) => {
+            BookError::Locked { path: owned, waited_s }
+        }
+        Some(ErrorCode::DiskFull) => BookError::Full { path: owned },
+        Some(ErrorCode::DatabaseCorrupt | ErrorCode::NotADatabase) => BookError::damaged(path, says),
+        Some(ErrorCode::ReadOnly | ErrorCode::PermissionDenied) => {
+            BookError::Permission { path: owned, doing: "written" }
+        }
+        Some(ErrorCode::CannotOpen) => BookError::Permission { path: owned, doing: "opened" },
+        Some(ErrorCode::SystemIoFailure) => BookError::Io { path: owned, doing: "used", says },
+        Some(ErrorCode::TooBig) => BookError::TooLarge { path: owned },
+        Some(_) => BookError::Other { path: owned, says },
+        // A column of another type than it was made with: the file is not as this program wrote it.
+        None => BookError::damaged(path, says),
+    }
+}

@@ -1,0 +1,141 @@
+//! Version 1: the chain of records, and the tables by which they are found.
+//!
+//! `record` and `payload` are the record. Every other table but `head` and `wiping` repeats what stands in payloads so that it can be
+//! found without reading them all; `check` derives each of those rows again from its payload and compares.
+
+use super::Migration;
+
+pub(super) const MIGRATION: Migration = Migration { version: 1, sql: SQL };
+
+const SQL: &str = "
+-- The chain: one row for everything recorded, never changed and never deleted. It holds no personal text.
+CREATE TABLE record (
+  seq    INTEGER PRIMARY KEY,                           -- place in the chain, counted from 1 without a gap
+  kind   INTEGER NOT NULL,                              -- what was recorded; 1000 and over are personal
+  digest BLOB    NOT NULL CHECK (length(digest) = 32),  -- SHA-256 of salt and payload
+  link   BLOB    NOT NULL CHECK (length(link) = 32)     -- SHA-256 of the link before, seq, kind and digest
+) STRICT;
+
+-- What was recorded, as canonical bytes.
+CREATE TABLE payload (
+  seq   INTEGER PRIMARY KEY REFERENCES record (seq),    -- the record it belongs to
+  salt  BLOB    NOT NULL CHECK (length(salt) = 16),     -- drawn for this record alone
+  bytes BLOB    NOT NULL                                -- canonical bytes
+) STRICT;
+
+-- Runs, for lists.
+CREATE TABLE run (
+  seq         INTEGER PRIMARY KEY REFERENCES record (seq), -- the record that began it
+  number      INTEGER NOT NULL UNIQUE,                  -- 7 for R0007
+  orifice     TEXT    NOT NULL,                         -- name of the orifice as given
+  orifice_key TEXT    NOT NULL,                         -- the same in lower case
+  gas         INTEGER NOT NULL,                         -- 1 oxygen, 2 air, 3 nitrogen, 4 helium
+  purpose     INTEGER NOT NULL,                         -- 1 acceptance, 2 as-found, 3 as-left, 4 check
+  taken       TEXT    NOT NULL,                         -- when it was taken, RFC 3339 with the offset as given
+  taken_s     INTEGER NOT NULL,                         -- the same in seconds since 1970-01-01T00:00:00Z
+  technician  TEXT,                                     -- who took it
+  origin      INTEGER NOT NULL,                         -- 1 imported, 2 entered
+  source      BLOB                                      -- SHA-256 of the files of an imported run
+) STRICT;
+CREATE UNIQUE INDEX run_source  ON run (source) WHERE source IS NOT NULL;
+CREATE INDEX        run_orifice ON run (orifice_key, taken_s, number);
+CREATE INDEX        run_entered ON run (number) WHERE origin = 2;
+
+-- Every record of a run, in order of seq: its header, readings, files, corrections, judgements.
+CREATE TABLE of_run (
+  seq  INTEGER PRIMARY KEY REFERENCES record (seq),     -- the record
+  run  INTEGER NOT NULL,                                -- number of the run
+  kind INTEGER NOT NULL                                 -- kind of the record
+) STRICT;
+CREATE INDEX of_run_run ON of_run (run, seq);
+
+-- Decisions, for lists; the latest of a run is the one that holds.
+CREATE TABLE decision (
+  seq            INTEGER PRIMARY KEY REFERENCES record (seq), -- the record
+  run            INTEGER NOT NULL,                      -- number of the run
+  verdict        INTEGER NOT NULL,                      -- 1 pass, 2 fail, 3 undecided, 4 none
+  method         INTEGER NOT NULL,                      -- revision of the method
+  ip_pa          REAL,                                  -- nominal intermediate pressure, Pa over ambient
+  flow_l_min     REAL,                                  -- flow there, L/min STPD of gas of 20 °C
+  expanded_l_min REAL,                                  -- its expanded uncertainty at 95 %, L/min
+  decided        TEXT    NOT NULL                       -- when, RFC 3339 with its offset
+) STRICT;
+CREATE INDEX decision_run ON decision (run, seq);
+
+-- Entries of the registers; the highest revision of a key is the one that holds.
+CREATE TABLE register (
+  seq      INTEGER PRIMARY KEY REFERENCES record (seq), -- the record
+  register INTEGER NOT NULL,                            -- 1 orifice, 2 instrument, 3 first stage, 4 acceptance, 5 shop, 6 diver
+  key      TEXT    NOT NULL,                            -- name in lower case
+  id       TEXT    NOT NULL,                            -- name as given
+  revision INTEGER NOT NULL                             -- counted from 1
+) STRICT;
+CREATE UNIQUE INDEX register_key ON register (register, key, revision);
+
+-- Records whose payload was erased.
+CREATE TABLE erased (
+  seq     INTEGER PRIMARY KEY REFERENCES record (seq),  -- the record without its payload
+  erasure INTEGER NOT NULL REFERENCES record (seq)      -- the record that says when and why
+) STRICT;
+
+-- The end of the chain as it stood after the last transaction: one row, written anew with each.
+CREATE TABLE head (
+  one  INTEGER PRIMARY KEY CHECK (one = 1),             -- always 1
+  seq  INTEGER NOT NULL,                                -- last place in the chain
+  link BLOB    NOT NULL CHECK (length(link) = 32)       -- its link
+) STRICT;
+
+-- One row while an erasure has yet to be carried through to the file and its log.
+CREATE TABLE wiping (
+  one INTEGER PRIMARY KEY CHECK (one = 1)               -- always 1
+) STRICT;
+
+-- Nothing recorded is changed, whatever the form of the statement.
+CREATE TRIGGER record_stays    BEFORE UPDATE ON record   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER payload_stays   BEFORE UPDATE ON payload  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER run_stays       BEFORE UPDATE ON run      BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER of_run_stays    BEFORE UPDATE ON of_run   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER decision_stays  BEFORE UPDATE ON decision BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER register_stays  BEFORE UPDATE ON register BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER erased_stays    BEFORE UPDATE ON erased   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+
+CREATE TRIGGER record_kept     BEFORE DELETE ON record   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER run_kept        BEFORE DELETE ON run      BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER of_run_kept     BEFORE DELETE ON of_run   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER decision_kept   BEFORE DELETE ON decision BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER erased_kept     BEFORE DELETE ON erased   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+-- Only what an erasure names may go.
+CREATE TRIGGER payload_kept    BEFORE DELETE ON payload
+  WHEN NOT EXISTS (SELECT 1 FROM erased WHERE seq = OLD.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER register_kept   BEFORE DELETE ON register
+  WHEN NOT EXISTS (SELECT 1 FROM erased WHERE seq = OLD.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+
+-- Insertion that would replace (INSERT OR REPLACE deletes without asking the triggers above where recursive triggers
+-- are off), and links out of order.
+CREATE TRIGGER record_follows  BEFORE INSERT ON record
+  WHEN NEW.seq IS NOT (SELECT coalesce(max(seq), 0) + 1 FROM record)
+  BEGIN SELECT RAISE(ABORT, 'a record comes after the last one'); END;
+CREATE TRIGGER payload_new     BEFORE INSERT ON payload
+  WHEN EXISTS (SELECT 1 FROM payload WHERE seq = NEW.seq) OR EXISTS (SELECT 1 FROM erased WHERE seq = NEW.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER run_new         BEFORE INSERT ON run
+  WHEN EXISTS (SELECT 1 FROM run WHERE seq = NEW.seq OR number = NEW.number OR source = NEW.source)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER of_run_new      BEFORE INSERT ON of_run
+  WHEN EXISTS (SELECT 1 FROM of_run WHERE seq = NEW.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER decision_new    BEFORE INSERT ON decision
+  WHEN EXISTS (SELECT 1 FROM decision WHERE seq = NEW.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER register_new    BEFORE INSERT ON register
+  WHEN EXISTS (SELECT 1 FROM register WHERE seq = NEW.seq
+               OR (register = NEW.register AND key = NEW.key AND revision = NEW.revision))
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+-- Only personal records can be erased, each once.
+CREATE TRIGGER erased_new      BEFORE INSERT ON erased
+  WHEN EXISTS (SELECT 1 FROM erased WHERE seq = NEW.seq)
+    OR NOT EXISTS (SELECT 1 FROM record WHERE seq = NEW.seq AND kind >= 1000)
+  BEGIN SELECT RAISE(ABORT, 'only a personal record can be erased'); END;
+";
