@@ -174,7 +174,8 @@ fn behind_its_back(path: &Path, change: &str) {
 
 #[test]
 fn each_way_to_alter_the_record_behind_its_back_is_named_with_its_place() {
-    let alterations: [(&str, fn(&Wrong) -> bool); 15] = [
+    type Expected = fn(&Wrong) -> bool;
+    let alterations: [(&str, Expected); 15] = [
         ("DELETE FROM record WHERE seq = 9", |w| *w == Wrong::RecordMissing(9)),
         ("DELETE FROM payload WHERE seq = 9", |w| *w == Wrong::PayloadMissing(9)),
         ("UPDATE payload SET bytes = zeroblob(length(bytes)) WHERE seq = 9", |w| *w == Wrong::Payload(9)),
