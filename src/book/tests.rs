@@ -375,7 +375,7 @@ fn sample_records() -> Vec<Record<'static>> {
             diluent: Some(Diluent::Oxygen(Share::from_percent(18.0))),
         })),
         Body::Erasure { erased: vec![12, 19], why: "asked to".into() },
-        Body::CopyMade { kind: CopyKind::Backup, place: "/mnt/stick/book.db".into() },
+        Body::CopyMade { kind: CopyKind::Backup, place: "stick/book.db".into() },
     ];
     bodies.into_iter().map(|body| Record { at: time("2026-11-12T10:00:00.25+11:00"), body }).collect()
 }
