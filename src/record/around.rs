@@ -90,24 +90,32 @@ pub(super) fn zero_and_leak(table: Option<&Table<'_>>) -> Result<ZeroAndLeak, Re
     })
 }
 
+/// The keys of `[acceptance]`, and of the register's file.
+pub(super) const ACCEPTANCE: [&str; 14] = [
+    "id",
+    "ip",
+    "flow",
+    "tolerance",
+    "rule",
+    "gas",
+    "straight",
+    "hysteresis",
+    "repeat",
+    "steady",
+    "significance",
+    "crossing",
+    "en",
+    "leak",
+];
+
 /// `[acceptance]`.
 pub(super) fn acceptance(table: &Table<'_>) -> Result<Acceptance, RecordError> {
-    table.only(&[
-        "id",
-        "ip",
-        "flow",
-        "tolerance",
-        "rule",
-        "gas",
-        "straight",
-        "hysteresis",
-        "repeat",
-        "steady",
-        "significance",
-        "crossing",
-        "en",
-        "leak",
-    ])?;
+    table.only(&ACCEPTANCE)?;
+    limits(table)
+}
+
+/// What the keys of [`ACCEPTANCE`] say, in a table that may have others.
+pub(super) fn limits(table: &Table<'_>) -> Result<Acceptance, RecordError> {
     let ip = table.required("ip", "ip = \"10 bar\"")?.quantity(value::<GaugePressure>)?;
     let flow = table.required("flow", "flow = \"0.48 L/min\"")?;
     let flow = above_zero(&flow, flow.quantity(value::<StpdFlow>)?)?;
@@ -236,7 +244,8 @@ fn required(
     Ok(given)
 }
 
-fn above_zero<T: Quantity>(field: &Field<'_>, given: T) -> Result<T, RecordError> {
+/// Refuses nought, which [`value`] takes.
+pub(super) fn above_zero<T: Quantity>(field: &Field<'_>, given: T) -> Result<T, RecordError> {
     if given.si() > 0.0 {
         return Ok(given);
     }

@@ -2,6 +2,9 @@
 //!
 //! Comes in: the text of a file. Goes out: tables and fields that convert themselves into numbers, words and
 //! quantities, or refuse by name. What any key means is said by the modules that ask for it.
+//!
+//! A table may lie over another one, that of an entry as it stands: keys it lacks are then those of the other, and an
+//! empty text takes a key away.
 
 use std::cell::RefCell;
 
@@ -18,7 +21,19 @@ use crate::quantity::{QuantityError, Uncertain, text};
 pub(super) struct Source<'d> {
     file: &'d str,
     text: &'d str,
+    origin: Origin,
     notes: RefCell<Vec<Note>>,
+}
+
+/// Where a text came from, which decides how its places are named.
+#[derive(Clone, Copy, PartialEq, Eq)]
+pub(super) enum Origin {
+    /// A file: its name and the line.
+    File,
+    /// The flags of a command, written as a file would have them: the flag.
+    Flags,
+    /// An entry as it stands, written as a file would have it: its name, and no line, since nobody sees that text.
+    Entry,
 }
 
 /// A table of a document: the whole file, `[meter]`, or the braces behind a key.
@@ -28,6 +43,14 @@ pub(super) struct Table<'d> {
     name: String,
     entries: &'d DeTable<'d>,
     start: Option<usize>,
+    below: Option<Below<'d>>,
+}
+
+/// The table that another one lies over.
+#[derive(Clone, Copy)]
+struct Below<'d> {
+    source: &'d Source<'d>,
+    entries: &'d DeTable<'d>,
 }
 
 /// A key with its value.
@@ -36,24 +59,29 @@ pub(super) struct Field<'d> {
     name: String,
     start: usize,
     value: &'d DeValue<'d>,
+    below: Option<Below<'d>>,
 }
 
 impl<'d> Source<'d> {
     pub(super) fn new(file: &'d str, text: &'d str) -> Self {
-        Self { file, text, notes: RefCell::new(Vec::new()) }
+        Self::from(Origin::File, file, text)
+    }
+
+    /// A text that is no file; `name` stands where a place has no name of its own.
+    pub(super) fn from(origin: Origin, name: &'d str, text: &'d str) -> Self {
+        Self { file: name, text, origin, notes: RefCell::new(Vec::new()) }
     }
 
     /// Parses the text; the caller keeps what is parsed, the source only knows where it stands.
     pub(super) fn parse(&self) -> Result<toml::Spanned<DeTable<'d>>, RecordError> {
         DeTable::parse(self.text).map_err(|error| {
-            let line = error.span().map(|span| self.line(span.start));
             let reason = error.message().lines().collect::<Vec<_>>().join(", ");
-            Refusal::NotToml(reason).at(Place { file: self.file.to_owned(), line, field: None })
+            Refusal::NotToml(reason).at(self.place(error.span().map(|span| span.start), None))
         })
     }
 
     pub(super) fn whole(&'d self, parsed: &'d toml::Spanned<DeTable<'d>>) -> Table<'d> {
-        Table { source: self, name: String::new(), entries: parsed.get_ref(), start: None }
+        Table { source: self, name: String::new(), entries: parsed.get_ref(), start: None, below: None }
     }
 
     pub(super) fn note(&self, note: Note) {
@@ -69,6 +97,14 @@ impl<'d> Source<'d> {
 
     pub(super) fn into_notes(self) -> Vec<Note> {
         self.notes.into_inner()
+    }
+
+    fn place(&self, offset: Option<usize>, field: Option<String>) -> Place {
+        let line = offset.filter(|_| self.origin == Origin::File).map(|offset| self.line(offset));
+        match (self.origin, field) {
+            (Origin::Flags, Some(field)) => Place { file: flag_of(&field), line: None, field: None },
+            (_, field) => Place { file: self.file.to_owned(), line, field },
+        }
     }
 
     fn line(&self, offset: usize) -> u64 {
@@ -88,21 +124,34 @@ impl<'d> Table<'d> {
         let Some((key, _)) = stranger else { return Ok(()) };
         let written = key.get_ref().as_ref();
         let nearest = nearest(written, known.iter().copied()).unwrap_or_default();
-        let line = Some(self.source.line(key.span().start));
-        let field = (!self.name.is_empty()).then(|| format!("[{}]", self.name));
-        Err(Refusal::UnknownKey { key: written.to_owned(), nearest }.at(Place {
-            file: self.source.file.to_owned(),
-            line,
-            field,
-        }))
+        let field = match self.source.origin {
+            Origin::Flags => Some(self.field_name(written)),
+            Origin::File | Origin::Entry => (!self.name.is_empty()).then(|| format!("[{}]", self.name)),
+        };
+        let place = self.source.place(Some(key.span().start), field);
+        Err(Refusal::UnknownKey { key: written.to_owned(), nearest }.at(place))
+    }
+
+    /// This table with that of an entry as it stands below it.
+    pub(super) fn over(self, source: &'d Source<'d>, parsed: &'d toml::Spanned<DeTable<'d>>) -> Self {
+        Self { below: Some(Below { source, entries: parsed.get_ref() }), ..self }
     }
 
     pub(super) fn field(&self, key: &str) -> Option<Field<'d>> {
-        let (key, value) = self.entries.get_key_value(key)?;
-        let written = key.get_ref();
-        let name =
-            if self.name.is_empty() { written.to_string() } else { format!("[{}] {written}", self.name) };
-        Some(Field { source: self.source, name, start: key.span().start, value: value.get_ref() })
+        let own = self.entries.get_key_value(key);
+        let under = self.below.and_then(|below| Some((below.source, below.entries.get_key_value(key)?)));
+        let (source, (written, value)) = own.map(|own| (self.source, own)).or(under)?;
+        let value = value.get_ref();
+        let taken_away = self.below.is_some() && value.as_str().is_some_and(|text| text.trim().is_empty());
+        let below = match (own, under) {
+            (Some(_), Some((source, (_, value)))) => match value.get_ref() {
+                DeValue::Table(entries) => Some(Below { source, entries }),
+                _ => None,
+            },
+            _ => None,
+        };
+        let (name, start) = (self.field_name(written.get_ref()), written.span().start);
+        (!taken_away).then_some(Field { source, name, start, value, below })
     }
 
     /// The field, or a refusal that shows how it is written.
@@ -122,7 +171,8 @@ impl<'d> Table<'d> {
         let name = format!("[{}]", self.child(key));
         let each = |item: &'d toml::Spanned<DeValue<'d>>| match item.get_ref() {
             DeValue::Table(entries) => {
-                Ok(Table { source: self.source, name: name.clone(), entries, start: Some(item.span().start) })
+                let (source, start) = (field.source, Some(item.span().start));
+                Ok(Table { source, name: name.clone(), entries, start, below: None })
             }
             _ => Err(field.wrong("an array of tables")),
         };
@@ -131,16 +181,15 @@ impl<'d> Table<'d> {
 
     /// A refusal of something this table lacks.
     pub(super) fn refuse(&self, key: &str, refusal: Refusal) -> RecordError {
-        let field = if self.name.is_empty() { key.to_owned() } else { format!("[{}] {key}", self.name) };
-        refusal.at(Place {
-            file: self.source.file.to_owned(),
-            line: self.start.map(|start| self.source.line(start)),
-            field: Some(field),
-        })
+        refusal.at(self.source.place(self.start, Some(self.field_name(key))))
     }
 
     pub(super) fn note(&self, note: Note) {
         self.source.note(note);
+    }
+
+    fn field_name(&self, key: &str) -> String {
+        if self.name.is_empty() { key.to_owned() } else { format!("[{}] {key}", self.name) }
     }
 
     fn child(&self, key: &str) -> String {
@@ -150,11 +199,7 @@ impl<'d> Table<'d> {
 
 impl<'d> Field<'d> {
     pub(super) fn place(&self) -> Place {
-        Place {
-            file: self.source.file.to_owned(),
-            line: Some(self.source.line(self.start)),
-            field: Some(self.name.clone()),
-        }
+        self.source.place(Some(self.start), Some(self.name.clone()))
     }
 
     pub(super) fn refuse(&self, refusal: Refusal) -> RecordError {
@@ -163,6 +208,10 @@ impl<'d> Field<'d> {
 
     pub(super) fn note(&self, note: Note) {
         self.source.note(note);
+    }
+
+    pub(super) fn origin(&self) -> Origin {
+        self.source.origin
     }
 
     pub(super) fn is_text(&self) -> bool {
@@ -217,10 +266,42 @@ impl<'d> Field<'d> {
     /// Words a person typed; none when there is nothing but spaces.
     pub(super) fn free_text(&self) -> Result<Option<String>, RecordError> {
         let text = self.text()?.trim();
-        if let Some(hidden) = text.chars().find(|c| is_hidden(*c)) {
-            return Err(self.refuse(Refusal::HiddenCharacter(hidden.into())));
-        }
+        self.no_hidden(text)?;
         Ok((!text.is_empty()).then(|| text.to_owned()))
+    }
+
+    /// As [`Field::free_text`], on several lines, each without spaces at its ends.
+    pub(super) fn free_lines(&self) -> Result<Option<String>, RecordError> {
+        let lines: Vec<&str> = self.text()?.trim().lines().map(str::trim).collect();
+        lines.iter().try_for_each(|line| self.no_hidden(line))?;
+        Ok(Some(lines.join("\n")).filter(|text| !text.is_empty()))
+    }
+
+    /// The text as it stands, which a person would see as it is.
+    pub(super) fn seen_text(&self) -> Result<&'d str, RecordError> {
+        let text = self.text()?;
+        self.no_hidden(text)?;
+        Ok(text)
+    }
+
+    /// The values of a list, each with its own line.
+    pub(super) fn items(&self) -> Result<Vec<Self>, RecordError> {
+        let DeValue::Array(array) = self.value else { return Err(self.wrong("a list")) };
+        let each = |item: &'d toml::Spanned<DeValue<'d>>| Self {
+            source: self.source,
+            name: self.name.clone(),
+            start: item.span().start,
+            value: item.get_ref(),
+            below: None,
+        };
+        Ok(array.iter().map(each).collect())
+    }
+
+    fn no_hidden(&self, text: &str) -> Result<(), RecordError> {
+        match text.chars().find(|c| is_hidden(*c)) {
+            Some(hidden) => Err(self.refuse(Refusal::HiddenCharacter(hidden.into()))),
+            None => Ok(()),
+        }
     }
 
     /// A quantity read by one of the functions of [`crate::quantity::text`].
@@ -283,7 +364,8 @@ impl<'d> Field<'d> {
     pub(super) fn table(&self, name: &str) -> Result<Table<'d>, RecordError> {
         match self.value {
             DeValue::Table(entries) => {
-                Ok(Table { source: self.source, name: name.to_owned(), entries, start: Some(self.start) })
+                let (source, start, below) = (self.source, Some(self.start), self.below);
+                Ok(Table { source, name: name.to_owned(), entries, start, below })
             }
             _ => Err(self.wrong("a table")),
         }
@@ -300,6 +382,12 @@ impl<'d> Field<'d> {
         };
         self.refuse(Refusal::WrongType { want, got })
     }
+}
+
+/// The flag that says what a field of a file says: `--meter-made-for` for `[meter] made_for`.
+pub(super) fn flag_of(field: &str) -> String {
+    let words: String = field.chars().filter(|c| !matches!(c, '[' | ']')).collect();
+    format!("--{}", words.replace([' ', '.', '_'], "-"))
 }
 
 /// The known word nearest to a written one, ignoring case; the first of equally near ones.

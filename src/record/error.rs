@@ -5,6 +5,7 @@
 
 use std::fmt;
 
+use super::registers::RegisterRefusal;
 use crate::entry::IdError;
 use crate::quantity::QuantityError;
 
@@ -32,7 +33,7 @@ pub enum RecordError {
 /// Where something stands in a file.
 #[derive(Debug, Clone, PartialEq, Eq)]
 pub struct Place {
-    /// The file's name as it was given.
+    /// The file's name as it was given; a flag; or an entry that stands in a register.
     pub file: String,
     /// The line, counted from 1; none for something that is missing from the whole file.
     pub line: Option<u64>,
@@ -61,6 +62,9 @@ pub enum Fault {
     /// It is far too long to be what it should be.
     #[error("a run file has at most 1 MiB; readings belong into the CSV file it names")]
     TooLarge,
+    /// It is far too long to be an entry of a register.
+    #[error("an entry of a register has at most 1 MiB; this must be another file")]
+    LargeEntry,
     /// The system refused with its own words.
     #[error("it cannot be read ({0})")]
     System(String),
@@ -153,6 +157,9 @@ pub enum Refusal {
     /// Another kind of record.
     #[error("this is a {0:?} file; a bench run file says record = \"bench run\"")]
     OtherRecord(String),
+    /// What only an entry of a register is refused for.
+    #[error("{0}")]
+    Register(RegisterRefusal),
     /// A purity for a gas that is not oxygen.
     #[error("the gas is {0}; leave the purity of oxygen out")]
     PurityOfOther(&'static str),

@@ -1,6 +1,6 @@
 //! The `[meter]` and `[transducer]` tables: papers of instruments.
 //!
-//! Comes in: a table, and the gas of the run. Goes out: a [`Meter`] or a [`Transducer`]. A key that belongs to
+//! Comes in: a table, and the gas of the run where there is one. Goes out: a [`Meter`] or a [`Transducer`]. A key that belongs to
 //! another kind of meter is refused, because whoever wrote it had that other kind in mind.
 
 use super::document::{Field, Table};
@@ -44,8 +44,8 @@ pub(super) const GASES: [(&str, Species); 4] = [
     (Species::ALL[3].name(), Species::ALL[3]),
 ];
 
-/// A flow meter used on `gas`.
-pub(super) fn meter(table: &Table<'_>, gas: Species) -> Result<Meter, RecordError> {
+/// A flow meter used on `gas`; in a register, on whatever gas comes.
+pub(super) fn meter(table: &Table<'_>, gas: Option<Species>) -> Result<Meter, RecordError> {
     let known: Vec<&str> = PAPERS.into_iter().chain(METER).collect();
     table.only(&known)?;
     let kind = table.required("kind", "kind = \"mass\"")?.word(&KINDS)?;
@@ -82,7 +82,7 @@ pub(super) fn meter(table: &Table<'_>, gas: Species) -> Result<Meter, RecordErro
             MeterKind::Float { reads_at, made_for, scale, made_at, gas_factor }
         }
     };
-    suits(&kind, gas).map_err(|refusal| table.refuse("gas_factor", refusal))?;
+    gas.map_or(Ok(()), |gas| suits(&kind, gas)).map_err(|refusal| table.refuse("gas_factor", refusal))?;
     Ok(Meter { id: table.field("id").map(|id| id.id()).transpose()?, kind, papers: papers(table)? })
 }
 
@@ -160,11 +160,11 @@ fn made_for(table: &Table<'_>) -> Result<Species, RecordError> {
 
 fn gas_factor(
     table: &Table<'_>,
-    gas: Species,
+    gas: Option<Species>,
     made_for: Species,
 ) -> Result<Option<Uncertain<f64>>, RecordError> {
     let Some(field) = table.field("gas_factor") else { return Ok(None) };
-    if gas == made_for {
+    if gas == Some(made_for) {
         let why = "the meter was made for this gas";
         field.note(Note::NotUsed { place: field.place(), why });
     }

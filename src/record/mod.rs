@@ -1,9 +1,10 @@
-//! The files of a bench run: TOML and CSV to [`crate::entry::Run`] and back.
+//! The files of a bench run, TOML and CSV, to [`crate::entry::Run`] and back; and those of the registers.
 //!
 //! Comes in: a run file and the readings it names (`interface.md`, "A bench run file"), from the disk or from files
 //! handed in together. Goes out: plain data, with notes on what was taken for granted; or one refusal that names the
 //! file, the line and the field. Nothing is guessed: a unit, a reference condition or a word that is missing or
-//! unknown is refused. Nothing is computed either, but for units. Left out: session files, registers.
+//! unknown is refused. Nothing is computed either, but for units. An entry of a register is a file of its own, or the
+//! flags of a command (`interface.md`, "Registers"). Left out: session files.
 
 mod error;
 mod note;
@@ -17,9 +18,14 @@ mod sheet;
 mod times;
 mod number;
 mod write;
+mod registers;
 
 pub use error::{Fault, Place, RecordError, Refusal};
 pub use note::{Loaded, Note};
+pub use registers::{
+    NumberPattern, NumberPatternFault, PatternFault, RegisterEntry, RegisterKind, RegisterRefusal, files_beside, flag_of, from_flags,
+    parse_register, parse_register_as, read_register, read_register_as, write_register,
+};
 pub use readings::{MOST_POINTS, MOST_SERIES_ROWS};
 pub use run::{DEFAULT_PURITY, Files, NoRegisters, Registers, parse_run, parse_run_with, read_run};
 pub use write::write_run;

@@ -56,7 +56,8 @@ pub(super) const PURPOSES: [(&str, Purpose); 4] = [
     (Purpose::Check.name(), Purpose::Check),
 ];
 
-const BUILDS: [(&str, Build); 4] = [
+/// The words for how a hole is built, in files.
+pub(super) const BUILDS: [(&str, Build); 4] = [
     (Build::ThinPlate.name(), Build::ThinPlate),
     (Build::ShortTube.name(), Build::ShortTube),
     (Build::Nozzle.name(), Build::Nozzle),
@@ -243,7 +244,7 @@ fn purity(file: &Table<'_>, gas: Species) -> Result<Option<Purity>, RecordError>
 fn meter(file: &Table<'_>, gas: Species, registers: &dyn Registers) -> Result<Meter, RecordError> {
     let field = file.required("meter", "a table [meter] with kind = \"mass\" and what its papers say")?;
     if !field.is_text() {
-        return instruments::meter(&field.table("meter")?, gas);
+        return instruments::meter(&field.table("meter")?, Some(gas));
     }
     let id = field.id()?;
     let meter = registers.meter(&id).ok_or_else(|| field.refuse(not_registered(&id, "meter")))?;
@@ -274,14 +275,15 @@ fn not_registered(id: &Id, table: &'static str) -> Refusal {
 }
 
 /// Opens a file for reading, if it is one.
-fn open(path: &Path) -> Result<Box<dyn Read>, RecordError> {
+pub(super) fn open(path: &Path) -> Result<Box<dyn Read>, RecordError> {
     let refuse = |fault| RecordError::unreadable(&path.display().to_string(), fault);
     let file = File::open(path).map_err(|error| refuse(Fault::of(&error)))?;
     let about = file.metadata().map_err(|error| refuse(Fault::of(&error)))?;
     if about.is_dir() { Err(refuse(Fault::Directory)) } else { Ok(Box::new(file)) }
 }
 
-fn as_text<'b>(name: &str, bytes: &'b [u8]) -> Result<&'b str, RecordError> {
+/// The bytes of a file of ours as the text they should be.
+pub(super) fn as_text<'b>(name: &str, bytes: &'b [u8]) -> Result<&'b str, RecordError> {
     if bytes.contains(&0) {
         return Err(RecordError::unreadable(name, Fault::Binary));
     }

@@ -71,28 +71,28 @@ pub fn write_run(run: &Run, readings_name: &str) -> (String, String) {
 
 /// The lines of a TOML file.
 #[derive(Default)]
-struct Toml(String);
+pub(super) struct Toml(pub(super) String);
 
 impl Toml {
-    fn table(&mut self, name: &str) {
+    pub(super) fn table(&mut self, name: &str) {
         self.0.push_str(&format!("\n[{name}]\n"));
     }
 
-    fn line(&mut self, key: &str, value: &str) {
+    pub(super) fn line(&mut self, key: &str, value: &str) {
         self.0.push_str(&format!("{key} = {value}\n"));
     }
 
-    fn text(&mut self, key: &str, value: &str) {
+    pub(super) fn text(&mut self, key: &str, value: &str) {
         self.line(key, &quoted(value));
     }
 
-    fn some(&mut self, key: &str, value: Option<&str>) {
+    pub(super) fn some(&mut self, key: &str, value: Option<&str>) {
         if let Some(value) = value {
             self.text(key, value);
         }
     }
 
-    fn quantity<T: Quantity>(&mut self, key: &str, value: Option<T>) {
+    pub(super) fn quantity<T: Quantity>(&mut self, key: &str, value: Option<T>) {
         self.some(key, value.map(to_text).as_deref());
     }
 
@@ -132,11 +132,14 @@ impl Toml {
 }
 
 /// A text as a TOML basic string (TOML 1.0, "String").
-fn quoted(text: &str) -> String {
+pub(super) fn quoted(text: &str) -> String {
     let mut quoted = String::from("\"");
     for c in text.chars() {
         match c {
             '"' | '\\' => quoted.extend(['\\', c]),
+            '\n' => quoted.push_str("\\n"),
+            '\r' => quoted.push_str("\\r"),
+            '\t' => quoted.push_str("\\t"),
             _ if c.is_control() => quoted.push_str(&format!("\\u{:04X}", u32::from(c))),
             _ => quoted.push(c),
         }
@@ -169,7 +172,8 @@ fn zero_and_leak(toml: &mut Toml, name: &str, given: ZeroAndLeak) {
     }
 }
 
-fn meter(toml: &mut Toml, meter: &Meter) {
+/// `[meter]`.
+pub(super) fn meter(toml: &mut Toml, meter: &Meter) {
     toml.table("meter");
     toml.some("id", meter.id.as_ref().map(|id| id.as_str()));
     toml.text("kind", meter.kind.name());
@@ -214,7 +218,8 @@ fn at_coverage(expanded: f64, coverage: f64) -> f64 {
     [near, up, down, up.next_up(), down.next_down()].into_iter().find(comes_back).unwrap_or(near)
 }
 
-fn transducer(toml: &mut Toml, transducer: &Transducer) {
+/// `[transducer]`.
+pub(super) fn transducer(toml: &mut Toml, transducer: &Transducer) {
     toml.table("transducer");
     toml.some("id", transducer.id.as_ref().map(|id| id.as_str()));
     papers(toml, &transducer.papers);
@@ -237,6 +242,11 @@ fn papers<R: Quantity>(toml: &mut Toml, papers: &Papers<R::Difference, R>) {
 
 fn acceptance(toml: &mut Toml, given: &Acceptance) {
     toml.table("acceptance");
+    limits(toml, given);
+}
+
+/// The keys of `[acceptance]`, and of the register's file.
+pub(super) fn limits(toml: &mut Toml, given: &Acceptance) {
     toml.some("id", given.id.as_ref().map(|id| id.as_str()));
     toml.quantity("ip", Some(given.ip));
     toml.quantity("flow", Some(given.flow));
@@ -403,7 +413,7 @@ fn digits(x: f64) -> String {
 }
 
 /// A TOML number: an integer where it is a small one, else a float.
-fn number(x: f64) -> String {
+pub(super) fn number(x: f64) -> String {
     if x.fract() == 0.0 && x.abs() < 1e15 { format!("{x}") } else { format!("{x:?}") }
 }
 
