@@ -142,7 +142,9 @@ impl<'d> Table<'d> {
         let under = self.below.and_then(|below| Some((below.source, below.entries.get_key_value(key)?)));
         let (source, (written, value)) = own.map(|own| (self.source, own)).or(under)?;
         let value = value.get_ref();
-        let taken_away = self.below.is_some() && value.as_str().is_some_and(|text| text.trim().is_empty());
+        // Only spaces make a text empty here: the end of a line is a value.
+        let empty = |text: &str| text.bytes().all(|byte| byte == b' ');
+        let taken_away = self.below.is_some() && value.as_str().is_some_and(empty);
         let below = match (own, under) {
             (Some(_), Some((source, (_, value)))) => match value.get_ref() {
                 DeValue::Table(entries) => Some(Below { source, entries }),

@@ -103,9 +103,11 @@ pub(super) fn transducer(table: &Table<'_>) -> Result<Transducer, RecordError> {
     Ok(Transducer { id, papers: papers::<GaugePressure>(table)? })
 }
 
-/// Whether a text that may be a share or a quantity is a share.
+/// Whether a text that may be a share or a quantity is a share; some doubles have no number in per cent, and are
+/// written in the unit one.
 pub(super) fn is_share(text: &str) -> bool {
-    text.contains('%') || text.contains("percent")
+    let unit_one = text.trim().rsplit_once(char::is_whitespace).is_some_and(|(_, unit)| unit == "1");
+    text.contains('%') || text.contains("percent") || unit_one
 }
 
 /// A share written with its unit, as "0.8 %".

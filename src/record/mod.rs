@@ -22,10 +22,11 @@ mod registers;
 
 pub use error::{Fault, Place, RecordError, Refusal};
 pub use note::{Loaded, Note};
-pub use registers::{
-    NumberPattern, NumberPatternFault, PatternFault, RegisterEntry, RegisterKind, RegisterRefusal, files_beside, flag_of, from_flags,
-    parse_register, parse_register_as, read_register, read_register_as, write_register,
-};
 pub use readings::{MOST_POINTS, MOST_SERIES_ROWS};
+pub use registers::{
+    NumberPattern, NumberPatternFault, PatternFault, RegisterEntry, RegisterKind, RegisterRefusal,
+    files_beside, flag_of, from_flags, parse_register, parse_register_as, read_register, read_register_as,
+    write_register,
+};
 pub use run::{DEFAULT_PURITY, Files, NoRegisters, Registers, parse_run, parse_run_with, read_run};
 pub use write::write_run;

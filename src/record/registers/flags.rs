@@ -35,15 +35,24 @@ pub fn flag_of(key: &str) -> String {
 /// The text of a file with these keys, first those of no table.
 pub(super) fn as_toml(flags: &[(String, String)]) -> Result<String, RecordError> {
     let mut tables: Vec<(&str, String)> = vec![("", String::new())];
-    for (at, (key, _)) in flags.iter().enumerate() {
-        let earlier = flags.iter().take(at).any(|(other, _)| other == key);
-        let value = match (earlier, LISTS.contains(&key.as_str())) {
-            (true, true) => continue,
-            (true, false) => return Err(refuse(key, RegisterRefusal::FlagTwice.into())),
-            (false, true) => list(flags, key),
-            (false, false) => value(key, &flags[at].1)?,
+    for (at, (key, text)) in flags.iter().enumerate() {
+        let (table, bare) = split(key);
+        let earlier = || flags.iter().take(at).map(|(other, _)| other);
+        // A key that is also the table of another cannot be written beside it.
+        let same = |other: &String| {
+            let (other_table, other_bare) = split(other);
+            (other_table, other_bare) == (table, bare)
+                || (table.is_empty() && bare == other_table)
+                || (other_table.is_empty() && other_bare == table)
         };
-        let (table, bare) = key.split_once('.').unwrap_or(("", key));
+        let is_list = LISTS.contains(&key.as_str());
+        if is_list && earlier().any(|other| other == key) {
+            continue;
+        }
+        if earlier().any(same) {
+            return Err(refuse(key, RegisterRefusal::FlagTwice.into()));
+        }
+        let value = if is_list { list(flags, key) } else { value(key, text)? };
         let line = format!("{} = {value}\n", quoted(bare));
         match tables.iter_mut().find(|(name, _)| *name == table) {
             Some((_, lines)) => lines.push_str(&line),
@@ -55,6 +64,11 @@ pub(super) fn as_toml(flags: &[(String, String)]) -> Result<String, RecordError>
         name => format!("[{}]\n{lines}", quoted(name)),
     };
     Ok(tables.iter().map(written).collect())
+}
+
+/// The table of a key, empty for none, and the key in it.
+fn split(key: &str) -> (&str, &str) {
+    key.split_once('.').unwrap_or(("", key))
 }
 
 /// All texts of a flag, or the empty text that takes the list away.
@@ -88,8 +102,8 @@ fn value(key: &str, text: &str) -> Result<String, RecordError> {
         };
     }
     if ESCAPED.contains(&key) {
-        let unescaped = unescaped(text)
-            .ok_or_else(|| refuse(key, RegisterRefusal::Escape(text.to_owned()).into()))?;
+        let unescaped =
+            unescaped(text).ok_or_else(|| refuse(key, RegisterRefusal::Escape(text.to_owned()).into()))?;
         return Ok(quoted(&unescaped));
     }
     Ok(quoted(text))

@@ -11,19 +11,8 @@ use crate::entry::{Id, Instrument, InstrumentPapers, Measures, Protocol, Socket}
 use crate::quantity::unit::{self, Unit};
 use crate::quantity::{Kind, QuantityError};
 
-const KEYS: [&str; 11] = [
-    "record",
-    "id",
-    "measures",
-    "port",
-    "usb",
-    "baud",
-    "frame",
-    "unit",
-    "protocol",
-    "meter",
-    "transducer",
-];
+const KEYS: [&str; 11] =
+    ["record", "id", "measures", "port", "usb", "baud", "frame", "unit", "protocol", "meter", "transducer"];
 
 const MEASURES: [(&str, Measures); 6] = [
     (Measures::Flow.name(), Measures::Flow),
@@ -92,7 +81,7 @@ fn socket(file: &Table<'_>) -> Result<Option<Socket>, RecordError> {
 fn baud(field: &Field<'_>) -> Result<u32, RecordError> {
     let given = field.integer()?;
     u32::try_from(given).ok().filter(|baud| *baud > 0).ok_or_else(|| {
-        let want = "bits per second, above zero, as in 19200";
+        let want = "a number of bits per second above zero, as in 19200";
         field.refuse(Refusal::OutOfBounds { shown: given.to_string(), want })
     })
 }
@@ -138,15 +127,18 @@ fn fits(
     protocol: Option<&Protocol>,
     frame: Option<&str>,
 ) -> Result<(), RecordError> {
-    let sends_unit = match protocol {
+    type NoUnit = fn(&'static str) -> RegisterRefusal;
+    let (sends_unit, no_unit): (_, NoUnit) = match protocol {
         None => return Ok(()),
-        Some(Protocol::Lines { pattern, .. }) => Groups::of(pattern).is_ok_and(|groups| groups.unit),
+        Some(Protocol::Lines { pattern, .. }) => {
+            (Groups::of(pattern).is_ok_and(|groups| groups.unit), RegisterRefusal::NoUnitInLines)
+        }
         Some(Protocol::ModbusRtu { .. }) => {
             // "MODBUS over Serial Line", V1.02, 2.5.1: each byte is sent with eight data bits.
             if let (Some(field), Some(false)) = (file.field("frame"), frame.map(|f| f.starts_with('8'))) {
                 return Err(field.refuse(RegisterRefusal::ModbusFrame.into()));
             }
-            false
+            (false, RegisterRefusal::NoUnit)
         }
     };
     if file.field("unit").is_some() || sends_unit {
@@ -160,7 +152,7 @@ fn fits(
         Measures::Cell => "mV",
         Measures::Depth => "m",
     };
-    Err(file.refuse("unit", RegisterRefusal::NoUnit(example).into()))
+    Err(file.refuse("unit", no_unit(example).into()))
 }
 
 /// The papers, which go by the instrument's name.

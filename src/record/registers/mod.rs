@@ -30,9 +30,7 @@ use super::document::{Origin, Source, Table};
 use super::error::{Fault, RecordError, Refusal};
 use super::note::Loaded;
 use super::run::{Files, as_text, open};
-use crate::entry::{
-    Acceptance, Diver, FirstStage, Id, Instrument, InstrumentPapers, Orifice, Shop, Socket,
-};
+use crate::entry::{Acceptance, Diver, FirstStage, Id, Instrument, InstrumentPapers, Orifice, Shop, Socket};
 
 pub use flags::flag_of;
 pub use number_pattern::{NumberPattern, NumberPatternFault};
@@ -44,6 +42,7 @@ pub use write::write_register;
 const LONGEST_FILE: u64 = 1 << 20;
 
 /// An entry of any register.
+#[allow(clippy::large_enum_variant, reason = "one entry is read at a time, and none is kept here")]
 #[derive(Debug, Clone, PartialEq)]
 pub enum RegisterEntry {
     /// An orifice.

@@ -18,7 +18,9 @@ pub(super) struct Groups {
 #[derive(Debug, Clone, PartialEq, Eq, thiserror::Error)]
 pub enum PatternFault {
     /// A bracket without its partner.
-    #[error("{0:?} has no partner in the pattern; close it, or write \\{0} where the character itself is meant")]
+    #[error(
+        "{0:?} has no partner in the pattern; close it, or write \\{0} where the character itself is meant"
+    )]
     Bracket(char),
     /// A backslash at the end.
     #[error("the pattern ends in a backslash; write \\\\ where the character itself is meant")]
@@ -104,7 +106,9 @@ fn group<'p>(after: &'p str, names: &mut Vec<&'p str>) -> Result<&'p str, Patter
             return Err(PatternFault::Backtracking(format!("({around}")));
         }
     }
-    let Some(named) = after.strip_prefix("?P<").or_else(|| after.strip_prefix("?<")) else { return Ok(after) };
+    let Some(named) = after.strip_prefix("?P<").or_else(|| after.strip_prefix("?<")) else {
+        return Ok(after);
+    };
     let Some((name, rest)) = named.split_once('>') else { return Err(PatternFault::Bracket('<')) };
     let word = |c: char| c.is_ascii_alphanumeric() || c == '_';
     if name.is_empty() || !name.chars().all(word) || name.starts_with(|c: char| c.is_ascii_digit()) {

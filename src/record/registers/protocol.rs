@@ -174,5 +174,9 @@ fn on_the_line(field: &Field<'_>) -> Result<String, RecordError> {
     if let Some(other) = text.chars().find(|c| !c.is_ascii()) {
         return Err(field.refuse(RegisterRefusal::NotAscii(other.into()).into()));
     }
-    if text.is_empty() { Err(field.refuse(Refusal::EmptyText)) } else { Ok(text.to_owned()) }
+    if text.is_empty() {
+        Err(field.refuse(RegisterRefusal::NothingToSend.into()))
+    } else {
+        Ok(text.to_owned())
+    }
 }

@@ -10,17 +10,8 @@ use super::keys::{required_words, words};
 use super::{NumberPattern, RegisterRefusal};
 use crate::entry::{Logo, Shop, Signatory};
 
-const KEYS: [&str; 9] = [
-    "record",
-    "name",
-    "address",
-    "contact",
-    "logo",
-    "accent",
-    "number_pattern",
-    "signatories",
-    "statements",
-];
+const KEYS: [&str; 9] =
+    ["record", "name", "address", "contact", "logo", "accent", "number_pattern", "signatories", "statements"];
 
 /// Largest logo, in bytes: it goes into every certificate.
 const LARGEST_LOGO: u64 = 1 << 20;
@@ -54,7 +45,8 @@ fn logo(field: &Field<'_>, files: Files<'_>) -> Result<Logo, RecordError> {
     if field.origin() != Origin::Flags && !within {
         return Err(refuse(RegisterRefusal::LogoElsewhere(given)));
     }
-    let file_name = path.file_name().map_or_else(|| given.clone(), |name| name.to_string_lossy().into_owned());
+    let file_name =
+        path.file_name().map_or_else(|| given.clone(), |name| name.to_string_lossy().into_owned());
     let lower = file_name.to_lowercase();
     let (png, svg) = (lower.ends_with(".png"), lower.ends_with(".svg"));
     if !png && !svg {

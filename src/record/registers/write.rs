@@ -9,8 +9,8 @@ use super::super::write::{Toml, limits, meter, number, quoted, transducer};
 use super::protocol::{TABLES, TYPES, WORD_ORDERS, kind_of, takes_two};
 use super::{RegisterEntry, RegisterKind};
 use crate::entry::{
-    Build, Diluent, Diver, FirstStage, Instrument, InstrumentPapers, Meter, Orifice, Protocol, Shop, Signatory,
-    Socket, Transducer,
+    Build, Diluent, Diver, FirstStage, Instrument, InstrumentPapers, Meter, Orifice, Protocol, Shop,
+    Signatory, Socket, Transducer,
 };
 use crate::quantity::show::{range_to_text, to_text, uncertain_to_text};
 
@@ -129,7 +129,16 @@ fn protocol(toml: &mut Toml, given: &Protocol) {
             toml.text("pattern", pattern);
             (*every, *stale_after)
         }
-        Protocol::ModbusRtu { device, table, register, number: kind, word_order, scale, every, stale_after } => {
+        Protocol::ModbusRtu {
+            device,
+            table,
+            register,
+            number: kind,
+            word_order,
+            scale,
+            every,
+            stale_after,
+        } => {
             toml.line("device", &device.to_string());
             toml.text("table", word(&TABLES, table));
             toml.line("register", &register.to_string());
