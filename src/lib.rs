@@ -51,6 +51,7 @@ pub mod series;
 pub mod bench;
 pub mod report;
 pub mod plot;
+pub mod clock;
 pub mod record;
 pub mod book;
 pub mod work;

@@ -217,6 +217,7 @@ fn the_run_before_shows_a_small_blockage_on_the_same_meter() {
     let against = |certificate: &str| {
         let before = Accepted {
             name: "R0007".into(),
+            gas: ebbline::gas::Species::Oxygen,
             flow: first.nominal.flow.clone(),
             meter_certificate: Some(certificate.into()),
             transducer_certificate: Some("PT-2026-031".into()),

@@ -7,6 +7,7 @@
 
 use super::correct::Source;
 use super::line::{FlowAt, Part};
+use crate::gas::Species;
 use crate::stats::coverage::{coverage_factor, welch_satterthwaite};
 
 /// The flow of a run at its nominal pressure, as the next run is compared with it.
@@ -14,6 +15,8 @@ use crate::stats::coverage::{coverage_factor, welch_satterthwaite};
 pub struct Accepted {
     /// The run, for a reader.
     pub name: String,
+    /// Gas of that run.
+    pub gas: Species,
     /// Its flow with the budget.
     pub flow: FlowAt,
     /// Certificate of its flow meter.
@@ -79,6 +82,7 @@ mod tests {
     fn accepted(value: f64, certificate: &str) -> Accepted {
         Accepted {
             name: "before".into(),
+            gas: Species::Oxygen,
             flow: flow(value),
             meter_certificate: Some(certificate.into()),
             transducer_certificate: None,

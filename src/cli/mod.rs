@@ -15,6 +15,7 @@ use std::io::{self, Write};
 use clap::{CommandFactory as _, FromArgMatches as _};
 
 use crate::report::Units;
+use crate::work::shelf::Shelf;
 use crate::work::{ExitStatus, WorkError};
 use arguments::{Arguments, Bench, Command, Global};
 
@@ -67,7 +68,14 @@ impl<E: Into<WorkError>> From<E> for Ended {
 fn verb(arguments: &Arguments) -> Result<ExitStatus, Ended> {
     match &arguments.command {
         Command::Demo(demo) => demo::demo(demo, &arguments.global),
-        Command::Bench(Bench::Fit(fit)) => bench::fit(fit, &arguments.global),
+        Command::Bench(verb) => match verb {
+            Bench::Import(import) => bench::import(import, &arguments.global),
+            Bench::Fit(fit) => bench::fit(fit, &arguments.global),
+            Bench::LeaveOut(leave_out) => bench::leave_out(leave_out, &arguments.global),
+            Bench::Accept(accept) => bench::accept(accept, &arguments.global),
+            Bench::List(list) => bench::list(list, &arguments.global),
+            Bench::Show(show) => bench::show(show, &arguments.global),
+        },
         Command::Completions { shell } => manual::completions(*shell),
         Command::Man => manual::man(),
     }
@@ -101,6 +109,18 @@ fn tell(error: &WorkError) {
         cause = source.source();
     }
     note(&text);
+}
+
+/// Tells what was noticed on the way.
+fn tell_notes(notes: &[String]) {
+    for text in notes {
+        note(&format!("note: {text}"));
+    }
+}
+
+/// The book that was named, or the one at its usual place.
+fn shelf(global: &Global) -> Result<Shelf, Ended> {
+    Ok(Shelf::find(global.book.as_deref())?)
 }
 
 fn units(global: &Global) -> Units {

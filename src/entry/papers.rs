@@ -57,7 +57,7 @@ pub enum MeterKind {
         reads_at: ReferenceConditions,
         /// The gas it was calibrated for.
         made_for: Species,
-        /// The maker's factor for the gas of the run: true flow over shown flow; the ± is expanded, k = 2.
+        /// The maker's factor for the gas of the run: true flow over shown flow; the ± is expanded.
         gas_factor: Option<Uncertain<f64>>,
     },
     /// Positive displacement or piston: shows the volume that passes.
@@ -80,7 +80,7 @@ pub enum MeterKind {
         scale: FloatScale,
         /// For a scale in reference litres: the working state it was drawn for, when that is not `reads_at`.
         made_at: Option<ReferenceConditions>,
-        /// The maker's factor for the gas of the run: true flow over shown flow; the ± is expanded, k = 2.
+        /// The maker's factor for the gas of the run: true flow over shown flow; the ± is expanded.
         gas_factor: Option<Uncertain<f64>>,
     },
 }

@@ -300,7 +300,7 @@ impl<'d> Field<'d> {
     }
 
     fn no_hidden(&self, text: &str) -> Result<(), RecordError> {
-        match text.chars().find(|c| is_hidden(*c)) {
+        match hidden_character(text) {
             Some(hidden) => Err(self.refuse(Refusal::HiddenCharacter(hidden.into()))),
             None => Ok(()),
         }
@@ -396,6 +396,12 @@ pub(super) fn flag_of(field: &str) -> String {
 pub(super) fn nearest<'w>(written: &str, known: impl Iterator<Item = &'w str>) -> Option<&'w str> {
     let written = written.to_lowercase();
     known.min_by_key(|word| strsim::damerau_levenshtein(&written, &word.to_lowercase()))
+}
+
+/// The first character of a text that does not show or changes how others show, if there is one.
+#[must_use]
+pub fn hidden_character(text: &str) -> Option<char> {
+    text.chars().find(|c| is_hidden(*c))
 }
 
 /// Control characters, and those that turn the direction of text (Unicode bidirectional overrides, isolates, marks).

@@ -20,6 +20,7 @@ mod number;
 mod write;
 mod registers;
 
+pub use document::hidden_character;
 pub use error::{Fault, Place, RecordError, Refusal};
 pub use note::{Loaded, Note};
 pub use readings::{MOST_POINTS, MOST_SERIES_ROWS};
@@ -28,5 +29,8 @@ pub use registers::{
     files_beside, flag_of, from_flags, parse_register, parse_register_as, read_register, read_register_as,
     write_register,
 };
-pub use run::{DEFAULT_PURITY, Files, NoRegisters, Registers, parse_run, parse_run_with, read_run};
+pub use run::{
+    DEFAULT_PURITY, Files, NoRegisters, Registers, RunFiles, parse_run, parse_run_with, read_run,
+    read_run_and_files, read_run_with,
+};
 pub use write::write_run;

@@ -27,6 +27,8 @@ pub const DEFAULT_PURITY: Purity = Purity { fraction: 0.995, expanded: 0.003 };
 
 /// Longest run file that is read, in bytes.
 const LONGEST_RUN_FILE: u64 = 1 << 20;
+/// Longest file of readings that is kept to the byte: five million rows of a hundred bytes.
+const LONGEST_READINGS: u64 = 500_000_000;
 
 const KEYS: [&str; 18] = [
     "record",
@@ -100,13 +102,65 @@ impl Registers for NoRegisters {
 /// # Errors
 /// Every [`RecordError`]; each means exit status 2.
 pub fn read_run(path: &Path) -> Result<Loaded<Run>, RecordError> {
+    read_run_with(path, &NoRegisters)
+}
+
+/// As [`read_run`], with registers.
+///
+/// # Errors
+/// Every [`RecordError`].
+pub fn read_run_with(path: &Path, registers: &dyn Registers) -> Result<Loaded<Run>, RecordError> {
+    let (name, bytes) = read_toml(path)?;
+    let text = as_text(&name, &bytes)?;
+    let beside = path.parent().unwrap_or(Path::new(""));
+    parse_run_with(text, &name, &mut |file| open(&beside.join(file)), registers)
+}
+
+/// The files of a run, to the byte.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct RunFiles {
+    /// The run file.
+    pub toml: Vec<u8>,
+    /// The name of its readings as it gives it.
+    pub readings_name: String,
+    /// The readings.
+    pub readings: Vec<u8>,
+}
+
+/// As [`read_run_with`], and hands back the bytes that were read.
+///
+/// # Errors
+/// Every [`RecordError`].
+pub fn read_run_and_files(
+    path: &Path,
+    registers: &dyn Registers,
+) -> Result<(Loaded<Run>, RunFiles), RecordError> {
+    let (name, toml) = read_toml(path)?;
+    let text = as_text(&name, &toml)?;
+    let beside = path.parent().unwrap_or(Path::new(""));
+    let (mut readings_name, mut readings) = (String::new(), Vec::new());
+    let mut files = |file: &str| {
+        let at = beside.join(file);
+        readings_name = file.to_owned();
+        let read = open(&at)?.take(LONGEST_READINGS + 1).read_to_end(&mut readings);
+        let refuse = |fault| RecordError::unreadable(&at.display().to_string(), fault);
+        read.map_err(|error| refuse(Fault::of(&error)))?;
+        if readings.len() as u64 > LONGEST_READINGS {
+            return Err(refuse(Fault::TooLarge));
+        }
+        let copy: Box<dyn Read> = Box::new(std::io::Cursor::new(readings.clone()));
+        Ok(copy)
+    };
+    let loaded = parse_run_with(text, &name, &mut files, registers)?;
+    Ok((loaded, RunFiles { toml, readings_name, readings }))
+}
+
+fn read_toml(path: &Path) -> Result<(String, Vec<u8>), RecordError> {
     let name = path.display().to_string();
     let mut bytes = Vec::new();
     let read = open(path)?.take(LONGEST_RUN_FILE + 1).read_to_end(&mut bytes);
     read.map_err(|error| RecordError::unreadable(&name, Fault::of(&error)))?;
-    let text = as_text(&name, &bytes)?;
-    let beside = path.parent().unwrap_or(Path::new(""));
-    parse_run(text, &name, &mut |file| open(&beside.join(file)))
+    Ok((name, bytes))
 }
 
 /// Reads a run from the text of its file; `name` stands in refusals, and other files open only through `files`.

@@ -18,9 +18,7 @@ const FORMAT: u32 = 1;
 /// The document, indented, with a newline at its end.
 #[must_use]
 pub fn document(fitted: &Fitted<'_>) -> String {
-    let mut text = serde_json::to_string_pretty(&Document::of(fitted)).unwrap_or_default();
-    text.push('\n');
-    text
+    super::json_text(&Document::of(fitted))
 }
 
 #[derive(Serialize)]

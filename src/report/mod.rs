@@ -9,8 +9,18 @@ pub mod cautions;
 pub mod check_sentences;
 pub mod layout;
 pub mod number;
+pub mod run_list;
+pub mod run_shown;
 pub mod series_notes;
 pub mod units;
 pub mod warning_sentences;
 
 pub use units::Units;
+
+/// A document as indented JSON with a newline at its end.
+#[must_use]
+pub fn json_text(document: &impl serde::Serialize) -> String {
+    let mut text = serde_json::to_string_pretty(document).unwrap_or_default();
+    text.push('\n');
+    text
+}

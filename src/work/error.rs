@@ -5,6 +5,7 @@ use std::path::PathBuf;
 use super::png::PngError;
 use crate::bench::BenchError;
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
+use crate::book::BookError;
 use crate::record::RecordError;
 
 /// How a call ended.
@@ -65,12 +66,28 @@ pub enum WorkError {
         /// What nearly was steady and why it is not, ready to be appended.
         nearly: String,
     },
-    /// A run of the book was named.
+    /// The book.
+    #[error(transparent)]
+    Book(#[from] BookError),
+    /// A text that is no run's number.
     #[error(
-        "\"{0}\" is not a file (a file's name has a slash or ends in .toml), and there is no book to look a run up in: \
-         give the run's file"
+        "\"{0}\" is no run: a run of the book is named like R0001, and a run file has a slash or ends in .toml"
     )]
-    NoBook(String),
+    NoRunNumber(String),
+    /// A text that says nothing, or hides something.
+    #[error("{option} takes a text of visible characters, not \"{text}\"", text = text.escape_debug())]
+    Text {
+        /// The option.
+        option: &'static str,
+        /// What was given.
+        text: String,
+    },
+    /// The platform names no folder for data.
+    #[error("this system names no folder for data: say where the book is with --book FILE or EBBLINE_BOOK")]
+    NoDataFolder,
+    /// The system gives no random numbers, and without them a salt could be guessed.
+    #[error("the system gives no random numbers, which the book needs for its salts: try again later")]
+    NoRandomNumbers,
     /// A number of trials outside the bounds.
     #[error("--monte-carlo takes {FEWEST_TRIALS} to {MOST_TRIALS} trials, not {0}")]
     Trials(usize),
@@ -104,11 +121,33 @@ impl WorkError {
             Self::Record(_)
             | Self::Bench { .. }
             | Self::TooFewSteady { .. }
-            | Self::NoBook(_)
+            | Self::NoRunNumber(_)
+            | Self::Text { .. }
+            | Self::NoDataFolder
             | Self::Trials(_)
             | Self::NoMonteCarlo(_)
             | Self::PlotKind(_) => ExitStatus::Wrong,
-            Self::Png(_) | Self::Write { .. } => ExitStatus::Failed,
+            Self::Book(error) => book_status(error),
+            Self::NoRandomNumbers | Self::Png(_) | Self::Write { .. } => ExitStatus::Failed,
         }
+    }
+}
+
+/// What is asked of the book is wrong, or the book itself failed.
+const fn book_status(error: &BookError) -> ExitStatus {
+    match error {
+        BookError::NoBook { .. }
+        | BookError::NoSuchRun { .. }
+        | BookError::NoSuchPoint { .. }
+        | BookError::AlreadyLeftOut { .. }
+        | BookError::Complete { .. }
+        | BookError::Incomplete { .. }
+        | BookError::AnotherRun { .. }
+        | BookError::NotPoints
+        | BookError::Taken { .. }
+        | BookError::Unknown { .. }
+        | BookError::CopyThere { .. }
+        | BookError::TooLarge { .. } => ExitStatus::Wrong,
+        _ => ExitStatus::Failed,
     }
 }

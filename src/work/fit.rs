@@ -1,8 +1,11 @@
 //! `bench fit`: a run file to its line, checks and verdict.
 
+use std::borrow::Cow;
 use std::path::{Path, PathBuf};
 
 use super::output::write_whole;
+use super::runs::{load, number_of};
+use super::shelf::{Shelf, ShelfRegisters};
 use super::{ExitStatus, WorkError, png};
 use crate::bench::advice::{LowPoints, low_points};
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS, MonteCarlo, monte_carlo};
@@ -10,7 +13,7 @@ use crate::bench::{Analysis, FEWEST_POINTS, Questions, Verdict, analyse};
 use crate::entry::{PointReading, Readings, Run, SeriesReadings};
 use crate::plot::{RunPlot, run_plot};
 use crate::quantity::{AbsolutePressure, GaugePressure, PressureDifference, StpdFlow, Uncertain};
-use crate::record::read_run;
+use crate::record::{NoRegisters, read_run_with};
 use crate::report::Units;
 use crate::report::bench_fit::Fitted;
 use crate::series::{SteadyOptions, SteadyPoints, steady_points};
@@ -31,6 +34,8 @@ pub struct FitRequest {
     pub barometer: Option<Uncertain<AbsolutePressure, PressureDifference>>,
     /// Trials of a Monte Carlo check.
     pub monte_carlo: Option<usize>,
+    /// Where the book is, if it was said.
+    pub book: Option<PathBuf>,
     /// Where to draw it, `.svg` or `.png`.
     pub plot: Option<PathBuf>,
     /// The units of the plot.
@@ -82,38 +87,35 @@ pub fn names_a_file(argument: &str) -> bool {
     argument.contains(['/', '\\']) || [".toml", ".pdf", ".xml"].iter().any(|ending| lower.ends_with(ending))
 }
 
-/// Reads, analyses and draws one run.
+/// Reads, analyses and draws one run, from its file or from the book.
 ///
 /// # Errors
-/// A file that is missing or refused, a run that cannot be analysed, a plot that cannot be written.
+/// A file that is missing or refused, a run that is not in the book or cannot be analysed, a plot that cannot be
+/// written.
 pub fn fit(request: &FitRequest) -> Result<FitOutcome, WorkError> {
-    if !names_a_file(&request.run) {
-        return Err(WorkError::NoBook(request.run.clone()));
-    }
     if let Some(trials) = request.monte_carlo.filter(|n| !(FEWEST_TRIALS..=MOST_TRIALS).contains(n)) {
         return Err(WorkError::Trials(trials));
     }
     let kind = request.plot.as_deref().map(plot_kind).transpose()?;
-    let file = PathBuf::from(&request.run);
-    let loaded = read_run(&file)?;
-    let mut notes: Vec<String> = loaded.notes.iter().map(ToString::to_string).collect();
-    let run = loaded.value;
-    let from_series;
-    let readings: &[PointReading] = match &run.readings {
-        Readings::Points(points) => points,
-        Readings::Series(series) => {
-            from_series = points_of_series(&file, series, &mut notes)?;
-            &from_series
-        }
-    };
     let questions = Questions {
         at: request.at.clone(),
         for_flow: request.for_flow.clone(),
         ambient: request.barometer,
         before: None,
     };
-    let analysis = analyse(&run, readings, &questions)
-        .map_err(|error| WorkError::Bench { file: file.clone(), error })?;
+    let (run, analysis, notes) = if names_a_file(&request.run) {
+        let (run, notes) = from_file(request)?;
+        let file = PathBuf::from(&request.run);
+        let (points, more) = points_of(&file, &run.readings)?;
+        let analysis =
+            analyse(&run, &points, &questions).map_err(|error| WorkError::Bench { file, error })?;
+        (run, analysis, notes.into_iter().chain(more).collect())
+    } else {
+        let number = number_of(&request.run)?;
+        let loaded = load(&Shelf::find(request.book.as_deref())?.to_read()?, number)?;
+        let analysis = loaded.analyse(&questions)?;
+        (loaded.run, analysis, Vec::new())
+    };
     let monte_carlo = match request.monte_carlo {
         None => None,
         Some(trials) => Some(
@@ -127,25 +129,52 @@ pub fn fit(request: &FitRequest) -> Result<FitOutcome, WorkError> {
     Ok(FitOutcome { run, analysis, monte_carlo, low_points, notes })
 }
 
-/// The steady points of a time series, with a note of how many and what was passed over.
-fn points_of_series(
+/// The run of a file; its book is opened only if the file names an entry of it.
+fn from_file(request: &FitRequest) -> Result<(Run, Vec<String>), WorkError> {
+    let path = Path::new(&request.run);
+    let loaded = match Shelf::find(request.book.as_deref()) {
+        Ok(shelf) => {
+            let registers = ShelfRegisters::new(&shelf);
+            match read_run_with(path, &registers) {
+                Ok(loaded) => loaded,
+                Err(refused) => return Err(registers.failure().unwrap_or_else(|| refused.into())),
+            }
+        }
+        // A system without a data folder still fits files.
+        Err(_) => read_run_with(path, &NoRegisters)?,
+    };
+    Ok((loaded.value, loaded.notes.iter().map(ToString::to_string).collect()))
+}
+
+/// The steady points of a run's readings, and for a time series what was made of it.
+///
+/// # Errors
+/// A time series with fewer steady spans than a line needs points.
+pub(super) fn points_of<'r>(
     file: &Path,
-    series: &SeriesReadings,
-    notes: &mut Vec<String>,
-) -> Result<Vec<PointReading>, WorkError> {
-    let options = SteadyOptions::default();
-    let steady = steady_points(series, &options);
+    readings: &'r Readings,
+) -> Result<(Cow<'r, [PointReading]>, Vec<String>), WorkError> {
+    let series = match readings {
+        Readings::Points(points) => return Ok((Cow::Borrowed(points), Vec::new())),
+        Readings::Series(series) => series,
+    };
+    let steady = steady(series);
     if steady.points.len() < FEWEST_POINTS {
         return Err(WorkError::TooFewSteady {
             file: file.to_owned(),
             found: steady.points.len(),
             needed: FEWEST_POINTS,
-            hold_s: options.least_duration_s,
+            hold_s: SteadyOptions::default().least_duration_s,
             nearly: nearly_steady(&steady),
         });
     }
-    notes.extend(crate::report::series_notes::notes(series, &steady));
-    Ok(steady.points)
+    let notes = crate::report::series_notes::notes(series, &steady);
+    Ok((Cow::Owned(steady.points), notes))
+}
+
+/// The steady spans of a time series, by the default options.
+pub(super) fn steady(series: &SeriesReadings) -> SteadyPoints {
+    steady_points(series, &SteadyOptions::default())
 }
 
 fn nearly_steady(steady: &SteadyPoints) -> String {

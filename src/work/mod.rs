@@ -7,5 +7,7 @@ pub mod error;
 pub mod fit;
 pub mod output;
 pub mod png;
+pub mod runs;
+pub mod shelf;
 
 pub use error::{ExitStatus, WorkError};

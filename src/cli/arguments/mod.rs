@@ -1,13 +1,13 @@
 //! What can be typed. Quantities carry their unit in the value; clap's words stop at this file's structs.
 
+mod bench;
+
 use std::path::PathBuf;
 
+pub use bench::{Accept, Bench, Fit, Import, LeaveOut, List, Show};
 use clap::{Args, Parser, Subcommand};
 
-use crate::quantity::text;
-use crate::quantity::{
-    AbsolutePressure, GaugePressure, PressureDifference, QuantityError, Shown, StpdFlow, Uncertain,
-};
+use crate::quantity::Shown;
 
 /// Bench calibration of constant-mass-flow orifices for manual closed-circuit rebreathers: readings of flow against
 /// intermediate pressure become a line with its uncertainty, checks and a verdict.
@@ -69,40 +69,6 @@ pub struct Demo {
     /// The folder that is filled
     #[arg(long, value_name = "DIR", default_value = "ebbline-demo")]
     pub into: PathBuf,
-}
-
-/// Verbs of bench runs.
-#[derive(Debug, Subcommand)]
-pub enum Bench {
-    /// Fits a run: line, uncertainty, checks, verdict
-    Fit(Fit),
-}
-
-/// Options of `bench fit`.
-#[derive(Debug, Args)]
-pub struct Fit {
-    /// A run file (a name with a slash, or ending in .toml)
-    #[arg(value_name = "RUN|FILE.toml")]
-    pub run: String,
-    /// Flow at this IP, as in "9.4 bar"; repeat, or list with commas
-    #[arg(long, value_name = "IP", value_delimiter = ',', allow_hyphen_values = true, value_parser = text::value::<GaugePressure>)]
-    pub at: Vec<GaugePressure>,
-    /// The IP that gives this flow (STPD), as in "0.31 L/min"; repeat, or list with commas
-    #[arg(long, value_name = "FLOW", value_delimiter = ',', allow_hyphen_values = true, value_parser = text::value::<StpdFlow>)]
-    pub for_flow: Vec<StpdFlow>,
-    /// Ambient pressure for these answers instead of 1.01325 bar, as in "830 hPa" or "1009 hPa ± 1 hPa"
-    #[arg(long, value_name = "PRESSURE", allow_hyphen_values = true, value_parser = barometer)]
-    pub barometer: Option<Uncertain<AbsolutePressure, PressureDifference>>,
-    /// Draw the run; the ending says how
-    #[arg(long, value_name = "FILE.svg|.png")]
-    pub plot: Option<PathBuf>,
-    /// Check the budget by Monte Carlo with this many trials
-    #[arg(long, value_name = "N")]
-    pub monte_carlo: Option<usize>,
-}
-
-fn barometer(text: &str) -> Result<Uncertain<AbsolutePressure, PressureDifference>, QuantityError> {
-    text::uncertain(text)
 }
 
 #[cfg(test)]
