@@ -29,7 +29,7 @@ pub struct Judgement {
     pub verdict: Verdict,
     /// What the flow alone decides.
     pub by_flow: Verdict,
-    /// Lower and upper limit of the flow, L/min STPD in the gas of the run.
+    /// Lower and upper limit of the flow, L/min STPD in the gas the acceptance is meant for.
     pub limits_l_min: (f64, f64),
     /// Probability that the flow lies within the limits.
     pub probability: f64,

@@ -240,9 +240,10 @@ fn pressures(fitted: &Fitted<'_>, units: &Units) -> String {
         "",
         "  ",
         &format!(
-            "IP for a flow of {} (STPD), at {} ambient; 95 % interval",
+            "IP for a flow of {} (STPD), at {} {} ambient; 95 % interval",
             fitted.run.gas.name(),
-            units.pressure_text(ambient)
+            shortest(units.pressure(ambient), 6),
+            units.pressure_symbol()
         ),
     );
     let rows: Vec<Vec<String>> = fitted
@@ -319,7 +320,9 @@ fn line(fitted: &Fitted<'_>, units: &Units) -> String {
         "  conductance C    {conductance} dm³/(s·bar) ANR, u = {conductance_u} (ISO 6358)\n"
     ));
     let choke = &analysis.choke;
-    let (b, _) = value_and_u(choke.value, choke.standard_uncertainty);
+    // Value and interval to the same place: a hundredth while it is only bounded, a thousandth once measured.
+    let places = if choke.origin == Origin::Measured { 3 } else { 2 };
+    let b = fixed(choke.value, places);
     let origin = match choke.origin {
         Origin::Measured => "measured",
         Origin::Bounded => "only bounded",
@@ -339,8 +342,8 @@ fn line(fitted: &Fitted<'_>, units: &Units) -> String {
         "                   ",
         &format!(
             "{b}, {origin} (95 %: {} to {}){advice}",
-            fixed(choke.interval_95.0, 2),
-            fixed(choke.interval_95.1, 2)
+            fixed(choke.interval_95.0, places),
+            fixed(choke.interval_95.1, places)
         ),
     ));
     if let Some(mc) = fitted.monte_carlo {

@@ -78,6 +78,21 @@ pub fn table(heads: &[&str], units: &[&str], rows: &[Vec<String>], last_left: bo
     text
 }
 
+/// Numbers of one column with the same number of decimals: as many as the one that has most.
+#[must_use]
+pub fn same_decimals(numbers: &[String]) -> Vec<String> {
+    let decimals = |text: &String| text.split_once('.').map_or(0, |(_, d)| d.len());
+    let most = numbers.iter().map(decimals).max().unwrap_or(0);
+    numbers
+        .iter()
+        .map(|text| match (most - decimals(text), text.contains('.')) {
+            (0, _) => text.clone(),
+            (missing, true) => format!("{text}{}", "0".repeat(missing)),
+            (missing, false) => format!("{text}.{}", "0".repeat(missing)),
+        })
+        .collect()
+}
+
 /// Columns a text takes on a terminal: its characters, without combining marks (our own texts and names have nothing
 /// wider).
 #[must_use]
@@ -134,6 +149,13 @@ mod tests {
         assert_eq!(numbers(&[1]), "1");
         assert_eq!(numbers(&[1, 2]), "1 and 2");
         assert_eq!(numbers(&[1, 3, 4, 5, 9]), "1, 3-5 and 9");
+    }
+
+    #[test]
+    fn numbers_of_a_column_end_at_the_same_place() {
+        let numbers = ["4.012", "4", "0.5"].map(str::to_owned);
+        assert_eq!(same_decimals(&numbers), ["4.012", "4.000", "0.500"]);
+        assert_eq!(same_decimals(&["7".to_owned()]), ["7"]);
     }
 
     #[test]

@@ -4,7 +4,7 @@ use chrono::{DateTime, FixedOffset};
 use serde::Serialize;
 
 use super::Units;
-use super::layout::{table, wrapped};
+use super::layout::{same_decimals, table, wrapped};
 use super::number::{Plain, fixed, probability, shortest, value_and_u};
 use super::run_list::{ListedRun, Row};
 use crate::bench::METHOD_REVISION;
@@ -175,6 +175,13 @@ fn readings(run: &Run, units: &Units) -> String {
             (series.pressure_is_absolute, rows.collect(), series.time_s.len() - shown)
         }
     };
+    let mut rows = rows;
+    for column in [1, 2] {
+        let cells: Vec<String> = rows.iter().map(|row| row[column].clone()).collect();
+        for (row, cell) in rows.iter_mut().zip(same_decimals(&cells)) {
+            row[column] = cell;
+        }
+    }
     let kind = format!("{p} {}", if absolute { "abs" } else { "gauge" });
     text.push_str(&table(&["no", "pressure", "flow", "sweep", ""], &["", &kind, q, "", ""], &rows, true));
     if more > 0 {
