@@ -135,19 +135,5 @@ impl WorkError {
 
 /// What is asked of the book is wrong, or the book itself failed.
 const fn book_status(error: &BookError) -> ExitStatus {
-    match error {
-        BookError::NoBook { .. }
-        | BookError::NoSuchRun { .. }
-        | BookError::NoSuchPoint { .. }
-        | BookError::AlreadyLeftOut { .. }
-        | BookError::Complete { .. }
-        | BookError::Incomplete { .. }
-        | BookError::AnotherRun { .. }
-        | BookError::NotPoints
-        | BookError::Taken { .. }
-        | BookError::Unknown { .. }
-        | BookError::CopyThere { .. }
-        | BookError::TooLarge { .. } => ExitStatus::Wrong,
-        _ => ExitStatus::Failed,
-    }
+    if error.is_of_the_call() { ExitStatus::Wrong } else { ExitStatus::Failed }
 }
