@@ -17,5 +17,7 @@ mod letters;
 mod svg;
 mod axis;
 mod run;
+mod history;
 
+pub use history::{History, HistoryPlot, HistoryRun, Leaving, Trend, TrendPlace, history_plot};
 pub use run::{RunPlot, run_plot};
