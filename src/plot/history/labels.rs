@@ -38,7 +38,8 @@ pub(super) fn draw(svg: &mut Svg, seen: &Seen, layout: &Layout) {
     for (mark, value) in changed.into_iter().take(MOST_LABELS) {
         let text = en(value);
         if let Some(frame) = first_free(around(mark, value, &text, seen, layout), &taken, layout) {
-            taken.push(frame);
+            let gap = 0.5 * layout.body;
+            taken.push(Frame { left: frame.left - gap, right: frame.right + gap, ..frame });
             labels.push(Label { text, frame, fill: BRICK, class: "plot-en" });
         }
     }
@@ -80,7 +81,7 @@ fn around(mark: &Mark, value: f64, text: &str, seen: &Seen, layout: &Layout) -> 
     for middle in [first, second] {
         places.extend([0.5, 0.25, 0.75, 0.0, 1.0].map(|share| frame(x - share * wide, middle)));
     }
-    for shift in [0.0, 0.9, -0.9, 1.8, -1.8] {
+    for shift in [0.0, 0.9, -0.9] {
         let middle = y - value.signum() * shift * size;
         places.extend([frame(x + ring + away, middle), frame(x - ring - away - wide, middle)]);
     }

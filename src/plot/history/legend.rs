@@ -85,7 +85,7 @@ pub(super) fn draw(svg: &mut Svg, sign: Sign, (x, y): (f64, f64), body: f64, tra
             svg.group("plot-bars", &[("fill", "none"), ("stroke", INK), ("stroke-width", &width)]);
             svg.path(&path, &[]);
             svg.end();
-            marks::draw(svg, verdict, &[marks::Sign { x, y, told: None }], r, transparent);
+            marks::draw(svg, verdict, &[marks::Sign { x, y, told: None }], r, (transparent, false));
         }
         Sign::Changed => {
             // As large as round a sign of the panel, but never into the lines above and below.

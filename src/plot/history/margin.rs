@@ -192,9 +192,9 @@ impl Writer {
             w.space(gap);
             w.paragraph(&words.flow_head, w.muted("plot-flow-head"), most);
             w.paragraph(&words.flow, large("plot-flow"), most);
-            let detail = [Some(&words.flow_detail), words.limits.as_ref()];
-            let detail: Vec<&str> = detail.into_iter().flatten().map(String::as_str).collect();
-            w.paragraph(&detail.join("; "), w.muted("plot-flow-detail"), most);
+            for text in [Some(&words.flow_detail), words.limits.as_ref()].into_iter().flatten() {
+                w.paragraph(text, w.muted("plot-flow-detail"), most);
+            }
         }
         if let Some(change) = &words.change {
             w.space(gap);

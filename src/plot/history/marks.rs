@@ -1,7 +1,7 @@
 //! The signs runs are drawn with, in the panel and in the legend alike.
 //!
 //! Comes in: a place in pixels and what the sign stands for. Goes out: paths. Pass: a full circle; no verdict: an
-//! empty one; undecided: a diamond, half full; fail: an empty circle, crossed. A run whose E_n is over 1 has a ring.
+//! empty one; undecided: a diamond, half full; fail: a crossed square. A run whose E_n is over 1 has a ring.
 //! What was cleaned or adjusted before the run stands as a small triangle on the axis of dates.
 
 use super::seen::{Mark, Seen};
@@ -44,8 +44,14 @@ pub(super) fn hair(radius: f64) -> f64 {
     (0.21 * radius).clamp(0.5, 1.2)
 }
 
-/// Draws the signs of one verdict.
-pub(super) fn draw(svg: &mut Svg, verdict: Verdict, signs: &[Sign], radius: f64, transparent: bool) {
+/// Draws the signs of one verdict; pale ones let what lies under them be seen.
+pub(super) fn draw(
+    svg: &mut Svg,
+    verdict: Verdict,
+    signs: &[Sign],
+    radius: f64,
+    (transparent, pale): (bool, bool),
+) {
     if signs.is_empty() {
         return;
     }
@@ -57,10 +63,12 @@ pub(super) fn draw(svg: &mut Svg, verdict: Verdict, signs: &[Sign], radius: f64,
         Verdict::None => ("plot-points plot-no-verdict", ground, INK),
     };
     let width = coordinate(if verdict == Verdict::Fail { 1.5 } else { 1.0 } * hair(radius));
-    svg.group(
-        class,
-        &[("fill", fill), ("stroke", stroke), ("stroke-width", &width), ("stroke-linejoin", "round")],
-    );
+    let mut attributes =
+        vec![("fill", fill), ("stroke", stroke), ("stroke-width", &width), ("stroke-linejoin", "round")];
+    if pale && verdict == Verdict::Pass {
+        attributes.extend([("fill-opacity", "0.5"), ("stroke-opacity", "0.5")]);
+    }
+    svg.group(class, &attributes);
     for sign in signs {
         let path = outline(verdict, sign.x, sign.y, radius);
         match &sign.told {
@@ -92,10 +100,11 @@ fn outline(verdict: Verdict, x: f64, y: f64, r: f64) -> Path {
             path.close();
         }
         Verdict::Fail => {
-            let reach = 1.3 * r;
-            path.circle(x, y, 0.95 * r);
-            path.stroke((x - reach, y - reach), (x + reach, y + reach));
-            path.stroke((x - reach, y + reach), (x + reach, y - reach));
+            let reach = 1.05 * r;
+            let corner = |right: f64, down: f64| (x + right * reach, y + down * reach);
+            let [a, b, c, d] = [corner(-1.0, -1.0), corner(1.0, -1.0), corner(1.0, 1.0), corner(-1.0, 1.0)];
+            path.move_to(a.0, a.1).line_to(b.0, b.1).line_to(c.0, c.1).line_to(d.0, d.1).close();
+            path.stroke(a, c).stroke(b, d);
         }
     }
     path
@@ -150,8 +159,8 @@ pub(super) fn told(mark: &Mark, seen: &Seen) -> String {
     format!(
         "{}, {}, {}: {flow} {} STPD; {verdict}{compared}",
         mark.name,
-        date(mark.day),
         mark.purpose.name(),
+        date(mark.day),
         seen.units.flow_symbol(),
     )
 }

@@ -18,7 +18,7 @@ use super::super::svg::{Path, Svg};
 const MOST_TOLD: usize = 400;
 /// Up to so many runs the bars have lips.
 const MOST_LIPS: usize = 60;
-/// Above so many runs the bars are paler, or they would be one dark mass.
+/// Above so many runs bars and signs are paler, or they would be one dark mass.
 const MANY: usize = 120;
 /// How far the limits of one run reach to each side, in sizes of body text.
 const OVERHANG: f64 = 0.8;
@@ -29,7 +29,6 @@ const SAME_LIMIT: f64 = 1e-9;
 pub(super) fn draw(svg: &mut Svg, seen: &Seen, layout: &Layout) {
     if let Some(line) = &seen.line {
         draw_band(svg, line, layout);
-        draw_line(svg, seen, line, layout);
     }
     draw_limits(svg, seen, layout);
     if let Some((x, _)) = leaving(seen, layout) {
@@ -37,7 +36,21 @@ pub(super) fn draw(svg: &mut Svg, seen: &Seen, layout: &Layout) {
     }
     draw_as_left(svg, seen, layout);
     draw_bars(svg, seen, layout);
+    // Among many runs the trend would not be seen under them.
+    let on_top = seen.marks.len() > MANY;
+    let draw_trend = |svg: &mut Svg| {
+        if let Some(line) = &seen.line {
+            draw_line(svg, seen, line, layout);
+        }
+    };
+    if !on_top {
+        draw_trend(svg);
+    }
     draw_runs(svg, seen, layout);
+    if on_top {
+        draw_trend(svg);
+    }
+    draw_changed(svg, seen, layout);
 }
 
 /// Where the trend leaves the limits, in pixels, if the panel shows that day and flow.
@@ -252,7 +265,7 @@ fn draw_bars(svg: &mut Svg, seen: &Seen, layout: &Layout) {
         }
     }
     let width = coordinate(hair(radius(seen, layout.body)));
-    let opacity = if seen.marks.len() > MANY { "0.45" } else { "1" };
+    let opacity = if seen.marks.len() > MANY { "0.35" } else { "1" };
     svg.group(
         "plot-bars",
         &[("fill", "none"), ("stroke", INK), ("stroke-width", &width), ("stroke-opacity", opacity)],
@@ -275,8 +288,11 @@ fn draw_runs(svg: &mut Svg, seen: &Seen, layout: &Layout) {
                 told: tell.then(|| told(m, seen)),
             })
             .collect();
-        draw_signs(svg, verdict, &signs, r, layout.transparent);
+        draw_signs(svg, verdict, &signs, r, (layout.transparent, seen.marks.len() > MANY));
     }
+}
+
+fn draw_changed(svg: &mut Svg, seen: &Seen, layout: &Layout) {
     let rings: Vec<(f64, f64)> = seen
         .marks
         .iter()
@@ -284,6 +300,6 @@ fn draw_runs(svg: &mut Svg, seen: &Seen, layout: &Layout) {
         .map(|m| (layout.x.at(m.day), layout.flow.at(m.flow)))
         .collect();
     if !rings.is_empty() {
-        draw_rings(svg, &rings, r, layout.body);
+        draw_rings(svg, &rings, radius(seen, layout.body), layout.body);
     }
 }

@@ -29,7 +29,8 @@ const LEAST_DAYS: f64 = 3.0;
 const FROM_NOUGHT: f64 = 0.3;
 /// Room left between the outermost number and the frame, as a share of the range.
 const PADDING: f64 = 0.05;
-/// |E_n| above this says that two runs differ by more than their uncertainties explain (ISO/IEC 17043:2010, B.4.1.1).
+/// |E_n| above this says that two runs differ by more than their uncertainties explain (ISO/IEC 17043:2010,
+/// annex B; the clause is from memory).
 pub(super) const EN_LIMIT: f64 = 1.0;
 
 /// A run, in shown units; the bar is half its length.

@@ -84,12 +84,12 @@ impl Words {
             flow: latest.map(|m| with_uncertainty(m, seen)).unwrap_or_default(),
             flow_detail: together(&format!("{gas} STPD, 95 %")),
             limits: seen.latest_limits().map(|(low, high)| {
-                together(&format!("limits {} to {} {flow_unit}", short(low), short(high)))
+                together(&format!("limits\u{a0}{}\u{a0}to\u{a0}{} {flow_unit}", short(low), short(high)))
             }),
             change: change(seen),
             trend: trend(history, seen),
             not_drawn: not_drawn(history, seen),
-            notes: notes(history),
+            notes: if seen.marks.is_empty() { Default::default() } else { notes(history) },
         };
         words.description = describe(history, seen, &words, &ip);
         words
@@ -144,7 +144,7 @@ fn together(text: &str) -> String {
         " bar",
         " psi",
         " ft³/h",
-        "not before ",
+        ": not before ",
     ];
     INSEPARABLE.iter().fold(text.to_owned(), |text, part| text.replace(part, &part.replace(' ', "\u{a0}")))
 }
@@ -173,10 +173,12 @@ fn with_uncertainty(mark: &Mark, seen: &Seen) -> String {
 fn about(history: &History<'_>, seen: &Seen, ip: &str) -> String {
     let mut parts = vec![history.gas.name().to_owned(), ip.to_owned()];
     parts.push(match (seen.marks.first(), seen.marks.last()) {
-        (Some(first), Some(last)) if seen.marks.len() > 1 => {
-            format!("{} runs, {} to {}", seen.marks.len(), date(first.day), date(last.day))
+        (Some(first), Some(last)) => {
+            let (from, to) = (date(first.day), date(last.day));
+            let count =
+                if seen.marks.len() == 1 { "1 run".to_owned() } else { format!("{} runs", seen.marks.len()) };
+            if from == to { format!("{count}, {from}") } else { format!("{count}, {from} to {to}") }
         }
-        (Some(only), _) => format!("1 run, {}", date(only.day)),
         _ => "no run".to_owned(),
     });
     parts.join(" · ")
@@ -207,7 +209,7 @@ fn trend(history: &History<'_>, seen: &Seen) -> Option<TrendWords> {
     let last = seen.marks.last().map_or(f64::NEG_INFINITY, |m| m.day);
     let verb = |day: f64| if day < last { "left" } else { "leaves" };
     Some(TrendWords {
-        head: format!("Trend of the last {} runs, from {}", trend.runs, date(line.span.0)),
+        head: format!("Trend since {} ({} runs)", date(line.span.0), trend.runs),
         text: together(&text),
         leaves: line.leaves.map(|(day, _)| format!("{} the limits about\u{a0}{}", verb(day), month(day))),
         not_before: line
@@ -227,6 +229,11 @@ fn not_drawn(history: &History<'_>, seen: &Seen) -> Vec<String> {
     [
         runs(history.left_out, &format!("{other} is not drawn"), &format!("{other} are not drawn")),
         runs(seen.undrawn, "has no flow that can be drawn", "have no flow that can be drawn"),
+        runs(
+            seen.marks.iter().filter(|m| m.bar <= 0.0).count(),
+            "has no uncertainty to draw",
+            "have no uncertainty to draw",
+        ),
     ]
     .into_iter()
     .flatten()
@@ -235,13 +242,13 @@ fn not_drawn(history: &History<'_>, seen: &Seen) -> Vec<String> {
 
 fn notes(history: &History<'_>) -> [String; 2] {
     let reference = "Gas at 20 °C; litres at 0 °C, 101.325 kPa, dry.";
-    let own = if history.trend.is_some() { "E_n and trend leave" } else { "E_n leaves" };
+    let own = if history.trend.is_some() { "E_n and trend leave out" } else { "E_n leaves out" };
     [
         together(&format!(
-            "Bars: expanded uncertainty of each run, all parts, 95 %. {own} out what two runs under the same \
+            "Bars: expanded uncertainty of each run, all parts, 95 %. {own} what runs under the same \
              certificates have in common. {reference}"
         )),
-        together("Bars: expanded uncertainty, 95 %."),
+        together(&format!("Bars: all parts, 95 %; {own} what runs under the same certificates share.")),
     ]
 }
 
