@@ -1,0 +1,102 @@
+//! What the benchmarks share: the run they work on, and a stopwatch that can be trusted.
+//!
+//! A figure is the median over several repetitions after a warm-up, with the fastest and the slowest beside it; a
+//! repetition lasts long enough for the clock not to matter. Started by `cargo test` (without `--bench`) each runs once,
+//! so that a benchmark that no longer works is noticed. Left out: outlier models and comparison with an earlier run; the
+//! machine's noise is shown, not removed.
+
+#![allow(clippy::print_stdout, reason = "a benchmark's result is what it prints")]
+#![allow(clippy::disallowed_methods, reason = "a stopwatch asks for the time")]
+
+use std::path::PathBuf;
+use std::time::Instant;
+
+use ebbline::bench::{Analysis, Questions, analyse};
+use ebbline::entry::{PointReading, Readings, Run};
+use ebbline::record::read_run;
+
+/// How the benchmark was started.
+pub struct Setting {
+    /// Timed in earnest, or one repetition to see that it works.
+    pub in_earnest: bool,
+    /// Fewer repetitions.
+    pub quick: bool,
+    /// The run file.
+    pub file: PathBuf,
+}
+
+impl Setting {
+    /// From the command line: `--quick`, and the run file to work on instead of the committed one.
+    pub fn from_arguments() -> Self {
+        let arguments: Vec<String> = std::env::args().skip(1).collect();
+        let given = |flag: &str| arguments.iter().any(|a| a == flag);
+        let file = arguments.iter().find(|a| a.ends_with(".toml")).map_or_else(
+            || PathBuf::from(env!("CARGO_MANIFEST_DIR")).join("tests/benchmarks/twenty_points.toml"),
+            PathBuf::from,
+        );
+        Self { in_earnest: given("--bench"), quick: given("--quick"), file }
+    }
+
+    /// Repetitions: `full`, a third of it when quick, one when not in earnest.
+    pub fn repetitions(&self, full: usize) -> usize {
+        match (self.in_earnest, self.quick) {
+            (false, _) => 1,
+            (true, true) => full.div_ceil(3),
+            (true, false) => full,
+        }
+    }
+}
+
+/// A run of steady points and its analysis.
+pub struct Prepared {
+    /// The run.
+    pub run: Run,
+    /// Its analysis.
+    pub analysis: Analysis,
+}
+
+impl Prepared {
+    /// Reads and analyses the run of `setting`.
+    pub fn new(setting: &Setting) -> Self {
+        let run = read_run(&setting.file).unwrap_or_else(|e| panic!("{e}")).value;
+        let analysis =
+            analyse(&run, points(&run), &Questions::default()).unwrap_or_else(|e| panic!("{e}"));
+        Self { run, analysis }
+    }
+
+    /// The points read.
+    pub fn points(&self) -> &[PointReading] {
+        points(&self.run)
+    }
+}
+
+fn points(run: &Run) -> &[PointReading] {
+    match &run.readings {
+        Readings::Points(points) => points,
+        Readings::Series(_) => panic!("the benchmark needs a run of points"),
+    }
+}
+
+/// Seconds a repetition took: fastest, median, slowest.
+pub struct Seconds {
+    /// Fastest.
+    pub least: f64,
+    /// Median.
+    pub median: f64,
+    /// Slowest.
+    pub most: f64,
+}
+
+/// Times `work`, done `times` in a row in each of `repetitions` repetitions, after one that does not count; seconds of
+/// once.
+pub fn time(repetitions: usize, times: usize, mut work: impl FnMut()) -> Seconds {
+    let mut once = || {
+        let start = Instant::now();
+        (0..times).for_each(|_| work());
+        start.elapsed().as_secs_f64() / times as f64
+    };
+    once();
+    let mut seconds: Vec<f64> = (0..repetitions).map(|_| once()).collect();
+    seconds.sort_by(f64::total_cmp);
+    Seconds { least: seconds[0], median: seconds[seconds.len() / 2], most: seconds[seconds.len() - 1] }
+}
