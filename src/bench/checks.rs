@@ -192,10 +192,9 @@ fn straight(c: &Checked<'_>, trends: &Trends) -> Check {
     let Some((bend, p)) = trends.coefficient(&quadratic) else {
         return cannot_tell(CheckKind::Straight, limit, CannotTell::TooFewPoints);
     };
-    let lack_of_fit_p = trends.lack_of_fit_p();
     let mut check = judged(CheckKind::Straight, bend, limit, p, c.limits.significance);
     if check.verdict == CheckVerdict::Fail {
-        check.finding = Finding::Bent { lack_of_fit_p };
+        check.finding = Finding::Bent { lack_of_fit_p: trends.lack_of_fit_p() };
     }
     check
 }

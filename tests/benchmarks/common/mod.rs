@@ -59,8 +59,7 @@ impl Prepared {
     /// Reads and analyses the run of `setting`.
     pub fn new(setting: &Setting) -> Self {
         let run = read_run(&setting.file).unwrap_or_else(|e| panic!("{e}")).value;
-        let analysis =
-            analyse(&run, points(&run), &Questions::default()).unwrap_or_else(|e| panic!("{e}"));
+        let analysis = analyse(&run, points(&run), &Questions::default()).unwrap_or_else(|e| panic!("{e}"));
         Self { run, analysis }
     }
 
