@@ -8,9 +8,10 @@ speed, each measured:
 - all fits (the readings as they are, and with each source moved up and down) are one stack of arrays, fitted together;
 - the posterior is one stack over the grid of choke ratios;
 - quantiles and tails come from scipy.special, which scipy.stats calls too, after far more handling of arguments;
+  `analyse` measures the analysis with scipy.stats as well, since that is what most people write;
 - the Monte Carlo trials go in stacks that stay in the cache, on two threads (numpy lets go of the interpreter's lock).
 
-`scipy.odr` is measured beside it (`time`); it fits one line at a time.
+`scipy.odr` is measured beside it (`odr`); it fits one line at a time.
 
 Takes what the benchmark files hold: points, a mass-reading meter, oxygen. Writes nothing but its result.
 """
@@ -45,6 +46,33 @@ B_GRID = 105
 K_GRID = 15
 PRIOR_B = (0.08, 0.60)
 SIGNIFICANCE = 0.01
+
+
+class Special:
+    """Tails and quantiles straight from scipy.special."""
+
+    t_quantile = staticmethod(lambda p, dof: special.stdtrit(dof, p))
+    t_cdf = staticmethod(lambda t, dof: special.stdtr(dof, t))
+    normal_quantile = staticmethod(special.ndtri)
+    normal_cdf = staticmethod(special.ndtr)
+    chi_squared_upper = staticmethod(lambda x, dof: special.chdtrc(dof, x))
+    f_upper = staticmethod(lambda f, a, b: special.fdtrc(a, b, f))
+
+
+class Stats:
+    """The same from scipy.stats, imported only when asked for."""
+
+    def __init__(self):
+        from scipy import stats
+
+        self.t_quantile = stats.t.ppf
+        self.t_cdf = stats.t.cdf
+        self.normal_quantile = stats.norm.ppf
+        self.normal_cdf = stats.norm.cdf
+        self.chi_squared_upper = stats.chi2.sf
+        self.f_upper = stats.f.sf
+
+
 UNITS = {
     "bar": 1e5, "hPa": 100.0, "mbar": 100.0, "kPa": 1e3,
     "L/min": 1.0, "%": 0.01, "°C": 1.0, "s": 1.0,
@@ -202,22 +230,30 @@ def subsonic(ratio, b):
 def posterior(low, high, ratio, p1, flow, pressure_u, flow_u, choked, inverse_root_re, scale, effects):
     """Logarithm of the weight and least chi-squared of each choke ratio on an even grid."""
     b = np.linspace(low, high, B_GRID)[:, None]
+    below = ratio <= b
     psi = subsonic(ratio, b)
-    slope = np.where(ratio <= b, 0.0, -(ratio - b) / (1.0 - b) ** 2 / np.maximum(psi, 0.1))
-    slope[psi <= 0.0] = 0.0
+    floor = np.maximum(psi, 0.1)
+    square = (1.0 - b) ** 2
+    choked_already = below | (psi <= 0.0)
+    slope = np.where(choked_already, 0.0, -(ratio - b) / square / floor)
+    curvature = np.where(choked_already, 0.0, -1.0 / (square * floor**3))
+    e_p1, e_p2, e_flow = effects
+    # What is common to all pressures, to second order.
+    second = curvature * (ratio * ratio / p1 * (e_p1 * e_p1).sum(axis=0))
     per_bar = scale * choked / p1
     by_p1 = (psi - slope * ratio) * per_bar
     by_p2 = slope * per_bar
     variance = flow_u * flow_u + (by_p1 * pressure_u) ** 2
     weight = 1.0 / variance
-    e_p1, e_p2, e_flow = effects
-    d = e_flow - by_p1[:, None, :] * e_p1 - by_p2[:, None, :] * e_p2
+    d = np.empty((B_GRID, len(e_p1) + 1, len(p1)))
+    d[:, :-1] = e_flow - by_p1[:, None, :] * e_p1 - by_p2[:, None, :] * e_p2
+    d[:, -1] = per_bar * second / math.sqrt(2.0)
     dw = d * weight[:, None, :]
     lower = np.linalg.cholesky(np.eye(d.shape[1]) + dw @ d.transpose(0, 2, 1))
     log_determinant = np.log(variance).sum(axis=-1) + 2.0 * np.log(
         np.diagonal(lower, axis1=1, axis2=2)
     ).sum(axis=-1)
-    a = choked * psi
+    a = choked * (psi + 0.5 * second / p1)
     vectors = np.stack([a, a * inverse_root_re, np.broadcast_to(flow, a.shape)], axis=-1)
     projected = np.linalg.solve(lower, dw @ vectors)
     forms = vectors.transpose(0, 2, 1) @ (weight[:, :, None] * vectors) - projected.transpose(
@@ -236,7 +272,7 @@ def posterior(low, high, ratio, p1, flow, pressure_u, flow_u, choked, inverse_ro
     return b[:, 0], top[:, 0] + np.log(sums) - 0.5 * log_determinant, chi_square.min()
 
 
-def choke_ratio(run, p1, p2, flow, pressure_u, flow_u, moved):
+def choke_ratio(tails, p1, p2, flow, pressure_u, flow_u, moved):
     """Mean, standard deviation and 95 % interval of the choke ratio, and its grid with weights."""
     ratio = p2 / p1
     choked = p1 * critical_flow(p1) / critical_flow(10.0)
@@ -254,7 +290,7 @@ def choke_ratio(run, p1, p2, flow, pressure_u, flow_u, moved):
         b, log_weight, least = posterior(*narrow, *known)
     dof = max(len(p1) - 3.0, 1.0)
     reduced = least / dof
-    fits = special.chdtrc(dof, least) >= SIGNIFICANCE
+    fits = tails.chi_squared_upper(least, dof) >= SIGNIFICANCE
     temper = 1.0
     if not fits:
         if reduced >= 4.0:
@@ -268,17 +304,16 @@ def choke_ratio(run, p1, p2, flow, pressure_u, flow_u, moved):
     deviation = b - mean
     sd = math.sqrt(weight @ (deviation * deviation))
     # Quantiles of a density given on an even grid, whose end points carry half a cell.
-    width = b[1] - b[0]
     edges = np.concatenate(([b[0]], (b[:-1] + b[1:]) / 2.0, [b[-1]]))
     below = np.concatenate(([0.0], np.cumsum(weight)))
     interval = np.interp([0.025, 0.975], below, edges)
     measured = fits and (interval[1] - interval[0]) / 2.0 < 0.05
     return types.SimpleNamespace(
-        value=mean, u=sd, interval=interval, b=b, weight=weight, measured=measured, width=width
+        value=mean, u=sd, interval=interval, b=b, weight=weight, measured=measured
     )
 
 
-def ordinary(columns, y):
+def ordinary(tails, columns, y):
     """Coefficient and p-value of the last column beside a constant and the others."""
     design = np.column_stack([np.ones_like(y), *columns])
     q, r = np.linalg.qr(design)
@@ -287,10 +322,10 @@ def ordinary(columns, y):
     residual = y - design @ parameters
     dof = len(y) - design.shape[1]
     sd = math.sqrt(residual @ residual / dof * (inverse[-1] @ inverse[-1]))
-    return parameters[-1], 2.0 * special.stdtr(dof, -abs(parameters[-1] / sd))
+    return parameters[-1], 2.0 * tails.t_cdf(-abs(parameters[-1] / sd), dof)
 
 
-def generalised_esd(values, suspects, significance):
+def generalised_esd(tails, values, suspects, significance):
     """Indices that lie apart."""
     left = np.arange(len(values))
     order, over = [], 0
@@ -300,7 +335,7 @@ def generalised_esd(values, suspects, significance):
         distance = np.abs(v - v.mean())
         far = distance.argmax()
         statistic = distance[far] / v.std(ddof=1)
-        t = special.stdtrit(n - 2, 1.0 - significance / (2.0 * n))
+        t = tails.t_quantile(1.0 - significance / (2.0 * n), n - 2)
         critical = (n - 1) * t / math.sqrt(n * (n - 2 + t * t))
         order.append(left[far])
         if statistic > critical:
@@ -309,21 +344,22 @@ def generalised_esd(values, suspects, significance):
     return order[:over]
 
 
-def checks(run, line, used, p1, flow, nominal_flow, nominal_t):
+def checks(tails, run, line, used, p1, flow, nominal_flow, nominal_t):
     """Every check that needs numbers: values and p-values."""
     low, high = p1.min(), p1.max()
     x = 2.0 * (p1 - low) / (high - low) - 1.0
     y = flow / nominal_flow
     residual = (flow - line.intercept - line.slope * p1) / nominal_flow
     n = len(x)
-    found = {"straight": ordinary([x, x * x], y)}
+    bend = x * x
+    found = {"straight": ordinary(tails, [x, bend], y)}
     rising = run.rising[used]
     if 2 <= rising.sum() <= n - 2:
-        found["hysteresis"] = ordinary([x, np.where(rising, 0.5, -0.5)], y)
+        found["hysteresis"] = ordinary(tails, [x, bend, np.where(rising, 0.5, -0.5)], y)
     when = run.time_s[used]
     over = (when - when[0]) / (when[-1] - when[0]) - 0.5
     if abs(np.corrcoef(over, x)[0, 1]) <= 0.98:
-        found["steady"] = ordinary([x, over], y)
+        found["steady"] = ordinary(tails, [x, bend, over], y)
     # Repetitions: pressures within 0.1 bar of the lowest of their group.
     order = np.argsort(p1, kind="stable")
     group = np.empty(n, dtype=int)
@@ -341,14 +377,15 @@ def checks(run, line, used, p1, flow, nominal_flow, nominal_t):
     square = dx @ dx
     off = dy - dx * (dx @ dy / square)
     square_sum = off @ off
-    if 2 < mark + 1 < n:
+    bent = abs(found["straight"][0]) > 0.005 and found["straight"][1] < SIGNIFICANCE
+    if bent and 2 < mark + 1 < n:
         pure = y - (np.bincount(group, y) / count)[group]
         pure_square = pure @ pure
         f = (square_sum - pure_square) / (mark - 1) / (pure_square / (n - mark - 1))
-        found["lack of fit"] = f, special.fdtrc(mark - 1, n - mark - 1, f)
+        found["lack of fit"] = f, tails.f_upper(f, mark - 1, n - mark - 1)
     leverage = 1.0 / n + dx * dx / square
     studentised = off / np.sqrt(square_sum / (n - 2) * (1.0 - leverage))
-    found["outlier"] = generalised_esd(studentised, max(n // 10, 1), SIGNIFICANCE)
+    found["outlier"] = generalised_esd(tails, studentised, max(n // 10, 1), SIGNIFICANCE)
     # Fieller's limits of -intercept/slope.
     v, t2 = line.covariance, nominal_t * nominal_t
     a, b = -line.intercept, line.slope
@@ -365,7 +402,7 @@ def checks(run, line, used, p1, flow, nominal_flow, nominal_t):
     return found
 
 
-def analyse(run):
+def analyse(run, tails=Special):
     """Everything from readings to verdict."""
     # A row for the readings as they are, then one for each source up and one down.
     shifts = np.zeros((13, 6))
@@ -381,7 +418,7 @@ def analyse(run):
     # The meter's gain is a factor of the flow and so of the conductance, which is free.
     up = slice(3, None, 2)
     effects = p1[up] - p1[0], np.broadcast_to(p2[up] - p2[0], flow[up].shape), flow[up] - flow[0]
-    choke = choke_ratio(run, p1[0], p2[0], flow[0], pressure_u, flow_u, effects)
+    choke = choke_ratio(tails, p1[0], p2[0], flow[0], pressure_u, flow_u, effects)
     ratio = p2[0] / p1[0]
     loss = (1.0 - subsonic(ratio[:, None], choke.b)) @ choke.weight
     full = np.maximum(flow[0], 0.0) / np.maximum(1.0 - loss, 0.05)
@@ -396,13 +433,13 @@ def analyse(run):
     random_variance = at @ line.random @ at
     variance = random_variance + parts @ parts
     dof = variance * variance / (random_variance * random_variance / line.dof) if line.dof < math.inf else math.inf
-    factor = special.stdtrit(dof, 0.975) if dof < math.inf else special.ndtri(0.975)
+    factor = tails.t_quantile(0.975, dof) if dof < math.inf else tails.normal_quantile(0.975)
     u = math.sqrt(variance)
-    found = checks(run, line, used, p1[0], flow[0], value, factor)
+    found = checks(tails, run, line, used, p1[0], flow[0], value, factor)
     # Conformity.
     lower, upper = run.nominal_flow * (1.0 - run.tolerance), run.nominal_flow * (1.0 + run.tolerance)
     ends = np.array([(lower - value) / u, (value - upper) / u])
-    outside = (special.stdtr(dof, ends) if dof < math.inf else special.ndtr(ends)).sum()
+    outside = (tails.t_cdf(ends, dof) if dof < math.inf else tails.normal_cdf(ends)).sum()
     expanded = factor * u
     if lower + expanded <= value <= upper - expanded:
         verdict = "pass"
@@ -531,24 +568,30 @@ def summary(a):
 
 
 def main():
+    if len(sys.argv) < 3:
+        sys.exit(
+            "fit FILE.toml | analyse FILE.toml [REPETITIONS] | monte-carlo FILE.toml [REPETITIONS] | "
+            "odr FILE.toml [REPETITIONS] | pandas FILE.csv | loadtxt FILE.csv"
+        )
     verb, file, *rest = sys.argv[1:]
-    quick = "--quick" in rest
+    repetitions = int(rest[0]) if rest else 7
     if verb == "fit":
         print(json.dumps(summary(analyse(read(file))), indent=1, default=float))
-    elif verb == "time":
+    elif verb == "analyse":
+        run, stats = read(file), Stats()
+        result = {
+            "special_s": median_seconds(lambda: analyse(run), repetitions, 20),
+            "stats_s": median_seconds(lambda: analyse(run, stats), repetitions, 20),
+        }
+        print(json.dumps(result))
+    elif verb == "monte-carlo":
         run = read(file)
         analysis = analyse(run)
-        trials = 100_000
-        seconds = median_seconds(lambda: analyse(run), 7 if quick else 21, 20)
-        chain = median_seconds(lambda: monte_carlo(run, analysis, trials, 1), 3 if quick else 7)
-        mean, sd, low, high = monte_carlo(run, analysis, trials, 1)
-        result = {
-            "analyse_s": seconds,
-            "monte_carlo_s": chain,
-            "monte_carlo": {"mean": mean, "u": sd, "low": low, "high": high},
-            "odr": odr_seconds(run, 3 if quick else 7),
-        }
-        print(json.dumps(result, default=float))
+        seconds = median_seconds(lambda: monte_carlo(run, analysis, 100_000, 1), repetitions)
+        mean, sd, low, high = monte_carlo(run, analysis, 100_000, 1)
+        print(json.dumps({"s": seconds, "mean": mean, "u": sd, "low": low, "high": high}, default=float))
+    elif verb == "odr":
+        print(json.dumps(odr_seconds(read(file), repetitions)))
     elif verb == "pandas":
         import pandas
 
@@ -556,7 +599,7 @@ def main():
     elif verb == "loadtxt":
         print(len(np.loadtxt(file, delimiter=",", skiprows=1)))
     else:
-        sys.exit("fit FILE.toml | time FILE.toml [--quick] | pandas FILE.csv | loadtxt FILE.csv")
+        sys.exit(f"{verb} is not known")
 
 
 if __name__ == "__main__":
