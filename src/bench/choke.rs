@@ -91,7 +91,9 @@ impl ChokeRatio {
     /// Share of the choked flow expected to be lost at a pressure ratio, averaged over what is known of `b`.
     #[must_use]
     pub fn expected_loss(&self, ratio: f64) -> f64 {
-        self.grid.iter().map(|&(b, weight)| weight * (1.0 - gas::subsonic_factor(ratio, b))).sum()
+        // From the ratio on, a hole is choked and loses nothing.
+        let not_choked = self.grid.iter().take_while(|(b, _)| *b < ratio);
+        not_choked.map(|&(b, weight)| weight * (1.0 - gas::subsonic_factor(ratio, b))).sum()
     }
 
     /// The value below which `b` lies with `probability`.
