@@ -49,15 +49,16 @@ pub(super) struct Model {
 }
 
 struct ModelPoint {
-    p1_bar: f64,
     ratio: f64,
     flow_l_min: f64,
     pressure_variance: f64,
-    /// Variance of `p1` from all common sources together, bar².
-    common_variance: f64,
+    /// Variance of `p1` from all common sources together, as a share of `p1²`.
+    common_share: f64,
     flow_variance: f64,
     /// `p1 · C*(p1)/C*(10 bar)`, bar.
     choked: f64,
+    /// The same with the first estimate of `C`, over `p1`: L/min per bar.
+    per_bar: f64,
     /// `1/√Re`.
     inverse_root_re: f64,
 }
@@ -77,13 +78,14 @@ impl Model {
             // A reading of almost nothing still has a jet; one per cent of the largest flow keeps 1/√Re finite.
             let flow = StpdFlow::from_l_min(p.corrected.flow_l_min.max(0.01 * scale));
             ModelPoint {
-                p1_bar: p.corrected.p1_bar,
                 ratio: p.corrected.p2_bar / p.corrected.p1_bar,
                 flow_l_min: p.corrected.flow_l_min,
                 pressure_variance: p.pressure_u * p.pressure_u,
-                common_variance: effects.iter().map(|e| e.p1_bar[i] * e.p1_bar[i]).sum(),
+                common_share: effects.iter().map(|e| e.p1_bar[i] * e.p1_bar[i]).sum::<f64>()
+                    / (p.corrected.p1_bar * p.corrected.p1_bar),
                 flow_variance: p.flow_u * p.flow_u,
                 choked: choked(p),
+                per_bar: scale * choked(p) / p.corrected.p1_bar,
                 inverse_root_re: 1.0 / gas::reynolds_number(species, flow, diameter).max(1.0).sqrt(),
             }
         };
@@ -136,12 +138,12 @@ impl Model {
     fn add<const S: usize>(&self, index: usize, b: f64, sums: &mut Sums<S>) {
         let p = &self.points[index];
         let Psi { psi, slope: psi_slope, curvature } = Psi::of(p.ratio, b);
-        // d²(p1·ψ)/dp1² times the variance of what is common to all p1: its half is the mean shift of the flow.
-        let second_order = curvature * p.ratio * p.ratio / p.p1_bar * p.common_variance;
-        let a = p.choked * (psi + 0.5 * second_order / p.p1_bar);
+        // d²(p1·ψ)/dp1² times the variance of what is common to all p1, over p1: its half is the mean shift of ψ.
+        let second_order = curvature * p.ratio * p.ratio * p.common_share;
+        let a = p.choked * (psi + 0.5 * second_order);
         // dq/dp1 and dq/dp2 of the model without k, which changes them by a few per cent only.
-        let by_p1 = self.scale * (psi - psi_slope * p.ratio) * p.choked / p.p1_bar;
-        let by_p2 = self.scale * psi_slope * p.choked / p.p1_bar;
+        let by_p1 = p.per_bar * (psi - psi_slope * p.ratio);
+        let by_p2 = p.per_bar * psi_slope;
         let variance = p.flow_variance + by_p1 * by_p1 * p.pressure_variance;
         let effects = &self.effects[index * self.sources..(index + 1) * self.sources];
         let mut d = [0.0; S];
@@ -149,7 +151,7 @@ impl Model {
             *d = flow - by_p1 * p1 - by_p2 * p2;
         }
         // z² of a standard normal z has the standard deviation √2 and is not correlated with z.
-        d[S - 1] = self.scale * p.choked / p.p1_bar * second_order / std::f64::consts::SQRT_2;
+        d[S - 1] = self.scale * p.choked * second_order * std::f64::consts::FRAC_1_SQRT_2;
         sums.add(&d, [a, a * p.inverse_root_re, p.flow_l_min], 1.0 / variance);
         sums.product *= variance / p.flow_variance.max(f64::MIN_POSITIVE);
         if !(1e-200..1e200).contains(&sums.product) {
@@ -172,11 +174,11 @@ impl Psi {
         if ratio <= b || psi <= 0.0 {
             return Self { psi, slope: 0.0, curvature: 0.0 };
         }
-        let one_minus_b = 1.0 - b;
+        let per_width = 1.0 / (1.0 - b);
         // Very near p2 = p1 both grow without bound; a tenth of full flow is as far as they are followed.
-        let floor = psi.max(0.1);
-        let slope = -(ratio - b) / (one_minus_b * one_minus_b) / floor;
-        Self { psi, slope, curvature: -1.0 / (one_minus_b * one_minus_b * floor * floor * floor) }
+        let per_psi = 1.0 / psi.max(0.1);
+        let steep = -per_width * per_width * per_psi;
+        Self { psi, slope: (ratio - b) * steep, curvature: steep * per_psi * per_psi }
     }
 }
 
@@ -221,9 +223,7 @@ impl<const S: usize> Sums<S> {
         for row in 0..S {
             let weighted = d[row] * weight;
             self.projected[row].iter_mut().zip(v).for_each(|(p, v)| *p += weighted * v);
-            for column in 0..=row {
-                self.gram[row][column] += weighted * d[column];
-            }
+            self.gram[row][..=row].iter_mut().zip(d).for_each(|(entry, d)| *entry += weighted * d);
         }
     }
 }
@@ -263,8 +263,8 @@ fn factor<const S: usize>(gram: &[[f64; S]; S]) -> ([[f64; S]; S], f64) {
         for column in 0..=row {
             let entry = gram[row][column];
             let mut sum = if row == column { 1.0 + entry } else { entry };
-            for j in 0..column {
-                sum -= cholesky[row][j] * cholesky[column][j];
+            for (a, b) in cholesky[row][..column].iter().zip(&cholesky[column][..column]) {
+                sum -= a * b;
             }
             if row == column {
                 // The matrix is the identity plus a sum of squares, so the pivot is at least one but for rounding.
