@@ -7,15 +7,13 @@ mod common;
 use std::hint::black_box;
 
 use common::{Prepared, Setting, time};
-use ebbline::bench::{Questions, analyse};
 
 fn main() {
     let setting = Setting::from_arguments();
     let prepared = Prepared::new(&setting);
     let times = if setting.in_earnest { 200 } else { 1 };
     let seconds = time(setting.repetitions(21), times, || {
-        let analysis = analyse(black_box(&prepared.run), prepared.points(), &Questions::default());
-        assert!(black_box(analysis).is_ok(), "it was analysed once already");
+        black_box(prepared.analyse());
     });
     println!(
         "analyse {} points: median {:.6} ms (from {:.6} to {:.6} ms), {:.1} analyses a second on one core",

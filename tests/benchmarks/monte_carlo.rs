@@ -16,10 +16,11 @@ const THREADS: usize = 2;
 fn main() {
     let setting = Setting::from_arguments();
     let prepared = Prepared::new(&setting);
+    let analysis = prepared.analyse();
     let trials = if setting.in_earnest { 100_000 } else { 1_000 };
     let mut last = None;
     let seconds = time(setting.repetitions(15), 1, || {
-        last = black_box(monte_carlo(&prepared.run, black_box(&prepared.analysis), trials, SEED, THREADS));
+        last = black_box(monte_carlo(&prepared.run, black_box(&analysis), trials, SEED, THREADS));
     });
     let Some(result) = last else { panic!("too few trials converged for an interval") };
     println!(

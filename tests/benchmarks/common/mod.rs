@@ -1,13 +1,13 @@
 //! What the benchmarks share: the run they work on, and a stopwatch that can be trusted.
 //!
 //! A figure is the median over several repetitions after a warm-up, with the fastest and the slowest beside it; a
-//! repetition lasts long enough for the clock not to matter. Started by `cargo test` (without `--bench`) each runs once,
+//! repetition lasts long enough for the clock not to matter. Started by `cargo test --benches` (without `--bench`) each runs once,
 //! so that a benchmark that no longer works is noticed. Left out: outlier models and comparison with an earlier run; the
 //! machine's noise is shown, not removed.
 
-#![allow(clippy::print_stdout, reason = "a benchmark's result is what it prints")]
 #![allow(clippy::disallowed_methods, reason = "a stopwatch asks for the time")]
 
+use std::hint::black_box;
 use std::path::PathBuf;
 use std::time::Instant;
 
@@ -16,18 +16,18 @@ use ebbline::entry::{PointReading, Readings, Run};
 use ebbline::record::read_run;
 
 /// How the benchmark was started.
-pub struct Setting {
+pub(crate) struct Setting {
     /// Timed in earnest, or one repetition to see that it works.
-    pub in_earnest: bool,
+    pub(crate) in_earnest: bool,
     /// Fewer repetitions.
-    pub quick: bool,
+    pub(crate) quick: bool,
     /// The run file.
-    pub file: PathBuf,
+    pub(crate) file: PathBuf,
 }
 
 impl Setting {
     /// From the command line: `--quick`, and the run file to work on instead of the committed one.
-    pub fn from_arguments() -> Self {
+    pub(crate) fn from_arguments() -> Self {
         let arguments: Vec<String> = std::env::args().skip(1).collect();
         let given = |flag: &str| arguments.iter().any(|a| a == flag);
         let file = arguments.iter().find(|a| a.ends_with(".toml")).map_or_else(
@@ -38,7 +38,7 @@ impl Setting {
     }
 
     /// Repetitions: `full`, a third of it when quick, one when not in earnest.
-    pub fn repetitions(&self, full: usize) -> usize {
+    pub(crate) fn repetitions(&self, full: usize) -> usize {
         match (self.in_earnest, self.quick) {
             (false, _) => 1,
             (true, true) => full.div_ceil(3),
@@ -47,48 +47,45 @@ impl Setting {
     }
 }
 
-/// A run of steady points and its analysis.
-pub struct Prepared {
+/// A run of steady points.
+pub(crate) struct Prepared {
     /// The run.
-    pub run: Run,
-    /// Its analysis.
-    pub analysis: Analysis,
+    pub(crate) run: Run,
 }
 
 impl Prepared {
-    /// Reads and analyses the run of `setting`.
-    pub fn new(setting: &Setting) -> Self {
-        let run = read_run(&setting.file).unwrap_or_else(|e| panic!("{e}")).value;
-        let analysis = analyse(&run, points(&run), &Questions::default()).unwrap_or_else(|e| panic!("{e}"));
-        Self { run, analysis }
+    /// Reads the run of `setting`.
+    pub(crate) fn new(setting: &Setting) -> Self {
+        Self { run: read_run(&setting.file).unwrap_or_else(|e| panic!("{e}")).value }
     }
 
-    /// The points read.
-    pub fn points(&self) -> &[PointReading] {
-        points(&self.run)
+    /// Its points.
+    pub(crate) fn points(&self) -> &[PointReading] {
+        match &self.run.readings {
+            Readings::Points(points) => points,
+            Readings::Series(_) => panic!("the benchmark needs a run of points"),
+        }
     }
-}
 
-fn points(run: &Run) -> &[PointReading] {
-    match &run.readings {
-        Readings::Points(points) => points,
-        Readings::Series(_) => panic!("the benchmark needs a run of points"),
+    /// From the points to the verdict.
+    pub(crate) fn analyse(&self) -> Analysis {
+        analyse(black_box(&self.run), self.points(), &Questions::default()).unwrap_or_else(|e| panic!("{e}"))
     }
 }
 
 /// Seconds a repetition took: fastest, median, slowest.
-pub struct Seconds {
+pub(crate) struct Seconds {
     /// Fastest.
-    pub least: f64,
+    pub(crate) least: f64,
     /// Median.
-    pub median: f64,
+    pub(crate) median: f64,
     /// Slowest.
-    pub most: f64,
+    pub(crate) most: f64,
 }
 
 /// Times `work`, done `times` in a row in each of `repetitions` repetitions, after one that does not count; seconds of
 /// once.
-pub fn time(repetitions: usize, times: usize, mut work: impl FnMut()) -> Seconds {
+pub(crate) fn time(repetitions: usize, times: usize, mut work: impl FnMut()) -> Seconds {
     let mut once = || {
         let start = Instant::now();
         (0..times).for_each(|_| work());
