@@ -192,10 +192,9 @@ fn straight(c: &Checked<'_>, trends: &Trends) -> Check {
     let Some((bend, p)) = trends.coefficient(&quadratic) else {
         return cannot_tell(CheckKind::Straight, limit, CannotTell::TooFewPoints);
     };
-    let lack_of_fit_p = trends.lack_of_fit_p();
     let mut check = judged(CheckKind::Straight, bend, limit, p, c.limits.significance);
     if check.verdict == CheckVerdict::Fail {
-        check.finding = Finding::Bent { lack_of_fit_p };
+        check.finding = Finding::Bent { lack_of_fit_p: trends.lack_of_fit_p() };
     }
     check
 }
@@ -423,8 +422,7 @@ impl Trends {
     /// Coefficient and p-value of a further column beside a straight line.
     fn coefficient(&self, column: &[f64]) -> Option<(f64, f64)> {
         let fit = ordinary::fit(&[&self.x, column], &self.y, ordinary::Intercept::Free).ok()?;
-        // Points without any scatter leave nothing to chance.
-        Some((*fit.parameters.last()?, (*fit.p_values.last()?).unwrap_or(0.0)))
+        last_of(&fit)
     }
 
     /// The same beside a line that may bend: where the low points come last, the growth of the discharge coefficient
@@ -434,7 +432,7 @@ impl Trends {
         let bent = (self.x.len() >= FEWEST_FOR_A_BEND)
             .then(|| ordinary::fit(&[&self.x, &square, column], &self.y, ordinary::Intercept::Free).ok());
         match bent.flatten() {
-            Some(fit) => Some((*fit.parameters.last()?, (*fit.p_values.last()?).unwrap_or(0.0))),
+            Some(fit) => last_of(&fit),
             None => self.coefficient(column),
         }
     }
@@ -449,6 +447,12 @@ impl Trends {
         let fitted: Vec<f64> = self.y.iter().zip(&fit.residuals).map(|(y, r)| y - r).collect();
         lack_of_fit::lack_of_fit(&self.groups, &self.y, &fitted, 2).ok().map(|l| l.p)
     }
+}
+
+/// The last parameter of a fit and its p-value; points without any scatter leave nothing to chance.
+fn last_of(fit: &ordinary::OrdinaryFit) -> Option<(f64, f64)> {
+    let last = fit.parameters.len().checked_sub(1)?;
+    Some((fit.parameters[last], fit.p_value(last).unwrap_or(0.0)))
 }
 
 /// Groups of points within [`SAME_PRESSURE_BAR`] of the lowest of their group, numbered from 0 upward in pressure.

@@ -91,7 +91,9 @@ impl ChokeRatio {
     /// Share of the choked flow expected to be lost at a pressure ratio, averaged over what is known of `b`.
     #[must_use]
     pub fn expected_loss(&self, ratio: f64) -> f64 {
-        self.grid.iter().map(|&(b, weight)| weight * (1.0 - gas::subsonic_factor(ratio, b))).sum()
+        // From the ratio on, a hole is choked and loses nothing.
+        let not_choked = self.grid.iter().take_while(|(b, _)| *b < ratio);
+        not_choked.map(|&(b, weight)| weight * (1.0 - gas::subsonic_factor(ratio, b))).sum()
     }
 
     /// The value below which `b` lies with `probability`.
@@ -168,14 +170,17 @@ fn slices_of_prior(low: f64, high: f64) -> Vec<Slice> {
 fn summarise(slices: &[Slice], temper: f64, chi_square: f64, dof: f64, model_fits: bool) -> ChokeRatio {
     let top = slices.iter().map(|s| s.log_weight).fold(f64::NEG_INFINITY, f64::max);
     let last = slices.len() - 1;
-    let weights: Vec<f64> = slices
-        .iter()
-        .enumerate()
-        .map(|(i, s)| {
-            let share = if i == 0 || i == last { 0.5 } else { 1.0 };
-            share * libm::exp((s.log_weight - top) / temper)
-        })
-        .collect();
+    let mut weights: Vec<f64> = Vec::with_capacity(slices.len());
+    for (i, s) in slices.iter().enumerate() {
+        // Where all points are choked one slice is like the one before.
+        let weight = match i.checked_sub(1).map(|before| (slices[before].log_weight, weights[before])) {
+            Some((log_weight, weight)) if log_weight.to_bits() == s.log_weight.to_bits() => weight,
+            _ => libm::exp((s.log_weight - top) / temper),
+        };
+        weights.push(weight);
+    }
+    weights[0] *= 0.5;
+    weights[last] *= 0.5;
     let sum: f64 = weights.iter().sum();
     let grid: Vec<(f64, f64)> = slices.iter().zip(&weights).map(|(s, w)| (s.b, w / sum)).collect();
     let value: f64 = grid.iter().map(|(b, w)| b * w).sum();

@@ -216,6 +216,7 @@ pub fn analyse(
         .chain(questions.at.iter().copied())
         .map(|ip| match questions.ambient {
             Some(ambient) => at.flow(ip, ambient.value, ambient.expanded),
+            None if ip == nominal_ip => Ok(nominal.clone()),
             None => at.flow(ip, AbsolutePressure::STANDARD_ATMOSPHERE, None),
         })
         .collect::<Result<Vec<_>, _>>()?;

@@ -146,12 +146,19 @@ fn normal_equivalent(t: f64, dof: f64) -> f64 {
 
 /// The t that Student's t exceeds with probability `q` ≤ 0.5.
 fn student_t_upper_quantile(q: f64, dof: f64) -> f64 {
-    let mut t = normal_upper_quantile(q);
-    if dof.is_infinite() || t.is_infinite() || t <= 0.0 {
-        return t.max(0.0);
+    let z = normal_upper_quantile(q);
+    if dof.is_infinite() || z.is_infinite() || z <= 0.0 {
+        return z.max(0.0);
     }
     // Student's tail is the heavier one, so the normal quantile lies to the left of the root; there the tail
-    // probability is convex and falling, and Newton's steps climb to the root without ever passing it.
+    // probability is convex and falling, and Newton's steps climb to the root without ever passing it. The expansion in
+    // 1/dof (Abramowitz & Stegun 26.7.5, three terms, from memory) lies nearer and as a rule to the left as well; where it
+    // does not, it is not used.
+    let s = z * z;
+    let (first, second) = ((s + 1.0) / 4.0, ((5.0 * s + 16.0) * s + 3.0) / 96.0);
+    let third = (((3.0 * s + 19.0) * s + 17.0) * s - 15.0) / 384.0;
+    let nearer = z + z / dof * (first + (second + third / dof) / dof);
+    let mut t = if student_t_upper(nearer, dof) > q { nearer } else { z };
     let log_density_at_zero = -0.5 * libm::log(dof) - log_beta(dof / 2.0, 0.5);
     for _ in 0..500 {
         let density = libm::exp(log_density_at_zero - 0.5 * (dof + 1.0) * libm::log1p(t * t / dof));

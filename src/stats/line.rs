@@ -13,6 +13,7 @@
 //! Points are taken as independent of one another and x as independent of y; for correlated points see
 //! [`super::correlated`]. Vertical lines and lines forced through the origin are left out.
 
+use super::line_scan::{DIRECTIONS, directions_of_better_lines, scanned_start};
 pub use super::points::{CalibrationPoints, LineError};
 
 /// A fitted line y = intercept + slope·x with standard uncertainties as in ISO/TS 28037:2010, clause 7.
@@ -177,11 +178,14 @@ pub fn fit(points: &CalibrationPoints) -> Result<Line, LineError> {
     let run =
         |start| iterate(points.x(), points.x_variances(), points.y(), points.y_variances(), start, FIT_STEPS);
     // Points that scatter far more than their uncertainties say can have a second, worse minimum beside the right one, or
-    // throw the first step out of the valley; of the two starts the better end counts.
+    // throw the first step out of the valley; of the two starts the better end counts. Points that scatter as stated leave
+    // no room for a better line elsewhere, and nothing is scanned.
+    let settled = |o: &Outcome| matches!(o, Outcome::Settled);
     let mut best = run(weighted_start(points));
-    if let Some(start) = scanned_start(points) {
+    let better =
+        if settled(&best.2) { directions_of_better_lines(points, best.0.chi_square) } else { 0..DIRECTIONS };
+    if let Some(start) = scanned_start(points, better) {
         let other = run(start);
-        let settled = |o: &Outcome| matches!(o, Outcome::Settled);
         if settled(&other.2) && (!settled(&best.2) || other.0.chi_square < best.0.chi_square * (1.0 - 1e-9)) {
             best = other;
         }
@@ -357,37 +361,6 @@ fn weighted_start(points: &CalibrationPoints) -> (f64, f64) {
     if again.0.is_finite() && again.1.is_finite() { again } else { plain }
 }
 
-/// Directions looked at by [`scanned_start`].
-const DIRECTIONS: usize = 360;
-
-/// The best line among many directions, each laid where it fits best. None when no direction has finite weights.
-fn scanned_start(points: &CalibrationPoints) -> Option<(f64, f64)> {
-    let (x, ux2, y, uy2) = (points.x(), points.x_variances(), points.y(), points.y_variances());
-    let n = points.count() as f64;
-    let (x_mean, y_mean) = (x.iter().sum::<f64>() / n, y.iter().sum::<f64>() / n);
-    let spread = |v: &[f64], mean: f64| v.iter().map(|v| (v - mean) * (v - mean)).sum::<f64>().sqrt();
-    // Directions are even when both axes are drawn equally long.
-    let unit = spread(y, y_mean) / spread(x, x_mean);
-    let mut best: Option<(f64, (f64, f64))> = None;
-    for k in 0..DIRECTIONS {
-        let angle = std::f64::consts::PI * ((k as f64 + 0.5) / DIRECTIONS as f64 - 0.5);
-        let b = unit * libm::tan(angle);
-        let (mut w, mut wr, mut wrr) = (0.0, 0.0, 0.0);
-        for i in 0..points.count() {
-            let weight = 1.0 / (uy2[i] + b * b * ux2[i]);
-            let r = (y[i] - y_mean) - b * (x[i] - x_mean);
-            w += weight;
-            wr += weight * r;
-            wrr += weight * r * r;
-        }
-        let chi_square = wrr - wr * wr / w;
-        if chi_square.is_finite() && best.is_none_or(|(least, _)| chi_square < least) {
-            best = Some((chi_square, (y_mean + wr / w - b * x_mean, b)));
-        }
-    }
-    best.map(|(_, line)| line)
-}
-
 /// (intercept, slope) of least squares with the weight of each point.
 fn line_of_least_squares(x: &[f64], y: &[f64], weight: impl Fn(usize) -> f64) -> (f64, f64) {
     let (mut w, mut wx, mut wy) = (0.0, 0.0, 0.0);
@@ -451,7 +424,7 @@ mod tests {
                 lost += 1;
                 continue;
             };
-            let scanned = scanned_start(&points).unwrap();
+            let scanned = scanned_start(&points, 0..DIRECTIONS).unwrap();
             let chi_square = |(a, b): (f64, f64)| {
                 (0..n)
                     .map(|i| (y[i] - a - b * x[i]).powi(2) / (uy[i] * uy[i] + b * b * ux[i] * ux[i]))

@@ -17,6 +17,7 @@
 
 pub mod distribution;
 mod points;
+mod line_scan;
 pub mod line;
 pub mod correlated;
 mod twice;
