@@ -465,7 +465,7 @@ impl Answers<'_> {
     }
 
     fn pressure(&self, flow: StpdFlow) -> Option<IpFor> {
-        let inverse = self.line.pressure_for(flow.as_l_min())?;
+        let inverse = self.line.pressure_for(flow.as_l_min(), 0.0)?;
         let ambient =
             self.questions.ambient.map_or(AbsolutePressure::STANDARD_ATMOSPHERE, |a| a.value).as_bar();
         let (low, high) = limits_of(&inverse);
