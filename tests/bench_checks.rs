@@ -149,6 +149,24 @@ fn the_crossing_says_what_its_sign_suggests() {
 }
 
 #[test]
+fn a_meter_that_is_stuck_does_not_pass() {
+    // The same flow at every pressure, and just the one that is wanted: exactly, and within the noise of the papers.
+    let stuck = 0.51 * 273.15 / 293.15;
+    let toml = tube().replacen("flow = \"0.48 L/min\"", &format!("flow = \"{stuck:.4} L/min\""), 1);
+    for noise in [0.0, 0.0005] {
+        let analysis = changed(&toml, |i, p, _| (p, 0.51 * (1.0 + noise * [1.0, -1.0, 0.5, -0.5][i % 4])));
+        let found = check(&analysis, CheckKind::ThroughZero);
+        assert_eq!(found.verdict, CheckVerdict::Fail, "{noise}: {found:?}");
+        let judgement = analysis.judgement.as_ref().unwrap();
+        assert_eq!((judgement.by_flow, judgement.verdict), (Verdict::Pass, Verdict::Undecided), "{noise}");
+    }
+    // A meter that shows nothing at all is at zero everywhere, and fails by its flow.
+    let nothing = changed(&toml, |_, p, _| (p, 0.0));
+    assert_eq!(check(&nothing, CheckKind::ThroughZero).verdict, CheckVerdict::Note);
+    assert_eq!(nothing.judgement.as_ref().unwrap().verdict, Verdict::Fail);
+}
+
+#[test]
 fn an_outlier_is_flagged_and_stays_in() {
     let analysis = changed(&tube(), |i, p, q| (p, if i == 6 { q * 1.02 } else { q }));
     let found = check(&analysis, CheckKind::Outlier);

@@ -166,6 +166,8 @@ fn calls_that_cannot_be_meant() {
         &["bench", "fit", "run.toml", "--at", "9.4"],
         &["bench", "fit", "run.toml", "--at", "-2 bar"],
         &["bench", "fit", "run.toml", "--for-flow", "1 sccm"],
+        &["bench", "fit", "run.toml", "--barometer", "1009"],
+        &["bench", "fit", "run.toml", "--barometer", "1009 kPa"],
         &["bench", "fit", "run.toml", "--plot", "run.jpg"],
         &["bench", "fit", "run.toml", "--monte-carlo", "5"],
         &["bench", "fit", "run.toml", "--show", "parsec"],

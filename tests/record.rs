@@ -488,7 +488,8 @@ fn files_that_cannot_be_opened_are_refused_in_one_sentence() {
         let got = read_run(&folder.join(name)).unwrap_err().to_string();
         assert_eq!(got, format!("{}: {sentence}", folder.join(about).display()));
     };
-    let missing = "there is no such file; check the name, which is taken relative to the file that names it";
+    let missing =
+        "there is no such file; check the name (one that stands in a file is taken relative to that file)";
     refused("none.toml", "none.toml", missing);
     refused("runs", "runs", "this is a directory; name a file in it");
     write("run.toml", POINTS.as_bytes());

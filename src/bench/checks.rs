@@ -275,11 +275,14 @@ fn steady(c: &Checked<'_>, used: &[&Point], trends: &Trends) -> Check {
 
 fn through_zero(c: &Checked<'_>) -> Check {
     let (low, high) = (c.limits.crossing_pa.0 / 1e5, c.limits.crossing_pa.1 / 1e5);
-    let Some((crossing, interval)) = c.line.crossing() else {
-        return cannot_tell(CheckKind::ThroughZero, high, CannotTell::TooFewPoints);
+    let wholly_outside = !c.line.may_cross_between(low, high);
+    let (crossing, interval) = match c.line.crossing() {
+        Some(found) => found,
+        // The same flow at every pressure, as of a meter that is stuck, crosses nowhere.
+        None if wholly_outside => (f64::NEG_INFINITY, (f64::NEG_INFINITY, f64::INFINITY)),
+        None => return cannot_tell(CheckKind::ThroughZero, high, CannotTell::TooFewPoints),
     };
     let (absolute, ambient) = c.zero_of_pressure();
-    let wholly_outside = interval.0 > high || interval.1 < low;
     let outside = crossing < low || crossing > high;
     let cause = outside.then(|| {
         let would_fit = |bar: f64| (low - NEAR_THE_LIMITS_BAR..=high + NEAR_THE_LIMITS_BAR).contains(&bar);

@@ -183,20 +183,37 @@ impl OrificeLine {
         FlowAt::new(p1_bar, self.random.at(p1_bar), parts)
     }
 
-    /// Absolute pressure in bar at which the line passes `flow_l_min`, with its 95 % limits; none for a flat line.
+    /// Absolute pressure in bar at which the line passes `flow_l_min`, itself known to `flow_u`, with its 95 % limits;
+    /// none for a flat line.
     #[must_use]
-    pub fn pressure_for(&self, flow_l_min: f64) -> Option<Inverse> {
+    pub fn pressure_for(&self, flow_l_min: f64, flow_u: f64) -> Option<Inverse> {
         let total = self.total();
         let (x, _) = total.inverse(flow_l_min, 0.0)?;
-        line_inverse(&total, flow_l_min, 0.0, self.flow_at(x).coverage_factor)
+        line_inverse(&total, flow_l_min, flow_u * flow_u, self.flow_at(x).coverage_factor)
     }
 
     /// Where the line crosses the pressure axis, in bar absolute: the value and its 95 % interval; none for a flat
     /// line, and an interval without ends when the slope is not known to differ from zero.
     #[must_use]
     pub fn crossing(&self) -> Option<(f64, (f64, f64))> {
-        let inverse = self.pressure_for(0.0)?;
+        let inverse = self.pressure_for(0.0, 0.0)?;
         Some((inverse.x, limits_of(&inverse)))
+    }
+
+    /// Whether the line, within its 95 % limits, may cross the pressure axis somewhere from `low` to `high` bar absolute.
+    /// A line that is nearly flat has no interval of crossings, and yet may be far from the axis there.
+    #[must_use]
+    pub fn may_cross_between(&self, low: f64, high: f64) -> bool {
+        match self.pressure_for(0.0, 0.0).map(|inverse| inverse.limits) {
+            Some(Fieller::Interval { lower, upper }) => lower <= high && upper >= low,
+            Some(Fieller::Outside { lower, upper }) => low <= lower || high >= upper,
+            Some(Fieller::Unbounded) => true,
+            // Flat: one value everywhere, least well known at an end.
+            None => [low, high].iter().any(|x| {
+                let flow = self.flow_at(*x);
+                flow.flow_l_min.abs() <= flow.expanded()
+            }),
+        }
     }
 }
 

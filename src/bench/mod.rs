@@ -116,7 +116,7 @@ pub struct FlowAtIp {
 pub struct IpFor {
     /// The flow asked for, of the run's gas.
     pub flow: StpdFlow,
-    /// The pressure, bar gauge.
+    /// The pressure, bar gauge; NaN when the line is flat.
     pub ip_bar_gauge: f64,
     /// Its 95 % interval, bar gauge; infinite when the line gives none.
     pub interval_bar_gauge: (f64, f64),
@@ -174,6 +174,12 @@ pub enum BenchError {
     /// A pressure asked for that cannot be.
     #[error("{0:.2} bar gauge is below vacuum at this barometer: ask for a higher pressure")]
     AskedBelowVacuum(f64),
+    /// An ambient pressure asked for at which nobody works.
+    #[error(
+        "an ambient pressure of {0:.0} hPa was asked for; where people work it is {low} to {high} hPa: check its unit",
+        low = PLAUSIBLE_BAROMETER_PA.0 / 100.0, high = PLAUSIBLE_BAROMETER_PA.1 / 100.0
+    )]
+    AskedImplausibleAmbient(f64),
     /// The time series had no steady span.
     #[error("the readings are a time series that has not been turned into points")]
     NotPoints,
@@ -193,6 +199,9 @@ pub fn analyse(
     questions: &Questions<'_>,
 ) -> Result<Analysis, BenchError> {
     let mut warnings = Vec::new();
+    if let Some(ambient) = questions.ambient.filter(|a| !plausible_barometer(a.value.as_pa())) {
+        return Err(BenchError::AskedImplausibleAmbient(ambient.value.as_pa() / 100.0));
+    }
     let correction = Correction::of(run);
     let sources = sources::common_sources(run, &mut warnings);
     let mut points = corrected_points(run, readings, &correction, &mut warnings)?;
@@ -220,8 +229,13 @@ pub fn analyse(
             None => at.flow(ip, AbsolutePressure::STANDARD_ATMOSPHERE, None),
         })
         .collect::<Result<Vec<_>, _>>()?;
-    warn_of_extrapolation(&points, &flow_at, &mut warnings);
-    let ip_for = questions.for_flow.iter().filter_map(|flow| at.pressure(*flow)).collect();
+    let ip_for: Vec<IpFor> = questions.for_flow.iter().map(|flow| at.pressure(*flow)).collect();
+    let ambient_bar = questions.ambient.map_or(AbsolutePressure::STANDARD_ATMOSPHERE, |a| a.value).as_bar();
+    // What is judged is read at 1.01325 bar, whatever ambient pressure the answers are for.
+    let judged_at = run.acceptance.as_ref().filter(|_| questions.ambient.is_some()).map(|_| &nominal);
+    let read_at = flow_at.iter().chain(judged_at).map(|at| (at.ip.as_bar(), at.flow.p1_bar));
+    let found_at = ip_for.iter().map(|ip| (ip.ip_bar_gauge, ip.ip_bar_gauge + ambient_bar));
+    warn_of_extrapolation(&points, read_at.chain(found_at), &mut warnings);
     let limits = run.acceptance.as_ref().map_or(Limits::DEFAULT, |a| a.limits);
     let checks = checks::all_checks(&checks::Checked {
         run,
@@ -313,14 +327,18 @@ fn corrected_points(
 
 /// A wrong unit in a condition moves every point without leaving a trace in the line, so it is refused.
 fn plausible(index: usize, raw: &Raw) -> Result<(), BenchError> {
-    let within = |value: f64, (low, high): (f64, f64)| (low..=high).contains(&value);
-    if !within(raw.ambient_pa, PLAUSIBLE_BAROMETER_PA) {
+    if !plausible_barometer(raw.ambient_pa) {
         return Err(BenchError::ImplausibleBarometer(index, raw.ambient_pa / 100.0));
     }
-    if !within(raw.temperature_k, PLAUSIBLE_TEMPERATURE_K) {
+    let (coldest, warmest) = PLAUSIBLE_TEMPERATURE_K;
+    if !(coldest..=warmest).contains(&raw.temperature_k) {
         return Err(BenchError::ImplausibleTemperature(index, raw.temperature_k - 273.15));
     }
     Ok(())
+}
+
+fn plausible_barometer(pa: f64) -> bool {
+    (PLAUSIBLE_BAROMETER_PA.0..=PLAUSIBLE_BAROMETER_PA.1).contains(&pa)
 }
 
 /// Residual standard deviation about a line through the points well above choking, L/min.
@@ -465,16 +483,16 @@ impl Answers<'_> {
         Ok(FlowAtIp { ip, ambient, flow, as_oxygen })
     }
 
-    fn pressure(&self, flow: StpdFlow) -> Option<IpFor> {
-        let inverse = self.line.pressure_for(flow.as_l_min())?;
-        let ambient =
-            self.questions.ambient.map_or(AbsolutePressure::STANDARD_ATMOSPHERE, |a| a.value).as_bar();
-        let (low, high) = limits_of(&inverse);
-        Some(IpFor {
-            flow,
-            ip_bar_gauge: inverse.x - ambient,
-            interval_bar_gauge: (low - ambient, high - ambient),
-        })
+    /// Infinite at both ends, and no number between, where the line is flat.
+    fn pressure(&self, flow: StpdFlow) -> IpFor {
+        let asked = self.questions.ambient;
+        let ambient = asked.map_or(AbsolutePressure::STANDARD_ATMOSPHERE, |a| a.value).as_bar();
+        // What the ambient pressure may be off by moves the gauge pressure as much, and the flow by the slope.
+        let ambient_u = asked.and_then(|a| a.expanded).map_or(0.0, |expanded| expanded.as_bar() / 2.0);
+        let inverse = self.line.pressure_for(flow.as_l_min(), self.line.random.slope * ambient_u);
+        let (p1_bar, (low, high)) = inverse
+            .map_or((f64::NAN, (f64::NEG_INFINITY, f64::INFINITY)), |found| (found.x, limits_of(&found)));
+        IpFor { flow, ip_bar_gauge: p1_bar - ambient, interval_bar_gauge: (low - ambient, high - ambient) }
     }
 }
 
@@ -509,15 +527,16 @@ fn judge(
     }
 }
 
-fn warn_of_extrapolation(points: &[Point], flow_at: &[FlowAtIp], warnings: &mut Vec<Warning>) {
+/// `read_at` holds where the line is read, bar gauge and bar absolute.
+fn warn_of_extrapolation(
+    points: &[Point],
+    read_at: impl Iterator<Item = (f64, f64)>,
+    warnings: &mut Vec<Warning>,
+) {
     let (low, high) = span(points);
-    for at in flow_at {
-        if at.flow.p1_bar < low - ONE_PRESSURE_BAR || at.flow.p1_bar > high + ONE_PRESSURE_BAR {
-            warnings.push(Warning::Extrapolated {
-                ip_bar_gauge: at.ip.as_bar(),
-                span_bar_abs: (low, high),
-                at_bar_abs: at.flow.p1_bar,
-            });
+    for (ip_bar_gauge, at_bar_abs) in read_at {
+        if at_bar_abs < low - ONE_PRESSURE_BAR || at_bar_abs > high + ONE_PRESSURE_BAR {
+            warnings.push(Warning::Extrapolated { ip_bar_gauge, span_bar_abs: (low, high), at_bar_abs });
         }
     }
 }

@@ -92,7 +92,10 @@ pub(super) fn common_sources(run: &Run, warnings: &mut Vec<Warning>) -> Vec<Comm
             );
             normal(Source::MeterPressure, Some(pa));
         }
-        normal(Source::Humidity, conditions.humidity.expanded.map(|d| d / CONDITION_COVERAGE));
+        // Water in the gas round a float is not corrected for, so its ± is no source either.
+        if !matches!(run.meter.kind, MeterKind::Float { .. }) {
+            normal(Source::Humidity, conditions.humidity.expanded.map(|d| d / CONDITION_COVERAGE));
+        }
         if matches!(run.meter.kind, MeterKind::Volumetric { wet: true } | MeterKind::Timed { wet: true })
             && conditions.water_temperature.value.is_some()
         {

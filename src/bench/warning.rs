@@ -39,7 +39,7 @@ pub enum Warning {
     ChokeModelFails,
     /// The acceptance names no gas and the run's gas is not oxygen: the nominal flow was taken for the run's gas.
     AcceptanceGasAssumed,
-    /// The nominal pressure lies outside the points of the line.
+    /// A pressure at which the line is read, or that a flow asked for leads to, lies outside the points of the line.
     Extrapolated {
         /// Where the line is read, bar gauge.
         ip_bar_gauge: f64,

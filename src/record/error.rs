@@ -45,7 +45,9 @@ pub struct Place {
 #[derive(Debug, Clone, PartialEq, Eq, thiserror::Error)]
 pub enum Fault {
     /// It is not there.
-    #[error("there is no such file; check the name, which is taken relative to the file that names it")]
+    #[error(
+        "there is no such file; check the name (one that stands in a file is taken relative to that file)"
+    )]
     Missing,
     /// It is a directory.
     #[error("this is a directory; name a file in it")]
