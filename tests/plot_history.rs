@@ -386,7 +386,7 @@ fn the_margin_says_trend_leaving_and_what_is_not_drawn() {
     let leaving = trend.leaves.unwrap();
     let month = |t: DateTime<FixedOffset>| t.format("%Y-%m").to_string();
     let about = format!("leaves the limits about {}", month(leaving.about));
-    assert_eq!(of_class(&svg, "plot-leaves"), [about.clone()]);
+    assert_eq!(of_class(&svg, "plot-leaves"), std::slice::from_ref(&about));
     assert_eq!(of_class(&svg, "plot-leaving-label"), [about]);
     assert_eq!(
         of_class(&svg, "plot-not-before"),
