@@ -49,6 +49,7 @@ pub mod stats;
 pub mod entry;
 pub mod series;
 pub mod bench;
+pub mod uptake;
 pub mod report;
 pub mod plot;
 pub mod clock;

@@ -14,6 +14,7 @@ mod instrument;
 mod first_stage;
 mod diver;
 mod shop;
+mod session;
 
 pub use acceptance::{Acceptance, Limits, Rule, Tolerance};
 pub use diver::{Diluent, Diver};
@@ -29,5 +30,10 @@ pub use papers::{Amount, FloatScale, Meter, MeterKind, Papers, Transducer};
 pub use run::{
     Build, Conditions, Indication, Influence, LeftOut, PointReading, Purity, Purpose, Readings, Run,
     SeriesReadings, Sweep, TimedVolume, ZeroAndLeak,
+};
+pub use session::{
+    Assumptions, CalibratedAt, CellPapers, CellReadings, CellSignal, Cylinder, Event, Feeds, Injection,
+    LeakTest, LineReference, LoopKept, Metered, Place, Rest, Session, SessionConditions, SessionReadings,
+    What,
 };
 pub use shop::{Logo, Shop, Signatory};

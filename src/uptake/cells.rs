@@ -1,0 +1,272 @@
+//! Oxygen cells: from what each shows to one partial pressure, and which of them to believe.
+//!
+//! Comes in: the cells' columns, binned rows, the ambient pressure. Goes out: the mean of the agreeing cells in each
+//! bin, the cells left out by name with the reason, and whether enough are left. A cell in volts is read on the straight
+//! line through its two calibration points. Left out: curvature of an ageing cell above its calibration point (flagged
+//! by the caller), and a cell's own temperature.
+
+use super::bins::Bins;
+use super::why_not::WhyNot;
+use crate::entry::{Assumptions, CalibratedAt, CellSignal, SessionReadings};
+use crate::gas::saturation_pressure;
+use crate::series::spike::step_noise;
+
+/// Oxygen in dry air, 0 to 1 (ICAO standard atmosphere, 0.209 476).
+pub(super) const OXYGEN_IN_AIR: f64 = 0.209_476;
+/// A reading above ambient by more than this share is a fault (interface).
+const ABOVE_AMBIENT: f64 = 0.05;
+/// Shortest repetition of one value that can be a frozen cell, seconds (common practice, no source).
+const FROZEN_S: f64 = 60.0;
+/// Fewest equal readings of a frozen cell (common practice, no source).
+const FROZEN_READINGS: usize = 10;
+/// How far the other cells must have moved meanwhile, bar, and in steps of the cell's last digit: a display of hundredths
+/// repeats honestly while the loop moves by one, and the others' rounding adds another (common practice, no source).
+const FROZEN_MOVES_BAR: f64 = 0.015;
+const FROZEN_MOVES_DIGITS: f64 = 2.5;
+/// Share of the bins in which a cell may be further off than the limit (common practice, no source).
+const OFF_SHARE: f64 = 0.05;
+
+/// A cell that was left out.
+#[derive(Debug, Clone, PartialEq)]
+pub struct CellLeftOut {
+    /// The name of its column.
+    pub name: String,
+    /// Why.
+    pub why: CellTrouble,
+}
+
+/// What is wrong with a cell.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub enum CellTrouble {
+    /// Too many readings that are missing, not positive, or above ambient by over 5 %: this share, 0 to 1.
+    Faults(f64),
+    /// It repeated one value while the others moved, between these seconds.
+    Frozen {
+        /// From, seconds.
+        from_s: f64,
+        /// To, seconds.
+        to_s: f64,
+    },
+    /// It was off the median of the cells by this much, in the mean over the session, bar.
+    Off(f64),
+    /// Its two calibration points do not make a line.
+    Calibration,
+}
+
+/// What the cells come to.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) struct Cells {
+    /// Mean oxygen partial pressure of the agreeing cells in each bin, bar; NaN where one of them is missing.
+    pub(super) po2_bar: Vec<f64>,
+    /// Cells left out.
+    pub(super) left_out: Vec<CellLeftOut>,
+    /// How many are used.
+    pub(super) used: usize,
+    /// Partial pressure at the upper calibration point, bar, when it is known.
+    pub(super) calibrated_to_bar: Option<f64>,
+}
+
+/// Whether a signal is a voltage.
+pub(super) fn any_in_volts(readings: &SessionReadings) -> bool {
+    readings.cells.iter().any(|c| matches!(c.signal, CellSignal::Volts { .. }))
+}
+
+/// Reads the cells.
+pub(super) fn read(
+    readings: &SessionReadings,
+    calibrated_at: Option<CalibratedAt>,
+    bins: &Bins,
+    ambient_bar: impl Fn(usize) -> f64,
+    assumptions: &Assumptions,
+) -> Result<Cells, WhyNot> {
+    let points = calibrated_at.map(|at| calibration_points_bar(&at));
+    let mut left_out = Vec::new();
+    // Name and bin means of the cells that read.
+    let mut sound: Vec<(usize, Vec<f64>)> = Vec::new();
+    for (index, cell) in readings.cells.iter().enumerate() {
+        let trouble = |why| CellLeftOut { name: cell.name.clone(), why };
+        let (column, gain, offset) = match &cell.signal {
+            CellSignal::Bar(column) => (column, 1.0, 0.0),
+            CellSignal::Volts { readings, in_air, in_oxygen } => {
+                let span = in_oxygen - in_air;
+                let Some((air, oxygen)) = points.filter(|_| span.is_finite() && span > 0.0) else {
+                    left_out.push(trouble(CellTrouble::Calibration));
+                    continue;
+                };
+                let gain = (oxygen - air) / span;
+                (readings, gain, air - gain * in_air)
+            }
+        };
+        let mut faults = 0_usize;
+        let mut read = 0_usize;
+        for &row in &bins.rows {
+            let shown = column.get(row).copied().unwrap_or(f64::NAN);
+            if shown.is_nan() {
+                continue;
+            }
+            read += 1;
+            faults += usize::from(!is_plausible(offset + gain * shown, ambient_bar(row)));
+        }
+        let means = bins.means(|row| {
+            let po2 = offset + gain * column.get(row).copied().unwrap_or(f64::NAN);
+            if is_plausible(po2, ambient_bar(row)) { po2 } else { f64::NAN }
+        });
+        let share = if read > 0 { faults as f64 / read as f64 } else { 1.0 };
+        if share > assumptions.cell_faults {
+            left_out.push(trouble(CellTrouble::Faults(share)));
+        } else {
+            sound.push((index, means));
+        }
+    }
+    drop_out(readings, &mut sound, &mut left_out, assumptions.cell_faults);
+    let frozen = frozen(readings, bins, &sound);
+    sound.retain(|(index, _)| match frozen.iter().find(|(f, _)| f == index) {
+        Some((_, why)) => {
+            left_out.push(CellLeftOut { name: readings.cells[*index].name.clone(), why: *why });
+            false
+        }
+        None => true,
+    });
+    if sound.is_empty() {
+        return Err(WhyNot::NoUsableCell { left_out });
+    }
+    if sound.len() > 1 {
+        disagreeing(readings, &mut sound, &mut left_out, assumptions.cell_limit.as_bar());
+        if sound.len() < 2 {
+            return Err(WhyNot::CellsDisagree { left_out });
+        }
+    }
+    let n = sound.len() as f64;
+    let po2_bar = (0..bins.time_s.len())
+        .map(|bin| sound.iter().map(|(_, means)| means[bin]).sum::<f64>() / n)
+        .collect();
+    let calibrated_to_bar = points.map(|(_, oxygen)| oxygen).filter(|_| any_in_volts(readings));
+    Ok(Cells { po2_bar, left_out, used: sound.len(), calibrated_to_bar })
+}
+
+/// Oxygen partial pressure in bar in the air and in the oxygen of a calibration; the oxygen is dry.
+fn calibration_points_bar(at: &CalibratedAt) -> (f64, f64) {
+    let vapour = at.humidity * saturation_pressure(at.temperature).as_bar();
+    (OXYGEN_IN_AIR * (at.barometer.as_bar() - vapour), at.oxygen * at.barometer.as_bar())
+}
+
+fn is_plausible(po2_bar: f64, ambient_bar: f64) -> bool {
+    po2_bar > 0.0 && po2_bar <= ambient_bar * (1.0 + ABOVE_AMBIENT)
+}
+
+/// Leaves out cells that have no reading in too many of the bins in which another has.
+fn drop_out(
+    readings: &SessionReadings,
+    sound: &mut Vec<(usize, Vec<f64>)>,
+    left_out: &mut Vec<CellLeftOut>,
+    most: f64,
+) {
+    let bins = sound.first().map_or(0, |(_, means)| means.len());
+    let any: Vec<bool> = (0..bins).map(|bin| sound.iter().any(|(_, means)| means[bin].is_finite())).collect();
+    let there = any.iter().filter(|any| **any).count() as f64;
+    sound.retain(|(index, means)| {
+        let missing = any.iter().zip(means).filter(|(any, mean)| **any && mean.is_nan()).count() as f64;
+        let share = if there > 0.0 { missing / there } else { 1.0 };
+        if share > most {
+            let name = readings.cells[*index].name.clone();
+            left_out.push(CellLeftOut { name, why: CellTrouble::Faults(share) });
+        }
+        share <= most
+    });
+}
+
+/// Cells that repeated one value exactly while the others moved. A cell alone cannot be told from a steady loop.
+fn frozen(readings: &SessionReadings, bins: &Bins, sound: &[(usize, Vec<f64>)]) -> Vec<(usize, CellTrouble)> {
+    let mut found = Vec::new();
+    for (index, _) in sound {
+        let (column, digit_bar) = match &readings.cells[*index].signal {
+            CellSignal::Bar(column) => (column, step_noise(column).last_digit),
+            // A tenth of a millivolt, the coarsest voltmeter in use, is 2 mbar.
+            CellSignal::Volts { readings: column, .. } => (column, 0.0),
+        };
+        let least_bar = FROZEN_MOVES_BAR.max(FROZEN_MOVES_DIGITS * digit_bar);
+        let others: Vec<&Vec<f64>> = sound.iter().filter(|(i, _)| i != index).map(|(_, m)| m).collect();
+        let mean_at = |bin: usize| others.iter().map(|m| m[bin]).sum::<f64>() / others.len() as f64;
+        let mut worst: Option<(f64, f64)> = None;
+        let mut close = |from: usize, to: usize, count: usize| {
+            let (from_s, to_s) = (readings.time_s[bins.rows[from]], readings.time_s[bins.rows[to]]);
+            if others.is_empty() || count < FROZEN_READINGS || to_s - from_s < FROZEN_S {
+                return;
+            }
+            let moved = (mean_at(bins.bin[to]) - mean_at(bins.bin[from])).abs();
+            if moved > least_bar && worst.is_none_or(|(a, b)| to_s - from_s > b - a) {
+                worst = Some((from_s, to_s));
+            }
+        };
+        let (mut from, mut to, mut count, mut last) = (0, 0, 0, f64::NAN);
+        for (at, &row) in bins.rows.iter().enumerate() {
+            let shown = column.get(row).copied().unwrap_or(f64::NAN);
+            if shown.is_nan() {
+                continue;
+            }
+            // The very same number, bit for bit, is what freezing means.
+            if shown.to_bits() == last.to_bits() {
+                count += 1;
+            } else {
+                if count > 0 {
+                    close(from, to, count);
+                }
+                (from, count) = (at, 1);
+            }
+            (to, last) = (at, shown);
+        }
+        if count > 0 {
+            close(from, to, count);
+        }
+        if let Some((from_s, to_s)) = worst {
+            found.push((*index, CellTrouble::Frozen { from_s, to_s }));
+        }
+    }
+    found
+}
+
+/// Leaves out cells that are off the median, in the mean or in over 5 % of the bins.
+fn disagreeing(
+    readings: &SessionReadings,
+    sound: &mut Vec<(usize, Vec<f64>)>,
+    left_out: &mut Vec<CellLeftOut>,
+    limit_bar: f64,
+) {
+    let bins = sound.first().map_or(0, |(_, means)| means.len());
+    let mut sums = vec![(0.0, 0_usize); sound.len()];
+    let mut compared = 0_usize;
+    let mut values = Vec::with_capacity(sound.len());
+    for bin in 0..bins {
+        values.clear();
+        values.extend(sound.iter().map(|(_, means)| means[bin]));
+        if values.iter().any(|v| v.is_nan()) {
+            continue;
+        }
+        values.sort_unstable_by(f64::total_cmp);
+        let middle = values.len() / 2;
+        let median = if values.len().is_multiple_of(2) {
+            0.5 * (values[middle - 1] + values[middle])
+        } else {
+            values[middle]
+        };
+        compared += 1;
+        for ((_, means), (sum, beyond)) in sound.iter().zip(&mut sums) {
+            let off = means[bin] - median;
+            *sum += off;
+            *beyond += usize::from(off.abs() > limit_bar);
+        }
+    }
+    let n = compared.max(1) as f64;
+    let mut at = 0;
+    sound.retain(|(index, _)| {
+        let (sum, beyond) = sums[at];
+        at += 1;
+        let (off, share) = (sum / n, beyond as f64 / n);
+        let out = compared > 0 && (off.abs() > limit_bar || share > OFF_SHARE);
+        if out {
+            let name = readings.cells[*index].name.clone();
+            left_out.push(CellLeftOut { name, why: CellTrouble::Off(off) });
+        }
+        !out
+    });
+}

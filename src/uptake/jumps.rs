@@ -1,0 +1,113 @@
+//! Jumps of PO2 that no event explains: found and proposed, never used.
+//!
+//! Comes in: binned PO2 of a stretch between events, and how the loop is kept. Goes out: proposals. A jump is a
+//! difference of the medians of some 20 s before and after a place (10 s are left for the cells to follow) beyond the
+//! trend around it. Left out: slow changes, which look like uptake.
+
+use super::why_not::{Jump, Proposal};
+use crate::entry::LoopKept;
+
+/// Bins on each side whose medians are compared.
+const SIDE: usize = 4;
+/// Bins in between, for the cells' lag.
+const LAG: usize = 3;
+/// The trend is taken over this many reaches of the medians to each side.
+const AROUND: usize = 3;
+/// Least jump upward, and downward in a sealed loop, bar (common practice, no source).
+const LEAST_BAR: f64 = 0.02;
+/// Least jump downward in a loop that is made up with diluent: half a litre of air in seven at PO2 1.0 is 0.06 bar, and
+/// such puffs are how a loop is held (common practice, no source).
+const LEAST_DOWN_HELD_BAR: f64 = 0.10;
+/// A jump is also this many times the usual difference of such medians.
+const TIMES_NOISE: f64 = 6.0;
+
+/// Jumps in a stretch; `time_s` and `po2_bar` are its bins.
+pub(super) fn jumps(time_s: &[f64], po2_bar: &[f64], kept: LoopKept) -> Vec<Proposal> {
+    let n = po2_bar.len();
+    let reach = 2 * SIDE + LAG;
+    if n < reach + 2 || kept == LoopKept::Topped {
+        return Vec::new();
+    }
+    let differences: Vec<f64> = (0..=n - reach)
+        .map(|k| median(&po2_bar[k + SIDE + LAG..k + reach]) - median(&po2_bar[k..k + SIDE]))
+        .collect();
+    // The trend at each place is the median of the differences around it, of which a jump is a minority; not of all, because
+    // a loop that shrinks falls faster and faster, and that is no jump. Noise is the usual departure from the trend.
+    let departures: Vec<f64> = (0..differences.len())
+        .map(|k| {
+            let around = k.saturating_sub(AROUND * reach)..(k + AROUND * reach + 1).min(differences.len());
+            differences[k] - median(&differences[around])
+        })
+        .collect();
+    let sizes: Vec<f64> = departures.iter().map(|d| d.abs()).collect();
+    // 1.4826: median departure to standard deviation, normal distribution.
+    let noise = 1.482_6 * median(&sizes);
+    let up = LEAST_BAR.max(TIMES_NOISE * noise);
+    let least_down = if kept == LoopKept::Sealed { LEAST_BAR } else { LEAST_DOWN_HELD_BAR };
+    let down = least_down.max(TIMES_NOISE * noise);
+    let beyond = |d: f64| d > up || -d > down;
+    let mut found = Vec::new();
+    let mut k = 0;
+    while k < differences.len() {
+        if !beyond(departures[k]) {
+            k += 1;
+            continue;
+        }
+        // One jump shows in as many places as the medians reach over it; its middle is where the difference is largest.
+        let end = (k + reach).min(differences.len());
+        let largest = (k..end).max_by(|&a, &b| sizes[a].total_cmp(&sizes[b])).unwrap_or(k);
+        let change_bar = departures[largest];
+        found.push(Proposal {
+            at_s: time_s[largest + SIDE],
+            change_bar,
+            looks_like: if change_bar > 0.0 { Jump::OxygenAdd } else { Jump::DiluentAdd },
+        });
+        k = largest + reach;
+    }
+    found
+}
+
+fn median(values: &[f64]) -> f64 {
+    let mut sorted = values.to_vec();
+    sorted.sort_unstable_by(f64::total_cmp);
+    let middle = sorted.len() / 2;
+    if sorted.len().is_multiple_of(2) { 0.5 * (sorted[middle - 1] + sorted[middle]) } else { sorted[middle] }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn stretch(step_at: usize, step: f64) -> (Vec<f64>, Vec<f64>) {
+        let time_s: Vec<f64> = (0..120).map(|i| 5.0 * f64::from(i)).collect();
+        let po2 = (0..120)
+            .map(|i| {
+                let ripple = 0.001 * f64::from((i * 7919 % 13) - 6) / 6.0;
+                0.8 - 0.0002 * f64::from(i) + ripple + if i as usize >= step_at { step } else { 0.0 }
+            })
+            .collect();
+        (time_s, po2)
+    }
+
+    #[test]
+    fn an_unmarked_add_is_proposed_where_it_happened() {
+        let (time_s, po2) = stretch(60, 0.08);
+        let found = jumps(&time_s, &po2, LoopKept::Sealed);
+        assert_eq!(found.len(), 1, "{found:?}");
+        assert!((found[0].at_s - 300.0).abs() <= 20.0 && (found[0].change_bar - 0.08).abs() < 0.005);
+        assert_eq!(found[0].looks_like, Jump::OxygenAdd);
+    }
+
+    #[test]
+    fn a_puff_of_diluent_is_a_jump_only_where_nothing_may_be_made_up() {
+        let (time_s, po2) = stretch(60, -0.05);
+        assert_eq!(jumps(&time_s, &po2, LoopKept::Held), []);
+        assert_eq!(jumps(&time_s, &po2, LoopKept::Sealed)[0].looks_like, Jump::DiluentAdd);
+    }
+
+    #[test]
+    fn a_steady_decline_has_no_jump() {
+        let (time_s, po2) = stretch(0, 0.0);
+        assert_eq!(jumps(&time_s, &po2, LoopKept::Sealed), []);
+    }
+}

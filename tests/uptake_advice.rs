@@ -1,0 +1,207 @@
+//! What the estimate says about itself is kept: thinner readings change nothing that matters, what would help does, and
+//! Monte Carlo agrees with the budget and with whole simulated series.
+
+#![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
+#![allow(clippy::print_stdout, reason = "a study tells what it found")]
+
+mod loop_simulator;
+
+use ebbline::entry::Place;
+use ebbline::stats::monte_carlo::Plan;
+use ebbline::uptake::{Estimate, HelpWith, SessionInput, uptake, uptake_by_monte_carlo};
+use loop_simulator::{Dice, Extra, Kind, Scene, Truth, scene_of, truth};
+
+fn estimate(scenes: &[&Scene]) -> Estimate {
+    let inputs: Vec<_> =
+        scenes.iter().map(|s| SessionInput { session: &s.session, line: s.line.as_ref() }).collect();
+    uptake(&inputs).unwrap().places.remove(0).answer.unwrap()
+}
+
+fn half_width(estimate: &Estimate) -> f64 {
+    0.5 * (estimate.interval_95.1 - estimate.interval_95.0)
+}
+
+fn median(mut values: Vec<f64>) -> f64 {
+    values.sort_by(f64::total_cmp);
+    values[values.len() / 2]
+}
+
+#[test]
+fn thinning_readings_tenfold_hardly_changes_the_uncertainty() {
+    let mut worst = 0.0_f64;
+    for kind in [Kind::Held, Kind::HeldTwice, Kind::Sealed, Kind::SealedThenHeld, Kind::Topped, Kind::Line] {
+        for seed in 0..20 {
+            let mut dice = Dice::new(4_000 + 100 * seed + kind as u64);
+            let truth = truth(&mut dice);
+            let extra = Extra { every_s: 1.0, ..Extra::default() };
+            let full = scene_of(kind, truth, &extra, &mut dice);
+            let mut session = full.session.clone();
+            let thin = |column: &mut Vec<f64>| *column = column.iter().copied().step_by(10).collect();
+            thin(&mut session.readings.time_s);
+            for cell in &mut session.readings.cells {
+                if let ebbline::entry::CellSignal::Bar(column) = &mut cell.signal {
+                    thin(column);
+                }
+            }
+            let thinned =
+                Scene { session, truth: full.truth.clone(), line: full.line.clone(), log: full.log.clone() };
+            let change = estimate(&[&thinned]).u / estimate(&[&full]).u - 1.0;
+            if change.abs() > worst.abs() {
+                worst = change;
+                println!("{kind:?}, seed {seed}: u changes by {change}");
+            }
+        }
+    }
+    assert!(worst.abs() < 0.10, "{worst}");
+}
+
+/// Median promise and median of what came of it, for something a session proposes and its doing.
+fn kept(
+    kind: Kind,
+    extra: Extra,
+    wanted: fn(&HelpWith) -> bool,
+    doing: impl Fn(&HelpWith, &Scene, &Truth, &mut Dice) -> Vec<Scene>,
+) -> (f64, f64, f64) {
+    let (mut before, mut promised, mut done) = (Vec::new(), Vec::new(), Vec::new());
+    for seed in 0..80 {
+        let mut dice = Dice::new(61_000 + 100 * seed + kind as u64);
+        let truth = truth(&mut dice);
+        let first = scene_of(kind, truth.clone(), &extra, &mut dice.clone());
+        let now = estimate(&[&first]);
+        let Some(help) = now.would_help.iter().find(|h| wanted(&h.what)) else { continue };
+        let scenes = doing(&help.what, &first, &truth, &mut dice);
+        let then = estimate(&scenes.iter().collect::<Vec<_>>());
+        before.push(half_width(&now) / truth.uptake);
+        promised.push(help.half_width_l_min / truth.uptake);
+        done.push(half_width(&then) / truth.uptake);
+    }
+    assert!(before.len() >= 20, "{kind:?}: proposed only {} times", before.len());
+    (median(before), median(promised), median(done))
+}
+
+fn assert_kept(what: &str, (before, promised, done): (f64, f64, f64)) {
+    println!("{what}: half-width {before:.4}, promised {promised:.4}, came {done:.4}");
+    assert!(promised < before, "{what} promises nothing");
+    assert!((done / promised - 1.0).abs() < 0.20, "{what}: promised {promised}, came {done}");
+}
+
+#[test]
+fn ten_more_minutes_do_what_was_promised() {
+    for kind in [Kind::Held, Kind::Sealed] {
+        let result = kept(
+            kind,
+            Extra::default(),
+            |w| matches!(w, HelpWith::LongerRest { .. }),
+            |what, _, truth, dice| {
+                let HelpWith::LongerRest { minutes } = what else { unreachable!() };
+                let extra = Extra { minutes: *minutes, ..Extra::default() };
+                vec![scene_of(kind, truth.clone(), &extra, dice)]
+            },
+        );
+        assert_kept(&format!("{kind:?}, longer"), result);
+    }
+}
+
+#[test]
+fn a_second_injection_does_what_was_promised() {
+    // Half of what is used goes in, so that the volume matters.
+    let low = Extra { share: Some(0.5), ..Extra::default() };
+    let result = kept(
+        Kind::Held,
+        low,
+        |w| matches!(w, HelpWith::SecondInjection { .. }),
+        |what, _, truth, dice| {
+            let HelpWith::SecondInjection { flow_l_min, minutes, .. } = what else { unreachable!() };
+            // A minute and a half to mix, and then the minutes.
+            let extra = Extra { minutes: minutes + 1.5, then: Some(*flow_l_min), ..low };
+            vec![scene_of(Kind::Held, truth.clone(), &extra, dice)]
+        },
+    );
+    assert_kept("second injection", result);
+}
+
+#[test]
+fn a_measured_volume_does_what_was_promised() {
+    let result = kept(
+        Kind::SealedTwice,
+        Extra::default(),
+        |w| matches!(w, HelpWith::MeasuredVolume { .. }),
+        |what, _, truth, dice| {
+            let HelpWith::MeasuredVolume { expanded_l } = what else { unreachable!() };
+            let extra = Extra { volume_u_l: expanded_l / 2.0, ..Extra::default() };
+            vec![scene_of(Kind::SealedTwice, truth.clone(), &extra, dice)]
+        },
+    );
+    assert_kept("measured volume", result);
+}
+
+#[test]
+fn another_day_does_what_was_promised() {
+    let result = kept(
+        Kind::Held,
+        Extra::default(),
+        |w| *w == HelpWith::AnotherDay,
+        |_, first, truth, dice| {
+            let mut second = scene_of(Kind::Held, truth.clone(), &Extra::default(), dice);
+            second.session.taken += chrono::Duration::days(1);
+            // The same loop, measured once.
+            second.session.loop_volume = first.session.loop_volume;
+            let first = Scene {
+                session: first.session.clone(),
+                truth: truth.clone(),
+                line: None,
+                log: first.log.clone(),
+            };
+            vec![first, second]
+        },
+    );
+    assert_kept("another day", result);
+}
+
+#[test]
+fn monte_carlo_agrees_with_the_budget() {
+    for (kind, seed) in
+        [(Kind::Held, 1), (Kind::SealedTwice, 2), (Kind::Topped, 3), (Kind::Line, 4), (Kind::Null, 5)]
+    {
+        let mut dice = Dice::new(8_000 + seed);
+        let truth = truth(&mut dice);
+        let scene = scene_of(kind, truth, &Extra::default(), &mut dice);
+        let inputs = [SessionInput { session: &scene.session, line: scene.line.as_ref() }];
+        let plan = Plan { trials: 20_000, seed: 9, threads: 2 };
+        let drawn = uptake_by_monte_carlo(&inputs, Place::Couch, &plan).unwrap().unwrap();
+        let budget = drawn.budget_interval_95;
+        let width = |i: (f64, f64)| i.1 - i.0;
+        println!("{kind:?}: {drawn:?}");
+        assert_eq!(drawn.failed, 0);
+        let ratio = width(drawn.interval_95) / width(budget);
+        assert!((0.9..1.1).contains(&ratio), "{kind:?}: {ratio}");
+        let middle = |i: (f64, f64)| 0.5 * (i.0 + i.1);
+        assert!((middle(drawn.interval_95) - middle(budget)).abs() < 0.1 * width(budget), "{kind:?}");
+        // The answer does not depend on the number of threads.
+        let one = Plan { threads: 1, ..plan };
+        assert_eq!(uptake_by_monte_carlo(&inputs, Place::Couch, &one).unwrap().unwrap(), drawn);
+    }
+}
+
+#[test]
+fn whole_series_drawn_again_scatter_as_the_budget_says() {
+    // Everything true is drawn as stated and the whole series made anew: the scatter of the estimates is the standard
+    // uncertainty they state. 600 sessions know a standard deviation to 3 %.
+    let (mut squares, mut stated, mut n) = (0.0, 0.0, 0.0);
+    for seed in 0..600 {
+        let mut dice = Dice::new(70_000 + seed);
+        let mut truth = truth(&mut dice);
+        (truth.uptake, truth.volume_l, truth.lungs_l) = (0.3, 7.0, 2.8);
+        // Without the lungs' carbon dioxide, whose row is wide on purpose.
+        truth.carbon_dioxide_bar = 0.02;
+        let mut scene = scene_of(Kind::Line, truth, &Extra::default(), &mut dice);
+        scene.session.assumptions.lung_share = 0.0;
+        let estimate = estimate(&[&scene]);
+        squares += (estimate.uptake_l_min - 0.3) * (estimate.uptake_l_min - 0.3);
+        stated += estimate.u * estimate.u;
+        n += 1.0;
+    }
+    let (scatter, stated) = ((squares / n).sqrt(), (stated / n).sqrt());
+    println!("scatter {scatter}, stated {stated}");
+    assert!((scatter / stated - 1.0).abs() < 0.12, "scatter {scatter}, stated {stated}");
+}
