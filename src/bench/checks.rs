@@ -276,10 +276,14 @@ fn steady(c: &Checked<'_>, used: &[&Point], trends: &Trends) -> Check {
 fn through_zero(c: &Checked<'_>) -> Check {
     let (low, high) = (c.limits.crossing_pa.0 / 1e5, c.limits.crossing_pa.1 / 1e5);
     let wholly_outside = !c.line.may_cross_between(low, high);
+    let without_ends = (f64::NEG_INFINITY, f64::INFINITY);
     let (crossing, interval) = match c.line.crossing() {
-        Some(found) => found,
         // The same flow at every pressure, as of a meter that is stuck, crosses nowhere.
-        None if wholly_outside => (f64::NEG_INFINITY, (f64::NEG_INFINITY, f64::INFINITY)),
+        Some((x, interval)) if wholly_outside && interval.0.is_infinite() => {
+            (f64::INFINITY.copysign(x), interval)
+        }
+        None if wholly_outside => (f64::NEG_INFINITY, without_ends),
+        Some(found) => found,
         None => return cannot_tell(CheckKind::ThroughZero, high, CannotTell::TooFewPoints),
     };
     let (absolute, ambient) = c.zero_of_pressure();

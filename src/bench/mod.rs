@@ -116,7 +116,7 @@ pub struct FlowAtIp {
 pub struct IpFor {
     /// The flow asked for, of the run's gas.
     pub flow: StpdFlow,
-    /// The pressure, bar gauge; NaN when the line is flat.
+    /// The pressure, bar gauge; NaN when the line gives none.
     pub ip_bar_gauge: f64,
     /// Its 95 % interval, bar gauge; infinite when the line gives none.
     pub interval_bar_gauge: (f64, f64),
@@ -483,15 +483,15 @@ impl Answers<'_> {
         Ok(FlowAtIp { ip, ambient, flow, as_oxygen })
     }
 
-    /// Infinite at both ends, and no number between, where the line is flat.
+    /// Infinite at both ends, and no number between, where the slope is not known to differ from zero.
     fn pressure(&self, flow: StpdFlow) -> IpFor {
         let asked = self.questions.ambient;
         let ambient = asked.map_or(AbsolutePressure::STANDARD_ATMOSPHERE, |a| a.value).as_bar();
         // What the ambient pressure may be off by moves the gauge pressure as much, and the flow by the slope.
         let ambient_u = asked.and_then(|a| a.expanded).map_or(0.0, |expanded| expanded.as_bar() / 2.0);
         let inverse = self.line.pressure_for(flow.as_l_min(), self.line.random.slope * ambient_u);
-        let (p1_bar, (low, high)) = inverse
-            .map_or((f64::NAN, (f64::NEG_INFINITY, f64::INFINITY)), |found| (found.x, limits_of(&found)));
+        let (low, high) = inverse.as_ref().map_or((f64::NEG_INFINITY, f64::INFINITY), limits_of);
+        let p1_bar = inverse.filter(|_| low.is_finite()).map_or(f64::NAN, |found| found.x);
         IpFor { flow, ip_bar_gauge: p1_bar - ambient, interval_bar_gauge: (low - ambient, high - ambient) }
     }
 }
