@@ -306,7 +306,8 @@ fn a_shop_reads_its_logo_beside_its_file_and_nowhere_else() {
     assert_eq!(shop.logo.unwrap().file_name, "logo.PNG");
     std::fs::write(&path, SHOP).unwrap();
     let missing = read_register(&path).unwrap_err().to_string();
-    let sentence = "there is no such file; check the name, which is taken relative to the file that names it";
+    let sentence =
+        "there is no such file; check the name (one that stands in a file is taken relative to that file)";
     assert_eq!(missing, format!("{}: {sentence}", folder.join("logo.svg").display()));
     std::fs::write(&path, "#\n".repeat(600_000)).unwrap();
     let large = read_register(&path).unwrap_err();
