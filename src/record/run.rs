@@ -315,7 +315,10 @@ pub(super) fn transducer(file: &Table<'_>, registers: &dyn Registers) -> Result<
     registers.transducer(&id).ok_or_else(|| field.refuse(not_registered(&id, "transducer")))
 }
 
-pub(super) fn acceptance(file: &Table<'_>, registers: &dyn Registers) -> Result<Option<Acceptance>, RecordError> {
+pub(super) fn acceptance(
+    file: &Table<'_>,
+    registers: &dyn Registers,
+) -> Result<Option<Acceptance>, RecordError> {
     let Some(field) = file.field("acceptance") else { return Ok(None) };
     if !field.is_text() {
         return around::acceptance(&field.table("acceptance")?).map(Some);

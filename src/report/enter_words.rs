@@ -19,7 +19,7 @@ use crate::entry::{
     Acceptance, Id, Indication, LeftOut, PointReading, Readings, Run, RunNumber, Sweep, TimedVolume,
 };
 use crate::quantity::unit::{Kind, Unit};
-use crate::quantity::{IndicatedFlow, Quantity};
+use crate::quantity::{IndicatedFlow, Quantity, ZERO_CELSIUS_K};
 
 /// Digits of a reading that are shown: more than any instrument here has.
 const DIGITS: i32 = 7;
@@ -133,17 +133,17 @@ pub fn question(question: Question, default: Option<&str>) -> String {
     let asked = match question {
         Question::Gas => "Gas (oxygen, air, nitrogen, helium)",
         Question::Purpose => "Purpose (acceptance, as-found, as-left, check)",
-        Question::Meter => "Flow meter (its name in the register, or a run file with its papers)",
-        Question::Transducer => "Transducer (its name in the register, or such a file)",
-        Question::Acceptance => "Limits it is judged by (a name in the register, such a file, or none)",
+        Question::Meter => "Flow meter (name in the register, or a run file with its papers)",
+        Question::Transducer => "Transducer (name in the register, or such a file)",
+        Question::Acceptance => "Limits it is judged by (name, such a file, or none)",
         Question::Technician => "Technician",
         Question::Barometer => "Barometer with its ±, as in 1009.2 hPa ± 1.0 hPa",
-        Question::Temperature => "Gas temperature at the orifice with its ±, as in 21.0 °C ± 1.0 °C",
+        Question::Temperature => "Gas temperature with its ±, as in 21.0 °C ± 1.0 °C",
         Question::Taken => "Taken at",
-        Question::ZeroBefore => "What the meter shows at no flow, as in 0.0002 L/min",
-        Question::LeakBefore => "Fall of pressure with the outlet blanked, as in 0.002 bar/min",
-        Question::ZeroAfter => "What the meter shows at no flow now, as in 0.0002 L/min",
-        Question::LeakAfter => "Fall of pressure with the outlet blanked now, as in 0.002 bar/min",
+        Question::ZeroBefore => "Meter at no flow, as in 0.0002 L/min",
+        Question::LeakBefore => "Leak with the outlet blanked, as in 0.002 bar/min",
+        Question::ZeroAfter => "Meter at no flow after the run, as in 0.0002 L/min",
+        Question::LeakAfter => "Leak after the run, as in 0.002 bar/min",
     };
     prompt(&format!("{asked}{default}:"))
 }
@@ -158,26 +158,46 @@ pub fn same_bench_question(run: RunNumber, bench: &str) -> String {
 #[must_use]
 pub fn explained(question: Question) -> String {
     let text = match question {
-        Question::Gas => "The gas that flows through the orifice now. A bench gas that is not oxygen is converted, and \
-            the orifice must be cleaned before it sees oxygen.",
-        Question::Purpose => "acceptance: new or repaired. as-found: as it came in. as-left: as it goes out. check: a \
-            look in between.",
-        Question::Meter => "The flow meter with what its certificate says: a name you gave it with `ebbline instrument \
-            add`, or a run file (with a slash, or ending in .toml) with a [meter] table.",
-        Question::Transducer => "The pressure transducer with what its certificate says, named like the flow meter.",
-        Question::Acceptance => "Nominal IP, nominal flow and tolerance the verdict is given by. Without them there is \
-            a line and no verdict.",
+        Question::Gas => {
+            "The gas that flows through the orifice now. A bench gas that is not oxygen is converted, and \
+            the orifice must be cleaned before it sees oxygen."
+        }
+        Question::Purpose => {
+            "acceptance: new or repaired. as-found: as it came in. as-left: as it goes out. check: a \
+            look in between."
+        }
+        Question::Meter => {
+            "The flow meter with what its certificate says: a name you gave it with `ebbline instrument \
+            add`, or a run file (with a slash, or ending in .toml) with a [meter] table."
+        }
+        Question::Transducer => {
+            "The pressure transducer with what its certificate says, named like the flow meter."
+        }
+        Question::Acceptance => {
+            "Nominal IP, nominal flow and tolerance the verdict is given by. Without them there is \
+            a line and no verdict."
+        }
         Question::Technician => "Who reads the instruments; it stands on the sheet.",
-        Question::Barometer => "The pressure of the room, read now, not the one reduced to sea level that weather \
-            stations give. What stands behind ± is its expanded uncertainty (k = 2); without it ± 2 hPa is taken.",
-        Question::Temperature => "Of the gas at the orifice. What stands behind ± is its expanded uncertainty (k = 2); \
-            without it ± 1 °C is taken.",
-        Question::Taken => "Date and time with offset, as in 2026-11-12T09:40:00+11:00. It decides whether the \
-            calibrations are in date and which run was the one before.",
-        Question::ZeroBefore | Question::ZeroAfter => "Shut the supply, wait, and read the flow meter. Empty when you \
-            did not look.",
-        Question::LeakBefore | Question::LeakAfter => "Blank the outlet, shut the supply, and see how far the pressure \
-            falls in a minute. Empty when you did not look.",
+        Question::Barometer => {
+            "The pressure of the room, read now, not the one reduced to sea level that weather \
+            stations give. Behind ± (or +/-) stands its expanded uncertainty, for 95 %; without it ± 2 hPa is taken."
+        }
+        Question::Temperature => {
+            "Of the gas at the orifice. Behind ± (or +/-) stands its expanded uncertainty, for \
+            95 %; without it ± 1 °C is taken."
+        }
+        Question::Taken => {
+            "Date and time with offset, as in 2026-11-12T09:40:00+11:00. It decides whether the \
+            calibrations are in date and which run was the one before."
+        }
+        Question::ZeroBefore | Question::ZeroAfter => {
+            "Shut the supply, wait, and read the flow meter. Empty when you \
+            did not look."
+        }
+        Question::LeakBefore | Question::LeakAfter => {
+            "Blank the outlet, shut the supply, and see how far the pressure \
+            falls in a minute. Empty when you did not look."
+        }
     };
     wrapped("  ", "  ", text)
 }
@@ -232,10 +252,13 @@ fn limits_words(acceptance: &Acceptance) -> String {
 
 /// The first lines of a new run.
 #[must_use]
-pub fn greeting(orifice: &Id, registered: bool, open: Option<RunNumber>) -> String {
+pub fn greeting(orifice: &Id, registered: bool, limits: Option<&Id>, open: Option<RunNumber>) -> String {
     let mut text = format!("A run of {orifice}, typed.");
     if !registered {
         text.push_str(" The orifice is new: it goes into the register with its name only.");
+    }
+    if let Some(limits) = limits {
+        text.push_str(&format!(" It is judged by its limits {limits}."));
     }
     text.push_str(" Enter takes what stands in [ ], ? explains, Ctrl-D leaves.");
     let mut text = wrapped("", "", &text);
@@ -362,6 +385,21 @@ pub fn point_struck(number: RunNumber, point: usize, why: &str) -> String {
 /// That zero, leak or conditions stand now as they were typed; `number` is none before the first point.
 #[must_use]
 pub fn restated(number: Option<RunNumber>, question: Question, run: &Run) -> String {
+    let what = match question {
+        Question::ZeroBefore => "meter at no flow before the run",
+        Question::ZeroAfter => "meter at no flow after the run",
+        Question::LeakBefore => "leak before the run",
+        Question::LeakAfter => "leak after the run",
+        Question::Barometer => "barometer for all points",
+        _ => "gas temperature for all points",
+    };
+    let number = number.map(|number| format!("{number} ")).unwrap_or_default();
+    wrapped("", "  ", &format!("{number}{what}: {}", stands(question, run)))
+}
+
+/// How a condition, zero or leak stands now.
+#[must_use]
+pub fn stands(question: Question, run: &Run) -> String {
     let flow = |flow: Option<IndicatedFlow>| {
         flow.map_or_else(|| "not read".to_owned(), |f| format!("{} L/min", shortest(f.as_l_min(), DIGITS)))
     };
@@ -371,34 +409,41 @@ pub fn restated(number: Option<RunNumber>, question: Question, run: &Run) -> Str
             |l| format!("{} bar/min", shortest(l * 60.0 / 1e5, DIGITS)),
         )
     };
-    let says = match question {
-        Question::ZeroBefore => format!("meter at no flow before the run: {}", flow(run.before.zero)),
-        Question::ZeroAfter => format!("meter at no flow after the run: {}", flow(run.after.zero)),
-        Question::LeakBefore => format!("leak before the run: {}", leak(run.before.leak_pa_s)),
-        Question::LeakAfter => format!("leak after the run: {}", leak(run.after.leak_pa_s)),
-        _ => format!("for all its points: {}", conditions_words(run)),
-    };
-    let number = number.map(|number| format!("{number} ")).unwrap_or_default();
-    wrapped("", "  ", &format!("{number}{says}"))
+    match question {
+        Question::ZeroBefore => flow(run.before.zero),
+        Question::ZeroAfter => flow(run.after.zero),
+        Question::LeakBefore => leak(run.before.leak_pa_s),
+        Question::LeakAfter => leak(run.after.leak_pa_s),
+        Question::Barometer => barometer_words(run),
+        Question::Temperature => temperature_words(run),
+        _ => "as it is".to_owned(),
+    }
 }
 
 /// Barometer and gas temperature of a run.
 #[must_use]
 pub fn conditions_words(run: &Run) -> String {
-    let conditions = &run.conditions;
-    let or_default = |shown: Option<String>, default: &str| shown.unwrap_or_else(|| default.to_owned());
-    let barometer = conditions.barometer.value.map(|p| shortest(p.as_pa() / 100.0, DIGITS));
-    let barometer_u = conditions.barometer.expanded.map(|u| format!("± {} hPa", shortest(u.as_pa() / 100.0, 3)));
-    let temperature =
-        conditions.temperature.value.map(|t| shortest(t.as_k() - crate::quantity::ZERO_CELSIUS_K, DIGITS));
-    let temperature_u = conditions.temperature.expanded.map(|u| format!("± {} °C", shortest(u.as_k(), 3)));
-    format!(
-        "barometer {} hPa {}, gas {} °C {}",
-        or_default(barometer, "?"),
-        or_default(barometer_u, "(± 2 hPa taken)"),
-        or_default(temperature, "?"),
-        or_default(temperature_u, "(± 1 °C taken)")
-    )
+    format!("barometer {}, gas {}", barometer_words(run), temperature_words(run))
+}
+
+fn barometer_words(run: &Run) -> String {
+    let barometer = &run.conditions.barometer;
+    let Some(value) = barometer.value else { return "not read".to_owned() };
+    let hpa = |pa: f64, digits| shortest(pa / 100.0, digits);
+    match barometer.expanded {
+        Some(u) => format!("{} hPa ± {} hPa", hpa(value.as_pa(), DIGITS), hpa(u.as_pa(), 3)),
+        None => format!("{} hPa (± 2 hPa taken)", hpa(value.as_pa(), DIGITS)),
+    }
+}
+
+fn temperature_words(run: &Run) -> String {
+    let temperature = &run.conditions.temperature;
+    let Some(value) = temperature.value else { return "not read".to_owned() };
+    let shown = shortest(value.as_k() - ZERO_CELSIUS_K, DIGITS);
+    match temperature.expanded {
+        Some(u) => format!("{shown} °C ± {} °C", shortest(u.as_k(), 3)),
+        None => format!("{shown} °C (± 1 °C taken)"),
+    }
 }
 
 /// How many points are missing for a line.
@@ -421,7 +466,12 @@ pub fn no_line(why: &str) -> String {
 
 /// The line so far, what this point (if any) says of it, and each check that changed since `before`.
 #[must_use]
-pub fn running(fitted: &Fitted<'_>, point: Option<usize>, before: Option<&Analysis>, units: &Units) -> String {
+pub fn running(
+    fitted: &Fitted<'_>,
+    point: Option<usize>,
+    before: Option<&Analysis>,
+    units: &Units,
+) -> String {
     let analysis = fitted.analysis;
     let mut parts = vec![flow_so_far(fitted, units)];
     if let Some(judgement) = &analysis.judgement {
@@ -435,14 +485,17 @@ pub fn running(fitted: &Fitted<'_>, point: Option<usize>, before: Option<&Analys
         parts.push(format!("{word} so far ({} to {})", place(low), place(high)));
     }
     let crossing = analysis.checks.iter().find(|c| c.kind == CheckKind::ThroughZero).and_then(|c| c.value);
-    parts.extend(crossing.map(|kpa| format!("crosses at {} kPa", fixed(kpa, 1))));
+    parts.extend(crossing.map(|kpa| format!("crossing {} kPa", fixed(kpa, 1))));
     let mut text = wrapped("  ", "    ", &parts.join("; "));
     if let Some(about) = point.and_then(|point| residual(analysis, point)) {
         text.push_str(&wrapped("  ", "    ", &about));
     }
     for check in &analysis.checks {
         let was = before.and_then(|before| before.checks.iter().find(|c| c.kind == check.kind));
-        if let Some(says) = changed(check, was, units) {
+        // What is said of the point itself is not said twice.
+        let of_this_point =
+            matches!(&check.finding, Finding::Apart(points) if points.as_slice() == [point.unwrap_or(0)]);
+        if let Some(says) = changed(check, was, units).filter(|_| !of_this_point) {
             text.push_str(&wrapped("  ", "    ", &says));
         }
     }
@@ -461,7 +514,11 @@ fn flow_so_far(fitted: &Fitted<'_>, units: &Units) -> String {
     };
     let (value, u) = value_and_u(units.flow(flow.flow_l_min), units.flow(flow.expanded()));
     let beyond = fitted.analysis.warnings.iter().any(|w| matches!(w, Warning::Extrapolated { .. }));
-    let beyond = if beyond { " (no points there yet)" } else { "" };
+    let beyond = match (beyond, &fitted.run.acceptance) {
+        (true, _) => " (no points there yet)",
+        (false, None) => " (the middle so far)",
+        (false, Some(_)) => "",
+    };
     format!(
         "{value} ± {u} {}{as_gas} STPD at {} IP{beyond}",
         units.flow_symbol(),
@@ -526,7 +583,12 @@ fn changed(check: &Check, was: Option<&Check>, units: &Units) -> Option<String> 
 
 /// The points so far.
 #[must_use]
-pub fn list(points: &[PointReading], left_out: &[LeftOut], analysis: Option<&Analysis>, units: &TypedUnits) -> String {
+pub fn list(
+    points: &[PointReading],
+    left_out: &[LeftOut],
+    analysis: Option<&Analysis>,
+    units: &TypedUnits,
+) -> String {
     if points.is_empty() {
         return "  no points yet\n".to_owned();
     }
@@ -551,7 +613,8 @@ pub fn list(points: &[PointReading], left_out: &[LeftOut], analysis: Option<&Ana
                 Indication::Gauge(gauge) => gauge.shown(units.pressure),
                 Indication::Absolute(absolute) => absolute.shown(units.pressure),
             };
-            let off = point.filter(|_| struck.is_none()).and_then(|p| percent_off(p.residual_l_min, p.flow_l_min));
+            let off =
+                point.filter(|_| struck.is_none()).and_then(|p| percent_off(p.residual_l_min, p.flow_l_min));
             vec![
                 (i + 1).to_string(),
                 shortest(shown_pa, DIGITS),
@@ -562,7 +625,8 @@ pub fn list(points: &[PointReading], left_out: &[LeftOut], analysis: Option<&Ana
             ]
         })
         .collect();
-    let zero = if points.iter().any(|p| matches!(p.pressure, Indication::Absolute(_))) { "abs" } else { "gauge" };
+    let zero =
+        if points.iter().any(|p| matches!(p.pressure, Indication::Absolute(_))) { "abs" } else { "gauge" };
     let pressure = format!("{} {zero}", units.pressure.symbol);
     table(
         &["no", "pressure", "flow shown", "sweep", "off the line", ""],
@@ -618,7 +682,9 @@ pub fn kept(number: Option<RunNumber>, points: usize) -> String {
     match (number, points) {
         (None, _) => "nothing was recorded".to_owned(),
         (Some(number), 1) => format!("{number} stays open with 1 point, go on with: bench resume {number}"),
-        (Some(number), n) => format!("{number} stays open with {n} points, go on with: bench resume {number}"),
+        (Some(number), n) => {
+            format!("{number} stays open with {n} points, go on with: bench resume {number}")
+        }
     }
 }
 
@@ -626,7 +692,9 @@ pub fn kept(number: Option<RunNumber>, points: usize) -> String {
 #[must_use]
 pub fn finished(number: RunNumber, with_line: bool) -> String {
     let text = if with_line {
-        format!("{number} is complete. Judge it, and keep the verdict with its figures: bench accept {number}")
+        format!(
+            "{number} is complete. Judge it, and keep the verdict with its figures: bench accept {number}"
+        )
     } else {
         format!("{number} is complete, without a line")
     };
@@ -635,12 +703,7 @@ pub fn finished(number: RunNumber, with_line: bool) -> String {
 
 /// The run as a document: its number, whether it is open, its points as read, and the fit.
 #[must_use]
-pub fn document(
-    number: Option<RunNumber>,
-    open: bool,
-    run: &Run,
-    fitted: Option<&Fitted<'_>>,
-) -> String {
+pub fn document(number: Option<RunNumber>, open: bool, run: &Run, fitted: Option<&Fitted<'_>>) -> String {
     let points = match &run.readings {
         Readings::Points(points) => points.as_slice(),
         Readings::Series(_) => &[],

@@ -6,9 +6,9 @@
 
 use std::io;
 
+use super::super::with_causes;
 use super::line::{self, FlowTyped, PointTyped, Typed, example};
 use super::talk::{Heard, Talk};
-use super::super::with_causes;
 use crate::entry::{Indication, MeterKind, PointReading, RunNumber, Sweep};
 use crate::quantity::Unit;
 use crate::report::enter_words::{self as words, Question, TypedUnits};
@@ -94,7 +94,12 @@ pub fn converse(beginning: Beginning, talk: &mut Talk<'_>, manner: &Manner) -> R
 
 fn begin(mut start: Start, talk: &mut Talk<'_>, manner: &Manner) -> Result<Option<Table>, Broken> {
     let asked = if talk.asks {
-        talk.say(&words::greeting(start.orifice(), start.is_registered(), start.open_run()))?;
+        talk.say(&words::greeting(
+            start.orifice(),
+            start.is_registered(),
+            start.own_limits(),
+            start.open_run(),
+        ))?;
         ask_all(&mut start, talk)?
     } else {
         hear_needed(&mut start, talk)?;
@@ -167,6 +172,9 @@ fn ask_all(start: &mut Start, talk: &mut Talk<'_>) -> Result<bool, Broken> {
                 talk.say(&words::explained(question))?;
             } else if let Err(error) = start.answer(question, bare(&text, question)) {
                 not_taken(error, talk)?;
+            }
+            for note in start.take_notes() {
+                talk.note(&note);
             }
         }
     }
@@ -354,7 +362,10 @@ impl Table {
                 return if talk.asks {
                     Ok(FlowHeard::Left)
                 } else {
-                    Err(Refused::Line(format!("a pressure alone is no point: write both, as in {}", example(&self.typed))))
+                    Err(Refused::Line(format!(
+                        "a pressure alone is no point: write both, as in {}",
+                        example(&self.typed)
+                    )))
                 };
             };
             let read = match heard.text() {
@@ -392,7 +403,8 @@ impl Table {
         let mut text = text.to_owned();
         loop {
             if text.is_empty() {
-                talk.prompt(&words::question(question, Some("as it is")))?;
+                let now = words::stands(question, self.desk.run());
+                talk.prompt(&words::question(question, Some(&now)))?;
                 match talk.hear()?.map(Heard::text) {
                     None => {
                         talk.prompt("\n")?;
@@ -428,7 +440,10 @@ impl Table {
         self.desk.may_finish(anyway)?;
         if talk.asks {
             let after = self.desk.run().after;
-            let open = [(Question::ZeroAfter, after.zero.is_none()), (Question::LeakAfter, after.leak_pa_s.is_none())];
+            let open = [
+                (Question::ZeroAfter, after.zero.is_none()),
+                (Question::LeakAfter, after.leak_pa_s.is_none()),
+            ];
             for question in open.into_iter().filter(|(_, open)| *open).map(|(question, _)| question) {
                 if self.ask_after(question, talk)? == Step::Left {
                     return Ok(Step::Left);

@@ -71,7 +71,9 @@ pub(super) struct FlowTyped {
 pub(super) enum LineError {
     #[error("{0}")]
     Quantity(QuantityError),
-    #[error("\"{unit}\" says gauge or absolute, which is said once for the run: write {plain}; here it is read as {zero}")]
+    #[error(
+        "\"{unit}\" says gauge or absolute, which is said once for the run: write {plain}; here it is read as {zero}"
+    )]
     Zero { unit: String, plain: &'static str, zero: &'static str },
     #[error("\"{0}\" is neither a point, as in {1}, nor a command{2}: help lists what can be typed")]
     Unknown(String, &'static str, String),
@@ -92,8 +94,19 @@ pub(super) enum LineError {
 }
 
 const COMMANDS: [&str; 13] = [
-    "correct", "strike", "list", "sheet", "zero", "leak", "barometer", "temperature", "conditions", "done",
-    "quit", "exit", "help",
+    "correct",
+    "strike",
+    "list",
+    "sheet",
+    "zero",
+    "leak",
+    "barometer",
+    "temperature",
+    "conditions",
+    "done",
+    "quit",
+    "exit",
+    "help",
 ];
 
 /// Reads a line where a point or a command is expected.
@@ -237,7 +250,9 @@ fn words(line: &str) -> Vec<String> {
         let bare = word.trim_end_matches(',');
         // "10.02,0.4831": no number has a point behind a comma, so the comma stands between two.
         match bare.split_once(',') {
-            Some((a, b)) if is_number(a) && is_number(b) && b.contains('.') => vec![a.to_owned(), b.to_owned()],
+            Some((a, b)) if is_number(a) && is_number(b) && b.contains('.') => {
+                vec![a.to_owned(), b.to_owned()]
+            }
             _ => vec![bare.to_owned()],
         }
     };
@@ -340,8 +355,15 @@ mod tests {
         assert_eq!(plain.flow.unwrap().flow.as_l_min(), 0.4831);
         assert!(!plain.with_units && plain.sweep.is_none());
         for line in [
-            "10.02, 0.4831", "10.02;0.4831", "10.02,0.4831", "\t10.02\t0.4831 ", "10.02 bar 0.4831 L/min",
-            "10.02bar 0.4831L/min", "1.002e1 0.4831", "10.02 0.4831 up", "10.02 bar 483.1 mL/min falling",
+            "10.02, 0.4831",
+            "10.02;0.4831",
+            "10.02,0.4831",
+            "\t10.02\t0.4831 ",
+            "10.02 bar 0.4831 L/min",
+            "10.02bar 0.4831L/min",
+            "1.002e1 0.4831",
+            "10.02 0.4831 up",
+            "10.02 bar 483.1 mL/min falling",
             "1002 kPa 0.4831",
         ] {
             let typed = point(line);
@@ -378,7 +400,10 @@ mod tests {
 
     #[test]
     fn commands_want_what_they_need() {
-        assert_eq!(read("strike 3 hose was touched", &units()), Ok(Typed::Strike(3, "hose was touched".into())));
+        assert_eq!(
+            read("strike 3 hose was touched", &units()),
+            Ok(Typed::Strike(3, "hose was touched".into()))
+        );
         refused("strike 3", &["reason"]);
         refused("strike hose", &["number", "strike 3"]);
         refused("strike 0 why", &["number"]);

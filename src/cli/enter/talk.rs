@@ -59,7 +59,8 @@ impl<'a> Talk<'a> {
             return Ok(Some(Heard::TooLong));
         }
         // A mark that some editors put before the first line.
-        let bytes = if self.line == 1 { bytes.strip_prefix(b"\xEF\xBB\xBF").unwrap_or(&bytes) } else { &bytes };
+        let bytes =
+            if self.line == 1 { bytes.strip_prefix(b"\xEF\xBB\xBF").unwrap_or(&bytes) } else { &bytes };
         Ok(Some(match std::str::from_utf8(bytes) {
             Ok(text) => Heard::Line(text.trim_end_matches(['\n', '\r']).to_owned()),
             Err(_) => Heard::NoText,
@@ -108,7 +109,8 @@ mod tests {
     use super::*;
 
     fn heard(bytes: &[u8]) -> Vec<Heard> {
-        let (mut input, mut out, mut aside) = (io::BufReader::with_capacity(16, bytes), Vec::new(), Vec::new());
+        let (mut input, mut out, mut aside) =
+            (io::BufReader::with_capacity(16, bytes), Vec::new(), Vec::new());
         let mut talk = Talk::new(&mut input, &mut out, &mut aside, false);
         std::iter::from_fn(|| talk.hear().unwrap()).collect()
     }

@@ -5,16 +5,14 @@
 //! it, so that what another program did meanwhile is seen. A point that cannot be (below vacuum, in conditions no bench
 //! has) is refused before it is written.
 
-use super::start::{Ready, condition, leak_of, merge, zero_of};
 use super::EnterError;
+use super::start::{Ready, condition, leak_of, merge, zero_of};
 use crate::bench::advice::{LowPoints, low_points};
 use crate::bench::{Analysis, BenchError, FEWEST_POINTS, Questions, analyse};
 use crate::book::{Book, BookError, Origin, RunState};
 use crate::entry::{Indication, LeftOut, PointReading, Readings, Run, RunNumber};
 use crate::quantity::text::expanded_only;
-use crate::quantity::{
-    AbsolutePressure, GaugePressure, IndicatedFlow, PressureDifference, Temperature,
-};
+use crate::quantity::{AbsolutePressure, GaugePressure, IndicatedFlow, PressureDifference, Temperature};
 use crate::record::MOST_POINTS;
 use crate::report::bench_fit::Fitted;
 use crate::report::enter_words::{Question, TypedUnits, flow_words, pressure_words};
@@ -159,7 +157,10 @@ impl Desk {
     pub fn standing(&self) -> Standing<'_> {
         match &self.analysed {
             Some(Ok(analysis)) => Standing::Line(self.fitted(analysis, None)),
-            Some(Err(WorkError::Bench { error: BenchError::TooFewPoints { usable, not_choked, .. }, .. })) => {
+            Some(Err(WorkError::Bench {
+                error: BenchError::TooFewPoints { usable, not_choked, .. },
+                ..
+            })) => {
                 let missing = FEWEST_POINTS.saturating_sub(*usable);
                 Standing::More { missing, not_choked: *not_choked }
             }
@@ -238,7 +239,8 @@ impl Desk {
         if (1.0 / DOUBTED..=DOUBTED).contains(&times) {
             return Ok(());
         }
-        let reading = format!("{} {}", pressure_words(reading.pressure, units), flow_words(reading.flow, units));
+        let reading =
+            format!("{} {}", pressure_words(reading.pressure, units), flow_words(reading.flow, units));
         Err(EnterError::UnitDoubt { reading, times: figures(times, 2) })
     }
 
@@ -353,7 +355,9 @@ impl Desk {
     pub fn may_finish(&self, anyway: bool) -> Result<(), EnterError> {
         match &self.analysed {
             None => Err(EnterError::NoPoints),
-            Some(Err(WorkError::Bench { error, .. })) if !anyway => Err(EnterError::NoLine(error.to_string())),
+            Some(Err(WorkError::Bench { error, .. })) if !anyway => {
+                Err(EnterError::NoLine(error.to_string()))
+            }
             Some(_) => Ok(()),
         }
     }

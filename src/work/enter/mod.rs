@@ -118,7 +118,9 @@ pub enum EnterError {
     #[error("the input holds no point, so nothing was recorded")]
     NothingTyped,
     /// Piped input that ended before everything needed was said.
-    #[error("the input ended before {0} was given, so nothing was recorded: give it as an option or on a line of the input")]
+    #[error(
+        "the input ended before {0} was given, so nothing was recorded: give it as an option or on a line of the input"
+    )]
     EndedBefore(&'static str),
 }
 

@@ -6,23 +6,21 @@
 
 use std::path::Path;
 
-use chrono::{DateTime, FixedOffset, TimeDelta};
+use chrono::{DateTime, FixedOffset, TimeDelta, Timelike as _};
 
 use super::EnterError;
 use super::desk::refused_conditions;
 use crate::book::{Book, BookError, Origin, RunQuery, RunState};
 use crate::clock;
 use crate::entry::{
-    Acceptance, Build, Conditions, Id, IdError, Influence, Instrument, InstrumentPapers, Meter, Orifice, Purity, Purpose,
-    Readings, Run, RunNumber, Transducer, ZeroAndLeak,
+    Acceptance, Build, Conditions, Id, IdError, Influence, Instrument, InstrumentPapers, Meter, Orifice,
+    Purity, Purpose, Readings, Run, RunNumber, Transducer, ZeroAndLeak,
 };
 use crate::gas::Species;
 use crate::quantity::show::uncertain_to_text;
 use crate::quantity::text::{uncertain, value, zero_reading};
 use crate::quantity::unit::Unit;
-use crate::quantity::{
-    AbsolutePressure, IndicatedFlow, PressureRate, Quantity, Temperature, Uncertain,
-};
+use crate::quantity::{AbsolutePressure, IndicatedFlow, PressureRate, Quantity, Temperature, Uncertain};
 use crate::record::{DEFAULT_PURITY, Note, Setup, meter_suits, read_setup};
 use crate::report::enter_words::{Question, asked_for, bench_words};
 use crate::work::WorkError;
@@ -153,11 +151,15 @@ impl Start {
     }
 
     /// Takes gas, instruments, conditions, limits, technician and units from a run file, where they are not given yet.
+    /// Limits that the orifice has in the register stay: those of a file may be of another orifice.
     ///
     /// # Errors
     /// A file that is refused.
     pub fn take_from(&mut self, file: &Path) -> Result<(), WorkError> {
         let setup = self.setup(file)?;
+        if let (Some(own), Some(_)) = (self.own_limits(), &setup.acceptance) {
+            self.notes.push(format!("judged by the limits {own} of the orifice, not by those of the file"));
+        }
         self.gas = self.gas.or(setup.gas);
         self.purity = setup.purity;
         self.build = setup.build;
@@ -187,9 +189,10 @@ impl Start {
             Err(refused) => return Err(registers.failure().unwrap_or_else(|| refused.into())),
         };
         // The purity taken is said of every run that begins, wherever its gas comes from.
-        let said = loaded.notes.iter().filter(|note| **note != Note::PurityTaken).map(ToString::to_string);
-        self.notes.extend(said);
-        Ok(loaded.value)
+        let (taken, said): (Vec<_>, Vec<_>) =
+            loaded.notes.iter().partition(|note| **note == Note::PurityTaken);
+        self.notes.extend(said.iter().map(ToString::to_string));
+        Ok(Setup { purity: loaded.value.purity.filter(|_| taken.is_empty()), ..loaded.value })
     }
 
     /// The orifice.
@@ -202,6 +205,17 @@ impl Start {
     #[must_use]
     pub const fn is_registered(&self) -> bool {
         self.registered.is_some()
+    }
+
+    /// The limits the orifice is judged by in the register.
+    #[must_use]
+    pub fn own_limits(&self) -> Option<&Id> {
+        self.registered.as_ref()?.acceptance.as_ref()
+    }
+
+    /// What is to be said since this was asked last.
+    pub fn take_notes(&mut self) -> Vec<String> {
+        std::mem::take(&mut self.notes)
     }
 
     /// The newest run of this orifice, when it is still open.
@@ -255,7 +269,7 @@ impl Start {
             }
             Question::Barometer => whole(recent?.run.conditions.barometer).map(uncertain_to_text),
             Question::Temperature => whole(recent?.run.conditions.temperature).map(uncertain_to_text),
-            Question::Taken => Some(clock::now().to_rfc3339_opts(chrono::SecondsFormat::Secs, false)),
+            Question::Taken => Some(this_second().to_rfc3339()),
             Question::ZeroBefore | Question::LeakBefore | Question::ZeroAfter | Question::LeakAfter => {
                 Some("not read".to_owned())
             }
@@ -320,8 +334,9 @@ impl Start {
                 self.gas = Some(gas);
             }
             Question::Purpose => {
-                let word =
-                    PURPOSES.into_iter().find(|purpose| purpose.name() == text.to_lowercase().replace(' ', "-"));
+                let word = PURPOSES
+                    .into_iter()
+                    .find(|purpose| purpose.name() == text.to_lowercase().replace(' ', "-"));
                 self.purpose = Some(if empty {
                     self.last.as_ref().map_or(Purpose::Check, |last| last.run.purpose)
                 } else {
@@ -336,11 +351,15 @@ impl Start {
             Question::Acceptance => self.answer_acceptance(text)?,
             Question::Technician => {
                 let last = self.last.as_ref().and_then(|last| last.run.technician.clone());
-                let technician = if empty { last } else { Some(said("technician", text)?.to_owned()) };
-                self.technician = Answer::Given(technician);
+                self.technician = Answer::Given(match text {
+                    "" => last,
+                    "none" => None,
+                    name => Some(said("technician", name)?.to_owned()),
+                });
             }
             Question::Barometer => {
-                let last = self.last.as_ref().filter(|last| last.same_day).map(|l| l.run.conditions.barometer);
+                let last =
+                    self.last.as_ref().filter(|last| last.same_day).map(|l| l.run.conditions.barometer);
                 let given = condition::<AbsolutePressure>(question, text, last.unwrap_or_default())?;
                 let mut conditions = self.conditions.clone();
                 merge(&mut conditions.barometer, given);
@@ -357,7 +376,7 @@ impl Start {
             }
             Question::Taken => {
                 self.taken = Some(if empty {
-                    clock::now()
+                    this_second()
                 } else {
                     DateTime::parse_from_rfc3339(text).map_err(|_| EnterError::Time(text.to_owned()))?
                 });
@@ -401,7 +420,7 @@ impl Start {
             gas,
             purity,
             purpose: self.purpose.unwrap_or(Purpose::Check),
-            taken: self.taken.unwrap_or_else(clock::now),
+            taken: self.taken.unwrap_or_else(this_second),
             technician: self.technician.given(),
             readings: Readings::Points(Vec::new()),
             conditions: self.conditions,
@@ -431,10 +450,19 @@ impl Start {
     fn answer_meter(&mut self, text: &str) -> Result<(), WorkError> {
         let gas = self.gas.unwrap_or(Species::Oxygen);
         let meter = if names_a_file(text) {
-            let setup = self.setup_for(text)?;
-            // Papers of both instruments mostly stand in one file.
-            self.transducer = self.transducer.take().or(setup.transducer);
-            setup.meter.ok_or_else(|| not_in(text, "meter"))?
+            // Such a file mostly holds the rest of the bench too.
+            let open = |start: &Self| Question::ALL.map(|question| !start.is_answered(question));
+            let before = open(self);
+            self.take_from(Path::new(text))?;
+            let with_it = Question::ALL.iter().zip(before.iter().zip(open(self)));
+            let with_it: Vec<&str> = with_it
+                .filter(|(question, (before, now))| **before && !now && **question != Question::Meter)
+                .map(|(question, _)| question.word())
+                .collect();
+            if !with_it.is_empty() {
+                self.notes.push(format!("{} gives also: {}", super::short(text), with_it.join(", ")));
+            }
+            self.meter.take().ok_or_else(|| not_in(text, "meter"))?
         } else if let (true, Some(last)) = (text.is_empty(), &self.last) {
             // The register may know newer papers than the last run had.
             match &last.run.meter.id {
@@ -454,12 +482,10 @@ impl Start {
 
     fn answer_transducer(&mut self, text: &str) -> Result<(), WorkError> {
         let transducer = if names_a_file(text) {
-            self.setup_for(text)?.transducer.ok_or_else(|| not_in(text, "transducer"))?
+            self.setup(Path::new(text))?.transducer.ok_or_else(|| not_in(text, "transducer"))?
         } else if let (true, Some(last)) = (text.is_empty(), &self.last) {
             match &last.run.transducer.id {
-                Some(id) => {
-                    self.registered_transducer(id)?.unwrap_or_else(|| last.run.transducer.clone())
-                }
+                Some(id) => self.registered_transducer(id)?.unwrap_or_else(|| last.run.transducer.clone()),
                 None => last.run.transducer.clone(),
             }
         } else if text.is_empty() {
@@ -483,7 +509,7 @@ impl Start {
         } else if text.eq_ignore_ascii_case("none") {
             None
         } else if names_a_file(text) {
-            Some(self.setup_for(text)?.acceptance.ok_or_else(|| not_in(text, "acceptance"))?)
+            Some(self.setup(Path::new(text))?.acceptance.ok_or_else(|| not_in(text, "acceptance"))?)
         } else {
             let id = name(text)?;
             let found = self.registered_acceptance(&id)?;
@@ -491,10 +517,6 @@ impl Start {
         };
         self.acceptance = Answer::Given(acceptance);
         Ok(())
-    }
-
-    fn setup_for(&mut self, file: &str) -> Result<Setup, WorkError> {
-        self.setup(Path::new(file))
     }
 
     fn registered_meter(&self, id: &Id) -> Result<Option<Meter>, WorkError> {
@@ -638,7 +660,9 @@ fn not_registered(what: &'static str, id: &Id, names: &[String]) -> WorkError {
     let shown = names.len().min(NAMES_LISTED as usize);
     let more = if names.len() > shown { ", …" } else { "" };
     let there = match shown {
-        0 => format!(", which holds none yet: add it, or name a run file that has its papers (with a slash or .toml)"),
+        0 => format!(
+            ", which holds none yet: add it, or name a run file that has its papers (with a slash or .toml)"
+        ),
         _ => format!(" (there: {}{more})", names[..shown].join(", ")),
     };
     EnterError::NotRegistered { what, id: id.to_string(), there }.into()
@@ -650,6 +674,12 @@ fn is_meter(instrument: &Instrument) -> bool {
 
 fn is_transducer(instrument: &Instrument) -> bool {
     matches!(instrument.papers, Some(InstrumentPapers::Transducer(_)))
+}
+
+/// The time a person would write down.
+fn this_second() -> DateTime<FixedOffset> {
+    let now = clock::now();
+    now.with_nanosecond(0).unwrap_or(now)
 }
 
 /// The book, if there is one.
@@ -666,5 +696,9 @@ fn last_typed(book: &Book) -> Result<Option<Last>, WorkError> {
     let Some(row) = newest.iter().find(|row| row.origin == Origin::Entered) else { return Ok(None) };
     let record = book.run(row.number)?;
     let age = clock::now() - record.recorded;
-    Ok(Some(Last { number: row.number, run: record.run, same_day: age < SAME_DAY && age >= TimeDelta::zero() }))
+    Ok(Some(Last {
+        number: row.number,
+        run: record.run,
+        same_day: age < SAME_DAY && age >= TimeDelta::zero(),
+    }))
 }
