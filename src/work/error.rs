@@ -75,7 +75,8 @@ pub enum WorkError {
     Enter(#[from] EnterError),
     /// A text that is no run's number.
     #[error(
-        "\"{0}\" is no run: a run of the book is named like R0001, and a run file has a slash or ends in .toml"
+        "\"{}\" is no run: a run of the book is named like R0001, and a run file has a slash or ends in .toml",
+        .0.escape_debug()
     )]
     NoRunNumber(String),
     /// A text that says nothing, or hides something.

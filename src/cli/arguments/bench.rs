@@ -14,7 +14,7 @@ use crate::quantity::{
 #[derive(Debug, Subcommand)]
 pub enum Bench {
     /// Types a run, point by point, at a prompt or from a pipe
-    Enter(Enter),
+    Enter(Box<Enter>),
     /// Goes on with a run that was left open
     Resume(Resume),
     /// Takes runs from files into the book

@@ -11,10 +11,11 @@ use super::line::{self, FlowTyped, PointTyped, Typed, example};
 use super::talk::{Heard, Talk};
 use crate::entry::{Indication, MeterKind, PointReading, RunNumber, Sweep};
 use crate::quantity::Unit;
-use crate::report::enter_words::{self as words, Question, TypedUnits};
+use crate::report::enter_questions::{self as questions, Question};
+use crate::report::enter_words::{self as words, TypedUnits};
 use crate::report::layout::wrapped;
 use crate::report::{Units, bench_fit};
-use crate::work::enter::{Desk, EnterError, Standing, Start};
+use crate::work::enter::{Desk, EnterError, Standing, Start, is_passing};
 use crate::work::{ExitStatus, WorkError};
 
 /// A run that is about to be typed.
@@ -152,7 +153,7 @@ fn go_on(desk: Desk, talk: &mut Talk<'_>, manner: &Manner) -> Result<Table, Brok
 fn ask_all(start: &mut Start, talk: &mut Talk<'_>) -> Result<bool, Broken> {
     if let Some((run, bench)) = start.same_bench() {
         loop {
-            talk.say(&words::same_bench_question(run, &bench))?;
+            talk.say(&questions::same_bench_question(run, &bench))?;
             let Answer::Text(text) = hear_answer(talk)? else { return Ok(false) };
             match text.to_lowercase().as_str() {
                 "" | "yes" | "y" => match start.take_same_bench() {
@@ -166,10 +167,10 @@ fn ask_all(start: &mut Start, talk: &mut Talk<'_>) -> Result<bool, Broken> {
     }
     for question in Question::ALL {
         while !start.is_answered(question) {
-            talk.say(&words::question(question, start.default_words(question).as_deref()))?;
+            talk.say(&questions::question(question, start.default_words(question).as_deref()))?;
             let Answer::Text(text) = hear_answer(talk)? else { return Ok(false) };
             if text == "?" {
-                talk.say(&words::explained(question))?;
+                talk.say(&questions::explained(question))?;
             } else if let Err(error) = start.answer(question, bare(&text, question)) {
                 not_taken(error, talk)?;
             }
@@ -186,7 +187,7 @@ fn hear_needed(start: &mut Start, talk: &mut Talk<'_>) -> Result<(), Broken> {
     for question in Question::NEEDED {
         while !start.is_answered(question) {
             let Some(heard) = talk.hear()? else {
-                return Err(EnterError::EndedBefore(words::asked_for(question)).into());
+                return Err(EnterError::EndedBefore(questions::asked_for(question)).into());
             };
             let says = match heard.text() {
                 Ok(text) if text.trim().is_empty() || text.trim().starts_with('#') => continue,
@@ -198,7 +199,8 @@ fn hear_needed(start: &mut Start, talk: &mut Talk<'_>) -> Result<(), Broken> {
                 Err(says) => says.to_owned(),
             };
             let option = question.word();
-            let says = format!("{} is needed here (or as --{option}): {says}", words::asked_for(question));
+            let says =
+                format!("{} is needed here (or as --{option}): {says}", questions::asked_for(question));
             return Err(at_line(talk, says, words::kept(None, 0)).into());
         }
     }
@@ -277,6 +279,10 @@ impl Table {
         match done {
             Ok(step) => Ok(step),
             Err(Refused::Talk(error)) => Err(Broken::Talk(error)),
+            // Somebody who sits there tries again; a pipe cannot.
+            Err(Refused::Work(error)) if talk.asks && is_passing(&error) => {
+                self.refused(with_causes(&error), talk)
+            }
             Err(Refused::Work(error)) if error.status() != ExitStatus::Wrong => {
                 talk.note(&words::kept(self.desk.number(), self.desk.points().len()));
                 Err(Broken::Work(error))
@@ -404,7 +410,7 @@ impl Table {
         loop {
             if text.is_empty() {
                 let now = words::stands(question, self.desk.run());
-                talk.prompt(&words::question(question, Some(&now)))?;
+                talk.prompt(&questions::question(question, Some(&now)))?;
                 match talk.hear()?.map(Heard::text) {
                     None => {
                         talk.prompt("\n")?;
@@ -417,7 +423,7 @@ impl Table {
                     return Ok(Step::On);
                 }
                 if text == "?" {
-                    talk.say(&words::explained(question))?;
+                    talk.say(&questions::explained(question))?;
                     text.clear();
                     continue;
                 }
@@ -456,10 +462,10 @@ impl Table {
 
     fn ask_after(&mut self, question: Question, talk: &mut Talk<'_>) -> Result<Step, Refused> {
         loop {
-            talk.say(&words::question(question, Some("not read")))?;
+            talk.say(&questions::question(question, Some("not read")))?;
             match hear_answer(talk).map_err(Refused::of)? {
                 Answer::Left => return Ok(Step::Left),
-                Answer::Text(text) if text == "?" => talk.say(&words::explained(question))?,
+                Answer::Text(text) if text == "?" => talk.say(&questions::explained(question))?,
                 Answer::Text(text) => match self.desk.restate(question, bare(&text, question)) {
                     Ok(()) => return Ok(Step::On),
                     Err(error) => not_taken(error, talk).map_err(Refused::of)?,

@@ -284,8 +284,9 @@ fn unit_of(group: &str) -> &str {
     }
 }
 
+/// Whether a group says its unit; a clock time does by its colons.
 fn has_unit(group: &str) -> bool {
-    !unit_of(group).is_empty()
+    group.contains(':') || !unit_of(group).is_empty()
 }
 
 fn quantity<T: Quantity>(group: &str, symbol: &str, units: &TypedUnits) -> Result<T, LineError> {
@@ -352,7 +353,7 @@ mod tests {
     fn a_point_is_the_same_however_it_is_separated_and_in_whatever_unit() {
         let plain = point("10.02 0.4831");
         assert_eq!(plain.pressure, Indication::Gauge(GaugePressure::from_bar(10.02)));
-        assert_eq!(plain.flow.unwrap().flow.as_l_min(), 0.4831);
+        assert_eq!(plain.flow.unwrap().flow.as_l_min().to_bits(), 0.4831_f64.to_bits());
         assert!(!plain.with_units && plain.sweep.is_none());
         for line in [
             "10.02, 0.4831",

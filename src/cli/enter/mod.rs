@@ -16,9 +16,9 @@ use crate::report::{bench_fit, enter_words as words};
 use crate::work::enter::{Desk, EnterError, Start};
 use crate::work::{ExitStatus, WorkError};
 
+pub use crate::report::enter_questions::Question;
 pub use dialogue::{Beginning, Broken, Manner, converse};
 pub use talk::Talk;
-pub use words::Question;
 
 pub(super) fn enter(arguments: &arguments::Enter, global: &Global) -> Result<ExitStatus, Ended> {
     let asks = io::stdin().is_terminal();

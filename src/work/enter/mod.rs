@@ -6,12 +6,15 @@
 //! book together with its first point, so that a person who leaves before leaves nothing behind. Left out: every
 //! terminal (that is `cli`'s) and every sentence for people but refusals.
 
-mod desk;
 mod start;
+mod named;
+mod desk;
 
+use crate::book::BookError;
 use crate::entry::RunNumber;
 use crate::quantity::QuantityError;
 use crate::record::MOST_POINTS;
+use crate::work::WorkError;
 
 pub use desk::{Added, Desk, Standing};
 pub use start::{Ready, Start};
@@ -70,8 +73,8 @@ pub enum EnterError {
     Refused(String),
     /// A reading without a unit that does not fit the others.
     #[error(
-        "{reading} does not go with the other points, it would be {times} the flow for each bar: if it was read so, \
-         write it with its units"
+        "{reading} does not go with the other points, its flow for each bar would be {times} times theirs: if it was \
+         read so, write it with its units"
     )]
     UnitDoubt {
         /// The reading as it was understood.
@@ -122,6 +125,12 @@ pub enum EnterError {
         "the input ended before {0} was given, so nothing was recorded: give it as an option or on a line of the input"
     )]
     EndedBefore(&'static str),
+}
+
+/// Whether the same may be tried again in a moment: another program was writing.
+#[must_use]
+pub const fn is_passing(error: &WorkError) -> bool {
+    matches!(error, WorkError::Book(BookError::Locked { .. }))
 }
 
 /// A text as it may stand in a sentence: what hides made visible, and cut.

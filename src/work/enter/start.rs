@@ -10,11 +10,12 @@ use chrono::{DateTime, FixedOffset, TimeDelta, Timelike as _};
 
 use super::EnterError;
 use super::desk::refused_conditions;
-use crate::book::{Book, BookError, Origin, RunQuery, RunState};
+use super::named::{name, suits, there};
+use crate::book::{Book, Origin, RunQuery, RunState};
 use crate::clock;
 use crate::entry::{
-    Acceptance, Build, Conditions, Id, IdError, Influence, Instrument, InstrumentPapers, Meter, Orifice,
-    Purity, Purpose, Readings, Run, RunNumber, Transducer, ZeroAndLeak,
+    Acceptance, Build, Conditions, Id, Influence, Meter, Orifice, Purity, Purpose, Readings, Run, RunNumber,
+    Transducer, ZeroAndLeak,
 };
 use crate::gas::Species;
 use crate::quantity::show::uncertain_to_text;
@@ -22,18 +23,15 @@ use crate::quantity::text::{uncertain, value, zero_reading};
 use crate::quantity::unit::Unit;
 use crate::quantity::{AbsolutePressure, IndicatedFlow, PressureRate, Quantity, Temperature, Uncertain};
 use crate::record::{DEFAULT_PURITY, Note, Setup, meter_suits, read_setup};
-use crate::report::enter_words::{Question, asked_for, bench_words};
+use crate::report::enter_questions::{Question, asked_for, bench_words};
 use crate::work::WorkError;
-use crate::work::fit::names_a_file;
 use crate::work::runs::said;
-use crate::work::shelf::{Shelf, ShelfRegisters, meter_of, transducer_of};
+use crate::work::shelf::{Shelf, ShelfRegisters};
 
 /// How long a bench counts as the same, and its barometer and temperature as worth offering: one working day.
 const SAME_DAY: TimeDelta = TimeDelta::hours(12);
 /// Runs looked through for the last typed one.
 const LOOKED_THROUGH: u32 = 20;
-/// Names of a register that are listed in a refusal.
-const NAMES_LISTED: u32 = 8;
 
 /// The purposes, in the order they are listed.
 const PURPOSES: [Purpose; 4] = [Purpose::Acceptance, Purpose::AsFound, Purpose::AsLeft, Purpose::Check];
@@ -41,20 +39,20 @@ const PURPOSES: [Purpose; 4] = [Purpose::Acceptance, Purpose::AsFound, Purpose::
 /// What is known of a run before it begins.
 #[derive(Debug)]
 pub struct Start {
-    shelf: Shelf,
+    pub(super) shelf: Shelf,
     orifice: Id,
     /// As it stands in the register; none when it is new.
     registered: Option<Orifice>,
     /// A run of this orifice that is still open.
     open: Option<RunNumber>,
-    last: Option<Last>,
-    gas: Option<Species>,
+    pub(super) last: Option<Last>,
+    pub(super) gas: Option<Species>,
     purity: Option<Purity>,
     build: Option<Build>,
     purpose: Option<Purpose>,
-    meter: Option<Meter>,
-    transducer: Option<Transducer>,
-    acceptance: Answer<Acceptance>,
+    pub(super) meter: Option<Meter>,
+    pub(super) transducer: Option<Transducer>,
+    pub(super) acceptance: Answer<Acceptance>,
     technician: Answer<String>,
     conditions: Conditions,
     taken: Option<DateTime<FixedOffset>>,
@@ -64,12 +62,12 @@ pub struct Start {
     pressure_unit: Option<Unit>,
     absolute: bool,
     flow_unit: Option<Unit>,
-    notes: Vec<String>,
+    pub(super) notes: Vec<String>,
 }
 
 /// An answer that may be "none".
 #[derive(Debug, Clone, PartialEq)]
-enum Answer<T> {
+pub(super) enum Answer<T> {
     Open,
     Given(Option<T>),
 }
@@ -85,9 +83,9 @@ impl<T> Answer<T> {
 
 /// The last run that was typed.
 #[derive(Debug)]
-struct Last {
+pub(super) struct Last {
     number: RunNumber,
-    run: Run,
+    pub(super) run: Run,
     same_day: bool,
 }
 
@@ -182,7 +180,7 @@ impl Start {
         Ok(())
     }
 
-    fn setup(&mut self, file: &Path) -> Result<Setup, WorkError> {
+    pub(super) fn setup(&mut self, file: &Path) -> Result<Setup, WorkError> {
         let registers = ShelfRegisters::new(&self.shelf);
         let loaded = match read_setup(file, self.gas, &registers) {
             Ok(loaded) => loaded,
@@ -447,118 +445,6 @@ impl Start {
         self.gas.is_none_or(|gas| meter_suits(&meter.kind, gas).is_ok())
     }
 
-    fn answer_meter(&mut self, text: &str) -> Result<(), WorkError> {
-        let gas = self.gas.unwrap_or(Species::Oxygen);
-        let meter = if names_a_file(text) {
-            // Such a file mostly holds the rest of the bench too.
-            let open = |start: &Self| Question::ALL.map(|question| !start.is_answered(question));
-            let before = open(self);
-            self.take_from(Path::new(text))?;
-            let with_it = Question::ALL.iter().zip(before.iter().zip(open(self)));
-            let with_it: Vec<&str> = with_it
-                .filter(|(question, (before, now))| **before && !now && **question != Question::Meter)
-                .map(|(question, _)| question.word())
-                .collect();
-            if !with_it.is_empty() {
-                self.notes.push(format!("{} gives also: {}", super::short(text), with_it.join(", ")));
-            }
-            self.meter.take().ok_or_else(|| not_in(text, "meter"))?
-        } else if let (true, Some(last)) = (text.is_empty(), &self.last) {
-            // The register may know newer papers than the last run had.
-            match &last.run.meter.id {
-                Some(id) => self.registered_meter(id)?.unwrap_or_else(|| last.run.meter.clone()),
-                None => last.run.meter.clone(),
-            }
-        } else if text.is_empty() {
-            return Err(EnterError::Needed(asked_for(Question::Meter)).into());
-        } else {
-            let id = name(text)?;
-            self.registered_meter(&id)?.map_or_else(|| Err(self.unknown("flow meter", &id, is_meter)), Ok)?
-        };
-        suits(&meter, gas)?;
-        self.meter = Some(meter);
-        Ok(())
-    }
-
-    fn answer_transducer(&mut self, text: &str) -> Result<(), WorkError> {
-        let transducer = if names_a_file(text) {
-            self.setup(Path::new(text))?.transducer.ok_or_else(|| not_in(text, "transducer"))?
-        } else if let (true, Some(last)) = (text.is_empty(), &self.last) {
-            match &last.run.transducer.id {
-                Some(id) => self.registered_transducer(id)?.unwrap_or_else(|| last.run.transducer.clone()),
-                None => last.run.transducer.clone(),
-            }
-        } else if text.is_empty() {
-            return Err(EnterError::Needed(asked_for(Question::Transducer)).into());
-        } else {
-            let id = name(text)?;
-            let found = self.registered_transducer(&id)?;
-            found.map_or_else(|| Err(self.unknown("transducer", &id, is_transducer)), Ok)?
-        };
-        self.transducer = Some(transducer);
-        Ok(())
-    }
-
-    fn answer_acceptance(&mut self, text: &str) -> Result<(), WorkError> {
-        let acceptance = if text.is_empty() {
-            let last = self.last.as_ref().and_then(|last| last.run.acceptance.clone());
-            match last.as_ref().and_then(|acceptance| acceptance.id.clone()) {
-                Some(id) => self.registered_acceptance(&id)?.or(last),
-                None => last,
-            }
-        } else if text.eq_ignore_ascii_case("none") {
-            None
-        } else if names_a_file(text) {
-            Some(self.setup(Path::new(text))?.acceptance.ok_or_else(|| not_in(text, "acceptance"))?)
-        } else {
-            let id = name(text)?;
-            let found = self.registered_acceptance(&id)?;
-            Some(found.map_or_else(|| Err(self.unknown_acceptance(&id)), Ok)?)
-        };
-        self.acceptance = Answer::Given(acceptance);
-        Ok(())
-    }
-
-    fn registered_meter(&self, id: &Id) -> Result<Option<Meter>, WorkError> {
-        let Some(book) = there(&self.shelf)? else { return Ok(None) };
-        Ok(meter_of(&book, id)?)
-    }
-
-    fn registered_transducer(&self, id: &Id) -> Result<Option<Transducer>, WorkError> {
-        let Some(book) = there(&self.shelf)? else { return Ok(None) };
-        Ok(transducer_of(&book, id)?)
-    }
-
-    fn registered_acceptance(&self, id: &Id) -> Result<Option<Acceptance>, WorkError> {
-        let Some(book) = there(&self.shelf)? else { return Ok(None) };
-        Ok(book.entry::<Acceptance>(id)?.map(|found| found.entry))
-    }
-
-    /// The refusal of an instrument, with the names there are.
-    fn unknown(&self, what: &'static str, id: &Id, is: fn(&Instrument) -> bool) -> WorkError {
-        let names = || -> Result<Vec<String>, WorkError> {
-            let Some(book) = there(&self.shelf)? else { return Ok(Vec::new()) };
-            let entries = book.entries::<Instrument>(None, None)?;
-            Ok(entries.iter().filter(|e| is(&e.entry)).map(|e| e.entry.id.to_string()).collect())
-        };
-        match names() {
-            Ok(names) => not_registered(what, id, &names),
-            Err(error) => error,
-        }
-    }
-
-    fn unknown_acceptance(&self, id: &Id) -> WorkError {
-        let names = || -> Result<Vec<String>, WorkError> {
-            let Some(book) = there(&self.shelf)? else { return Ok(Vec::new()) };
-            let entries = book.entries::<Acceptance>(None, None)?;
-            Ok(entries.iter().filter_map(|e| e.entry.id.as_ref()).map(ToString::to_string).collect())
-        };
-        match names() {
-            Ok(names) => not_registered("acceptance", id, &names),
-            Err(error) => error,
-        }
-    }
-
     /// Whether a bench can have such conditions, as far as the rest is known.
     fn check(&self, conditions: &Conditions) -> Result<(), WorkError> {
         let (Some(meter), Some(transducer)) = (&self.meter, &self.transducer) else { return Ok(()) };
@@ -627,18 +513,6 @@ fn whole<T: Quantity>(influence: Influence<T, T::Difference>) -> Option<Uncertai
     influence.value.map(|value| Uncertain { value, expanded: influence.expanded })
 }
 
-/// A name, refused in a sentence that shows nothing hidden.
-fn name(text: &str) -> Result<Id, EnterError> {
-    Id::new(text).map_err(|why| EnterError::Name {
-        text: text.to_owned(),
-        why: match why {
-            IdError::Length(..) => "a name has 1 to 32 characters",
-            IdError::Character(..) => "a name has only letters, digits, \"-\", \"_\" and \".\"",
-            IdError::Reserved(_) => "it reads as a file or a run, choose another",
-        },
-    })
-}
-
 /// An instrument or limits of the last run, for brackets.
 fn named(id: &Option<Id>, certificate: &Option<String>, run: RunNumber) -> String {
     match (id, certificate) {
@@ -648,47 +522,10 @@ fn named(id: &Option<Id>, certificate: &Option<String>, run: RunNumber) -> Strin
     }
 }
 
-fn suits(meter: &Meter, gas: Species) -> Result<(), WorkError> {
-    meter_suits(&meter.kind, gas).map_err(|refusal| EnterError::Refused(refusal.to_string()).into())
-}
-
-fn not_in(file: &str, table: &'static str) -> EnterError {
-    EnterError::NotInFile { file: super::short(file), table }
-}
-
-fn not_registered(what: &'static str, id: &Id, names: &[String]) -> WorkError {
-    let shown = names.len().min(NAMES_LISTED as usize);
-    let more = if names.len() > shown { ", …" } else { "" };
-    let there = match shown {
-        0 => format!(
-            ", which holds none yet: add it, or name a run file that has its papers (with a slash or .toml)"
-        ),
-        _ => format!(" (there: {}{more})", names[..shown].join(", ")),
-    };
-    EnterError::NotRegistered { what, id: id.to_string(), there }.into()
-}
-
-fn is_meter(instrument: &Instrument) -> bool {
-    matches!(instrument.papers, Some(InstrumentPapers::Meter(_)))
-}
-
-fn is_transducer(instrument: &Instrument) -> bool {
-    matches!(instrument.papers, Some(InstrumentPapers::Transducer(_)))
-}
-
 /// The time a person would write down.
 fn this_second() -> DateTime<FixedOffset> {
     let now = clock::now();
     now.with_nanosecond(0).unwrap_or(now)
-}
-
-/// The book, if there is one.
-fn there(shelf: &Shelf) -> Result<Option<Book>, WorkError> {
-    match shelf.to_read() {
-        Ok(book) => Ok(Some(book)),
-        Err(WorkError::Book(BookError::NoBook { .. })) => Ok(None),
-        Err(error) => Err(error),
-    }
 }
 
 fn last_typed(book: &Book) -> Result<Option<Last>, WorkError> {
