@@ -145,7 +145,7 @@ fn an_afternoon_of_five_orifices_on_one_bench() {
         }
         typed.extend(["done", "0.0002 L/min", "0.002 bar/min"]);
         let talk = bench.asked(orifice, &typed);
-        assert_eq!(talk.text.contains("The bench of R000"), i > 0, "{}", talk.text);
+        assert_eq!(talk.text.contains("The same bench as in R000"), i > 0, "{}", talk.text);
         let desk = talk.desk();
         assert_eq!((desk.number(), desk.is_open()), (Some(number(i as u32 + 1)), false), "{}", talk.text);
         assert_eq!(desk.run().meter.id.as_ref().unwrap().as_str(), "FM-01");

@@ -110,7 +110,7 @@ pub fn question(question: Question, default: Option<&str>) -> String {
 /// Whether the bench is that of an earlier run.
 #[must_use]
 pub fn same_bench_question(run: RunNumber, bench: &str) -> String {
-    prompt(&format!("The bench of {run} ({bench})? (yes, no) [yes]:"))
+    prompt(&format!("The same bench as in {run} ({bench})? (yes, no) [yes]:"))
 }
 
 /// What an answer means, for somebody who typed a question mark.

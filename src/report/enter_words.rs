@@ -93,7 +93,7 @@ pub fn how_to_type(units: &TypedUnits) -> String {
     let mut text =
         wrapped("", "  ", &format!("Type each steady point as {pressure} and {rest}, for example"));
     text.push_str(&format!("  {example}\n"));
-    text.push_str("or with other units written. done ends the run, help lists the rest.\n");
+    text.push_str("or with other units written. \"done\" ends the run, \"help\" lists the rest.\n");
     text
 }
 

@@ -18,12 +18,12 @@ use crate::entry::{
     Transducer, ZeroAndLeak,
 };
 use crate::gas::Species;
-use crate::quantity::show::uncertain_to_text;
 use crate::quantity::text::{uncertain, value, zero_reading};
 use crate::quantity::unit::Unit;
-use crate::quantity::{AbsolutePressure, IndicatedFlow, PressureRate, Quantity, Temperature, Uncertain};
+use crate::quantity::{AbsolutePressure, IndicatedFlow, PressureRate, Quantity, Temperature};
 use crate::record::{DEFAULT_PURITY, Note, Setup, meter_suits, read_setup};
 use crate::report::enter_questions::{Question, asked_for, bench_words};
+use crate::report::enter_words::stands;
 use crate::work::WorkError;
 use crate::work::runs::said;
 use crate::work::shelf::{Shelf, ShelfRegisters};
@@ -265,8 +265,7 @@ impl Start {
                 let technician = last.and_then(|last| last.run.technician.clone());
                 Some(technician.unwrap_or_else(|| "not named".to_owned()))
             }
-            Question::Barometer => whole(recent?.run.conditions.barometer).map(uncertain_to_text),
-            Question::Temperature => whole(recent?.run.conditions.temperature).map(uncertain_to_text),
+            Question::Barometer | Question::Temperature => Some(stands(question, &recent?.run)),
             Question::Taken => Some(this_second().to_rfc3339()),
             Question::ZeroBefore | Question::LeakBefore | Question::ZeroAfter | Question::LeakAfter => {
                 Some("not read".to_owned())
@@ -507,10 +506,6 @@ pub(super) fn merge<T, D>(there: &mut Influence<T, D>, given: Influence<T, D>) {
     if given.expanded.is_some() {
         there.expanded = given.expanded;
     }
-}
-
-fn whole<T: Quantity>(influence: Influence<T, T::Difference>) -> Option<Uncertain<T, T::Difference>> {
-    influence.value.map(|value| Uncertain { value, expanded: influence.expanded })
 }
 
 /// An instrument or limits of the last run, for brackets.
