@@ -7,6 +7,7 @@
 pub mod arguments;
 mod bench;
 mod demo;
+pub mod enter;
 mod manual;
 
 use std::ffi::OsString;
@@ -69,6 +70,8 @@ fn verb(arguments: &Arguments) -> Result<ExitStatus, Ended> {
     match &arguments.command {
         Command::Demo(demo) => demo::demo(demo, &arguments.global),
         Command::Bench(verb) => match verb {
+            Bench::Enter(enter) => enter::enter(enter, &arguments.global),
+            Bench::Resume(resume) => enter::resume(resume, &arguments.global),
             Bench::Import(import) => bench::import(import, &arguments.global),
             Bench::Fit(fit) => bench::fit(fit, &arguments.global),
             Bench::LeaveOut(leave_out) => bench::leave_out(leave_out, &arguments.global),
@@ -96,9 +99,14 @@ fn note(text: &str) {
     let _ = writeln!(io::stderr(), "{text}");
 }
 
-/// Writes an error with its causes to stderr, each cause once.
+/// Writes an error with its causes to stderr.
 fn tell(error: &WorkError) {
-    let mut text = format!("ebbline: {error}");
+    note(&format!("ebbline: {}", with_causes(error)));
+}
+
+/// An error with its causes, each once.
+fn with_causes(error: &WorkError) -> String {
+    let mut text = error.to_string();
     let mut cause = std::error::Error::source(error);
     while let Some(source) = cause {
         let said = source.to_string();
@@ -108,7 +116,7 @@ fn tell(error: &WorkError) {
         }
         cause = source.source();
     }
-    note(&text);
+    text
 }
 
 /// Tells what was noticed on the way.

@@ -22,11 +22,45 @@ pub(super) fn conditions(
     uses_volume: bool,
     wet: bool,
 ) -> Result<Conditions, RecordError> {
-    let table = whole.table("conditions")?;
-    let Some(table) = table else {
+    let Some(table) = whole.table("conditions")? else {
         let none = Conditions::default();
         return required(none, columns, |key, refusal| whole.refuse(&format!("[conditions] {key}"), refusal));
     };
+    let column = |column: bool| if column { Alone::Column } else { Alone::Refused };
+    let gas_in_meter = |column: bool| if column { Alone::Column } else { Alone::Taken };
+    let alone = AloneFor {
+        temperature: column(columns.temperature.is_some()),
+        barometer: column(columns.barometer.is_some()),
+        meter_temperature: gas_in_meter(columns.meter_temperature.is_some()),
+        meter_pressure: gas_in_meter(columns.meter_pressure.is_some()),
+    };
+    let given = stated(&table, &alone, uses_volume, wet)?;
+    required(given, columns, |key, refusal| table.refuse(key, refusal))
+}
+
+/// The conditions of a file whose readings do not count: a value may be missing, as it is given elsewhere.
+pub(super) fn conditions_without_readings(
+    whole: &Table<'_>,
+    uses_volume: bool,
+    wet: bool,
+) -> Result<Conditions, RecordError> {
+    let alone = AloneFor {
+        temperature: Alone::Taken,
+        barometer: Alone::Taken,
+        meter_temperature: Alone::Taken,
+        meter_pressure: Alone::Taken,
+    };
+    let table = whole.table("conditions")?;
+    table.map_or_else(|| Ok(Conditions::default()), |table| stated(&table, &alone, uses_volume, wet))
+}
+
+/// What `[conditions]` states.
+fn stated(
+    table: &Table<'_>,
+    alone: &AloneFor,
+    uses_volume: bool,
+    wet: bool,
+) -> Result<Conditions, RecordError> {
     table.only(&[
         "temperature",
         "barometer",
@@ -37,7 +71,7 @@ pub(super) fn conditions(
         "water_temperature",
         "coverage",
     ])?;
-    let to_k2 = COVERAGE / coverage(&table)?;
+    let to_k2 = COVERAGE / coverage(table)?;
     for (key, used, why) in [
         ("humidity", uses_volume, "only a meter that shows the volume that passes needs it"),
         ("meter_temperature", uses_volume, "only a meter that shows the volume that passes needs it"),
@@ -48,7 +82,7 @@ pub(super) fn conditions(
             field.note(Note::NotUsed { place: field.place(), why });
         }
     }
-    let reader = Reader { table: &table, to_k2 };
+    let reader = Reader { table, to_k2 };
     let humidity = reader.influence::<Share>("humidity", Alone::Refused)?;
     if let (Some(share), Some(field)) = (humidity.value, table.field("humidity"))
         && share.as_ratio() > 1.0
@@ -56,27 +90,18 @@ pub(super) fn conditions(
         let shown = field.text()?.to_owned();
         return Err(field.refuse(Refusal::OutOfBounds { shown, want: "between 0 % and 100 %" }));
     }
-    let column = |column: bool| if column { Alone::Column } else { Alone::Refused };
-    let gas_in_meter = |column: bool| if column { Alone::Column } else { Alone::Taken };
-    let given = Conditions {
-        temperature: reader.influence::<Temperature>("temperature", column(columns.temperature.is_some()))?,
-        barometer: reader.influence::<AbsolutePressure>("barometer", column(columns.barometer.is_some()))?,
+    Ok(Conditions {
+        temperature: reader.influence::<Temperature>("temperature", alone.temperature)?,
+        barometer: reader.influence::<AbsolutePressure>("barometer", alone.barometer)?,
         back_pressure: reader.influence::<PressureDifference>("back_pressure", Alone::Refused)?,
         humidity: Influence {
             value: humidity.value.map(Share::as_ratio),
             expanded: humidity.expanded.map(Share::as_ratio),
         },
-        meter_temperature: reader.influence::<Temperature>(
-            "meter_temperature",
-            gas_in_meter(columns.meter_temperature.is_some()),
-        )?,
-        meter_pressure: reader.influence::<AbsolutePressure>(
-            "meter_pressure",
-            gas_in_meter(columns.meter_pressure.is_some()),
-        )?,
+        meter_temperature: reader.influence::<Temperature>("meter_temperature", alone.meter_temperature)?,
+        meter_pressure: reader.influence::<AbsolutePressure>("meter_pressure", alone.meter_pressure)?,
         water_temperature: reader.influence::<Temperature>("water_temperature", Alone::Refused)?,
-    };
-    required(given, columns, |key, refusal| table.refuse(key, refusal))
+    })
 }
 
 /// `[before]` or `[after]`.
@@ -193,6 +218,14 @@ enum Alone {
     Taken,
     /// Nothing gives the value.
     Refused,
+}
+
+/// What it means for each condition that may stand elsewhere.
+struct AloneFor {
+    temperature: Alone,
+    barometer: Alone,
+    meter_temperature: Alone,
+    meter_pressure: Alone,
 }
 
 struct Reader<'t, 'd> {

@@ -87,7 +87,10 @@ pub(super) fn meter(table: &Table<'_>, gas: Option<Species>) -> Result<Meter, Re
 }
 
 /// Whether a meter can say anything about `gas`: a mass-reading one made for another gas needs the maker's factor.
-pub(super) fn suits(kind: &MeterKind, gas: Species) -> Result<(), Refusal> {
+///
+/// # Errors
+/// [`Refusal::GasDiffers`] when it cannot.
+pub fn suits(kind: &MeterKind, gas: Species) -> Result<(), Refusal> {
     match kind {
         MeterKind::Mass { made_for, gas_factor: None, .. } if *made_for != gas => {
             Err(Refusal::GasDiffers { gas: gas.name(), made_for: made_for.name() })

@@ -9,6 +9,7 @@
 mod error;
 mod note;
 mod run;
+mod setup;
 mod readings;
 mod columns;
 mod instruments;
@@ -22,6 +23,7 @@ mod registers;
 
 pub use document::hidden_character;
 pub use error::{Fault, Place, RecordError, Refusal};
+pub use instruments::suits as meter_suits;
 pub use note::{Loaded, Note};
 pub use readings::{MOST_POINTS, MOST_SERIES_ROWS};
 pub use registers::{
@@ -33,4 +35,5 @@ pub use run::{
     DEFAULT_PURITY, Files, NoRegisters, Registers, RunFiles, parse_run, parse_run_with, read_run,
     read_run_and_files, read_run_with,
 };
+pub use setup::{Setup, read_setup};
 pub use write::write_run;

@@ -30,7 +30,7 @@ const LONGEST_RUN_FILE: u64 = 1 << 20;
 /// Longest file of readings that is kept to the byte: five million rows of a hundred bytes.
 const LONGEST_READINGS: u64 = 500_000_000;
 
-const KEYS: [&str; 18] = [
+pub(super) const KEYS: [&str; 18] = [
     "record",
     "orifice",
     "build",
@@ -155,7 +155,7 @@ pub fn read_run_and_files(
     Ok((loaded, RunFiles { toml, readings_name, readings }))
 }
 
-fn read_toml(path: &Path) -> Result<(String, Vec<u8>), RecordError> {
+pub(super) fn read_toml(path: &Path) -> Result<(String, Vec<u8>), RecordError> {
     let name = path.display().to_string();
     let mut bytes = Vec::new();
     let read = open(path)?.take(LONGEST_RUN_FILE + 1).read_to_end(&mut bytes);
@@ -267,7 +267,7 @@ fn run(
     })
 }
 
-fn purity(file: &Table<'_>, gas: Species) -> Result<Option<Purity>, RecordError> {
+pub(super) fn purity(file: &Table<'_>, gas: Species) -> Result<Option<Purity>, RecordError> {
     let field = file.field("oxygen");
     if gas != Species::Oxygen {
         return match field {
@@ -295,7 +295,7 @@ fn purity(file: &Table<'_>, gas: Species) -> Result<Option<Purity>, RecordError>
     Ok(Some(Purity { fraction, expanded }))
 }
 
-fn meter(file: &Table<'_>, gas: Species, registers: &dyn Registers) -> Result<Meter, RecordError> {
+pub(super) fn meter(file: &Table<'_>, gas: Species, registers: &dyn Registers) -> Result<Meter, RecordError> {
     let field = file.required("meter", "a table [meter] with kind = \"mass\" and what its papers say")?;
     if !field.is_text() {
         return instruments::meter(&field.table("meter")?, Some(gas));
@@ -306,7 +306,7 @@ fn meter(file: &Table<'_>, gas: Species, registers: &dyn Registers) -> Result<Me
     Ok(meter)
 }
 
-fn transducer(file: &Table<'_>, registers: &dyn Registers) -> Result<Transducer, RecordError> {
+pub(super) fn transducer(file: &Table<'_>, registers: &dyn Registers) -> Result<Transducer, RecordError> {
     let field = file.required("transducer", "a table [transducer] with what its papers say")?;
     if !field.is_text() {
         return instruments::transducer(&field.table("transducer")?);
@@ -315,7 +315,10 @@ fn transducer(file: &Table<'_>, registers: &dyn Registers) -> Result<Transducer,
     registers.transducer(&id).ok_or_else(|| field.refuse(not_registered(&id, "transducer")))
 }
 
-fn acceptance(file: &Table<'_>, registers: &dyn Registers) -> Result<Option<Acceptance>, RecordError> {
+pub(super) fn acceptance(
+    file: &Table<'_>,
+    registers: &dyn Registers,
+) -> Result<Option<Acceptance>, RecordError> {
     let Some(field) = file.field("acceptance") else { return Ok(None) };
     if !field.is_text() {
         return around::acceptance(&field.table("acceptance")?).map(Some);

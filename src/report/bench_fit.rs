@@ -178,7 +178,7 @@ fn failed(judgement: &Judgement) -> String {
 }
 
 /// The flow the verdict was given on, in the gas the limits are meant for.
-fn judged_flow<'a>(fitted: &'a Fitted<'_>, acceptance: &Acceptance) -> &'a FlowAt {
+pub(super) fn judged_flow<'a>(fitted: &'a Fitted<'_>, acceptance: &Acceptance) -> &'a FlowAt {
     let nominal = &fitted.analysis.nominal;
     match (acceptance.gas, &nominal.as_oxygen) {
         (Some(gas), Some(oxygen)) if gas != fitted.run.gas && gas == crate::gas::Species::Oxygen => oxygen,

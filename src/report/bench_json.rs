@@ -21,8 +21,9 @@ pub fn document(fitted: &Fitted<'_>) -> String {
     super::json_text(&Document::of(fitted))
 }
 
+/// The document.
 #[derive(Serialize)]
-struct Document {
+pub(super) struct Document {
     format: u32,
     method: u32,
     orifice: String,
@@ -166,7 +167,8 @@ struct JsonMonteCarlo {
 }
 
 impl Document {
-    fn of(fitted: &Fitted<'_>) -> Self {
+    /// The document of a fitted run.
+    pub(super) fn of(fitted: &Fitted<'_>) -> Self {
         let analysis = fitted.analysis;
         let units = Units::default();
         let (total, random) = (analysis.line.total(), &analysis.line.random);

@@ -7,6 +7,8 @@ pub mod bench_fit;
 pub mod bench_json;
 pub mod cautions;
 pub mod check_sentences;
+pub mod enter_questions;
+pub mod enter_words;
 pub mod layout;
 pub mod number;
 pub mod run_list;

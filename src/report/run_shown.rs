@@ -222,8 +222,9 @@ struct JsonInstrument {
     due: Option<String>,
 }
 
+/// A reading of a point as it was read.
 #[derive(Serialize)]
-struct JsonReading {
+pub(super) struct JsonReading {
     index: usize,
     pressure_bar: Plain,
     absolute: bool,
@@ -308,7 +309,8 @@ impl Document {
 }
 
 impl JsonReading {
-    fn of(index: usize, point: &PointReading) -> Self {
+    /// A reading with the number of its point.
+    pub(super) fn of(index: usize, point: &PointReading) -> Self {
         Self {
             index,
             pressure_bar: Plain(point.pressure.shown_pa() / 1e5),

@@ -2,6 +2,7 @@
 
 use std::path::PathBuf;
 
+use super::enter::EnterError;
 use super::png::PngError;
 use crate::bench::BenchError;
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
@@ -69,9 +70,13 @@ pub enum WorkError {
     /// The book.
     #[error(transparent)]
     Book(#[from] BookError),
+    /// An answer or a point that is not taken.
+    #[error(transparent)]
+    Enter(#[from] EnterError),
     /// A text that is no run's number.
     #[error(
-        "\"{0}\" is no run: a run of the book is named like R0001, and a run file has a slash or ends in .toml"
+        "\"{}\" is no run: a run of the book is named like R0001, and a run file has a slash or ends in .toml",
+        .0.escape_debug()
     )]
     NoRunNumber(String),
     /// A text that says nothing, or hides something.
@@ -121,6 +126,7 @@ impl WorkError {
             Self::Record(_)
             | Self::Bench { .. }
             | Self::TooFewSteady { .. }
+            | Self::Enter(_)
             | Self::NoRunNumber(_)
             | Self::Text { .. }
             | Self::NoDataFolder

@@ -3,6 +3,7 @@
 //! The only place with a sequence of steps, and, with `record`, the only one that touches files.
 
 pub mod demo;
+pub mod enter;
 pub mod error;
 pub mod fit;
 pub mod output;

@@ -316,7 +316,7 @@ pub const fn status_of(verdict: StoredVerdict) -> ExitStatus {
 }
 
 /// A reason or a name somebody gave: not empty, and without characters that hide.
-fn said<'t>(option: &'static str, text: &'t str) -> Result<&'t str, WorkError> {
+pub(super) fn said<'t>(option: &'static str, text: &'t str) -> Result<&'t str, WorkError> {
     let text = text.trim();
     if text.is_empty() || crate::record::hidden_character(text).is_some() {
         return Err(WorkError::Text { option, text: text.to_owned() });

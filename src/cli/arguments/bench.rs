@@ -5,6 +5,7 @@ use std::path::PathBuf;
 use clap::{Args, Subcommand};
 
 use crate::quantity::text;
+use crate::quantity::unit::{Kind, Unit, lookup};
 use crate::quantity::{
     AbsolutePressure, GaugePressure, PressureDifference, QuantityError, StpdFlow, Uncertain,
 };
@@ -12,6 +13,10 @@ use crate::quantity::{
 /// Verbs of bench runs.
 #[derive(Debug, Subcommand)]
 pub enum Bench {
+    /// Types a run, point by point, at a prompt or from a pipe
+    Enter(Box<Enter>),
+    /// Goes on with a run that was left open
+    Resume(Resume),
     /// Takes runs from files into the book
     Import(Import),
     /// Fits a run: line, uncertainty, checks, verdict
@@ -24,6 +29,80 @@ pub enum Bench {
     List(List),
     /// Shows a run of the book as it was recorded, with its judgements
     Show(Show),
+}
+
+/// Options of `bench enter`; what is not given is asked for where it is needed.
+#[derive(Debug, Args)]
+pub struct Enter {
+    /// The orifice; one that is not in the register yet is created with its name only
+    #[arg(value_name = "ORIFICE")]
+    pub orifice: String,
+    /// Gas, instruments, conditions, limits and units as in this run file; its readings do not count
+    #[arg(long, value_name = "FILE.toml")]
+    pub from: Option<PathBuf>,
+    /// oxygen, air, nitrogen or helium
+    #[arg(long, value_name = "GAS")]
+    pub gas: Option<String>,
+    /// acceptance, as-found, as-left or check
+    #[arg(long, value_name = "PURPOSE")]
+    pub purpose: Option<String>,
+    /// The flow meter, by its name in the register
+    #[arg(long, value_name = "ID")]
+    pub meter: Option<String>,
+    /// The pressure transducer, by its name in the register
+    #[arg(long, value_name = "ID")]
+    pub transducer: Option<String>,
+    /// The limits, by their name in the register, or none
+    #[arg(long, value_name = "NAME")]
+    pub acceptance: Option<String>,
+    /// Who reads the instruments
+    #[arg(long, value_name = "NAME")]
+    pub technician: Option<String>,
+    /// Barometer, as in "1009.2 hPa ± 1.0 hPa"
+    #[arg(long, value_name = "PRESSURE", allow_hyphen_values = true)]
+    pub barometer: Option<String>,
+    /// Gas temperature at the orifice, as in "21.0 °C ± 1.0 °C"
+    #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
+    pub temperature: Option<String>,
+    /// When it is taken, as in 2026-11-12T09:40:00+11:00 (else now)
+    #[arg(long, value_name = "TIME")]
+    pub taken: Option<String>,
+    /// How numbers without a unit are read
+    #[command(flatten)]
+    pub typed: Typed,
+}
+
+/// Options of `bench resume`.
+#[derive(Debug, Args)]
+pub struct Resume {
+    /// A run of the book that is still open
+    #[arg(value_name = "RUN")]
+    pub run: String,
+    /// How numbers without a unit are read
+    #[command(flatten)]
+    pub typed: Typed,
+}
+
+/// How numbers that are typed without a unit are read.
+#[derive(Debug, Args)]
+pub struct Typed {
+    /// Unit of pressures typed without one (else bar)
+    #[arg(long, value_name = "UNIT", value_parser = pressure_unit)]
+    pub pressure_unit: Option<Unit>,
+    /// Unit of flows typed without one (else L/min)
+    #[arg(long, value_name = "UNIT", value_parser = flow_unit)]
+    pub flow_unit: Option<Unit>,
+    /// The transducer shows absolute pressure (else gauge)
+    #[arg(long)]
+    pub absolute: bool,
+}
+
+fn pressure_unit(text: &str) -> Result<Unit, QuantityError> {
+    lookup(Kind::Pressure, text)
+}
+
+fn flow_unit(text: &str) -> Result<Unit, QuantityError> {
+    lookup(Kind::Flow, text)
 }
 
 /// Options of `bench import`.

@@ -4,7 +4,7 @@ mod bench;
 
 use std::path::PathBuf;
 
-pub use bench::{Accept, Bench, Fit, Import, LeaveOut, List, Show};
+pub use bench::{Accept, Bench, Enter, Fit, Import, LeaveOut, List, Resume, Show, Typed};
 use clap::{Args, Parser, Subcommand};
 
 use crate::quantity::Shown;
