@@ -51,10 +51,6 @@ pub const fn status_of(check: &BookCheck) -> ExitStatus {
 /// No book, one that cannot be read or noted in, a file that is there already, a copy that cannot be written.
 pub fn backup(shelf: &Shelf, to: &Path, replace: bool) -> Result<Backup, WorkError> {
     let mut book = shelf.to_change()?;
-    if std::path::absolute(to).ok() == std::path::absolute(shelf.path()).ok() {
-        let why = "is the book itself".to_owned();
-        return Err(WorkError::NotReplaced { path: to.to_owned(), why });
-    }
     let check = stamped(|stamp| book.backup(to, replace, stamp))??;
     let place = place_of(to);
     stamped(|stamp| book.note_copy(CopyKind::Backup, &place, stamp))??;

@@ -87,8 +87,11 @@ pub enum WorkError {
     #[error("that names no entry of a register")]
     NoName(#[source] IdError),
     /// An edit that gives nothing.
-    #[error("an edit needs a file or at least one flag: say what changes (--help lists the flags)")]
+    #[error("this needs a file, or flags that say the same: --help lists them")]
     NothingGiven,
+    /// Files and flags, or several names.
+    #[error("give either files of entries, or one name with flags")]
+    FilesOrFlags,
     /// Nothing is known of the shop.
     #[error("nothing is said of the shop yet: shop edit FILE.toml, or shop edit --name NAME --address ADDRESS")]
     NoShop,
@@ -168,6 +171,7 @@ impl WorkError {
             | Self::Text { .. }
             | Self::NoName(_)
             | Self::NothingGiven
+            | Self::FilesOrFlags
             | Self::NoShop
             | Self::ReasonNames(_)
             | Self::NothingToDraw(_)
@@ -180,7 +184,7 @@ impl WorkError {
             Self::Book(error) => book_status(error),
             Self::StillHeld { .. } | Self::NoRandomNumbers | Self::Png(_) | Self::Write { .. } => {
                 ExitStatus::Failed
-            },
+            }
         }
     }
 }

@@ -10,7 +10,7 @@ use crate::bench::Verdict;
 use crate::bench::trend::{Leaving, Trend, TrendRun, trend};
 use crate::book::HistoryRow as BookRow;
 use crate::entry::{RunNumber, StoredFigures, StoredVerdict};
-use crate::plot::history as drawn;
+use crate::plot as drawn;
 use crate::report::Units;
 use crate::report::orifice_history::{HistoryRow, OrificeHistory};
 use crate::report::registers::ShownEntry;
