@@ -13,8 +13,8 @@
 //! change of certificate between the runs matters as much as it should. Own scatter larger than stated widens the own
 //! part (Birge's ratio, n − 2 degrees of freedom).
 //!
-//! A trend begins anew with each run that is made after cleaning or repair (purpose *as-left* or *acceptance*): the
-//! orifice is another one then. Left out: anything but a straight line; drift of an instrument between two of its own
+//! A trend begins anew with each run that is made after cleaning or adjustment (purpose *as-left*): the orifice is another
+//! one then. Left out: anything but a straight line; drift of an instrument between two of its own
 //! calibrations, which looks the same as a drift of the orifice.
 
 use chrono::{DateTime, Duration, FixedOffset};
@@ -184,7 +184,7 @@ impl Trend {
 
 /// The first run after the last work on the orifice.
 fn since_worked_on(runs: &[TrendRun]) -> usize {
-    let after_work = |run: &TrendRun| matches!(run.purpose, Purpose::AsLeft | Purpose::Acceptance);
+    let after_work = |run: &TrendRun| run.purpose == Purpose::AsLeft;
     runs.iter().rposition(after_work).unwrap_or(0)
 }
 
@@ -347,7 +347,7 @@ mod tests {
         let mut runs = clogging(|_| "A");
         runs[5].purpose = Purpose::AsLeft;
         assert_eq!(trend(&runs).unwrap().runs, 3);
-        runs[6].purpose = Purpose::Acceptance;
+        runs[6].purpose = Purpose::AsLeft;
         assert_eq!(trend(&runs), None);
         assert_eq!(trend(&[]), None);
         let one_moment: Vec<TrendRun> = (0..3).map(|_| run(0, 0.48, "A")).collect();
