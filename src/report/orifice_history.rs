@@ -18,6 +18,9 @@ use crate::gas::Species;
 /// |E_n| above this says that two runs differ by more than their uncertainties explain (ISO/IEC 17043:2010, B.4.1.1).
 pub const EN_LIMIT: f64 = 1.0;
 
+/// So many steps are named; of more, the number is said.
+const STEPS_NAMED: usize = 3;
+
 /// A run of the history.
 #[derive(Debug, Clone, PartialEq)]
 pub struct HistoryRow {
@@ -53,27 +56,38 @@ impl OrificeHistory {
     /// the next that their uncertainties do not.
     #[must_use]
     pub fn warnings(&self, units: &Units) -> Vec<String> {
-        let mut warnings: Vec<String> = self.trend_warning(units).into_iter().collect();
+        let steps = [false, true].map(|rose| self.steps_warning(rose));
+        self.trend_warning(units).into_iter().chain(steps.into_iter().flatten()).collect()
+    }
+
+    /// Steps one way from a run to the next that their uncertainties do not explain, the newest first.
+    fn steps_warning(&self, rose: bool) -> Option<String> {
         let since = self.trend.as_ref().map(|trend| trend.from);
-        for row in &self.runs {
-            let Some((before, en)) = row.against.filter(|(_, en)| en.abs() > EN_LIMIT) else { continue };
+        let step = |row: &HistoryRow| {
+            let (before, en) = row.against.filter(|(_, en)| en.abs() > EN_LIMIT && (*en > 0.0) == rose)?;
             // After work on the orifice a change is what the work was for, and what was before it is over.
-            let worked_on = matches!(row.listed.purpose, Purpose::AsLeft | Purpose::Acceptance);
-            if worked_on || since.is_some_and(|since| row.listed.taken <= since) {
-                continue;
-            }
-            let (fell, why) = if en < 0.0 {
-                ("fell", "dirt, a filter or a leak before the meter")
-            } else {
-                ("rose", "wear, a leak past the orifice, or an earlier blockage that came loose")
-            };
-            let run = row.listed.number;
-            warnings.push(format!(
-                "from {before} to {run} the flow {fell} by more than both uncertainties explain (E_n {}): look for {why}",
-                fixed(en, 2)
-            ));
-        }
-        warnings
+            let worked_on = row.listed.purpose == Purpose::AsLeft;
+            let is_over = since.is_some_and(|since| row.listed.taken <= since);
+            (!worked_on && !is_over)
+                .then(|| format!("from {before} to {} (E_n {})", row.listed.number, fixed(en, 2)))
+        };
+        let steps: Vec<String> = self.runs.iter().filter_map(step).collect();
+        let more = match steps.len().saturating_sub(STEPS_NAMED) {
+            0 => String::new(),
+            n => format!(", and {n} times before"),
+        };
+        let (how, why) = if rose {
+            ("rose", "wear, a leak past the orifice, or an earlier blockage that came loose")
+        } else {
+            ("fell", "dirt, a blocked filter, or a leak before the meter")
+        };
+        let named: Vec<String> = steps.into_iter().take(STEPS_NAMED).collect();
+        (!named.is_empty()).then(|| {
+            format!(
+                "the flow {how} by more than both uncertainties explain {}{more}: look for {why}",
+                named.join(", ")
+            )
+        })
     }
 
     fn trend_warning(&self, units: &Units) -> Option<String> {

@@ -230,25 +230,23 @@ pub struct Judged {
 /// # Errors
 /// A run that is not there, is still open or cannot be analysed; a book that cannot be written.
 pub fn accept(shelf: &Shelf, run: &str, by: Option<&str>, remark: Option<&str>) -> Result<Judged, WorkError> {
-    accept_at(shelf, run, by, remark, clock::now())
+    judge(&mut shelf.to_change()?, number_of(run)?, by, remark, clock::now())
 }
 
-/// As [`accept`], at a stated time.
+/// As [`accept`], in an open book and at a stated time.
 ///
 /// # Errors
 /// As [`accept`].
-pub fn accept_at(
-    shelf: &Shelf,
-    run: &str,
+pub(super) fn judge(
+    book: &mut Book,
+    number: RunNumber,
     by: Option<&str>,
     remark: Option<&str>,
     at: DateTime<FixedOffset>,
 ) -> Result<Judged, WorkError> {
-    let number = number_of(run)?;
     let by = by.map(|by| said("--by", by)).transpose()?;
     let remark = remark.map(|remark| said("--remark", remark)).transpose()?;
-    let mut book = shelf.to_change()?;
-    let loaded = load(&book, number)?;
+    let loaded = load(book, number)?;
     let analysis = loaded.analyse(&Questions::default())?;
     let decision = Decision {
         verdict: stored_verdict(&analysis),

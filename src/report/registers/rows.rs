@@ -13,7 +13,7 @@ use crate::report::Units;
 use crate::report::number::{limit_percent, shortest};
 
 /// Figures of a quantity shown in another unit than it was given in: more than any instrument here has.
-const FIGURES: i32 = 6;
+const FIGURES: i32 = 5;
 
 /// The rows of an entry that are not empty: a label and its text; a text of several lines has several.
 pub(super) fn rows(entry: &AnyEntry, units: &Units) -> Vec<(&'static str, String)> {

@@ -94,10 +94,11 @@ pub(super) fn revision_json(revision: &Revision) -> Value {
 #[must_use]
 pub fn saved_text(saved: &Saved) -> String {
     let Saved { register, name, revision, changed } = saved;
+    let what = if register == name { register.to_string() } else { format!("{register} {name}") };
     let what = match (*changed, *revision) {
-        (false, revision) => format!("{register} {name}: nothing changed, revision {revision} stands"),
-        (true, 1) => format!("{register} {name} is in the register"),
-        (true, revision) => format!("{register} {name}: revision {revision} stands; the earlier ones are kept"),
+        (false, revision) => format!("{what}: nothing changed, revision {revision} stands"),
+        (true, 1) => format!("{what} is in the register"),
+        (true, revision) => format!("{what}: revision {revision} stands; the earlier ones are kept"),
     };
     wrapped("", "  ", &what)
 }
