@@ -326,10 +326,8 @@ mod tests {
             })
             .collect();
         let told = trend(&runs).unwrap();
-        let as_if_one: Vec<TrendRun> = runs
-            .iter()
-            .map(|run| TrendRun { meter_certificate: Some("A".into()), ..run.clone() })
-            .collect();
+        let as_if_one: Vec<TrendRun> =
+            runs.iter().map(|run| TrendRun { meter_certificate: Some("A".into()), ..run.clone() }).collect();
         let naive = trend(&as_if_one).unwrap();
         assert!(naive.is_significant() && !told.is_significant(), "{} {}", naive.p, told.p);
         assert!(told.line.slope_u > 2.0 * naive.line.slope_u);
@@ -339,7 +337,9 @@ mod tests {
     fn without_a_named_certificate_nothing_is_shared() {
         let unnamed: Vec<TrendRun> =
             clogging(|_| "A").into_iter().map(|run| TrendRun { meter_certificate: None, ..run }).collect();
-        assert!(trend(&unnamed).unwrap().line.slope_u > 3.0 * trend(&clogging(|_| "A")).unwrap().line.slope_u);
+        assert!(
+            trend(&unnamed).unwrap().line.slope_u > 3.0 * trend(&clogging(|_| "A")).unwrap().line.slope_u
+        );
     }
 
     #[test]

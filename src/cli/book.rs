@@ -29,7 +29,8 @@ pub(super) fn book(verb: &Book, global: &Global) -> Result<ExitStatus, Ended> {
         Book::Export(export) => {
             let exported = export::export(&shelf(global)?, &export.folder, export.with_divers)?;
             tell_notes(&exported.notes);
-            let text = if global.json { export_words::json(&exported) } else { export_words::text(&exported) };
+            let text =
+                if global.json { export_words::json(&exported) } else { export_words::text(&exported) };
             say(&text, ExitStatus::Done)
         }
     }

@@ -3,8 +3,8 @@
 use std::path::PathBuf;
 
 use super::arguments::{
-    Acceptances, Add, Divers, Edit, EditShop, Entries, FirstStages, Forget, Global, Instruments, One, Orifices,
-    ShopVerbs, ShowOrifice,
+    Acceptances, Add, Divers, Edit, EditShop, Entries, FirstStages, Forget, Global, Instruments, One,
+    Orifices, ShopVerbs, ShowOrifice,
 };
 use super::{Ended, note, say, shelf, tell_notes, units};
 use crate::report::{orifice_history, registers as words};
@@ -87,11 +87,8 @@ fn add(kind: RegisterKind, what: &[String], flags: &[Flag], global: &Global) -> 
     let mut notes = Vec::new();
     let saved = registers::add(&shelf(global)?, kind, &to_add(what, flags)?, &mut notes)?;
     tell_notes(&notes);
-    let text = if global.json {
-        words::saved_json(&saved)
-    } else {
-        saved.iter().map(words::saved_text).collect()
-    };
+    let text =
+        if global.json { words::saved_json(&saved) } else { saved.iter().map(words::saved_text).collect() };
     say(&text, ExitStatus::Done)
 }
 
@@ -147,8 +144,7 @@ fn show(kind: RegisterKind, id: &str, all: bool, global: &Global) -> Result<Exit
 
 fn show_orifice(show: &ShowOrifice, global: &Global) -> Result<ExitStatus, Ended> {
     let units = units(global);
-    let request =
-        HistoryRequest { orifice: show.id.clone(), all: show.all, plot: show.plot.clone(), units };
+    let request = HistoryRequest { orifice: show.id.clone(), all: show.all, plot: show.plot.clone(), units };
     let (entry, history) = history::show(&shelf(global)?, &request)?;
     if let Some(plot) = &show.plot {
         note(&format!("plot written to {}", plot.display()));

@@ -108,9 +108,7 @@ pub fn info_text(info: &BookInfo) -> String {
 pub fn info_json(info: &BookInfo) -> String {
     let entries: serde_json::Map<String, serde_json::Value> =
         info.entries.iter().map(|(name, count)| (name.replace(' ', "_"), (*count).into())).collect();
-    let copy = |(kind, place, at): &(&str, String, DateTime<FixedOffset>)| {
-        json!({ "kind": kind, "place": place, "at": at.to_rfc3339() })
-    };
+    let copy = |(kind, place, at): &(&str, String, DateTime<FixedOffset>)| json!({ "kind": kind, "place": place, "at": at.to_rfc3339() });
     json_text(&json!({
         "path": info.path,
         "form": info.form,
@@ -141,7 +139,10 @@ pub fn check_line(check: &BookCheck) -> String {
 pub fn check_text(check: &BookCheck) -> String {
     let mut text = wrapped("", "  ", &format!("{} {}", check.path, check_line(check)));
     if check.wrong.is_some() {
-        let line = format!("the first {} records are as they were recorded; the file was left as it is", check.records);
+        let line = format!(
+            "the first {} records are as they were recorded; the file was left as it is",
+            check.records
+        );
         text.push_str(&wrapped("  ", "  ", &line));
         return text;
     }
@@ -171,9 +172,7 @@ pub fn check_json(check: &BookCheck) -> String {
 }
 
 fn check_value(check: &BookCheck) -> serde_json::Value {
-    let erasure = |(place, at, why, records): &(u64, DateTime<FixedOffset>, String, usize)| {
-        json!({ "record": place, "at": at.to_rfc3339(), "why": why, "records": records })
-    };
+    let erasure = |(place, at, why, records): &(u64, DateTime<FixedOffset>, String, usize)| json!({ "record": place, "at": at.to_rfc3339(), "why": why, "records": records });
     json!({
         "path": check.path,
         "holds": check.wrong.is_none(),
@@ -190,11 +189,8 @@ fn check_value(check: &BookCheck) -> serde_json::Value {
 #[must_use]
 pub fn backup_text(backup: &Backup) -> String {
     let check = &backup.check;
-    let mut text = wrapped(
-        "",
-        "  ",
-        &format!("{} is a copy of the book, and {}", backup.path, check_line(check)),
-    );
+    let mut text =
+        wrapped("", "  ", &format!("{} is a copy of the book, and {}", backup.path, check_line(check)));
     let _ = writeln!(text, "  head of its chain\n    {}", check.head);
     text
 }

@@ -70,7 +70,12 @@ pub fn text(exported: &Exported) -> String {
             exported.folder,
             exported.runs.len(),
             exported.judgements,
-            exported.entries.iter().map(|(register, n)| format!("{n} in the register {register}")).collect::<Vec<_>>().join(", ")
+            exported
+                .entries
+                .iter()
+                .map(|(register, n)| format!("{n} in the register {register}"))
+                .collect::<Vec<_>>()
+                .join(", ")
         ),
     );
     let divers = if exported.with_divers {
@@ -86,9 +91,7 @@ pub fn text(exported: &Exported) -> String {
 /// What was exported, as JSON.
 #[must_use]
 pub fn json(exported: &Exported) -> String {
-    let run = |(number, file, form): &(RunNumber, String, RunForm)| {
-        json!({ "run": number.to_string(), "file": file, "form": form.name() })
-    };
+    let run = |(number, file, form): &(RunNumber, String, RunForm)| json!({ "run": number.to_string(), "file": file, "form": form.name() });
     let entries: serde_json::Map<String, serde_json::Value> =
         exported.entries.iter().map(|(name, n)| (name.replace(' ', "_"), (*n).into())).collect();
     json_text(&json!({
@@ -132,9 +135,12 @@ pub fn readme(exported: &Exported, head: &str) -> String {
     row("shop/", "what stands on certificates, and the logo");
     row(".../earlier/", "earlier revisions of an entry; the number before .toml is the revision");
     row(runs, "a folder for each run: the run file and the readings it names");
-    row("judgements/", "judgements.csv: each with its figures as they stood, the last one of a run holds; parts.csv: the \
+    row(
+        "judgements/",
+        "judgements.csv: each with its figures as they stood, the last one of a run holds; parts.csv: the \
          uncertainty of each by its sources; changes.csv: points corrected, struck or left out; texts.toml: who said \
-         what about them");
+         what about them",
+    );
     row("entries.toml", "which entry stands in which file, its revision, and when that was written");
     row("book.toml", "the book itself: its head, when it was begun, copies it knows of");
     row("contents.txt", "every file, by which the program knows this folder again");
@@ -143,8 +149,11 @@ pub fn readme(exported: &Exported, head: &str) -> String {
     for (form, says) in [
         (RunForm::Original, "as the files they were imported from, to the byte"),
         (RunForm::LeftOutAdded, "the same, with points left out since at the end of the run file"),
-        (RunForm::Written, "written as they stand in the book: typed runs, and imported ones whose files would read \
-             differently today (an instrument's papers have changed), name readings elsewhere, or hold more than numbers"),
+        (
+            RunForm::Written,
+            "written as they stand in the book: typed runs, and imported ones whose files would read \
+             differently today (an instrument's papers have changed), name readings elsewhere, or hold more than numbers",
+        ),
         (RunForm::Incomplete, "written, but a file cannot say all of it"),
     ] {
         if count(form) > 0 {

@@ -94,7 +94,11 @@ impl OrificeHistory {
         let trend = self.trend.as_ref().filter(|trend| trend.is_significant())?;
         let falls = trend.per_year() < 0.0;
         let what = if falls { "falls" } else { "rises" };
-        let why = if falls { "the orifice is clogging" } else { "the orifice is wearing, or something leaks past it" };
+        let why = if falls {
+            "the orifice is clogging"
+        } else {
+            "the orifice is wearing, or something leaks past it"
+        };
         let mut text = format!("the flow {what} by {}: more than chance explains, {why}", slope(trend));
         let limit = self.limits_l_min.map(|(low, high)| units.flow_text(if falls { low } else { high }));
         match (self.leaves, limit) {
@@ -111,7 +115,9 @@ impl OrificeHistory {
                     day(not_before)
                 ));
             }
-            (None, Some(_)) => text.push_str("; at this pace it stays within the acceptance limits for ten years"),
+            (None, Some(_)) => {
+                text.push_str("; at this pace it stays within the acceptance limits for ten years")
+            }
             _ => {}
         }
         Some(text)
@@ -159,12 +165,13 @@ fn trend_text(history: &OrificeHistory, units: &Units) -> String {
             } else {
                 "no more than chance explains"
             };
-            let widened = if trend.widened > 1.0 { "; widened, as the runs scatter more than they should" } else { "" };
+            let widened =
+                if trend.widened > 1.0 { "; widened, as the runs scatter more than they should" } else { "" };
             wrapped(
                 "Trend: ",
                 "  ",
                 &format!(
-                    "{sign}{} through {} runs of {of} from {} to {}, {chance} (p = {}){widened}",
+                    "{sign}{} through {} runs of {of} from {} to {}, {chance} ({}){widened}",
                     slope(trend),
                     trend.runs,
                     day(trend.from),
@@ -186,7 +193,7 @@ fn trend_text(history: &OrificeHistory, units: &Units) -> String {
 }
 
 fn p_value(p: f64) -> String {
-    if p < 0.001 { "under 0.001".to_owned() } else { shortest(p, 2) }
+    if p < 0.001 { "p under 0.001".to_owned() } else { format!("p = {}", shortest(p, 2)) }
 }
 
 fn runs_text(history: &OrificeHistory, units: &Units) -> String {
@@ -197,7 +204,8 @@ fn runs_text(history: &OrificeHistory, units: &Units) -> String {
         let run = &row.listed;
         let (ip, flow, u, verdict) = match &run.judged {
             Some(judged) => {
-                let (value, u) = value_and_u(units.flow(judged.flow_l_min), units.flow(judged.expanded_l_min));
+                let (value, u) =
+                    value_and_u(units.flow(judged.flow_l_min), units.flow(judged.expanded_l_min));
                 (fixed(units.pressure(judged.ip_bar), 1), value, u, verdict_text(judged))
             }
             None if run.open => (String::new(), String::new(), String::new(), "open".to_owned()),
@@ -223,8 +231,9 @@ fn runs_text(history: &OrificeHistory, units: &Units) -> String {
         &history.runs.iter().map(row).collect::<Vec<_>>(),
         true,
     );
-    text.push_str("  Flow STPD at the nominal IP over 1.01325 bar, U for 95 %, as judged; E_n to the\n");
-    text.push_str("  accepted run before, without what both owe to the same certificate.\n");
+    let about = "Flow STPD at the nominal IP over 1.01325 bar, U for 95 %, as judged; E_n to the accepted run before, without \
+                 what both owe to the same certificate.";
+    text.push_str(&wrapped("  ", "  ", about));
     if history.more {
         text.push_str(&format!("  The newest {} are shown: --all shows every one.\n", history.runs.len()));
     }
@@ -238,7 +247,10 @@ pub fn json(entry: &ShownEntry, history: &OrificeHistory) -> String {
     if let Some(object) = value.as_object_mut() {
         object.insert("runs".into(), history.runs.iter().map(run_json).collect());
         object.insert("more_runs".into(), history.more.into());
-        object.insert("trend".into(), history.trend.as_ref().map_or(Value::Null, |trend| trend_json(history, trend)));
+        object.insert(
+            "trend".into(),
+            history.trend.as_ref().map_or(Value::Null, |trend| trend_json(history, trend)),
+        );
         object.insert("warnings".into(), history.warnings(&Units::default()).into());
     }
     json_text(&value)

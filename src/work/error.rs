@@ -93,7 +93,9 @@ pub enum WorkError {
     #[error("give either files of entries, or one name with flags")]
     FilesOrFlags,
     /// Nothing is known of the shop.
-    #[error("nothing is said of the shop yet: shop edit FILE.toml, or shop edit --name NAME --address ADDRESS")]
+    #[error(
+        "nothing is said of the shop yet: shop edit FILE.toml, or shop edit --name NAME --address ADDRESS"
+    )]
     NoShop,
     /// A reason that stays and names who is to be forgotten.
     #[error("the reason stays in the book for good, so it must not name {0}: give another --why")]

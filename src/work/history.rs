@@ -96,14 +96,19 @@ impl<'r> Accepted<'r> {
     fn of(rows: &'r [BookRow]) -> Self {
         let judged: Vec<_> = rows
             .iter()
-            .filter_map(|row| row.decision.as_ref().map(|decision| (row, &decision.figures, decision.verdict)))
+            .filter_map(|row| {
+                row.decision.as_ref().map(|decision| (row, &decision.figures, decision.verdict))
+            })
             .filter(|(_, figures, _)| figures.flow_l_min.is_finite())
             .collect();
         let of: Vec<_> = match judged.first() {
             None => Vec::new(),
-            Some((_, newest, _)) => {
-                judged.iter().rev().copied().filter(|(_, figures, _)| runs::comparable(newest, figures)).collect()
-            }
+            Some((_, newest, _)) => judged
+                .iter()
+                .rev()
+                .copied()
+                .filter(|(_, figures, _)| runs::comparable(newest, figures))
+                .collect(),
         };
         Self { others: judged.len() - of.len(), rows: of }
     }

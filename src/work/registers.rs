@@ -9,9 +9,7 @@ use crate::book::{
 };
 use crate::clock;
 use crate::entry::{Acceptance, Diver, FirstStage, Id, Instrument, Orifice, Shop};
-use crate::record::{
-    RegisterEntry, files_beside, from_flags, read_register_as, write_register,
-};
+use crate::record::{RegisterEntry, files_beside, from_flags, read_register_as, write_register};
 use crate::report::registers::{
     AnyEntry, CopyNamed, EntryList, ForgottenDiver, ListedEntry, Revision, Saved, ShownEntry,
 };
@@ -44,7 +42,8 @@ pub fn add(
     let mut entries: Vec<RegisterEntry> = Vec::with_capacity(given.len());
     for given in given {
         let entry = read(kind, given, None, notes)?;
-        let same = |other: &RegisterEntry| matches!((other.id(), entry.id()), (Some(a), Some(b)) if a.same_as(b));
+        let same =
+            |other: &RegisterEntry| matches!((other.id(), entry.id()), (Some(a), Some(b)) if a.same_as(b));
         if let Some(id) = entries.iter().find(|other| same(other)).and_then(RegisterEntry::id) {
             return Err(BookError::Taken { register: register_of(kind), id: id.as_str().to_owned() }.into());
         }
@@ -82,13 +81,16 @@ pub fn edit(
     if *given == Given::Flags(Vec::new()) {
         return Err(WorkError::NothingGiven);
     }
-    let mut book = if kind == RegisterKind::Shop { shelf.to_write(notes)? } else { shelf.to_change()? };
-    let stands = find(&book, kind, id)?;
-    if stands.is_none() && kind != RegisterKind::Shop {
+    let is_shop = kind == RegisterKind::Shop;
+    let stands = match shelf.to_read() {
+        Ok(book) => find(&book, kind, id)?,
+        Err(WorkError::Book(BookError::NoBook { .. })) if is_shop => None,
+        Err(error) => return Err(error),
+    };
+    if stands.is_none() && !is_shop {
         return Err(unknown(kind, id));
     }
     let entry = read(kind, given, stands.as_ref().map(|stands| &stands.entry), notes)?;
-    note_unknown_acceptance(&book, &entry, notes)?;
     let name = into_report(entry.clone()).name().to_owned();
     let saved = |revision, changed| Saved { register: kind.name(), name: name.clone(), revision, changed };
     if let Some(stands) = &stands
@@ -96,6 +98,8 @@ pub fn edit(
     {
         return Ok(saved(stands.revision, false));
     }
+    let mut book = if is_shop { shelf.to_write(notes)? } else { shelf.to_change()? };
+    note_unknown_acceptance(&book, &entry, notes)?;
     let revision = match into_book(entry) {
         Entry::Shop(shop) => stamped(|stamp| book.set_shop(shop, stamp))??,
         entry => stamped(|stamp| book.edit(entry, stamp))??,
@@ -118,7 +122,8 @@ pub fn list(shelf: &Shelf, kind: RegisterKind, all: bool) -> Result<EntryList, W
         RegisterKind::Acceptance => entries::<Acceptance>(&book, limit)?,
         RegisterKind::Shop => entries::<Shop>(&book, limit)?,
     };
-    let counted = book.info()?.entries.iter().find(|(register, _)| *register == register_of(kind)).map(|(_, n)| *n);
+    let counted =
+        book.info()?.entries.iter().find(|(register, _)| *register == register_of(kind)).map(|(_, n)| *n);
     let entries = entries
         .into_iter()
         .map(|found| {
@@ -172,7 +177,8 @@ pub fn forget(shelf: &Shelf, diver: &str, why: &str) -> Result<ForgottenDiver, W
     }
     let words = why.to_lowercase();
     let words: Vec<&str> = words.split(|c: char| c.is_whitespace() || ",;:!?()\"".contains(c)).collect();
-    let named = |name: &String| words.iter().any(|word| word.trim_end_matches('.') == name.trim_end_matches('.'));
+    let named =
+        |name: &String| words.iter().any(|word| word.trim_end_matches('.') == name.trim_end_matches('.'));
     // An initial says nothing, and is a word of its own in some languages.
     if names.iter().filter(|name| name.chars().count() > 2).any(named) {
         return Err(WorkError::ReasonNames(diver.to_owned()));
@@ -237,7 +243,11 @@ fn unknown(kind: RegisterKind, id: &str) -> WorkError {
     BookError::Unknown { register: register_of(kind), id: id.to_owned() }.into()
 }
 
-fn note_unknown_acceptance(book: &Book, entry: &RegisterEntry, notes: &mut Vec<String>) -> Result<(), WorkError> {
+fn note_unknown_acceptance(
+    book: &Book,
+    entry: &RegisterEntry,
+    notes: &mut Vec<String>,
+) -> Result<(), WorkError> {
     if let RegisterEntry::Orifice(Orifice { id, acceptance: Some(acceptance), .. }) = entry
         && book.entry::<Acceptance>(acceptance)?.is_none()
     {

@@ -13,10 +13,10 @@ use crate::bench::line::{FlowAt, Part};
 use crate::bench::{Analysis, METHOD_REVISION, Questions, Verdict, analyse};
 use crate::book::{Book, Change, Origin, RunQuery, RunRow, RunState, SourceFiles, ToImport};
 use crate::clock;
-use crate::gas::Species;
 use crate::entry::{
     Acceptance, Build, Decision, Orifice, Readings, Run, RunNumber, StoredFigures, StoredPart, StoredVerdict,
 };
+use crate::gas::Species;
 use crate::record::read_run_and_files;
 use crate::report::bench_fit::source_name;
 use crate::report::check_sentences::name_key_unit;

@@ -11,8 +11,8 @@ pub use bench::{Accept, Bench, Fit, Import, LeaveOut, List, Show};
 pub use book::{Backup, Book, Check, Export};
 use clap::{Args, Parser, Subcommand};
 pub use registers::{
-    Acceptances, Add, Divers, Edit, EditShop, Entries, FirstStages, Forget, Instruments, One, Orifices, ShopVerbs,
-    ShowOrifice, ShowShop,
+    Acceptances, Add, Divers, Edit, EditShop, Entries, FirstStages, Forget, Instruments, One, Orifices,
+    ShopVerbs, ShowOrifice, ShowShop,
 };
 
 use crate::quantity::Shown;

@@ -21,7 +21,10 @@ const LEAST_LAST: usize = 12;
 pub fn text(list: &EntryList, units: &Units) -> String {
     let Some(first) = list.entries.first() else {
         let command = list.command;
-        let text = format!("No {} in the register yet: {command} add FILE.toml, or {command} add ID.", list.register);
+        let text = format!(
+            "No {} in the register yet: {command} add FILE.toml, or {command} add ID.",
+            list.register
+        );
         return wrapped("", "  ", &text);
     };
     let heads = heads(&first.now.entry);
@@ -130,7 +133,9 @@ fn verdict(run: &ListedRun) -> String {
 fn papers(entry: &Instrument, today: NaiveDate) -> (String, String) {
     let (due, certificate) = match &entry.papers {
         Some(InstrumentPapers::Meter(meter)) => (meter.papers.due, &meter.papers.certificate),
-        Some(InstrumentPapers::Transducer(transducer)) => (transducer.papers.due, &transducer.papers.certificate),
+        Some(InstrumentPapers::Transducer(transducer)) => {
+            (transducer.papers.due, &transducer.papers.certificate)
+        }
         None => return ("no papers".to_owned(), String::new()),
     };
     let due = match due {

@@ -6,9 +6,7 @@ use crate::entry::{
     ModbusNumber, ModbusTable, Orifice, Papers, Protocol, Rule, Shop, Socket, Tolerance, WordOrder,
 };
 use crate::quantity::show::{reference_to_text, to_text, uncertain_to_text};
-use crate::quantity::{
-    PressureDifference, PressureRate, Quantity, ReferenceConditions, Share, Uncertain,
-};
+use crate::quantity::{PressureDifference, PressureRate, Quantity, ReferenceConditions, Share, Uncertain};
 use crate::report::Units;
 use crate::report::number::{limit_percent, shortest};
 
@@ -298,7 +296,9 @@ impl Rows<'_> {
         self.some("gain", papers.gain.map(|gain| format!("± {}", share(gain))).as_deref());
         self.around("zero", papers.zero);
         match papers.noise {
-            Some(Amount::OfReading(ratio)) => self.text("noise", format!("± {} of the reading", share(ratio))),
+            Some(Amount::OfReading(ratio)) => {
+                self.text("noise", format!("± {} of the reading", share(ratio)))
+            }
             Some(Amount::Fixed(noise)) => self.around("noise", Some(noise)),
             None => {}
         }

@@ -77,11 +77,8 @@ pub fn json_value(shown: &ShownEntry) -> Value {
 
 /// A revision as JSON: `entry` is what its file says.
 pub(super) fn revision_json(revision: &Revision) -> Value {
-    let entry: Option<Value> = revision
-        .file
-        .parse::<toml::Table>()
-        .ok()
-        .and_then(|table| serde_json::to_value(table).ok());
+    let entry: Option<Value> =
+        revision.file.parse::<toml::Table>().ok().and_then(|table| serde_json::to_value(table).ok());
     json!({
         "id": revision.entry.name(),
         "revision": revision.revision,
@@ -123,10 +120,15 @@ pub fn forgotten_text(forgotten: &ForgottenDiver) -> String {
     let ForgottenDiver { diver, records, copies } = forgotten;
     let what = match records {
         0 => format!("{diver}: the earlier erasure is finished; no byte is left in the book or its log"),
-        1 => format!("{diver} is forgotten: 1 record is erased, no byte of it is left in the book or its log"),
-        n => format!("{diver} is forgotten: {n} records are erased, no byte of them is left in the book or its log"),
+        1 => {
+            format!("{diver} is forgotten: 1 record is erased, no byte of it is left in the book or its log")
+        }
+        n => format!(
+            "{diver} is forgotten: {n} records are erased, no byte of them is left in the book or its log"
+        ),
     };
-    let mut text = wrapped("", "  ", &format!("{what}. The chain holds, and says that something was erased and why."));
+    let mut text =
+        wrapped("", "  ", &format!("{what}. The chain holds, and says that something was erased and why."));
     text.push_str(&copies_text(copies));
     text
 }
@@ -135,12 +137,21 @@ pub fn forgotten_text(forgotten: &ForgottenDiver) -> String {
 #[must_use]
 pub fn copies_text(copies: &[CopyNamed]) -> String {
     if copies.is_empty() {
-        return wrapped("  ", "  ", "The book knows of no copy. Whoever copied the file by other means has to be asked.");
+        return wrapped(
+            "  ",
+            "  ",
+            "The book knows of no copy. Whoever copied the file by other means has to be asked.",
+        );
     }
-    let mut text = wrapped("  ", "  ", "Copies the program cannot reach, which may hold the diver still; delete them:");
+    let mut text =
+        wrapped("  ", "  ", "Copies the program cannot reach, which may hold the diver still; delete them:");
     for copy in copies {
         let kind = if copy.is_export { "export with divers" } else { "backup" };
-        text.push_str(&wrapped("  - ", "    ", &format!("{}, {kind} of {}", copy.place, copy.at.to_rfc3339())));
+        text.push_str(&wrapped(
+            "  - ",
+            "    ",
+            &format!("{}, {kind} of {}", copy.place, copy.at.to_rfc3339()),
+        ));
     }
     text
 }

@@ -75,7 +75,8 @@ pub fn demo(folder: &Path, units: Units) -> Result<Demonstration, WorkError> {
     shop::may_be_written(folder)?;
     make_folder(folder)?;
     let orifices = invented().into_iter().enumerate();
-    let runs = orifices.map(|(i, orifice)| one(folder, units, i as u64, &orifice)).collect::<Result<_, _>>()?;
+    let runs =
+        orifices.map(|(i, orifice)| one(folder, units, i as u64, &orifice)).collect::<Result<_, _>>()?;
     Ok(Demonstration { runs, shop: shop::keep(folder, units)? })
 }
 
@@ -203,4 +204,3 @@ fn taken() -> DateTime<FixedOffset> {
 fn id(name: &str) -> Id {
     Id::new(name).unwrap_or_else(|_| unreachable!("the demonstration's own names are sound"))
 }
-

@@ -32,7 +32,7 @@ use crate::work::{WorkError, runs};
 const SHOP: &str = "Invented Orifice Works";
 /// The orifice that clogs, and how much of its flow it loses in a year.
 const CLOGGING: &str = "demo-07";
-const LOST_IN_A_YEAR: f64 = 0.0075;
+const LOST_IN_A_YEAR: f64 = 0.0068;
 /// Names of everything begin so.
 const PREFIX: &str = "demo-";
 /// Days from one run of an orifice to the next, and from one orifice to the next.
@@ -108,7 +108,15 @@ pub(super) fn keep(folder: &Path, units: Units) -> Result<DemoShop, WorkError> {
         let failed = |source| WorkError::Write { path: book.clone(), source };
         remove(&book);
         fs::rename(&scratch, &book).map_err(failed)?;
-        Ok(DemoShop { book: book.clone(), files: files.clone(), orifices, runs, clogging: CLOGGING, plot, warnings })
+        Ok(DemoShop {
+            book: book.clone(),
+            files: files.clone(),
+            orifices,
+            runs,
+            clogging: CLOGGING,
+            plot,
+            warnings,
+        })
     });
     remove(&scratch);
     kept
@@ -247,7 +255,9 @@ impl Kept {
     /// Every time it is on the bench, in order.
     fn visits(&self, place: usize) -> Vec<Visit> {
         let visit = |quarter: i64, hours: i64, purpose, left| Visit {
-            taken: first_day() + Duration::days(QUARTER * quarter + APART * place as i64) + Duration::hours(hours),
+            taken: first_day()
+                + Duration::days(QUARTER * quarter + APART * place as i64)
+                + Duration::hours(hours),
             purpose,
             left,
             stream: (10 * quarter + hours) as u64,

@@ -1,5 +1,6 @@
 //! Judgements and changes of runs: numbers, times and fixed words as CSV, what a person typed as TOML.
 
+use chrono::{DateTime, FixedOffset};
 use serde::Serialize;
 
 use super::toml_text;
@@ -9,7 +10,8 @@ use crate::entry::{Decision, Indication};
 /// The tables while runs are taken in.
 #[derive(Default)]
 pub(super) struct Sheets {
-    judgements: Vec<Vec<String>>,
+    /// Each with its time, by which they are put in order.
+    judgements: Vec<(DateTime<FixedOffset>, Vec<String>)>,
     parts: Vec<Vec<String>>,
     changes: Vec<Vec<String>>,
     texts: Texts,
@@ -70,8 +72,16 @@ const JUDGEMENTS: [&str; 20] = [
     "out_of_date",
 ];
 const PARTS: [&str; 5] = ["run", "judgement", "source", "u_l_min", "degrees_of_freedom"];
-const CHANGES: [&str; 8] =
-    ["run", "change", "at", "what", "point", "before_pressure_pa", "before_pressure_is", "before_flow_shown_l_min"];
+const CHANGES: [&str; 8] = [
+    "run",
+    "change",
+    "at",
+    "what",
+    "point",
+    "before_pressure_pa",
+    "before_pressure_is",
+    "before_flow_shown_l_min",
+];
 
 impl Sheets {
     /// Takes in a run.
@@ -96,7 +106,7 @@ impl Sheets {
         let figures = &decision.figures;
         let (lower, upper) = figures.limits_l_min.unzip();
         let (against, en) = figures.against.unzip();
-        self.judgements.push(vec![
+        let row = vec![
             run.to_owned(),
             number.to_string(),
             decision.at.to_rfc3339(),
@@ -117,7 +127,8 @@ impl Sheets {
             against.map(|run| run.to_string()).unwrap_or_default(),
             some(en),
             if stale { "yes" } else { "no" }.to_owned(),
-        ]);
+        ];
+        self.judgements.push((decision.at, row));
         for part in &figures.parts {
             let (u, dof) = (digits(part.u_l_min), digits(part.dof));
             self.parts.push(vec![run.to_owned(), number.to_string(), part.source.clone(), u, dof]);
@@ -138,10 +149,14 @@ impl Sheets {
 
     fn change(&mut self, run: &str, number: usize, change: &Change) {
         let (at, what, point, before, why, by) = match change {
-            Change::Corrected { point, before, at } => (at, "corrected", Some(point), Some(before), None, None),
+            Change::Corrected { point, before, at } => {
+                (at, "corrected", Some(point), Some(before), None, None)
+            }
             Change::Struck { point, why, at } => (at, "struck", Some(point), None, Some(why), None),
             Change::Restated { at } => (at, "restated", None, None, None, None),
-            Change::LeftOut { point, why, by, at } => (at, "left out", Some(point), None, Some(why), by.as_ref()),
+            Change::LeftOut { point, why, by, at } => {
+                (at, "left out", Some(point), None, Some(why), by.as_ref())
+            }
         };
         let is = before.map(|before| match before.pressure {
             Indication::Gauge(_) => "gauge",
@@ -163,10 +178,12 @@ impl Sheets {
         }
     }
 
-    /// The files by their names.
-    pub(super) fn files(&self) -> Vec<(&'static str, Vec<u8>)> {
+    /// The files by their names; judgements in the order they were made.
+    pub(super) fn files(mut self) -> Vec<(&'static str, Vec<u8>)> {
+        self.judgements.sort_by_key(|(at, _)| *at);
+        let judgements: Vec<Vec<String>> = self.judgements.into_iter().map(|(_, row)| row).collect();
         vec![
-            ("judgements.csv", sheet(&JUDGEMENTS, &self.judgements)),
+            ("judgements.csv", sheet(&JUDGEMENTS, &judgements)),
             ("parts.csv", sheet(&PARTS, &self.parts)),
             ("changes.csv", sheet(&CHANGES, &self.changes)),
             ("texts.toml", toml_text(&self.texts).into_bytes()),

@@ -177,7 +177,9 @@ fn file_stem(id: &str, taken: &mut BTreeSet<String>) -> String {
     let lower = id.to_lowercase();
     let first = lower.split('.').next().unwrap_or_default();
     let device = DEVICES.iter().any(|device| {
-        first.strip_prefix(device).is_some_and(|rest| rest.chars().all(|c| c.is_numeric()) && rest.chars().count() < 2)
+        first
+            .strip_prefix(device)
+            .is_some_and(|rest| rest.chars().all(|c| c.is_numeric()) && rest.chars().count() < 2)
     });
     let mut stem = if device || id.starts_with(['.', '-']) { format!("_{id}") } else { id.to_owned() };
     while !taken.insert(stem.to_lowercase()) {
@@ -292,7 +294,9 @@ mod tests {
         let mut stem = |id: &str| file_stem(id, &mut taken);
         assert_eq!(stem("CMF-0417"), "CMF-0417");
         assert_eq!(stem("Ünit_3.b"), "Ünit_3.b");
-        for (id, name) in [("con", "_con"), ("LPT1", "_LPT1"), ("nul.2", "_nul.2"), ("..", "_.."), ("-x", "_-x")] {
+        for (id, name) in
+            [("con", "_con"), ("LPT1", "_LPT1"), ("nul.2", "_nul.2"), ("..", "_.."), ("-x", "_-x")]
+        {
             assert_eq!(stem(id), name);
         }
         assert_eq!(stem("console"), "console");

@@ -36,12 +36,7 @@ pub(super) fn of(
     Some(original.unwrap_or_else(|| as_it_stands(&name, run, &format!("{}.csv", record.number))))
 }
 
-fn as_it_came(
-    name: &str,
-    run: &Run,
-    source: &SourceFiles,
-    registers: &dyn Registers,
-) -> Option<RunFiles> {
+fn as_it_came(name: &str, run: &Run, source: &SourceFiles, registers: &dyn Registers) -> Option<RunFiles> {
     let readings_name = &source.readings_name;
     if !travels(readings_name, name) || !spreadsheet::is_plain(&source.readings) {
         return None;
@@ -90,7 +85,8 @@ fn left_out(points: &[LeftOut]) -> String {
 }
 
 fn reads_as(toml: &str, name: &str, readings: &[u8], registers: &dyn Registers) -> Option<Run> {
-    let mut open = |_: &str| -> Result<Box<dyn Read>, RecordError> { Ok(Box::new(Cursor::new(readings.to_vec()))) };
+    let mut open =
+        |_: &str| -> Result<Box<dyn Read>, RecordError> { Ok(Box::new(Cursor::new(readings.to_vec()))) };
     let files: Files<'_> = &mut open;
     parse_run_with(toml, name, files, registers).ok().map(|loaded| loaded.value)
 }
@@ -106,14 +102,19 @@ fn same(a: &Run, b: &Run) -> bool {
 fn travels(readings_name: &str, run_file: &str) -> bool {
     let plain = |part: &str| {
         let kept = |c: char| c.is_alphanumeric() || " -_.()".contains(c);
-        part.chars().all(kept) && part.starts_with(char::is_alphanumeric) && part.ends_with(char::is_alphanumeric)
+        part.chars().all(kept)
+            && part.starts_with(char::is_alphanumeric)
+            && part.ends_with(char::is_alphanumeric)
     };
     let parts: Vec<Component<'_>> = Path::new(readings_name).components().collect();
     let inside = parts.iter().all(|part| match part {
         Component::Normal(part) => part.to_str().is_some_and(plain),
         _ => false,
     });
-    inside && !parts.is_empty() && readings_name.len() < 200 && readings_name.to_lowercase() != run_file.to_lowercase()
+    inside
+        && !parts.is_empty()
+        && readings_name.len() < 200
+        && readings_name.to_lowercase() != run_file.to_lowercase()
 }
 
 #[cfg(test)]
@@ -125,7 +126,17 @@ mod tests {
         for name in ["a.csv", "logger/2026-11 (2).csv", "Ünit.txt"] {
             assert!(travels(name, "R0001.toml"), "{name}");
         }
-        for name in ["", "/data/a.csv", "../a.csv", "./../a.csv", "a\\b.csv", ".hidden", "r0001.TOML", "C:a.csv", "a."] {
+        for name in [
+            "",
+            "/data/a.csv",
+            "../a.csv",
+            "./../a.csv",
+            "a\\b.csv",
+            ".hidden",
+            "r0001.TOML",
+            "C:a.csv",
+            "a.",
+        ] {
             assert!(!travels(name, "R0001.toml"), "{name}");
         }
     }

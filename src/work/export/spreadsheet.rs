@@ -41,7 +41,9 @@ fn is_number(cell: &str) -> bool {
 
 /// A time of day, elapsed time, or date and time: begins with a digit and has only what those have.
 fn is_time(cell: &str) -> bool {
-    let plain = |c: u8| c.is_ascii_digit() || matches!(c, b':' | b'.' | b'T' | b't' | b'Z' | b'z' | b'+' | b'-' | b' ');
+    let plain = |c: u8| {
+        c.is_ascii_digit() || matches!(c, b':' | b'.' | b'T' | b't' | b'Z' | b'z' | b'+' | b'-' | b' ')
+    };
     cell.starts_with(|c: char| c.is_ascii_digit()) && cell.contains(':') && cell.bytes().all(plain)
 }
 
