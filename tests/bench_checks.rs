@@ -253,6 +253,29 @@ fn the_run_before_shows_a_small_blockage_on_the_same_meter() {
 }
 
 #[test]
+fn a_run_after_cleaning_is_not_failed_for_being_another_one_than_before() {
+    let dirty = changed(&tube(), |_, p, q| (p, q * 0.8));
+    let before = Accepted {
+        name: "R0007".into(),
+        gas: ebbline::gas::Species::Oxygen,
+        flow: dirty.nominal.flow.clone(),
+        meter_certificate: Some("FM-2026-118".into()),
+        transducer_certificate: Some("PT-2026-031".into()),
+    };
+    let questions = Questions { before: Some(&before), ..Questions::default() };
+    let verdict = |purpose: &str| {
+        let toml = tube().replacen("\"acceptance\"", &format!("\"{purpose}\""), 1);
+        let now = run(&toml, &readings());
+        let analysis = analyse(&now, points(&now), &questions).unwrap();
+        (check(&analysis, CheckKind::SameAsBefore).verdict, analysis.judgement.unwrap().verdict)
+    };
+    assert_eq!(verdict("as-left"), (CheckVerdict::Note, Verdict::Pass));
+    let (check, judged) = verdict("check");
+    assert_eq!(check, CheckVerdict::Fail);
+    assert_ne!(judged, Verdict::Pass);
+}
+
+#[test]
 fn verdicts_follow_their_rule() {
     // U is about 0.0043 at 0.51 L/min STPD·(273.15/293.15): the nominal flow of this run is about 0.4764.
     let flow = changed(&tube(), |_, p, q| (p, q)).nominal.flow.clone();

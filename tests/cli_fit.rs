@@ -297,7 +297,8 @@ fn the_demonstration_shows_what_it_promises() {
     let folder = folder("demonstration");
     let (stdout, stderr, status) = said(&ebbline(&folder, &["demo", "--into", "out", "--json"]));
     assert_eq!(status, 0, "{stderr}");
-    let list: Value = serde_json::from_str(&stdout).unwrap();
+    let left: Value = serde_json::from_str(&stdout).unwrap();
+    let list = &left["runs"];
     let verdict = |name: &str| {
         let entry = list.as_array().unwrap().iter().find(|e| e["orifice"] == name);
         entry.unwrap_or_else(|| panic!("{name}"))["verdict"].as_str().unwrap().to_owned()

@@ -10,7 +10,7 @@ use super::history::{Accepted, compare};
 use super::instruments::{InstrumentFinding, check_instruments};
 use super::line::{FlowAt, OrificeLine};
 use super::points::{Point, WhyNot};
-use crate::entry::{Limits, Run, Sweep};
+use crate::entry::{Limits, Purpose, Run, Sweep};
 use crate::stats::{lack_of_fit, ordinary, outlier};
 
 /// Repeated points are those within this much pressure, bar (method: IP within 0.1 bar).
@@ -363,7 +363,12 @@ fn same_as_before(c: &Checked<'_>) -> Check {
         value: Some(comparison.en),
         limit: Some(limit),
         p_value: None,
-        verdict: if comparison.en.abs() > limit { CheckVerdict::Fail } else { CheckVerdict::Pass },
+        verdict: match (comparison.en.abs() > limit, c.run.purpose) {
+            (false, _) => CheckVerdict::Pass,
+            // After cleaning or adjustment a change is what the work was for; the run is judged by its flow.
+            (true, Purpose::AsLeft) => CheckVerdict::Note,
+            (true, _) => CheckVerdict::Fail,
+        },
         finding: Finding::Change { change: comparison.change, before: before.name.clone() },
     }
 }

@@ -6,6 +6,7 @@
 //! runs of one certificate.
 
 use super::correct::Source;
+use super::instruments::Instrument;
 use super::line::{FlowAt, Part};
 use crate::gas::Species;
 use crate::stats::coverage::{coverage_factor, welch_satterthwaite};
@@ -45,12 +46,10 @@ pub fn compare(
     let same = |now: Option<&str>, then: &Option<String>| now.is_some() && now == then.as_deref();
     let same_meter = same(meter_certificate, &before.meter_certificate);
     let same_transducer = same(transducer_certificate, &before.transducer_certificate);
-    let shared = |part: &Part| match part {
-        Part::Common(Source::MeterGain | Source::MeterZero | Source::GasFactor | Source::FloatLaw) => {
-            same_meter
-        }
-        Part::Common(Source::TransducerGain | Source::TransducerZero) => same_transducer,
-        _ => false,
+    let shared = |part: &Part| match papers_of(*part) {
+        Some(Instrument::Meter) => same_meter,
+        Some(Instrument::Transducer) => same_transducer,
+        None => false,
     };
     let expanded = |flow: &FlowAt| {
         let own: Vec<(f64, f64)> =
@@ -63,6 +62,17 @@ pub fn compare(
     Comparison {
         en: difference / (now * now + then * then).sqrt(),
         change: difference / before.flow.flow_l_min,
+    }
+}
+
+/// The instrument whose calibration a part of a budget comes from; none when it is the run's own.
+pub(super) const fn papers_of(part: Part) -> Option<Instrument> {
+    match part {
+        Part::Common(Source::MeterGain | Source::MeterZero | Source::GasFactor | Source::FloatLaw) => {
+            Some(Instrument::Meter)
+        }
+        Part::Common(Source::TransducerGain | Source::TransducerZero) => Some(Instrument::Transducer),
+        _ => None,
     }
 }
 

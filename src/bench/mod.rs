@@ -4,7 +4,8 @@
 //! The steps, each a plain function of its own file: [`correct`] (what the meters show → absolute pressure and flow
 //! at STPD, gas of 20 °C), `sources` (what each may be off by), [`choke`] (which points are choked), [`mod@line`] (the
 //! fit, random and common parts apart), `checks` and `instruments`, `verdict`; on demand [`monte_carlo`] and
-//! [`advice`]; [`history`] compares two runs and [`convert`] two gases.
+//! [`advice`]; [`history`] compares two runs, [`trend`] looks for a slope through many, and [`convert`] turns one gas into
+//! another.
 //!
 //! Reasons to doubt it: the line is straight only as far as the discharge coefficient is constant (its growth with
 //! the Reynolds number moves the crossing, not more than 0.1 % of flow within the span); the choke model knows one
@@ -22,6 +23,7 @@ pub mod line;
 pub mod monte_carlo;
 mod points;
 mod sources;
+pub mod trend;
 mod verdict;
 mod warning;
 

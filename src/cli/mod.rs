@@ -6,9 +6,11 @@
 
 pub mod arguments;
 mod bench;
+mod book;
 mod demo;
 pub mod enter;
 mod manual;
+mod registers;
 
 use std::ffi::OsString;
 use std::io::{self, Write};
@@ -79,6 +81,13 @@ fn verb(arguments: &Arguments) -> Result<ExitStatus, Ended> {
             Bench::List(list) => bench::list(list, &arguments.global),
             Bench::Show(show) => bench::show(show, &arguments.global),
         },
+        Command::Orifice(verb) => registers::orifice(verb, &arguments.global),
+        Command::Instrument(verb) => registers::instrument(verb, &arguments.global),
+        Command::FirstStage(verb) => registers::first_stage(verb, &arguments.global),
+        Command::Diver(verb) => registers::diver(verb, &arguments.global),
+        Command::Acceptance(verb) => registers::acceptance(verb, &arguments.global),
+        Command::Shop(verb) => registers::shop(verb, &arguments.global),
+        Command::Book(verb) => book::book(verb, &arguments.global),
         Command::Completions { shell } => manual::completions(*shell),
         Command::Man => manual::man(),
     }

@@ -174,6 +174,7 @@ fn same_as_before(check: &Check) -> String {
     let suggestion = match (check.verdict, *change < 0.0) {
         (CheckVerdict::Fail, true) => ": a blockage, look at filter and hole",
         (CheckVerdict::Fail, false) => ": wear, or a hole that was cleaned since",
+        (CheckVerdict::Note, _) => ": as-left, so the work in between changed it",
         _ => "",
     };
     format!("{size} {direction} than in {before} (E_n = {en}){suggestion}")

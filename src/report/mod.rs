@@ -5,12 +5,16 @@
 
 pub mod bench_fit;
 pub mod bench_json;
+pub mod book;
 pub mod cautions;
 pub mod check_sentences;
 pub mod enter_questions;
 pub mod enter_words;
+pub mod export;
 pub mod layout;
 pub mod number;
+pub mod orifice_history;
+pub mod registers;
 pub mod run_list;
 pub mod run_shown;
 pub mod series_notes;

@@ -1,7 +1,7 @@
 //! The units a person asked to see.
 
 use crate::quantity::show::Shown;
-use crate::quantity::unit::Unit;
+use crate::quantity::unit::{Kind, Unit};
 
 /// Cubic metres per second in one litre per minute.
 const M3_S_PER_L_MIN: f64 = 1e-3 / 60.0;
@@ -17,6 +17,12 @@ impl Units {
     #[must_use]
     pub const fn new(shown: Shown) -> Self {
         Self { shown }
+    }
+
+    /// The unit a kind of quantity is shown in.
+    #[must_use]
+    pub fn unit(&self, kind: Kind) -> Unit {
+        self.shown.unit(kind)
     }
 
     /// Symbol of the pressure unit.

@@ -6,7 +6,8 @@ use super::enter::EnterError;
 use super::png::PngError;
 use crate::bench::BenchError;
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
-use crate::book::BookError;
+use crate::book::{BookError, NoHead};
+use crate::entry::{Id, IdError};
 use crate::record::RecordError;
 
 /// How a call ended.
@@ -87,6 +88,53 @@ pub enum WorkError {
         /// What was given.
         text: String,
     },
+    /// A text that is no name of an entry.
+    #[error("that names no entry of a register")]
+    NoName(#[source] IdError),
+    /// An edit that gives nothing.
+    #[error("this needs a file, or flags that say the same: --help lists them")]
+    NothingGiven,
+    /// Files and flags, or several names.
+    #[error("give either files of entries, or one name with flags")]
+    FilesOrFlags,
+    /// Nothing is known of the shop.
+    #[error(
+        "nothing is said of the shop yet: shop edit FILE.toml, or shop edit --name NAME --address ADDRESS"
+    )]
+    NoShop,
+    /// A reason that stays and names who is to be forgotten.
+    #[error("the reason stays in the book for good, so it must not name {0}: give another --why")]
+    ReasonNames(String),
+    /// Another program keeps the bytes of what was erased.
+    #[error(
+        "{diver}: {what}, but another program is reading the book, and until it stops the bytes stay in the file or its \
+         log: close it, then give the same command again\n{copies}",
+        what = if *records == 0 { "the erasure is not finished yet".to_owned() }
+               else { format!("{records} records are erased and cannot be read any more") },
+        copies = copies.trim_end()
+    )]
+    StillHeld {
+        /// The name in the register.
+        diver: String,
+        /// Records erased now.
+        records: usize,
+        /// Copies that cannot be reached, ready to be appended.
+        copies: String,
+    },
+    /// A history without a judged run.
+    #[error("{0} has no accepted run to draw yet: bench accept RUN first")]
+    NothingToDraw(Id),
+    /// A text that is no head of a chain.
+    #[error(transparent)]
+    NoHead(#[from] NoHead),
+    /// A folder that an export or a demonstration may not replace.
+    #[error("{path} {why}: name another", path = path.display())]
+    NotReplaced {
+        /// The folder or file.
+        path: PathBuf,
+        /// Why it stays as it is.
+        why: String,
+    },
     /// The platform names no folder for data.
     #[error("this system names no folder for data: say where the book is with --book FILE or EBBLINE_BOOK")]
     NoDataFolder,
@@ -129,12 +177,22 @@ impl WorkError {
             | Self::Enter(_)
             | Self::NoRunNumber(_)
             | Self::Text { .. }
+            | Self::NoName(_)
+            | Self::NothingGiven
+            | Self::FilesOrFlags
+            | Self::NoShop
+            | Self::ReasonNames(_)
+            | Self::NothingToDraw(_)
+            | Self::NoHead(_)
+            | Self::NotReplaced { .. }
             | Self::NoDataFolder
             | Self::Trials(_)
             | Self::NoMonteCarlo(_)
             | Self::PlotKind(_) => ExitStatus::Wrong,
             Self::Book(error) => book_status(error),
-            Self::NoRandomNumbers | Self::Png(_) | Self::Write { .. } => ExitStatus::Failed,
+            Self::StillHeld { .. } | Self::NoRandomNumbers | Self::Png(_) | Self::Write { .. } => {
+                ExitStatus::Failed
+            }
         }
     }
 }

@@ -186,12 +186,12 @@ fn nearly_steady(steady: &SteadyPoints) -> String {
 
 /// What a plot is written as.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
-enum PlotKind {
+pub(super) enum PlotKind {
     Svg,
     Png,
 }
 
-fn plot_kind(path: &Path) -> Result<PlotKind, WorkError> {
+pub(super) fn plot_kind(path: &Path) -> Result<PlotKind, WorkError> {
     match path.extension().and_then(|e| e.to_str()).map(str::to_lowercase).as_deref() {
         Some("svg") => Ok(PlotKind::Svg),
         Some("png") => Ok(PlotKind::Png),
@@ -201,9 +201,14 @@ fn plot_kind(path: &Path) -> Result<PlotKind, WorkError> {
 
 fn draw(run: &Run, analysis: &Analysis, units: &Units, kind: PlotKind, path: &Path) -> Result<(), WorkError> {
     let svg = run_plot(run, analysis, &RunPlot { units: *units, ..RunPlot::default() });
+    write_plot(&svg, kind, path)
+}
+
+/// Writes a drawing as what its file is named.
+pub(super) fn write_plot(svg: &str, kind: PlotKind, path: &Path) -> Result<(), WorkError> {
     match kind {
         PlotKind::Svg => write_whole(path, svg.as_bytes()),
-        PlotKind::Png => write_whole(path, &png::render(&svg, 2.0)?),
+        PlotKind::Png => write_whole(path, &png::render(svg, 2.0)?),
     }
 }
 

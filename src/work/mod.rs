@@ -2,12 +2,16 @@
 //!
 //! The only place with a sequence of steps, and, with `record`, the only one that touches files.
 
+pub mod book;
 pub mod demo;
 pub mod enter;
 pub mod error;
+pub mod export;
 pub mod fit;
+pub mod history;
 pub mod output;
 pub mod png;
+pub mod registers;
 pub mod runs;
 pub mod shelf;
 

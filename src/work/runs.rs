@@ -16,6 +16,7 @@ use crate::clock;
 use crate::entry::{
     Acceptance, Build, Decision, Orifice, Readings, Run, RunNumber, StoredFigures, StoredPart, StoredVerdict,
 };
+use crate::gas::Species;
 use crate::record::read_run_and_files;
 use crate::report::bench_fit::source_name;
 use crate::report::check_sentences::name_key_unit;
@@ -229,16 +230,28 @@ pub struct Judged {
 /// # Errors
 /// A run that is not there, is still open or cannot be analysed; a book that cannot be written.
 pub fn accept(shelf: &Shelf, run: &str, by: Option<&str>, remark: Option<&str>) -> Result<Judged, WorkError> {
-    let number = number_of(run)?;
+    judge(&mut shelf.to_change()?, number_of(run)?, by, remark, clock::now())
+}
+
+/// As [`accept`], in an open book and at a stated time.
+///
+/// # Errors
+/// As [`accept`].
+pub(super) fn judge(
+    book: &mut Book,
+    number: RunNumber,
+    by: Option<&str>,
+    remark: Option<&str>,
+    at: DateTime<FixedOffset>,
+) -> Result<Judged, WorkError> {
     let by = by.map(|by| said("--by", by)).transpose()?;
     let remark = remark.map(|remark| said("--remark", remark)).transpose()?;
-    let mut book = shelf.to_change()?;
-    let loaded = load(&book, number)?;
+    let loaded = load(book, number)?;
     let analysis = loaded.analyse(&Questions::default())?;
     let decision = Decision {
         verdict: stored_verdict(&analysis),
         figures: figures(&loaded, &analysis),
-        at: clock::now(),
+        at,
         by: by.map(str::to_owned).or_else(|| loaded.run.technician.clone()),
         remark: remark.map(str::to_owned),
     };
@@ -293,9 +306,18 @@ impl LoadedRun {
         let (_, before) = self.before.as_ref()?;
         let ip = self.run.acceptance.as_ref()?.ip;
         let p1_bar = ip.above(crate::quantity::AbsolutePressure::STANDARD_ATMOSPHERE).as_bar();
-        let same = before.gas == self.run.gas && (before.flow.p1_bar - p1_bar).abs() < 1e-6;
-        same.then_some(before)
+        same_measurand((before.gas, before.flow.p1_bar), (self.run.gas, p1_bar)).then_some(before)
     }
+}
+
+/// Whether two flows are of the same gas at the same absolute pressure (bar).
+fn same_measurand(a: (Species, f64), b: (Species, f64)) -> bool {
+    a.0 == b.0 && (a.1 - b.1).abs() < 1e-6
+}
+
+/// Whether the flows of two judgements can be compared.
+pub(super) fn comparable(a: &StoredFigures, b: &StoredFigures) -> bool {
+    same_measurand((a.gas, a.p1_bar), (b.gas, b.p1_bar))
 }
 
 /// The run a name stands for.
@@ -370,7 +392,7 @@ fn figures(loaded: &LoadedRun, analysis: &Analysis) -> StoredFigures {
 
 /// A stored judgement as the next run is compared with it. A part whose name is not known any more counts as the run's
 /// own, which makes the comparison blunter and never sharper than it is.
-fn accepted(number: RunNumber, figures: &StoredFigures) -> Accepted {
+pub(super) fn accepted(number: RunNumber, figures: &StoredFigures) -> Accepted {
     let parts = figures.parts.iter().map(|part| (part_named(&part.source), part.u_l_min, part.dof)).collect();
     Accepted {
         name: number.to_string(),

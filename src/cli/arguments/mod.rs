@@ -1,11 +1,19 @@
 //! What can be typed. Quantities carry their unit in the value; clap's words stop at this file's structs.
 
 mod bench;
+mod book;
+mod keys;
+mod registers;
 
 use std::path::PathBuf;
 
 pub use bench::{Accept, Bench, Enter, Fit, Import, LeaveOut, List, Resume, Show, Typed};
+pub use book::{Backup, Book, Check, Export};
 use clap::{Args, Parser, Subcommand};
+pub use registers::{
+    Acceptances, Add, Divers, Edit, EditShop, Entries, FirstStages, Forget, Instruments, One, Orifices,
+    ShopVerbs, ShowOrifice, ShowShop,
+};
 
 use crate::quantity::Shown;
 
@@ -54,6 +62,27 @@ pub enum Command {
     /// Bench runs of orifices
     #[command(subcommand)]
     Bench(Bench),
+    /// Orifices: their register, and their history
+    #[command(subcommand)]
+    Orifice(Orifices),
+    /// Instruments: flow meters, transducers and the rest, with their papers
+    #[command(subcommand)]
+    Instrument(Instruments),
+    /// First stages and the gauges they are set by
+    #[command(subcommand)]
+    FirstStage(FirstStages),
+    /// Divers
+    #[command(subcommand)]
+    Diver(Divers),
+    /// Limits orifices are accepted by
+    #[command(subcommand)]
+    Acceptance(Acceptances),
+    /// The shop, as it stands on certificates
+    #[command(subcommand)]
+    Shop(ShopVerbs),
+    /// The record file: health, chain, copies
+    #[command(subcommand)]
+    Book(Book),
     /// Prints a completion script for a shell
     Completions {
         /// The shell

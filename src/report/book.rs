@@ -1,0 +1,215 @@
+//! The record file: what it holds, whether it holds, and copies of it.
+
+use std::fmt::Write as _;
+
+use chrono::{DateTime, FixedOffset};
+use serde_json::json;
+
+use super::json_text;
+use super::layout::wrapped;
+
+/// What a book holds.
+#[derive(Debug, Clone, PartialEq)]
+pub struct BookInfo {
+    /// Where it is.
+    pub path: String,
+    /// Version of its form.
+    pub form: u32,
+    /// When it was begun.
+    pub begun: DateTime<FixedOffset>,
+    /// Records in its chain.
+    pub records: u64,
+    /// Its runs.
+    pub runs: u64,
+    /// Names in each register, with the words for the register.
+    pub entries: Vec<(&'static str, u64)>,
+    /// Records whose content was erased.
+    pub erased: u64,
+    /// Whether an erasure has yet to be carried through.
+    pub erasure_unfinished: bool,
+    /// Copies that were made: what, where, when.
+    pub copies: Vec<(&'static str, String, DateTime<FixedOffset>)>,
+    /// The head of its chain.
+    pub head: String,
+    /// Size of the file in bytes.
+    pub bytes: u64,
+}
+
+impl BookInfo {
+    /// Bytes for each run; none without a run.
+    #[must_use]
+    pub const fn bytes_per_run(&self) -> Option<u64> {
+        self.bytes.checked_div(self.runs)
+    }
+}
+
+/// What a check found.
+#[derive(Debug, Clone, PartialEq)]
+pub struct BookCheck {
+    /// Where the book is.
+    pub path: String,
+    /// Records that were walked.
+    pub records: u64,
+    /// Runs among them.
+    pub runs: u64,
+    /// Erasures: place in the chain, when, why, how many records.
+    pub erasures: Vec<(u64, DateTime<FixedOffset>, String, usize)>,
+    /// End of the chain, as far as it holds.
+    pub head: String,
+    /// Heads that were kept elsewhere and looked for.
+    pub heads: usize,
+    /// The first thing that is wrong.
+    pub wrong: Option<String>,
+}
+
+/// A copy of the book that was made.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Backup {
+    /// Where it is.
+    pub path: String,
+    /// What the check of the copy found.
+    pub check: BookCheck,
+}
+
+/// What the book holds, as text.
+#[must_use]
+pub fn info_text(info: &BookInfo) -> String {
+    let mut text = wrapped("", "  ", &info.path);
+    let mut row = |label: &str, says: &str| {
+        text.push_str(&wrapped(&format!("  {label:<18}"), &" ".repeat(20), says));
+    };
+    row("form", &info.form.to_string());
+    row("begun", &info.begun.to_rfc3339());
+    row("records", &info.records.to_string());
+    row("runs", &info.runs.to_string());
+    for (register, count) in &info.entries {
+        row(register, &count.to_string());
+    }
+    row("size", &size(info.bytes));
+    if let Some(each) = info.bytes_per_run() {
+        row("size per run", &size(each));
+    }
+    let erased = match (info.erased, info.erasure_unfinished) {
+        (0, false) => "nothing".to_owned(),
+        (n, false) => format!("{n} records"),
+        (n, true) => format!("{n} records, not yet carried through: give diver forget again"),
+    };
+    row("erased", &erased);
+    for (kind, place, at) in &info.copies {
+        row("copy", &format!("{kind} of {}: {place}", at.to_rfc3339()));
+    }
+    // A head is one word of 70 letters, which a certificate or a notebook takes over as it stands.
+    let _ = writeln!(text, "  head of the chain\n    {}", info.head);
+    text
+}
+
+/// What the book holds, as JSON.
+#[must_use]
+pub fn info_json(info: &BookInfo) -> String {
+    let entries: serde_json::Map<String, serde_json::Value> =
+        info.entries.iter().map(|(name, count)| (name.replace(' ', "_"), (*count).into())).collect();
+    let copy = |(kind, place, at): &(&str, String, DateTime<FixedOffset>)| json!({ "kind": kind, "place": place, "at": at.to_rfc3339() });
+    json_text(&json!({
+        "path": info.path,
+        "form": info.form,
+        "begun": info.begun.to_rfc3339(),
+        "records": info.records,
+        "runs": info.runs,
+        "entries": entries,
+        "erased_records": info.erased,
+        "erasure_unfinished": info.erasure_unfinished,
+        "copies": info.copies.iter().map(copy).collect::<Vec<_>>(),
+        "head": info.head,
+        "size_bytes": info.bytes,
+        "size_per_run_bytes": info.bytes_per_run(),
+    }))
+}
+
+/// What the check found, in one sentence.
+#[must_use]
+pub fn check_line(check: &BookCheck) -> String {
+    match &check.wrong {
+        None => format!("holds: {} records, {} runs, from the first to the last", check.records, check.runs),
+        Some(wrong) => format!("does not hold: {wrong}"),
+    }
+}
+
+/// What the check found, as text.
+#[must_use]
+pub fn check_text(check: &BookCheck) -> String {
+    let mut text = wrapped("", "  ", &format!("{} {}", check.path, check_line(check)));
+    if check.wrong.is_some() {
+        let line = format!(
+            "the first {} records are as they were recorded; the file was left as it is",
+            check.records
+        );
+        text.push_str(&wrapped("  ", "  ", &line));
+        return text;
+    }
+    match check.heads {
+        0 => text.push_str(&wrapped(
+            "  ",
+            "  ",
+            "Whoever rewrote all of it would not be seen: compare with a head kept elsewhere, --head HEAD.",
+        )),
+        1 => text.push_str("  The chain passes through the head that was given.\n"),
+        n => {
+            let _ = writeln!(text, "  The chain passes through the {n} heads that were given.");
+        }
+    }
+    for (place, at, why, records) in &check.erasures {
+        let line = format!("record {place} of {} erased {records} records: {why}", at.to_rfc3339());
+        text.push_str(&wrapped("  ", "    ", &line));
+    }
+    let _ = writeln!(text, "  head of the chain\n    {}", check.head);
+    text
+}
+
+/// What the check found, as JSON.
+#[must_use]
+pub fn check_json(check: &BookCheck) -> String {
+    json_text(&check_value(check))
+}
+
+fn check_value(check: &BookCheck) -> serde_json::Value {
+    let erasure = |(place, at, why, records): &(u64, DateTime<FixedOffset>, String, usize)| json!({ "record": place, "at": at.to_rfc3339(), "why": why, "records": records });
+    json!({
+        "path": check.path,
+        "holds": check.wrong.is_none(),
+        "wrong": check.wrong,
+        "records": check.records,
+        "runs": check.runs,
+        "erasures": check.erasures.iter().map(erasure).collect::<Vec<_>>(),
+        "heads_given": check.heads,
+        "head": check.head,
+    })
+}
+
+/// What was copied, as text.
+#[must_use]
+pub fn backup_text(backup: &Backup) -> String {
+    let check = &backup.check;
+    let mut text =
+        wrapped("", "  ", &format!("{} is a copy of the book, and {}", backup.path, check_line(check)));
+    let _ = writeln!(text, "  head of its chain\n    {}", check.head);
+    text
+}
+
+/// What was copied, as JSON.
+#[must_use]
+pub fn backup_json(backup: &Backup) -> String {
+    json_text(&json!({ "path": backup.path, "check": check_value(&backup.check) }))
+}
+
+/// A size in the unit people read it in.
+fn size(bytes: u64) -> String {
+    const KILO: f64 = 1024.0;
+    let kibi = bytes as f64 / KILO;
+    if bytes < 1024 {
+        format!("{bytes} bytes")
+    } else if kibi < KILO {
+        format!("{kibi:.1} KiB")
+    } else {
+        format!("{:.1} MiB", kibi / KILO)
+    }
+}
