@@ -12,7 +12,7 @@ use bench_files::{RUN, readings};
 use ebbline::bench::checks::{CannotTell, Check, CheckKind, CheckVerdict, CrossingCause, Finding};
 use ebbline::bench::history::Accepted;
 use ebbline::bench::instruments::{Instrument, InstrumentFinding, When};
-use ebbline::bench::{Analysis, Questions, Verdict, Warning, WhyNot, analyse};
+use ebbline::bench::{Analysis, Doubt, Questions, Verdict, Warning, WhyNot, analyse};
 use runs::{analysed, points, run};
 
 /// The run with `change` made to each reading: (index, gauge bar, L/min) to (gauge bar, L/min).
@@ -318,12 +318,49 @@ fn limits_meant_for_oxygen_judge_a_run_on_air_by_its_oxygen_flow() {
     assert_ne!(unnamed.judgement.as_ref().unwrap().by_flow, Verdict::Pass);
     assert!(unnamed.warnings.contains(&Warning::AcceptanceGasAssumed));
     assert!(named.warnings.contains(&Warning::BenchGasIsNotOxygen));
+    // What was judged is the oxygen flow, and is told as that.
+    let judged = named.judgement.as_ref().unwrap();
+    assert_eq!(judged.gas, ebbline::gas::Species::Oxygen);
+    assert_eq!(Some(&judged.flow), named.nominal.as_oxygen.as_ref());
     let oxygen = named.nominal.as_oxygen.as_ref().unwrap();
     assert!((oxygen.flow_l_min / named.nominal.flow.flow_l_min - 0.951).abs() < 2e-3);
     assert!(
         oxygen.standard_uncertainty / oxygen.flow_l_min
             > named.nominal.flow.standard_uncertainty / named.nominal.flow.flow_l_min
     );
+}
+
+#[test]
+fn a_flow_within_its_limits_does_not_pass_on_doubt() {
+    let honest = |_: usize, p: f64, q: f64| (p, q);
+    let judged = |toml: &str| changed(toml, honest).judgement.unwrap();
+    let no_gain = tube().replacen("gain = \"0.8 %\"\n", "", 1);
+    let no_papers = tube().replacen("gain = \"0.2 %\"\nzero = \"0.010 bar\"\n", "", 1);
+    // The same line read at 20 bar, where the points end at 13.
+    let far =
+        tube().replacen("ip = \"10 bar\"", "ip = \"20 bar\"", 1).replacen("0.48 L/min", "0.91 L/min", 1);
+    for (toml, doubt) in [
+        (no_gain, Doubt::MeterGainUnknown),
+        (no_papers, Doubt::TransducerPapersUnknown),
+        (far, Doubt::BeyondThePoints),
+    ] {
+        let judgement = judged(&toml);
+        assert_eq!((judgement.by_flow, judgement.verdict), (Verdict::Pass, Verdict::Undecided), "{doubt:?}");
+        assert_eq!(judgement.doubts, [doubt]);
+    }
+    assert!(judged(&tube()).doubts.is_empty());
+}
+
+#[test]
+fn a_meter_that_is_stuck_says_nothing_of_a_hole() {
+    let analysis = changed(&tube(), |_, p, _| (p, 0.48));
+    assert_eq!((analysis.effective_diameter_um, analysis.sonic_conductance), (None, None));
+    let found = check(&analysis, CheckKind::ThroughZero);
+    assert!(
+        matches!(found.finding, Finding::Crossing { cause: Some(CrossingCause::DoesNotRise), .. }),
+        "{found:?}"
+    );
+    assert_eq!(found.verdict, CheckVerdict::Fail);
 }
 
 #[test]

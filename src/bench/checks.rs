@@ -134,6 +134,8 @@ pub enum CrossingCause {
     GaugeEnteredAsAbsolute,
     /// High: the transducer reads high, the meter reads low, or gas is lost before the meter.
     High,
+    /// The flow does not rise with the pressure.
+    DoesNotRise,
     /// Low: the transducer reads low, the meter reads high, or gas passes beside the hole.
     Low,
 }
@@ -290,7 +292,9 @@ fn through_zero(c: &Checked<'_>) -> Check {
     let outside = crossing < low || crossing > high;
     let cause = outside.then(|| {
         let would_fit = |bar: f64| (low - NEAR_THE_LIMITS_BAR..=high + NEAR_THE_LIMITS_BAR).contains(&bar);
-        if !absolute && would_fit(crossing - ambient) {
+        if crossing.is_infinite() {
+            CrossingCause::DoesNotRise
+        } else if !absolute && would_fit(crossing - ambient) {
             CrossingCause::AbsoluteEnteredAsGauge
         } else if absolute && would_fit(crossing + ambient) {
             CrossingCause::GaugeEnteredAsAbsolute

@@ -29,7 +29,7 @@ mod warning;
 
 pub use points::{Point, WhyNot};
 pub use sources::{CommonSource, DEFAULT_BAROMETER_EXPANDED_PA, DEFAULT_TEMPERATURE_EXPANDED_K, Shape};
-pub use verdict::{Judgement, Verdict};
+pub use verdict::{Doubt, Judgement, Verdict};
 pub use warning::Warning;
 
 use checks::{Check, CheckKind};
@@ -37,15 +37,16 @@ use choke::{ChokePoint, ChokeRatio, CommonEffect};
 use convert::gas_ratio;
 use correct::{Correction, REFERENCE_TEMPERATURE_K, Raw, Shift, Source};
 use history::Accepted;
-use line::{FlowAt, LinePoints, OrificeLine, Part, fit_orifice_line, limits_of};
+use line::{COVERAGE_PROBABILITY, FlowAt, LinePoints, OrificeLine, Part, fit_orifice_line, limits_of};
 
 use crate::entry::{Acceptance, Limits, PointReading, Run};
 use crate::gas::{self, Species};
 use crate::quantity::{
     AbsolutePressure, GaugePressure, PressureDifference, StpdFlow, Temperature, Uncertain,
 };
+use crate::stats::coverage::coverage_factor;
 use crate::stats::distribution::chi_squared_upper;
-use crate::stats::line::{CalibrationPoints, LineError, fit};
+use crate::stats::line::{CalibrationPoints, Line, LineError, fit};
 
 /// Revision of the method: rises when any printed figure could change.
 pub const METHOD_REVISION: u32 = 1;
@@ -89,9 +90,11 @@ pub struct Analysis {
     /// The pressure for each flow asked for.
     pub ip_for: Vec<IpFor>,
     /// Sonic conductance of ISO 6358 in dm³/(s·bar) in the gas of the run, and its standard uncertainty.
-    pub sonic_conductance: (f64, f64),
+    /// None where the line does not rise.
+    pub sonic_conductance: Option<(f64, f64)>,
     /// Effective diameter in µm (discharge coefficient 1), and its standard uncertainty.
-    pub effective_diameter_um: (f64, f64),
+    /// None where the line does not rise.
+    pub effective_diameter_um: Option<(f64, f64)>,
     /// The checks.
     pub checks: Vec<Check>,
     /// The judgement, when the run has an acceptance.
@@ -254,7 +257,8 @@ pub fn analyse(
         let bent = straight.and_then(|c| c.p_value).is_some_and(|p| p < limits.significance);
         warnings.push(Warning::RandomPartWidened { factor: line.widened.sqrt(), bent });
     }
-    let judgement = run.acceptance.as_ref().map(|a| judge(run, a, &nominal, &checks, &mut warnings));
+    let judgement =
+        run.acceptance.as_ref().map(|a| judge(run, a, &nominal, &checks, span(&points), &mut warnings));
     if run.gas != Species::Oxygen {
         warnings.push(Warning::BenchGasIsNotOxygen);
     }
@@ -512,21 +516,33 @@ fn judge(
     acceptance: &Acceptance,
     nominal: &FlowAtIp,
     checks: &[Check],
+    span: (f64, f64),
     warnings: &mut Vec<Warning>,
 ) -> Judgement {
     let stated = acceptance.flow.as_l_min();
+    let doubts = [
+        (warnings.contains(&Warning::MeterGainUnknown), Doubt::MeterGainUnknown),
+        (warnings.contains(&Warning::TransducerPapersUnknown), Doubt::TransducerPapersUnknown),
+        (beyond(span, nominal.flow.p1_bar), Doubt::BeyondThePoints),
+    ];
+    let doubts = doubts.into_iter().filter(|(holds, _)| *holds).map(|(_, doubt)| doubt).collect();
     match acceptance.gas {
         Some(gas) if gas != run.gas => {
             // Judged as the gas the limits are meant for.
             let converted = of_gas(&nominal.flow, run.gas, gas);
-            verdict::judge(acceptance, stated, &converted, checks)
+            verdict::judge(acceptance, stated, (gas, &converted), checks, doubts)
         }
         None if run.gas != Species::Oxygen => {
             warnings.push(Warning::AcceptanceGasAssumed);
-            verdict::judge(acceptance, stated, &nominal.flow, checks)
+            verdict::judge(acceptance, stated, (run.gas, &nominal.flow), checks, doubts)
         }
-        _ => verdict::judge(acceptance, stated, &nominal.flow, checks),
+        _ => verdict::judge(acceptance, stated, (run.gas, &nominal.flow), checks, doubts),
     }
+}
+
+/// Whether a pressure lies beyond the points of the line, bar absolute.
+fn beyond((low, high): (f64, f64), at_bar_abs: f64) -> bool {
+    at_bar_abs < low - ONE_PRESSURE_BAR || at_bar_abs > high + ONE_PRESSURE_BAR
 }
 
 /// `read_at` holds where the line is read, bar gauge and bar absolute.
@@ -537,25 +553,33 @@ fn warn_of_extrapolation(
 ) {
     let (low, high) = span(points);
     for (ip_bar_gauge, at_bar_abs) in read_at {
-        if at_bar_abs < low - ONE_PRESSURE_BAR || at_bar_abs > high + ONE_PRESSURE_BAR {
+        if beyond((low, high), at_bar_abs) {
             warnings.push(Warning::Extrapolated { ip_bar_gauge, span_bar_abs: (low, high), at_bar_abs });
         }
     }
 }
 
-fn sonic_conductance(line: &OrificeLine) -> (f64, f64) {
+fn sonic_conductance(line: &OrificeLine) -> Option<(f64, f64)> {
+    let total = rising(line)?;
+    Some((gas::sonic_conductance(total.slope), gas::sonic_conductance(total.slope_u)))
+}
+
+/// The line with all its uncertainty, where its slope is above nought with 95 %; a meter that is stuck says nothing of
+/// a hole.
+fn rising(line: &OrificeLine) -> Option<Line> {
     let total = line.total();
-    (gas::sonic_conductance(total.slope), gas::sonic_conductance(total.slope_u))
+    (total.slope - coverage_factor(COVERAGE_PROBABILITY, line.random_dof) * total.slope_u > 0.0)
+        .then_some(total)
 }
 
 /// From the slope, in the middle of the span: the flow that the slope alone would pass there.
-fn effective_diameter(species: Species, line: &OrificeLine, points: &[Point]) -> (f64, f64) {
-    let total = line.total();
+fn effective_diameter(species: Species, line: &OrificeLine, points: &[Point]) -> Option<(f64, f64)> {
+    let total = rising(line)?;
     let (low, high) = span(points);
     let p1_bar = (low + high) / 2.0;
     let flow = StpdFlow::from_l_min((total.slope * p1_bar).max(0.0));
     let t1 = Temperature::from_k(REFERENCE_TEMPERATURE_K);
     let um = gas::effective_diameter(species, flow, AbsolutePressure::from_bar(p1_bar), t1).as_um();
     // The diameter goes with the root of the slope.
-    (um, 0.5 * um * total.slope_u / total.slope)
+    Some((um, 0.5 * um * total.slope_u / total.slope))
 }

@@ -2,11 +2,13 @@
 //!
 //! Comes in: the flow at the nominal pressure with its uncertainty, the acceptance, the checks. Goes out: a
 //! [`Judgement`]. Rules: simple acceptance, or guarded with `w = U` on both sides (ILAC-G8:09/2019, JCGM 106:2012,
-//! clause 8). A failed check never lets a run pass: on doubt it is undecided.
+//! clause 8). A failed check never lets a run pass, nor does a budget that lacks an instrument's largest part, nor a
+//! pressure the points do not reach: on doubt it is undecided.
 
 use super::checks::{Check, CheckKind, CheckVerdict};
 use super::line::FlowAt;
 use crate::entry::{Acceptance, Rule, Tolerance};
+use crate::gas::Species;
 use crate::stats::conformity::{self, DecisionRule, Knowledge};
 
 /// The verdict on a run.
@@ -33,17 +35,35 @@ pub struct Judgement {
     pub limits_l_min: (f64, f64),
     /// Probability that the flow lies within the limits.
     pub probability: f64,
+    /// The flow that was judged, in `gas`.
+    pub flow: FlowAt,
+    /// The gas the acceptance is meant for.
+    pub gas: Species,
     /// Checks that do not hold.
     pub failed_checks: Vec<CheckKind>,
+    /// What keeps a flow within the limits from passing, beside the checks.
+    pub doubts: Vec<Doubt>,
 }
 
-/// Judges a flow by an acceptance whose nominal flow, in the gas of the run, is `nominal_l_min`.
+/// Why a flow within its limits is not enough for a pass.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Doubt {
+    /// The flow meter's papers state no gain, so the uncertainty lacks what is usually its largest part.
+    MeterGainUnknown,
+    /// The transducer's papers state neither gain nor zero.
+    TransducerPapersUnknown,
+    /// The nominal pressure lies beyond the points of the line.
+    BeyondThePoints,
+}
+
+/// Judges a flow of `gas`, the one the acceptance is meant for, by an acceptance whose nominal flow is `nominal_l_min`.
 #[must_use]
 pub(super) fn judge(
     acceptance: &Acceptance,
     nominal_l_min: f64,
-    flow: &FlowAt,
+    (gas, flow): (Species, &FlowAt),
     checks: &[Check],
+    doubts: Vec<Doubt>,
 ) -> Judgement {
     let half_width = match acceptance.tolerance {
         Tolerance::Relative(share) => share * nominal_l_min,
@@ -67,7 +87,16 @@ pub(super) fn judge(
     let probability = interval.as_ref().map_or(0.0, |i| conformity::conformity_probability(&known, i));
     let failed_checks: Vec<CheckKind> =
         checks.iter().filter(|c| c.verdict == CheckVerdict::Fail).map(|c| c.kind).collect();
-    let verdict =
-        if by_flow == Verdict::Pass && !failed_checks.is_empty() { Verdict::Undecided } else { by_flow };
-    Judgement { verdict, by_flow, limits_l_min: limits, probability, failed_checks }
+    let doubtful = !failed_checks.is_empty() || !doubts.is_empty();
+    let verdict = if by_flow == Verdict::Pass && doubtful { Verdict::Undecided } else { by_flow };
+    Judgement {
+        verdict,
+        by_flow,
+        limits_l_min: limits,
+        probability,
+        flow: flow.clone(),
+        gas,
+        failed_checks,
+        doubts,
+    }
 }

@@ -47,7 +47,7 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
         "The files are the same on every machine. The book is not to the byte: when something was recorded, and the salts \
          of its chain, are its own.",
     ));
-    text.push_str("\nTry one yourself:\n");
+    text.push_str("\nTry one yourself (where ebbline is not installed: cargo run --release -- …):\n");
     if let Some(first) = runs.first() {
         text.push_str(&format!("  ebbline bench fit {}\n", first.file.display()));
     }
@@ -95,7 +95,8 @@ impl NamedShop {
 struct Named {
     orifice: String,
     about: &'static str,
-    verdict: String,
+    verdict: &'static str,
+    says: String,
     run_file: String,
     readings: String,
     plot: String,
@@ -107,7 +108,8 @@ impl Named {
         Self {
             orifice: run.outcome.run.orifice.to_string(),
             about: run.about,
-            verdict: line,
+            verdict: bench_fit::verdict_name(&run.outcome.analysis),
+            says: line,
             run_file: run.file.display().to_string(),
             readings: run.readings.display().to_string(),
             plot: run.plot.display().to_string(),

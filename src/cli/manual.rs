@@ -17,11 +17,25 @@ pub(super) fn man() -> Result<ExitStatus, Ended> {
     let mut command = Arguments::command();
     command.build();
     let mut page = Vec::new();
-    clap_mangen::Man::new(command.clone()).render(&mut page).map_err(Ended::Stdout)?;
+    head(&command, &mut page).map_err(Ended::Stdout)?;
     for verb in command.get_subcommands() {
         verb_section(verb, &mut page).map_err(Ended::Stdout)?;
     }
+    let after = command.get_after_help().map(ToString::to_string).unwrap_or_default();
+    page.extend_from_slice(
+        format!(".SH \"EXIT STATUS AND CAUTION\"\n{}\n", after.replace('-', "\\-")).as_bytes(),
+    );
     say(&String::from_utf8_lossy(&page), ExitStatus::Done)
+}
+
+/// Title, name, synopsis and the options of every verb; the verbs themselves follow with theirs.
+fn head(command: &clap::Command, page: &mut Vec<u8>) -> std::io::Result<()> {
+    let own = clap_mangen::Man::new(command.clone());
+    own.render_title(page)?;
+    own.render_name_section(page)?;
+    own.render_synopsis_section(page)?;
+    own.render_description_section(page)?;
+    own.render_options_section(page)
 }
 
 /// A verb that stands for others is left to those.

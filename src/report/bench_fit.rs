@@ -11,8 +11,8 @@ use crate::bench::choke::Origin;
 use crate::bench::correct::Source;
 use crate::bench::line::{FlowAt, Part};
 use crate::bench::monte_carlo::MonteCarlo;
-use crate::bench::{Analysis, FlowAtIp, Judgement, Point, Verdict, WhyNot};
-use crate::entry::{Acceptance, Rule, Run, Sweep};
+use crate::bench::{Analysis, Doubt, FlowAtIp, Judgement, Point, Verdict, WhyNot};
+use crate::entry::{Rule, Run, Sweep};
 
 /// Everything that is said of a fitted run.
 #[derive(Debug, Clone, Copy)]
@@ -77,6 +77,17 @@ const fn verdict_word(fitted: &Fitted<'_>) -> &'static str {
             Verdict::Undecided => "UNDECIDED",
             Verdict::None => "NO VERDICT",
         },
+    }
+}
+
+/// The word for a verdict in JSON.
+#[must_use]
+pub fn verdict_name(analysis: &Analysis) -> &'static str {
+    match analysis.judgement.as_ref().map_or(Verdict::None, |j| j.verdict) {
+        Verdict::Pass => "pass",
+        Verdict::Fail => "fail",
+        Verdict::Undecided => "undecided",
+        Verdict::None => "none",
     }
 }
 
@@ -146,11 +157,12 @@ fn reason(fitted: &Fitted<'_>, units: &Units) -> String {
     let (Some(judgement), Some(acceptance)) = (&fitted.analysis.judgement, &fitted.run.acceptance) else {
         return "the run has no [acceptance] to be judged by".into();
     };
-    let flow = judged_flow(fitted, acceptance);
+    let flow = &judgement.flow;
+    let as_gas = as_gas(fitted, judgement);
     let (value, u) = value_and_u(units.flow(flow.flow_l_min), units.flow(flow.expanded()));
     let window = |l_min: f64| fixed(units.flow(l_min), decimals_of(&value));
     let place = format!(
-        "{value} ± {u} {} at {} IP",
+        "{value} ± {u} {}{as_gas} at {} IP",
         units.flow_symbol(),
         units.pressure_text(acceptance.ip.as_bar())
     );
@@ -163,7 +175,29 @@ fn reason(fitted: &Fitted<'_>, units: &Units) -> String {
         _ => format!("{place} is too near the limits {limits} for its uncertainty"),
     };
     let chance = format!("probability of conformity {}", probability(judgement.probability));
-    format!("{by_flow}; {chance}{}", failed(judgement))
+    format!("{by_flow}; {chance}{}{}", failed(judgement), doubts(judgement))
+}
+
+/// The gas of the judged flow, where it is not the run's.
+pub(super) fn as_gas(fitted: &Fitted<'_>, judgement: &Judgement) -> String {
+    if judgement.gas == fitted.run.gas { String::new() } else { format!(" as {}", judgement.gas.name()) }
+}
+
+/// What keeps a flow within the limits from passing, beside the checks.
+fn doubts(judgement: &Judgement) -> String {
+    if judgement.by_flow != Verdict::Pass {
+        return String::new();
+    }
+    let one = |doubt: &Doubt| match doubt {
+        Doubt::MeterGainUnknown => {
+            "; but the flow meter's papers state no gain, so the uncertainty is too small to pass by"
+        }
+        Doubt::TransducerPapersUnknown => {
+            "; but the transducer's papers state neither gain nor zero, so the uncertainty is too small to pass by"
+        }
+        Doubt::BeyondThePoints => "; but no point was taken as far as that pressure: take points there",
+    };
+    judgement.doubts.iter().map(one).collect()
 }
 
 fn failed(judgement: &Judgement) -> String {
@@ -174,15 +208,6 @@ fn failed(judgement: &Judgement) -> String {
         (1, _) => format!("; the check \"{}\" does not hold either", names[0]),
         (_, Verdict::Undecided) => format!("; but the checks \"{}\" do not hold", names.join("\", \"")),
         (_, _) => format!("; the checks \"{}\" do not hold either", names.join("\", \"")),
-    }
-}
-
-/// The flow the verdict was given on, in the gas the limits are meant for.
-pub(super) fn judged_flow<'a>(fitted: &'a Fitted<'_>, acceptance: &Acceptance) -> &'a FlowAt {
-    let nominal = &fitted.analysis.nominal;
-    match (acceptance.gas, &nominal.as_oxygen) {
-        (Some(gas), Some(oxygen)) if gas != fitted.run.gas && gas == crate::gas::Species::Oxygen => oxygen,
-        _ => &nominal.flow,
     }
 }
 
@@ -311,14 +336,17 @@ fn line(fitted: &Fitted<'_>, units: &Units) -> String {
         ));
     }
     text.push_str("  standard errors  those of ISO/TS 28037:2010, clause 7\n");
-    let (diameter, diameter_u) =
-        value_and_u(analysis.effective_diameter_um.0, analysis.effective_diameter_um.1);
-    text.push_str(&format!("  effective hole   {diameter} µm, u = {diameter_u} (discharge coefficient 1)\n"));
-    let (conductance, conductance_u) =
-        value_and_u(analysis.sonic_conductance.0, analysis.sonic_conductance.1);
-    text.push_str(&format!(
-        "  conductance C    {conductance} dm³/(s·bar) ANR, u = {conductance_u} (ISO 6358)\n"
-    ));
+    let known = |found: Option<(f64, f64)>, unit: &str, remark: &str| match found {
+        Some((value, u)) => {
+            let (value, u) = value_and_u(value, u);
+            format!("{value} {unit}, u = {u} ({remark})\n")
+        }
+        None => "not known: the flow does not rise with the pressure\n".to_owned(),
+    };
+    text.push_str("  effective hole   ");
+    text.push_str(&known(analysis.effective_diameter_um, "µm", "discharge coefficient 1"));
+    text.push_str("  conductance C    ");
+    text.push_str(&known(analysis.sonic_conductance, "dm³/(s·bar) ANR", "ISO 6358"));
     let choke = &analysis.choke;
     // Value and interval to the same place: a hundredth while it is only bounded, a thousandth once measured.
     let places = if choke.origin == Origin::Measured { 3 } else { 2 };
@@ -393,7 +421,7 @@ fn points(analysis: &Analysis, units: &Units) -> String {
             let why = match &point.why_not {
                 None => String::new(),
                 Some(WhyNot::NotChoked) => "not choked".into(),
-                Some(WhyNot::LeftOut(why)) => format!("left out: {}", shortened(why, 20)),
+                Some(WhyNot::LeftOut(why)) => format!("left out: {why}"),
             };
             vec![
                 point.index.to_string(),
@@ -417,21 +445,15 @@ fn points(analysis: &Analysis, units: &Units) -> String {
     text
 }
 
-fn shortened(text: &str, columns: usize) -> String {
-    if text.chars().count() <= columns {
-        return text.to_owned();
-    }
-    text.chars().take(columns - 1).collect::<String>() + "…"
-}
-
 fn budget(fitted: &Fitted<'_>, units: &Units) -> String {
     let nominal = &fitted.analysis.nominal;
-    let mut text = format!(
-        "Budget of the flow at {} IP, {} {} ambient; standard uncertainties\n",
+    let head = format!(
+        "Budget of the flow at {} IP, {} {} ambient; standard uncertainties",
         units.pressure_text(nominal.ip.as_bar()),
         shortest(units.pressure(nominal.ambient.as_bar()), 6),
         units.pressure_symbol()
     );
+    let mut text = wrapped("", "  ", &head);
     let mut parts = nominal.flow.parts.clone();
     parts.sort_by(|a, b| b.1.abs().total_cmp(&a.1.abs()));
     let total = nominal.flow.standard_uncertainty;
@@ -439,7 +461,8 @@ fn budget(fitted: &Fitted<'_>, units: &Units) -> String {
         .iter()
         .map(|(part, u, dof)| {
             vec![
-                u_alone(units.flow(u.abs())),
+                // What two steps of the arithmetic leave of nothing is nothing.
+                if u.abs() < 1e-9 * total { "0".into() } else { u_alone(units.flow(u.abs())) },
                 fixed(u * u / (total * total) * 100.0, 0),
                 if dof.is_finite() { fixed(*dof, 0) } else { "infinite".into() },
                 source_name(*part).to_owned(),

@@ -10,7 +10,7 @@ use crate::bench::advice::LowPoints;
 use crate::bench::checks::CheckVerdict;
 use crate::bench::choke::Origin;
 use crate::bench::line::FlowAt;
-use crate::bench::{FlowAtIp, METHOD_REVISION, Point, Verdict};
+use crate::bench::{FlowAtIp, METHOD_REVISION, Point};
 
 /// Revision of the document.
 const FORMAT: u32 = 1;
@@ -150,6 +150,10 @@ struct JsonAcceptance {
     lower_l_min: Plain,
     upper_l_min: Plain,
     rule: &'static str,
+    gas: &'static str,
+    flow_l_min: Plain,
+    u: Plain,
+    expanded: Plain,
 }
 
 #[derive(Serialize)]
@@ -209,8 +213,10 @@ impl Document {
                     _ => None,
                 },
             },
-            sonic_conductance_dm3_s_bar: ValueU::of(analysis.sonic_conductance),
-            effective_diameter_um: ValueU::of(analysis.effective_diameter_um),
+            sonic_conductance_dm3_s_bar: ValueU::of(
+                analysis.sonic_conductance.unwrap_or((f64::NAN, f64::NAN)),
+            ),
+            effective_diameter_um: ValueU::of(analysis.effective_diameter_um.unwrap_or((f64::NAN, f64::NAN))),
             flow_at: analysis.flow_at.iter().map(JsonFlow::of).collect(),
             ip_for: analysis
                 .ip_for
@@ -254,12 +260,7 @@ impl Document {
                     }
                 })
                 .collect(),
-            verdict: match analysis.judgement.as_ref().map_or(Verdict::None, |j| j.verdict) {
-                Verdict::Pass => "pass",
-                Verdict::Fail => "fail",
-                Verdict::Undecided => "undecided",
-                Verdict::None => "none",
-            },
+            verdict: bench_fit::verdict_name(analysis),
             conformity_probability: analysis.judgement.as_ref().map(|j| Plain(j.probability)),
             acceptance: analysis.judgement.as_ref().zip(fitted.run.acceptance.as_ref()).map(
                 |(judgement, acceptance)| JsonAcceptance {
@@ -267,6 +268,10 @@ impl Document {
                     lower_l_min: Plain(judgement.limits_l_min.0),
                     upper_l_min: Plain(judgement.limits_l_min.1),
                     rule: bench_fit::rule_name(acceptance.rule),
+                    gas: judgement.gas.name(),
+                    flow_l_min: Plain(judgement.flow.flow_l_min),
+                    u: Plain(judgement.flow.standard_uncertainty),
+                    expanded: Plain(judgement.flow.expanded()),
                 },
             ),
             monte_carlo: fitted.monte_carlo.map(|m| JsonMonteCarlo {

@@ -139,6 +139,7 @@ fn through_zero(check: &Check, units: &Units) -> String {
         Some(CrossingCause::GaugeEnteredAsAbsolute) => {
             "one atmosphere too low: gauge pressure was entered as absolute, take absolute = true away"
         }
+        Some(CrossingCause::DoesNotRise) => "",
         Some(CrossingCause::High) => {
             "too high: the transducer's zero reads high, gas leaks between transducer and meter, or the hole clogs as \
              the run goes on"
@@ -147,6 +148,11 @@ fn through_zero(check: &Check, units: &Units) -> String {
             "too low: the transducer's zero reads low, the meter's zero reads high, or gas passes beside the hole"
         }
     };
+    if cause == Some(CrossingCause::DoesNotRise) {
+        return "the flow does not rise with the pressure, so the line crosses nowhere: look whether the flow meter is \
+                stuck, or gas passes beside the hole"
+            .into();
+    }
     let doubt = if check.verdict == CheckVerdict::Note { "perhaps " } else { "" };
     format!("{place}, {doubt}{suggestion}")
 }

@@ -7,7 +7,7 @@
 use serde::Serialize;
 
 use super::Units;
-use super::bench_fit::{Fitted, judged_flow};
+use super::bench_fit::{Fitted, as_gas};
 use super::bench_json::Document as Fit;
 use super::check_sentences::{name_key_unit, sentence};
 use super::enter_questions::Question;
@@ -303,13 +303,9 @@ pub fn running(
 
 fn flow_so_far(fitted: &Fitted<'_>, units: &Units) -> String {
     let nominal = &fitted.analysis.nominal;
-    let (flow, as_gas) = match &fitted.run.acceptance {
-        Some(acceptance) => {
-            let flow = judged_flow(fitted, acceptance);
-            let other = !std::ptr::eq(flow, &nominal.flow);
-            (flow, if other { " as oxygen" } else { "" })
-        }
-        None => (&nominal.flow, ""),
+    let (flow, as_gas) = match &fitted.analysis.judgement {
+        Some(judgement) => (&judgement.flow, as_gas(fitted, judgement)),
+        None => (&nominal.flow, String::new()),
     };
     let (value, u) = value_and_u(units.flow(flow.flow_l_min), units.flow(flow.expanded()));
     let beyond = fitted.analysis.warnings.iter().any(|w| matches!(w, Warning::Extrapolated { .. }));
@@ -420,7 +416,7 @@ pub fn list(
                 flows[i].clone(),
                 reading.sweep.map_or("", sweep_word).to_owned(),
                 off.trim_end_matches(" %").to_owned(),
-                super::run_list::shortened(&remark, 40),
+                super::layout::shortened(&remark, 40),
             ]
         })
         .collect();

@@ -56,12 +56,15 @@ pub fn table(heads: &[&str], units: &[&str], rows: &[Vec<String>], last_left: bo
         cells.chain([columns(heads[i]), columns(units[i])]).max().unwrap_or(0)
     };
     let widths: Vec<usize> = (0..count).map(width).collect();
+    // A last column of words ends where the page does.
+    let before: usize = 1 + widths[..count - 1].iter().map(|w| w + 1).sum::<usize>() + 2;
+    let room = WIDTH.saturating_sub(before).max(8);
     let line = |cells: &[&str]| {
         let mut text = String::from(" ");
         for (i, cell) in cells.iter().enumerate() {
             let pad = " ".repeat(widths[i].saturating_sub(columns(cell)));
             if last_left && i == count - 1 {
-                text.push_str(&format!("  {cell}"));
+                text.push_str(&format!("  {}", shortened(cell, room)));
             } else {
                 text.push_str(&format!(" {pad}{cell}"));
             }
@@ -76,6 +79,15 @@ pub fn table(heads: &[&str], units: &[&str], rows: &[Vec<String>], last_left: bo
         text.push_str(&line(&row.iter().map(String::as_str).collect::<Vec<_>>()));
     }
     text
+}
+
+/// A text cut to a number of columns, with a sign that it was.
+#[must_use]
+pub fn shortened(text: &str, most: usize) -> String {
+    if columns(text) <= most {
+        return text.to_owned();
+    }
+    text.chars().take(most - 1).collect::<String>() + "…"
 }
 
 /// Numbers of one column with the same number of decimals: as many as the one that has most.
@@ -149,6 +161,13 @@ mod tests {
         assert_eq!(numbers(&[1]), "1");
         assert_eq!(numbers(&[1, 2]), "1 and 2");
         assert_eq!(numbers(&[1, 3, 4, 5, 9]), "1, 3-5 and 9");
+    }
+
+    #[test]
+    fn a_last_column_of_words_ends_at_the_width() {
+        let rows = vec![vec!["1".into(), "why ".repeat(40)]];
+        let text = table(&["no", ""], &["", ""], &rows, true);
+        assert!(text.lines().all(|l| columns(l) <= WIDTH) && text.contains('…'), "{text}");
     }
 
     #[test]

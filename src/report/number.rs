@@ -93,6 +93,10 @@ pub fn fixed(value: f64, decimals: i32) -> String {
 /// A share as a percentage with two significant figures.
 #[must_use]
 pub fn percent(share: f64) -> String {
+    // Two steps of the arithmetic leave 1e-15 of what should be nothing.
+    if share.abs() < 1e-6 && share != 0.0 {
+        return "under 0.0001 %".to_owned();
+    }
     format!("{} %", figures(share * 100.0, 2))
 }
 

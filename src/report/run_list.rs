@@ -4,7 +4,7 @@ use chrono::{DateTime, FixedOffset};
 use serde::Serialize;
 
 use super::Units;
-use super::layout::{columns, table};
+use super::layout::{shortened, table};
 use super::number::{Plain, fixed, value_and_u};
 use crate::bench::METHOD_REVISION;
 use crate::entry::{Purpose, RunNumber, StoredVerdict};
@@ -109,15 +109,6 @@ pub fn verdict_text(judged: &ListedJudgement) -> String {
     } else {
         format!("{} (method {})", judged.verdict.name(), judged.method_revision)
     }
-}
-
-/// A text cut to a number of columns, with a sign that it was.
-#[must_use]
-pub fn shortened(text: &str, most: usize) -> String {
-    if columns(text) <= most {
-        return text.to_owned();
-    }
-    text.chars().take(most - 1).collect::<String>() + "…"
 }
 
 /// A run in JSON; also part of what `bench show` writes.

@@ -156,7 +156,7 @@ fn readings(run: &Run, units: &Units) -> String {
                 None => String::new(),
             },
             out.map_or_else(String::new, |out| {
-                super::run_list::shortened(&format!("left out: {}", out.why), 40)
+                super::layout::shortened(&format!("left out: {}", out.why), 40)
             }),
         ]
     };

@@ -58,7 +58,7 @@ pub fn sentence(warning: &Warning, units: &Units) -> String {
             )
         }
         Warning::ChokeModelFails => "no choke ratio and discharge coefficient describe these points, so nothing \
-            was learnt about the choke ratio: look first at the checks that do not hold"
+            was learnt about the choke ratio: look at the residuals and at any check that does not hold"
             .into(),
         Warning::AcceptanceGasAssumed => "the acceptance does not say for which gas its flow is meant, and the \
             bench gas is not oxygen: it was taken for the bench gas. Write gas = \"oxygen\" into [acceptance] if it \

@@ -7,8 +7,9 @@ use super::rows::{diluent, quantity, rule, tolerance, uncertain};
 use super::show::revision_json;
 use super::{AnyEntry, EntryList, ListedEntry};
 use crate::entry::{Instrument, InstrumentPapers, Socket};
+use crate::report::layout::shortened;
 use crate::report::layout::{WIDTH, columns, wrapped};
-use crate::report::run_list::{ListedRun, shortened, verdict_text};
+use crate::report::run_list::{ListedRun, verdict_text};
 use crate::report::{Units, json_text};
 
 /// Longest words of a person in a column that is not the last.
