@@ -440,15 +440,22 @@ fn verbs(command: &clap::Command, before: &str) -> Vec<String> {
     found
 }
 
-/// The verbs in the table under "Commands": in the first cell, the words before an argument or an option.
+/// The verbs in the table under "Commands": in the first cell, the words before an argument or an option. Single words
+/// that follow, each in its own backticks, stand in the place of the last word: "`a b`, `c`" is `a b` and `a c`.
 fn verbs_of_readme(readme: &str) -> Vec<String> {
     let rows =
         readme.lines().skip_while(|l| *l != "## Commands").skip(1).take_while(|l| !l.starts_with("## "));
-    let cells = rows.filter_map(|row| row.strip_prefix("| `")?.split_once('`').map(|(cell, _)| cell));
     let is_word = |w: &&str| w.chars().all(|c| c.is_lowercase() || c == '-') && !w.starts_with('-');
-    let verbs = cells.map(|cell| cell.split(' ').take_while(is_word).collect::<Vec<_>>().join(" "));
-    // The table of options beside it has no word before its dash.
-    verbs.filter(|verb| !verb.is_empty()).collect()
+    let mut verbs = Vec::new();
+    for cell in rows.filter_map(|row| row.strip_prefix("| `")?.split(" | ").next()) {
+        let mut quoted = cell.split('`').step_by(2);
+        let first: Vec<&str> = quoted.next().unwrap_or_default().split(' ').take_while(is_word).collect();
+        // The table of options beside it has no word before its dash.
+        let Some((_, before)) = first.split_last() else { continue };
+        verbs.push(first.join(" "));
+        verbs.extend(quoted.filter(|w| is_word(w)).map(|word| [before, &[word]].concat().join(" ")));
+    }
+    verbs
 }
 
 #[test]
@@ -461,8 +468,8 @@ fn the_readme_lists_the_verbs_there_are() {
     assert_eq!(listed, there);
     assert_eq!(
         verbs_of_readme(
-            "## Commands\n| `a b FILE [--x]` | y |\n| `man` | z |\n| `--y` | w |\n## Next\n| `no` |"
+            "## Commands\n| `a b FILE [--x]` | y |\n| `a c`, `d` or `F` | `e` |\n| `man` | z |\n| `--y` | w |\n## Next\n| `no` |"
         ),
-        ["a b", "man"]
+        ["a b", "a c", "a d", "man"]
     );
 }

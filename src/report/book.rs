@@ -6,7 +6,7 @@ use chrono::{DateTime, FixedOffset};
 use serde_json::json;
 
 use super::json_text;
-use super::layout::wrapped;
+use super::layout::{counted, wrapped};
 
 /// What a book holds.
 #[derive(Debug, Clone, PartialEq)]
@@ -91,8 +91,8 @@ pub fn info_text(info: &BookInfo) -> String {
     }
     let erased = match (info.erased, info.erasure_unfinished) {
         (0, false) => "nothing".to_owned(),
-        (n, false) => format!("{n} records"),
-        (n, true) => format!("{n} records, not yet carried through: give diver forget again"),
+        (n, false) => counted(n, "record"),
+        (n, true) => format!("{}, not yet carried through: give diver forget again", counted(n, "record")),
     };
     row("erased", &erased);
     for (kind, place, at) in &info.copies {
@@ -129,7 +129,10 @@ pub fn info_json(info: &BookInfo) -> String {
 #[must_use]
 pub fn check_line(check: &BookCheck) -> String {
     match &check.wrong {
-        None => format!("holds: {} records, {} runs, from the first to the last", check.records, check.runs),
+        None => {
+            let (records, runs) = (counted(check.records, "record"), counted(check.runs, "run"));
+            format!("holds: {records}, {runs}, from the first to the last")
+        }
         Some(wrong) => format!("does not hold: {wrong}"),
     }
 }
@@ -158,7 +161,8 @@ pub fn check_text(check: &BookCheck) -> String {
         }
     }
     for (place, at, why, records) in &check.erasures {
-        let line = format!("record {place} of {} erased {records} records: {why}", at.to_rfc3339());
+        let erased = counted(*records as u64, "record");
+        let line = format!("record {place} of {} erased {erased}: {why}", at.to_rfc3339());
         text.push_str(&wrapped("  ", "    ", &line));
     }
     let _ = writeln!(text, "  head of the chain\n    {}", check.head);

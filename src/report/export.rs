@@ -5,7 +5,7 @@ use std::fmt::Write as _;
 use serde_json::json;
 
 use super::json_text;
-use super::layout::wrapped;
+use super::layout::{counted, wrapped};
 use crate::entry::RunNumber;
 
 /// How a run was written.
@@ -62,22 +62,11 @@ impl Exported {
 /// What was exported, as text.
 #[must_use]
 pub fn text(exported: &Exported) -> String {
-    let mut text = wrapped(
-        "",
-        "  ",
-        &format!(
-            "{}: {} runs with {} judgements, {}",
-            exported.folder,
-            exported.runs.len(),
-            exported.judgements,
-            exported
-                .entries
-                .iter()
-                .map(|(register, n)| format!("{n} in the register {register}"))
-                .collect::<Vec<_>>()
-                .join(", ")
-        ),
-    );
+    let mut parts =
+        vec![counted(exported.runs.len() as u64, "run"), counted(exported.judgements as u64, "judgement")];
+    let kept = exported.entries.iter().filter(|(_, count)| *count > 0);
+    parts.extend(kept.map(|(register, count)| counted(*count as u64, register)));
+    let mut text = wrapped("", "  ", &format!("{}: {}", exported.folder, parts.join(", ")));
     let divers = if exported.with_divers {
         "Divers are in it: whoever has the folder has their details. The book knows of it, and names it when one is forgotten."
     } else {

@@ -112,6 +112,12 @@ pub fn columns(text: &str) -> usize {
     text.chars().filter(|c| !('\u{300}'..='\u{36f}').contains(c)).count()
 }
 
+/// A number of things: "1 run", "2 runs".
+#[must_use]
+pub fn counted(count: u64, thing: &str) -> String {
+    format!("{count} {thing}{}", if count == 1 { "" } else { "s" })
+}
+
 /// Numbers as "1, 3-5 and 9".
 #[must_use]
 pub fn numbers(list: &[usize]) -> String {

@@ -110,7 +110,7 @@ pub enum WorkError {
         "{diver}: {what}, but another program is reading the book, and until it stops the bytes stay in the file or its \
          log: close it, then give the same command again\n{copies}",
         what = if *records == 0 { "the erasure is not finished yet".to_owned() }
-               else { format!("{records} records are erased and cannot be read any more") },
+               else { format!("{} erased and cannot be read any more", if *records == 1 { "1 record is".into() } else { format!("{records} records are") }) },
         copies = copies.trim_end()
     )]
     StillHeld {

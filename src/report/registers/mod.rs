@@ -18,6 +18,10 @@ pub use show::{copies_text, forgotten_json, forgotten_text, json, json_value, sa
 
 /// An entry of any register.
 #[derive(Debug, Clone, PartialEq)]
+#[expect(
+    clippy::large_enum_variant,
+    reason = "entries are handled one at a time; a box would only be in the way"
+)]
 pub enum AnyEntry {
     /// An orifice.
     Orifice(Orifice),
