@@ -114,7 +114,7 @@ fn found(set: &Setting) -> Option<f64> {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig::with_cases(64))]
+    #![proptest_config(ProptestConfig { cases: 64, failure_persistence: None, ..ProptestConfig::default() })]
 
     #[test]
     fn more_doubt_never_raises_the_ip(plain in any_plain(), which in 0_usize..9, more in 0.01_f64..1.0) {
