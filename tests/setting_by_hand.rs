@@ -1,5 +1,7 @@
 //! Settings worked by hand, the working in comments.
 
+#![allow(clippy::float_cmp, reason = "a division of a gauge is a printed decimal, the same on both sides")]
+
 mod setting_support;
 
 use ebbline::entry::{Amount, Id, Meter, MeterKind, Papers};

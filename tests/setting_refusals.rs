@@ -1,5 +1,7 @@
 //! Where a setting ends: each boundary of the refusals, and calls that are wrong.
 
+#![allow(clippy::float_cmp, reason = "a division of a gauge is a printed decimal, the same on both sides")]
+
 mod setting_support;
 
 use chrono::NaiveDate;

@@ -5,6 +5,8 @@
 //! the dive (about 5 % from day to day, itself known with eight degrees of freedom), what the sessions misread; the IP gauge, how the IP comes back, how far it rises; the
 //! weather, the oxygen, the water. The room sees the bench's line, the sessions' prediction and the papers; the truth is kept.
 
+#![allow(clippy::print_stdout, reason = "a study tells what it found")]
+
 mod setting_support;
 #[path = "simulator/random.rs"]
 mod random;
