@@ -29,7 +29,7 @@
 //!
 //! Left out on purpose, beside what each room's own page names:
 //!
-//! - Nothing here is a setting: the diver's uptake, gauge, first stage and depth are not in it yet.
+//! - A setting ([`setting`]) is for rest on a day like those measured; it never replaces watching PO2.
 //! - The line holds between the lowest and the highest point, for the orifice as tested, while the hole is choked.
 //! - Correlation between sources is not modelled: two instruments calibrated against one standard would need it.
 //! - Litres STPD are ideal-gas litres; the real gas enters in the critical flow function alone.
@@ -50,6 +50,7 @@ pub mod entry;
 pub mod series;
 pub mod bench;
 pub mod uptake;
+pub mod setting;
 pub mod report;
 pub mod plot;
 pub mod clock;
