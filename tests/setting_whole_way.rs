@@ -31,7 +31,7 @@ fn a_run_with_air_is_set_as_oxygen() {
     let ratio = oxygen.line.slope / analysis.line.random.slope;
     assert!((ratio - 0.951).abs() < 0.004, "{ratio}");
     // The hole is the same, whatever the gas.
-    let difference = oxygen.effective_diameter_um / analysis.effective_diameter_um.0 - 1.0;
+    let difference = oxygen.effective_diameter_um / analysis.effective_diameter_um.unwrap().0 - 1.0;
     assert!(difference.abs() < 0.004, "{difference}");
     // Only the conversion is uncertain beside what the run itself is.
     assert_eq!(oxygen.line.common.len(), analysis.line.common.len() + 1);
