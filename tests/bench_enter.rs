@@ -498,6 +498,8 @@ fn hostile_names_and_options_are_refused_in_one_sentence_and_leave_nothing() {
         ("--acceptance", "LAX", "no acceptance LAX"),
         ("--gas", "argon", "oxygen, air"),
         ("--gas", "air", "gas_factor"),
+        ("--oxygen", "99.5", "unit"),
+        ("--oxygen", "101 %", "at most 100 %"),
         ("--purpose", "fun", "as-found"),
         ("--barometer", "1009.2", "unit"),
         ("--barometer", "1009.2 bar", "unit"),
@@ -563,6 +565,28 @@ fn a_reader_that_goes_away_ends_the_talk_quietly() {
     assert_eq!(status, 0, "{stderr}");
     assert!(!stderr.contains("panicked") && bench.points(1) >= 1, "{stderr}");
     bench.holds();
+}
+
+#[test]
+fn a_purity_that_is_stated_is_kept_and_one_that_is_not_is_said() {
+    let bench = Bench::new("purity").with_run();
+    let arguments = ["bench", "enter", "A", "--from", "run.toml", "--oxygen", "99.95 % ± 0.02 %"];
+    let (_, stderr, status) = said(&bench.program(&arguments, "10 0.51\n"));
+    assert_eq!((status, stderr.contains("purity")), (0, false), "{stderr}");
+    let purity = bench.run(1).run.purity.unwrap();
+    assert!((purity.fraction - 0.9995).abs() < 1e-12 && (purity.expanded - 0.0002).abs() < 1e-12);
+    let (_, stderr, _) = said(&bench.program(&arguments[..5], "10 0.51\n"));
+    assert!(stderr.contains("no purity of the oxygen is stated: taken as 99.5 % ± 0.3 %"), "{stderr}");
+}
+
+#[test]
+fn a_line_that_does_not_rise_is_said_without_a_crossing() {
+    let bench = Bench::new("flat").with_run();
+    let typed: String = (0..8).map(|i| format!("{} 0.4{}\n", 5 + i, 10 - i)).collect();
+    let (stdout, stderr, status) =
+        said(&bench.program(&["bench", "enter", "A", "--from", "run.toml"], &typed));
+    assert_eq!(status, 0, "{stderr}");
+    assert!(!stdout.contains("inf ") && !stdout.contains("NaN"), "{stdout}");
 }
 
 #[test]

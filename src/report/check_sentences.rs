@@ -118,6 +118,11 @@ fn repeatable(check: &Check) -> String {
 
 fn through_zero(check: &Check, units: &Units) -> String {
     let Finding::Crossing { interval_bar, cause } = check.finding else { return String::new() };
+    if !check.value.is_some_and(f64::is_finite) {
+        return "the flow does not rise with the pressure, so the line crosses its axis nowhere: look whether the \
+                pressure reached the orifice, and whether flow and pressure were mixed up"
+            .to_owned();
+    }
     // Kilopascals, as in the limits, unless another unit was asked for.
     let (factor, symbol) = if units.pressure_symbol() == "bar" {
         (100.0, "kPa")

@@ -284,6 +284,8 @@ pub fn running(
         parts.push(format!("{word} so far ({} to {})", place(low), place(high)));
     }
     let crossing = analysis.checks.iter().find(|c| c.kind == CheckKind::ThroughZero).and_then(|c| c.value);
+    // A line that hardly rises crosses nowhere.
+    let crossing = crossing.filter(|kpa| kpa.is_finite());
     parts.extend(crossing.map(|kpa| format!("crossing {} kPa", fixed(kpa, 1))));
     let mut text = wrapped("  ", "    ", &parts.join("; "));
     if let Some(about) = point.and_then(|point| residual(analysis, point)) {

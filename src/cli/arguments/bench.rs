@@ -43,6 +43,9 @@ pub struct Enter {
     /// oxygen, air, nitrogen or helium
     #[arg(long, value_name = "GAS")]
     pub gas: Option<String>,
+    /// Oxygen in the oxygen (else "99.5 % ± 0.3 %")
+    #[arg(long, value_name = "SHARE")]
+    pub oxygen: Option<String>,
     /// acceptance, as-found, as-left or check
     #[arg(long, value_name = "PURPOSE")]
     pub purpose: Option<String>,

@@ -28,6 +28,9 @@ pub(super) fn enter(arguments: &arguments::Enter, global: &Global) -> Result<Exi
     };
     // The gas first, because the papers of a meter are read for it.
     said(&mut start, Question::Gas, &arguments.gas)?;
+    if let Some(purity) = &arguments.oxygen {
+        start.take_purity(purity)?;
+    }
     if let Some(file) = &arguments.from {
         start.take_from(file)?;
     }

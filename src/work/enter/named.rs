@@ -154,11 +154,13 @@ fn not_in(file: &str, table: &'static str) -> EnterError {
 }
 
 fn not_registered(what: &'static str, id: &Id, names: &[String]) -> WorkError {
+    let add = if what == "acceptance" { "ebbline acceptance add" } else { "ebbline instrument add" };
     let shown = names.len().min(NAMES_LISTED);
     let more = if names.len() > shown { ", …" } else { "" };
     let there = match shown {
-        0 => ", which holds none yet: add it, or name a run file that has its papers (with a slash or .toml)"
-            .to_owned(),
+        0 => format!(
+            ", which holds none yet: {add} adds one, or name a run file that has it (with a slash, or ending in .toml)"
+        ),
         _ => format!(" (there: {}{more})", names[..shown].join(", ")),
     };
     EnterError::NotRegistered { what, id: id.to_string(), there }.into()

@@ -20,7 +20,7 @@ use crate::entry::{
 use crate::gas::Species;
 use crate::quantity::text::{uncertain, value, zero_reading};
 use crate::quantity::unit::Unit;
-use crate::quantity::{AbsolutePressure, IndicatedFlow, PressureRate, Quantity, Temperature};
+use crate::quantity::{AbsolutePressure, IndicatedFlow, PressureRate, Quantity, Share, Temperature};
 use crate::record::{DEFAULT_PURITY, Note, Setup, meter_suits, read_setup};
 use crate::report::enter_questions::{Question, asked_for, bench_words};
 use crate::report::enter_words::stands;
@@ -159,7 +159,7 @@ impl Start {
             self.notes.push(format!("judged by the limits {own} of the orifice, not by those of the file"));
         }
         self.gas = self.gas.or(setup.gas);
-        self.purity = setup.purity;
+        self.purity = self.purity.or(setup.purity);
         self.build = setup.build;
         self.purpose = self.purpose.or(setup.purpose);
         self.meter = self.meter.take().or(setup.meter);
@@ -191,6 +191,25 @@ impl Start {
             loaded.notes.iter().partition(|note| **note == Note::PurityTaken);
         self.notes.extend(said.iter().map(ToString::to_string));
         Ok(Setup { purity: loaded.value.purity.filter(|_| taken.is_empty()), ..loaded.value })
+    }
+
+    /// Takes the share of oxygen in the oxygen, as in "99.5 % ± 0.3 %".
+    ///
+    /// # Errors
+    /// A text that is no share, or one that is nought or over 100 %.
+    pub fn take_purity(&mut self, text: &str) -> Result<(), WorkError> {
+        let given = uncertain::<Share>(text).map_err(EnterError::from)?;
+        let fraction = given.value.as_ratio();
+        if fraction <= 0.0 || fraction > 1.0 {
+            let says = format!(
+                "\"{}\" cannot be: oxygen has above 0 % and at most 100 % of it",
+                text.escape_debug()
+            );
+            return Err(EnterError::Refused(says).into());
+        }
+        let expanded = given.expanded.map_or(DEFAULT_PURITY.expanded, Share::as_ratio);
+        self.purity = Some(Purity { fraction, expanded });
+        Ok(())
     }
 
     /// The orifice.
@@ -406,6 +425,9 @@ impl Start {
         let needed = |question| EnterError::Needed(asked_for(question));
         let meter = self.meter.ok_or_else(|| needed(Question::Meter))?;
         suits(&meter, gas)?;
+        if let (Some(_), true) = (self.purity, gas != Species::Oxygen) {
+            self.notes.push(format!("the gas is {}: the purity of oxygen is not used", gas.name()));
+        }
         let mut purity = self.purity.filter(|_| gas == Species::Oxygen);
         if gas == Species::Oxygen && purity.is_none() {
             self.notes.push(Note::PurityTaken.to_string());
