@@ -1,4 +1,8 @@
 //! `orifice show`: an orifice's entry, its runs with the figures they were judged on, and the trend through them.
+//!
+//! Accepted here are runs that were judged, whatever the verdict: a clogging orifice fails in the end, and its flow then
+//! is as good a figure as those before. Figures are those stored with the judgement that holds; the trend is worked out
+//! anew from them.
 
 use std::path::PathBuf;
 
