@@ -87,7 +87,7 @@ pub fn text(runs: &[ListedRun], more: bool, units: &Units) -> String {
         &rows,
         true,
     );
-    text.push_str("  Flow STPD (0 °C, 101.325 kPa, dry) at the nominal IP over 1.01325 bar, U for 95 %.\n");
+    text.push_str("  Flow STPD (0 °C, 101.325 kPa, dry) at nominal IP and 1.01325 bar; U for 95 %\n");
     if more {
         text.push_str("  Older runs are not shown: --all shows every run.\n");
     }
