@@ -37,14 +37,13 @@ use choke::{ChokePoint, ChokeRatio, CommonEffect};
 use convert::gas_ratio;
 use correct::{Correction, REFERENCE_TEMPERATURE_K, Raw, Shift, Source};
 use history::Accepted;
-use line::{COVERAGE_PROBABILITY, FlowAt, LinePoints, OrificeLine, Part, fit_orifice_line, limits_of};
+use line::{FlowAt, LinePoints, OrificeLine, Part, fit_orifice_line, limits_of};
 
 use crate::entry::{Acceptance, Limits, PointReading, Run};
 use crate::gas::{self, Species};
 use crate::quantity::{
     AbsolutePressure, GaugePressure, PressureDifference, StpdFlow, Temperature, Uncertain,
 };
-use crate::stats::coverage::coverage_factor;
 use crate::stats::distribution::chi_squared_upper;
 use crate::stats::line::{CalibrationPoints, Line, LineError, fit};
 
@@ -564,12 +563,11 @@ fn sonic_conductance(line: &OrificeLine) -> Option<(f64, f64)> {
     Some((gas::sonic_conductance(total.slope), gas::sonic_conductance(total.slope_u)))
 }
 
-/// The line with all its uncertainty, where its slope is above nought with 95 %; a meter that is stuck says nothing of
-/// a hole.
+/// The line with all its uncertainty, where its slope lies above nought by three standard uncertainties; a meter that is
+/// stuck says nothing of a hole.
 fn rising(line: &OrificeLine) -> Option<Line> {
     let total = line.total();
-    (total.slope - coverage_factor(COVERAGE_PROBABILITY, line.random_dof) * total.slope_u > 0.0)
-        .then_some(total)
+    (total.slope > 3.0 * total.slope_u).then_some(total)
 }
 
 /// From the slope, in the middle of the span: the flow that the slope alone would pass there.
