@@ -361,7 +361,7 @@ mod tests {
         for dof in [1e4, 1.5e4, 1e6, 1e9] {
             for p in [0.6, 0.9, 0.975, 0.995, 0.99997, 0.999_999] {
                 let t = student_t_quantile(p, dof);
-                let slope = libm::exp(-0.5 * t * t) / (2.0 * std::f64::consts::PI).sqrt();
+                let slope = libm::exp(-0.5 * t * t) / (2.0 * PI).sqrt();
                 let off = (student_t_upper(t, dof) - (1.0 - p)) / slope;
                 assert!(off.abs() < 1e-9, "dof {dof}, p {p}: {off:e}");
             }
