@@ -195,16 +195,29 @@ pub fn polynomial(x: &[f64], y: &[f64], degree: usize) -> Result<OrdinaryFit, Or
 ///
 /// As [`fit`].
 pub fn studentised_residuals(x: &[f64], y: &[f64]) -> Result<Vec<Option<f64>>, OrdinaryError> {
-    let line = polynomial(x, y, 1)?;
+    if x.len() != y.len() {
+        return Err(OrdinaryError::Lengths { column: 1, length: x.len(), y: y.len() });
+    }
+    check(&[x], y, 2)?;
+    // A straight line about its centre is written down in four sums, and keeps its digits there.
     let n = x.len() as f64;
-    let mean = x.iter().sum::<f64>() / n;
+    let (mean, level) = (x.iter().sum::<f64>() / n, y.iter().sum::<f64>() / n);
     let square: f64 = x.iter().map(|x| (x - mean) * (x - mean)).sum();
+    let widest = x.iter().fold(0.0_f64, |m, x| m.max((x - mean).abs()));
+    if widest <= 4.0 * f64::EPSILON * mean.abs() {
+        return Err(OrdinaryError::Collinear(1));
+    }
+    let slope = x.iter().zip(y).map(|(x, y)| (x - mean) * (y - level)).sum::<f64>() / square;
+    let residual = |x: &f64, y: &f64| (y - level) - slope * (x - mean);
+    let largest = y.iter().fold(0.0_f64, |m, y| m.max(y.abs()));
+    let perfect = x.iter().zip(y).all(|(x, y)| residual(x, y).abs() <= 8.0 * f64::EPSILON * largest);
+    let sd = (x.iter().zip(y).map(|(x, y)| residual(x, y) * residual(x, y)).sum::<f64>() / (n - 2.0)).sqrt();
     Ok(x.iter()
-        .zip(&line.residuals)
-        .map(|(x, residual)| {
+        .zip(y)
+        .map(|(x, y)| {
             let free = 1.0 - 1.0 / n - (x - mean) * (x - mean) / square;
             // A leverage of 1 comes out of rounding a little below it.
-            (!line.perfect && free > 1e-12).then(|| residual / (line.residual_sd * free.sqrt()))
+            (!perfect && free > 1e-12).then(|| residual(x, y) / (sd * free.sqrt()))
         })
         .collect())
 }
