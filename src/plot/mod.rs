@@ -16,6 +16,7 @@ mod number;
 mod letters;
 mod svg;
 mod axis;
+mod range;
 mod run;
 mod history;
 

@@ -211,3 +211,10 @@ fn escape(text: &str) -> String {
     }
     out
 }
+
+/// A prefix that makes an id of whatever follows it: a letter, then letters, digits, `-`, `_`; what is none becomes "ebb".
+pub(super) fn tame_prefix(prefix: &str) -> String {
+    let tame: String =
+        prefix.chars().filter(|c| c.is_ascii_alphanumeric() || matches!(c, '-' | '_')).collect();
+    if tame.starts_with(|c: char| c.is_ascii_alphabetic()) { tame } else { "ebb".to_owned() }
+}

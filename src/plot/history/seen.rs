@@ -11,6 +11,7 @@ use crate::entry::Purpose;
 use crate::report::Units;
 
 use super::super::letters::clean;
+use super::super::range::{drawable, framed, hull, reaching};
 
 /// How far beyond the flows, in spans of theirs with their bars, the limits still widen the range.
 const LIMITS_REACH: f64 = 6.0;
@@ -25,8 +26,6 @@ const AHEAD: f64 = 0.3;
 const LEAVING_DAYS: f64 = 366.0;
 /// The axis of dates shows so many days at least.
 const LEAST_DAYS: f64 = 3.0;
-/// An axis begins at nought when its lowest number is under this share of its highest.
-const FROM_NOUGHT: f64 = 0.3;
 /// Room left between the outermost number and the frame, as a share of the range.
 const PADDING: f64 = 0.05;
 /// |E_n| above this says that two runs differ by more than their uncertainties explain (ISO/IEC 17043:2010,
@@ -181,35 +180,8 @@ fn range_of_flows(marks: &[Mark], line: Option<&Line>, days: (f64, f64)) -> (f64
             .chain([l.at(l.end().min(days.1))])
     });
     let core = reaching(core, trend, TREND_REACH);
-    framed(reaching(core, marks.iter().filter_map(|m| m.limits).flat_map(|(a, b)| [a, b]), LIMITS_REACH))
-}
-
-/// Whether a number can stand on an axis: finite, and not so large that differences drown.
-fn drawable(x: f64) -> bool {
-    x.is_finite() && x.abs() < 1e12
-}
-
-/// Lowest and highest of values with bars.
-fn hull(values: impl Iterator<Item = (f64, f64)>) -> Option<(f64, f64)> {
-    values.fold(None, |hull, (x, bar)| match hull {
-        None => Some((x - bar, x + bar)),
-        Some((low, high)) => Some((f64::min(low, x - bar), f64::max(high, x + bar))),
-    })
-}
-
-/// A range widened to values that lie no further than `reach` spans beyond it.
-fn reaching(range: (f64, f64), values: impl Iterator<Item = f64>, reach: f64) -> (f64, f64) {
-    let span = (range.1 - range.0).max(0.05 * range.1.abs());
-    let near = (range.0 - reach * span, range.1 + reach * span);
-    values.filter(|v| (near.0..=near.1).contains(v)).fold(range, |(low, high), v| (low.min(v), high.max(v)))
-}
-
-/// A range with room around it, from nought when it nearly begins there, and never without width.
-fn framed((low, high): (f64, f64)) -> (f64, f64) {
-    let least = (1e-3 * low.abs().max(high.abs())).max(1e-9);
-    let (low, high) = if high - low < least { (low - least, high + least) } else { (low, high) };
-    let from_nought = low >= 0.0 && low < FROM_NOUGHT * high;
-    let low = if from_nought { 0.0 } else { low };
-    let room = PADDING * (high - low);
-    (if from_nought { 0.0 } else { low - room }, high + room)
+    framed(
+        reaching(core, marks.iter().filter_map(|m| m.limits).flat_map(|(a, b)| [a, b]), LIMITS_REACH),
+        PADDING,
+    )
 }

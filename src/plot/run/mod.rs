@@ -16,7 +16,7 @@ mod residual_strip;
 mod margin;
 
 use super::ink::PAPER;
-use super::svg::{Head, Svg};
+use super::svg::{Head, Svg, tame_prefix};
 use crate::bench::Analysis;
 use crate::entry::Run;
 use crate::report::Units;
@@ -87,13 +87,10 @@ impl Default for RunPlot {
 
 impl RunPlot {
     fn within_bounds(&self) -> Self {
-        let id_prefix: String =
-            self.id_prefix.chars().filter(|c| c.is_ascii_alphanumeric() || matches!(c, '-' | '_')).collect();
-        let named = id_prefix.starts_with(|c: char| c.is_ascii_alphabetic());
         Self {
             width: self.width.clamp(WIDTH.0, WIDTH.1),
             height: self.height.clamp(HEIGHT.0, HEIGHT.1),
-            id_prefix: if named { id_prefix } else { "ebb".to_owned() },
+            id_prefix: tame_prefix(&self.id_prefix),
             transparent: self.transparent,
             units: self.units,
         }

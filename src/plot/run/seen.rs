@@ -3,6 +3,7 @@
 //! Comes in: a run, its analysis, the units. Goes out: [`Seen`]: points, window and ranges as plain finite numbers.
 //! Equations: none but changes of unit. Left out: pixels.
 
+use super::super::range::{drawable, framed, hull, reaching};
 use super::RunPlot;
 use crate::bench::convert::gas_ratio;
 use crate::bench::{Analysis, Point, WhyNot};
@@ -17,8 +18,6 @@ pub(super) const BAR_COVERAGE: f64 = 2.0;
 const LEFT_OUT_REACH: f64 = 0.6;
 /// How far beyond the points, in spans of theirs, the acceptance window still widens the range.
 const WINDOW_REACH: f64 = 6.0;
-/// An axis begins at nought when its lowest number is under this share of its highest.
-const FROM_NOUGHT: f64 = 0.3;
 /// Room left between the outermost number and the frame, as a share of the range.
 const PADDING: f64 = 0.04;
 
@@ -124,7 +123,7 @@ impl Seen {
                 used().map(|m| (m.pressure, m.pressure_bar)).chain(nominal.iter().map(|n| (n.pressure, 0.0))),
             );
             let others = marks.iter().filter(|m| m.how != Use::InTheLine).map(|m| m.pressure);
-            framed(reaching(core.unwrap_or((0.0, 1.0)), others, LEFT_OUT_REACH))
+            framed(reaching(core.unwrap_or((0.0, 1.0)), others, LEFT_OUT_REACH), PADDING)
         };
         let flows = {
             let core =
@@ -133,7 +132,7 @@ impl Seen {
             let core = reaching(core.unwrap_or((0.0, 1.0)), others, LEFT_OUT_REACH);
             let ends = nominal.iter().flat_map(|n| [n.flow - n.expanded, n.flow + n.expanded]);
             let core = reaching(core, ends, WINDOW_REACH);
-            framed(reaching(core, window.iter().flat_map(|w| [w.low, w.high]), WINDOW_REACH))
+            framed(reaching(core, window.iter().flat_map(|w| [w.low, w.high]), WINDOW_REACH), PADDING)
         };
         let residual_reach = used().map(|m| m.residual.abs() + m.residual_bar).fold(0.0, f64::max);
         // Residuals that are nothing but rounding are not blown up to the height of the strip.
@@ -231,34 +230,4 @@ fn window(run: &Run, analysis: &Analysis, units: &Units) -> Option<Window> {
         Window { low: shown(low), nominal: shown(acceptance.flow.as_l_min()), high: shown(high), converted };
     ([window.low, window.nominal, window.high].iter().all(|x| drawable(*x)) && window.low <= window.high)
         .then_some(window)
-}
-
-/// Whether a number can stand on an axis: finite, and not so large that differences drown.
-fn drawable(x: f64) -> bool {
-    x.is_finite() && x.abs() < 1e12
-}
-
-/// Lowest and highest of values with bars.
-fn hull(values: impl Iterator<Item = (f64, f64)>) -> Option<(f64, f64)> {
-    values.fold(None, |hull, (x, bar)| match hull {
-        None => Some((x - bar, x + bar)),
-        Some((low, high)) => Some((f64::min(low, x - bar), f64::max(high, x + bar))),
-    })
-}
-
-/// A range widened to values that lie no further than `reach` spans beyond it.
-fn reaching(range: (f64, f64), values: impl Iterator<Item = f64>, reach: f64) -> (f64, f64) {
-    let span = (range.1 - range.0).max(0.05 * range.1.abs());
-    let near = (range.0 - reach * span, range.1 + reach * span);
-    values.filter(|v| (near.0..=near.1).contains(v)).fold(range, |(low, high), v| (low.min(v), high.max(v)))
-}
-
-/// A range with room around it, from nought when it nearly begins there, and never without width.
-fn framed((low, high): (f64, f64)) -> (f64, f64) {
-    let least = (1e-3 * low.abs().max(high.abs())).max(1e-9);
-    let (low, high) = if high - low < least { (low - least, high + least) } else { (low, high) };
-    let from_nought = low >= 0.0 && low < FROM_NOUGHT * high;
-    let low = if from_nought { 0.0 } else { low };
-    let room = PADDING * (high - low);
-    (if from_nought { 0.0 } else { low - room }, high + room)
 }
