@@ -24,7 +24,7 @@ pub use instrument::{
     Instrument, InstrumentPapers, Measures, ModbusNumber, ModbusTable, Protocol, Socket, WordOrder,
 };
 pub use judgement::{Decision, StoredFigures, StoredPart, StoredVerdict};
-pub use number::RunNumber;
+pub use number::{RunNumber, SessionNumber};
 pub use orifice::Orifice;
 pub use papers::{Amount, FloatScale, Meter, MeterKind, Papers, Transducer};
 pub use run::{
@@ -33,7 +33,7 @@ pub use run::{
 };
 pub use session::{
     Assumptions, CalibratedAt, CellPapers, CellReadings, CellSignal, Cylinder, Event, Feeds, Injection,
-    LeakTest, LineReference, LoopKept, Metered, Place, Rest, Session, SessionConditions, SessionReadings,
-    What,
+    LeakTest, LineReference, LoopKept, Metered, Place, Rest, Session, SessionConditions, SessionLeftOut,
+    SessionReadings, What,
 };
 pub use shop::{Logo, Shop, Signatory};

@@ -1,37 +1,55 @@
-//! Numbers the book gives to runs.
+//! Numbers the book gives to runs and sessions.
 
-/// The number of a run in the book, shown as `R0001`; counted from 1 and never given twice.
-#[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
-pub struct RunNumber(u32);
+/// A number the book gives: a letter and at least four digits, counted from 1 and never given twice.
+macro_rules! number {
+    ($(#[$about:meta])* $name:ident, $letter:literal, $lower:literal) => {
+        $(#[$about])*
+        #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]
+        pub struct $name(u32);
 
-impl RunNumber {
-    /// The number counted from 1; none for nought.
-    #[must_use]
-    pub const fn new(number: u32) -> Option<Self> {
-        if number == 0 { None } else { Some(Self(number)) }
-    }
+        impl $name {
+            /// The number counted from 1; none for nought.
+            #[must_use]
+            pub const fn new(number: u32) -> Option<Self> {
+                if number == 0 { None } else { Some(Self(number)) }
+            }
 
-    /// From its text: an `R` of either case and at least four digits (`R0001`, `r12345`); none for anything else.
-    #[must_use]
-    pub fn parse(text: &str) -> Option<Self> {
-        let digits = text.strip_prefix(['R', 'r'])?;
-        let plain = digits.bytes().all(|byte| byte.is_ascii_digit());
-        let padded_once = digits.len() == 4 || (digits.len() > 4 && !digits.starts_with('0'));
-        if plain && padded_once { digits.parse().ok().and_then(Self::new) } else { None }
-    }
+            /// From its text: the letter in either case and at least four digits; none for anything else.
+            #[must_use]
+            pub fn parse(text: &str) -> Option<Self> {
+                let digits = text.strip_prefix([$letter, $lower])?;
+                let plain = digits.bytes().all(|byte| byte.is_ascii_digit());
+                let padded_once = digits.len() == 4 || (digits.len() > 4 && !digits.starts_with('0'));
+                if plain && padded_once { digits.parse().ok().and_then(Self::new) } else { None }
+            }
 
-    /// The number counted from 1.
-    #[must_use]
-    pub const fn get(self) -> u32 {
-        self.0
-    }
+            /// The number counted from 1.
+            #[must_use]
+            pub const fn get(self) -> u32 {
+                self.0
+            }
+        }
+
+        impl std::fmt::Display for $name {
+            fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+                write!(f, "{}{:04}", $letter, self.0)
+            }
+        }
+    };
 }
 
-impl std::fmt::Display for RunNumber {
-    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
-        write!(f, "R{:04}", self.0)
-    }
-}
+number!(
+    /// The number of a run in the book, shown as `R0001`.
+    RunNumber,
+    'R',
+    'r'
+);
+number!(
+    /// The number of a session in the book, shown as `S0001`.
+    SessionNumber,
+    'S',
+    's'
+);
 
 #[cfg(test)]
 mod tests {
@@ -47,5 +65,12 @@ mod tests {
         for other in ["R0000", "R007", "R00007", "S0001", "R", "R-001", "R0001x", "R99999999999", ""] {
             assert_eq!(RunNumber::parse(other), None, "{other}");
         }
+    }
+
+    #[test]
+    fn a_session_number_has_a_letter_of_its_own() {
+        assert_eq!(SessionNumber::new(12).unwrap().to_string(), "S0012");
+        assert_eq!(SessionNumber::parse("s0012"), SessionNumber::new(12));
+        assert_eq!(SessionNumber::parse("R0012"), None);
     }
 }

@@ -50,6 +50,19 @@ pub struct Session {
     pub cylinder: Option<Cylinder>,
 }
 
+/// What somebody left out of a session, with the reason.
+#[derive(Debug, Clone, PartialEq)]
+pub struct SessionLeftOut {
+    /// First and last second on the time column; none when the whole session is left out of the diver's uptake.
+    pub stretch_s: Option<(f64, f64)>,
+    /// Why.
+    pub why: String,
+    /// By whom, where that was said.
+    pub by: Option<String>,
+    /// When it was decided.
+    pub at: DateTime<FixedOffset>,
+}
+
 /// Where the diver rested.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Place {
