@@ -8,7 +8,7 @@ use chrono::NaiveDate;
 use super::layout::{counted, table, wrapped};
 use super::number::{figures, fixed, u_alone};
 use super::setting_parts::{depth_table, depths, drift, injected, lines, proof, water};
-use super::setting_sentences::{against, source_name, warning, why_not as refusal};
+use super::setting_sentences::{against, max_depth, source_name, warning, why_not as refusal};
 use super::setting_words::{
     bar_on_gauge, chance, data, diameter, injection, ip_given, ip_on_gauge, minutes, psi_on_gauge, rate,
     share_down,
@@ -18,13 +18,15 @@ use crate::bench::Analysis;
 use crate::bench::Warning as BenchWarning;
 use crate::entry::Run;
 use crate::setting::{
-    AtIp, Described, FirstStageKind, HYPOXIA_BAR, Judged, OrificeSetting, Setting, SettingOptions, Warning,
-    WhyNot,
+    AtIp, Described, FirstStageKind, HYPOXIA_BAR, Judged, LARGEST_SHORTFALL, OrificeSetting, Setting,
+    SettingOptions, Warning, WhyNot,
 };
 use crate::uptake::Uptake;
 
 /// Most rows of the table over IP in the text.
 const MOST_ROWS: usize = 12;
+/// Most rows of the table over depth in the text.
+const MOST_DEPTHS: usize = 9;
 
 /// The run an orifice's line comes from.
 #[derive(Debug, Clone, Copy)]
@@ -192,12 +194,13 @@ pub fn text(reported: &Reported<'_>, units: &Units) -> String {
         let at = given_or_set(reported, described, units);
         section(
             &format!("Depth, {} water, {at} through {}", water(described), orifice.orifice),
-            &(lines(&depths(reported, described, units)) + &depth_table(reported, described, units)),
+            &(lines(&depths(reported, described, units))
+                + &depth_table(reported, described, units, MOST_DEPTHS)),
         );
         section(&format!("Proof before a dive, {at} set"), &lines(&proof(described, units)));
     }
     if let Some(orifice) = reported.shown() {
-        section(&table_title(reported, orifice), &ip_table(reported, orifice, units));
+        section(&table_title(reported, orifice, units), &ip_table(reported, orifice, units));
     }
     if setting.orifices.len() > 1 {
         section("Orifices", &comparison(reported, units));
@@ -339,7 +342,7 @@ fn judgement(reported: &Reported<'_>, judged: &Judged, units: &Units) -> String 
     text
 }
 
-fn table_title(reported: &Reported<'_>, orifice: &OrificeSetting) -> String {
+fn table_title(reported: &Reported<'_>, orifice: &OrificeSetting, units: &Units) -> String {
     let used = &reported.setting.used;
     let minutes = if used.loop_volume_l.is_some() {
         format!(
@@ -350,8 +353,12 @@ fn table_title(reported: &Reported<'_>, orifice: &OrificeSetting) -> String {
     } else {
         String::new()
     };
+    let place = match used.first_stage {
+        FirstStageKind::Uncompensated => String::new(),
+        FirstStageKind::Compensated => format!(" at {}", max_depth(reported.setting, units)),
+    };
     format!(
-        "IP by IP through {} (gauge; injection STPD, best estimate at the surface; chance to overfeed{minutes})",
+        "IP by IP through {} (gauge; injection STPD, best estimate at the surface; chance to overfeed{place}{minutes})",
         orifice.orifice
     )
 }
@@ -383,7 +390,7 @@ fn ip_table(reported: &Reported<'_>, orifice: &OrificeSetting, units: &Units) ->
                 cells.push(or_dash(drift.and_then(|d| d.minutes_high_to_low)));
                 cells.push(or_dash(drift.and_then(|d| d.minutes_to_hypoxia_at_work)));
             }
-            cells.push(mark(orifice, at));
+            cells.push(mark(reported.setting, orifice, at).to_owned());
             cells
         })
         .collect();
@@ -399,17 +406,19 @@ fn ip_table(reported: &Reported<'_>, orifice: &OrificeSetting, units: &Units) ->
     table(&heads, &symbols, &rows, true)
 }
 
-/// What a row of the table is.
-fn mark(orifice: &OrificeSetting, at: &AtIp) -> String {
+/// What a row of the table is, or what speaks against it.
+fn mark(setting: &Setting, orifice: &OrificeSetting, at: &AtIp) -> &'static str {
     let is = |bar: f64| (bar - at.ip_bar_gauge).abs() < 1e-9;
     if orifice.answer.as_ref().is_ok_and(|d| is(d.at.ip_bar_gauge)) {
-        "set".to_owned()
-    } else if orifice.never_exceed_ip_bar_gauge.is_some_and(is) {
-        "never exceed".to_owned()
-    } else if orifice.never_exceed_ip_bar_gauge.is_none_or(|most| at.ip_bar_gauge > most) {
-        "NO".to_owned()
+        "set"
+    } else if orifice.never_exceed_ip_bar_gauge.is_none_or(|most| at.ip_bar_gauge > most + 1e-9) {
+        "NO"
+    } else if at.largest_shortfall > LARGEST_SHORTFALL {
+        "too lean"
+    } else if at.least_shortfall < setting.used.shortfall {
+        "too rich"
     } else {
-        String::new()
+        ""
     }
 }
 

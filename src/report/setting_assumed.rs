@@ -76,7 +76,10 @@ pub(super) fn rows(reported: &Reported<'_>, units: &Units) -> Vec<Row> {
     rows.push(of(Defaulted::Diluent, format!("{} % oxygen", shortest(100.0 * used.diluent_fraction, 4))));
     rows.push(of(Defaulted::Po2High, format!("{} bar", shortest(used.po2_high_bar, 4))));
     rows.push(of(Defaulted::Po2Low, format!("{} bar", shortest(used.po2_low_bar, 4))));
-    rows.push(of(Defaulted::Work, format!("{} STPD", units.flow_text(used.work_l_min))));
+    rows.push(of(
+        Defaulted::Work,
+        format!("{} {} STPD", shortest(units.flow(used.work_l_min), 4), units.flow_symbol()),
+    ));
     rows.push(of(
         Defaulted::Oxygen,
         format!("{} % ± {} %", shortest(100.0 * used.purity, 5), shortest(200.0 * used.purity_u, 3)),

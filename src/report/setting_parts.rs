@@ -81,15 +81,9 @@ pub(super) fn injected(reported: &Reported<'_>, described: &Described, units: &U
         ),
         _ => format!("NONE: injects {} {symbol} more than that uptake", fixed(gap, decimals)),
     };
-    let richest = if at.least_shortfall >= 0.0 {
-        format!("{} at its richest", share_down(at.least_shortfall))
-    } else {
-        format!("{} too much at its richest", share_up(-at.least_shortfall))
-    };
-    lines.push((
-        "shortfall",
-        format!("{nominal}; {richest}, {} at its leanest", share_up(at.largest_shortfall)),
-    ));
+    let richest = short(at.least_shortfall, share_down);
+    let leanest = short(at.largest_shortfall, share_up);
+    lines.push(("shortfall", format!("{nominal}; {richest} at its richest, {leanest} at its leanest")));
     lines.push((
         "overfeeding",
         format!(
@@ -99,6 +93,11 @@ pub(super) fn injected(reported: &Reported<'_>, described: &Described, units: &U
         ),
     ));
     lines
+}
+
+/// A shortfall as a share, in percent; below nought it is too much.
+fn short(share: f64, rounded: impl Fn(f64) -> String) -> String {
+    if share >= 0.0 { rounded(share) } else { format!("{} too much", share_up(-share)) }
 }
 
 /// Another day's uptake and where it comes from.
@@ -172,7 +171,7 @@ pub(super) fn depths(reported: &Reported<'_>, described: &Described, units: &Uni
     let choke = (
         "choke ratio",
         format!(
-            "{known}; the first two depths take {}, the lower end of its 95 % interval",
+            "{known}; the depths where 1 % and a tenth are lost take {}, the lower end of its 95 % interval",
             fixed(limits.choke_ratio_low, 2)
         ),
     );
@@ -222,15 +221,17 @@ pub(super) fn depths(reported: &Reported<'_>, described: &Described, units: &Uni
     }
 }
 
-/// Most rows of a table over depth.
-const MOST_DEPTHS: usize = 9;
-
-/// Injection over depth as a table.
-pub(super) fn depth_table(reported: &Reported<'_>, described: &Described, units: &Units) -> String {
+/// Injection over depth as a table of about `most` rows.
+pub(super) fn depth_table(
+    reported: &Reported<'_>,
+    described: &Described,
+    units: &Units,
+    most: usize,
+) -> String {
     let (used, limits) = (&reported.setting.used, &described.depth);
     let compensated = limits.first_stage == FirstStageKind::Compensated;
     let (_, decimals) = injection(described.at.surface.nominal_l_min, described.at.surface.u_l_min, units);
-    let rows: Vec<Vec<String>> = thinned(&limits.rows)
+    let rows: Vec<Vec<String>> = thinned(&limits.rows, most)
         .map(|row| {
             let mut cells = vec![
                 down(depth_shown(row.depth_m, units), 0),
@@ -258,9 +259,9 @@ pub(super) fn depth_table(reported: &Reported<'_>, described: &Described, units:
 }
 
 /// The first, the last and some between.
-fn thinned(rows: &[DepthRow]) -> impl Iterator<Item = &DepthRow> {
+fn thinned(rows: &[DepthRow], most: usize) -> impl Iterator<Item = &DepthRow> {
     let last = rows.len().saturating_sub(1);
-    let step = last.div_ceil(MOST_DEPTHS - 1).max(1);
+    let step = last.div_ceil(most.saturating_sub(1).max(1)).max(1);
     // A row next to the last would only crowd it.
     rows.iter()
         .enumerate()
@@ -313,7 +314,7 @@ fn window(window: &ReadingWindow, units: &Units) -> String {
         return format!("{value} {symbol}, and no reading would prove the setting");
     }
     format!(
-        "{value} {symbol}; {} to {} {symbol} proves the setting",
+        "{value} {symbol}, proved by {} to {} {symbol}",
         up(units.flow(window.low_l_min), decimals),
         down(units.flow(window.high_l_min), decimals)
     )

@@ -11,6 +11,9 @@ use super::setting_words::{bar_on_gauge, data, ip_given, psi_on_gauge};
 use super::{Units, setting_assumed};
 use crate::setting::{Described, OrificeSetting, Warning};
 
+/// Most rows of the table over depth on the page.
+const MOST_DEPTHS: usize = 6;
+
 /// The sheet, at most 80 columns wide.
 #[must_use]
 pub fn text(reported: &Reported<'_>, units: &Units) -> String {
@@ -93,7 +96,7 @@ fn set(reported: &Reported<'_>, orifice: &OrificeSetting, described: &Described,
     text.push_str(&lines(&drift(reported, described)));
     text.push_str(&ruled(&format!("DEPTH, {} water", water(described))));
     text.push_str(&lines(&depths(reported, described, units)));
-    text.push_str(&depth_table(reported, described, units));
+    text.push_str(&depth_table(reported, described, units, MOST_DEPTHS));
     text.push_str(&ruled("PROOF, before the dive"));
     let mut proofs = proof(described, units);
     if described.expected_reading.is_none() {
