@@ -18,6 +18,13 @@ pub mod registers;
 pub mod run_list;
 pub mod run_shown;
 pub mod series_notes;
+pub mod setting;
+mod setting_assumed;
+pub mod setting_json;
+mod setting_parts;
+pub mod setting_sentences;
+mod setting_words;
+pub mod sheet;
 pub mod units;
 pub mod warning_sentences;
 
