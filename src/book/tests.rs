@@ -240,7 +240,7 @@ fn each_connection_has_the_settings_the_record_rests_on() {
 }
 
 #[test]
-fn a_full_disk_is_said_and_nothing_of_the_runs_remains() {
+fn a_full_disk_is_said_and_nothing_of_the_runs_or_sessions_remains() {
     let folder = Folder::new("full");
     let mut book = begin(&folder.book());
     let run = sample_run();
@@ -255,10 +255,18 @@ fn a_full_disk_is_said_and_nothing_of_the_runs_remains() {
     assert!(matches!(refused, BookError::Full { .. }), "{refused}");
     assert!(!refused.is_of_the_call());
     assert!(refused.to_string().contains("is full: nothing was recorded"), "{refused}");
+    // Of sessions neither: the first fits, but not with the second.
+    let session = sample_session();
+    let (small, large) =
+        (session_files(0, false), SessionSource { readings: vec![b'7'; 100_000], ..session_files(1, false) });
+    let both = [&small, &large].map(|files| SessionToImport { session: &session, line_run: None, files });
+    let refused = stamped(|stamp| book.import_sessions(&both, stamp)).unwrap_err();
+    assert!(matches!(refused, BookError::Full { .. }), "{refused}");
     drop(book);
     let book = Book::open_to_read(&folder.book(), &Options::default()).unwrap();
     let check = book.check(&[]).unwrap();
-    assert_eq!((check.wrong, check.runs), (None, 1));
+    assert_eq!((check.wrong, check.runs, check.sessions), (None, 1, 0));
+    assert_eq!(book.info().unwrap().entries.last(), Some(&(Register::Diver, 0)));
 }
 
 /// A run written out by hand, with something in most of its fields.
