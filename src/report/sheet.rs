@@ -161,18 +161,10 @@ fn marked(reported: &Reported<'_>, orifice: &OrificeSetting, units: &Units) -> S
 
 fn none(reported: &Reported<'_>, units: &Units) -> String {
     let setting = reported.setting;
-    let mut text = String::from("\n");
-    for line in [
-        "  ##  ##   ####      ####  ######  ######  ######  ######  ##  ##   ####",
-        "  ### ##  ##  ##    ##     ##        ##      ##      ##    ### ##  ##",
-        "  ######  ##  ##     ###   ####      ##      ##      ##    ######  ## ###",
-        "  ## ###  ##  ##       ##  ##        ##      ##      ##    ## ###  ##  ##",
-        "  ##  ##   ####    ####    ######    ##      ##    ######  ##  ##   ####",
-    ] {
-        text.push_str(line);
-        text.push('\n');
-    }
-    text.push_str("\n  NO SETTING. Do not dive with this orifice on an IP of your own choice.\n\n");
+    let edge = "#".repeat(WIDTH);
+    let mut text = format!("\n{edge}\n{:^WIDTH$}", "N O   S E T T I N G").trim_end().to_owned();
+    text.push_str(&format!("\n{edge}\n\n"));
+    text.push_str("  NO SETTING. Do not dive with an IP of your own choice instead.\n\n");
     let why = reported.reasons(|why| why_not_without_ip(why, setting, units)).unwrap_or_default();
     let mut said: Vec<Line> = vec![("why", why)];
     if setting.uptake.is_some() {
