@@ -18,7 +18,14 @@ pub mod registers;
 pub mod run_list;
 pub mod run_shown;
 pub mod series_notes;
+pub mod session_limits;
+pub mod session_list;
+pub mod session_shown;
+pub mod session_uptake;
+pub mod typed;
 pub mod units;
+pub mod uptake_json;
+pub mod uptake_sentences;
 pub mod warning_sentences;
 
 pub use units::Units;
