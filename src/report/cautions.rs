@@ -1,5 +1,7 @@
 //! The cautions, in one place; each stands where its number is read.
 
+use crate::entry::Place;
+
 /// Beside a line, at the bench.
 pub const BENCH: [&str; 4] = [
     "The line holds for this orifice as it was tested: a filter, dirt, IP creep and gas temperature change it. \
@@ -41,3 +43,36 @@ pub const SETTING_UNCOMPENSATED: [&str; 2] = [
 /// Beside a setting for a first stage that follows depth.
 pub const SETTING_COMPENSATED: &str = "This first stage follows depth, so the injection grows with every metre: the \
     setting holds down to its maximum depth and no deeper, and is leanest at the surface.";
+/// Beside a couch or pool session: before the next one is begun.
+pub const SESSION: [&str; 6] = [
+    "Oxygen in the loop sinks while one rests on it, and one faints from that unwarned: never alone. A second person \
+     watches the PO2 display all the time and gives fresh gas, which lies at hand, before a floor is reached.",
+    "Couch: between PO2 0.40 bar and 1.0 bar; add oxygen, or come off the loop, before either is passed.",
+    "Pool: between PO2 0.60 bar and 1.3 bar, no deeper than 3 m, the second person in the water within reach.",
+    "Breathe as usual, before and meanwhile: no hyperventilation, which takes away the last sign of too little oxygen.",
+    "A fresh scrubber, well within its life. Headache or breathlessness may be carbon dioxide: stop, and breathe fresh \
+     gas.",
+    "Epilepsy, a pregnancy, an illness of heart or lungs: a physician's word first.",
+];
+
+/// Beside an uptake.
+pub const UPTAKE: [&str; 4] = [
+    "This is the least a diver burns: any effort asks for several times as much, and rest is not the same every day. A \
+     setting goes by the figure for another day, and by that alone.",
+    "An injection chosen by it leaves nobody free to look away: the PO2 display is read as often as without it.",
+    "PO2 drops with every metre of an ascent: bring it up before going up.",
+    "An aid to trained people, neither life-support monitor nor dive computer. Training, the unit's manual, the regulator \
+     maker's limits, local rules and a qualified service technician come first.",
+];
+
+/// Floor and ceiling of PO2 in a session, bar: they act while one is logged, and a record that passed them says so.
+#[must_use]
+pub const fn po2_limits_bar(place: Place) -> (f64, f64) {
+    match place {
+        Place::Couch => (0.40, 1.0),
+        Place::Pool => (0.60, 1.3),
+    }
+}
+
+/// No pool session deeper than this, metres.
+pub const POOL_DEEPEST_M: f64 = 3.0;

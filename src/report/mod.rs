@@ -25,7 +25,14 @@ mod setting_parts;
 pub mod setting_sentences;
 mod setting_words;
 pub mod sheet;
+pub mod session_limits;
+pub mod session_list;
+pub mod session_shown;
+pub mod session_uptake;
+pub mod typed;
 pub mod units;
+pub mod uptake_json;
+pub mod uptake_sentences;
 pub mod warning_sentences;
 
 pub use units::Units;
