@@ -200,11 +200,8 @@ type Came = Result<f64, String>;
 fn ways(diver: &Diver) -> [Came; 3] {
     let line = &diver.orifice.line;
     let scale = 293.15 / 273.15;
-    let at_20_degrees = InjectionLine {
-        intercept: scale * line.intercept,
-        slope: scale * line.slope,
-        ..line.clone()
-    };
+    let at_20_degrees =
+        InjectionLine { intercept: scale * line.intercept, slope: scale * line.slope, ..line.clone() };
     WAYS.map(|way| {
         let estimate = match way {
             Way::Right | Way::NoOtherDay => diver.estimate(line),
@@ -237,7 +234,8 @@ struct Outcome {
 impl Outcome {
     fn of(came: &[[Came; 3]], way: Way) -> Self {
         let came = || came.iter().map(|ways| &ways[way as usize]);
-        let mut shortfalls: Vec<f64> = came().filter_map(|c| c.as_ref().ok()).map(|share| 1.0 - share).collect();
+        let mut shortfalls: Vec<f64> =
+            came().filter_map(|c| c.as_ref().ok()).map(|share| 1.0 - share).collect();
         shortfalls.sort_by(f64::total_cmp);
         let mut refused = BTreeMap::new();
         for why in came().filter_map(|c| c.as_ref().err()) {

@@ -4,20 +4,20 @@ use serde::Serialize;
 
 use super::arguments::{Demo, Global};
 use super::{Ended, note, say, units};
-use crate::report::bench_fit;
-use crate::report::json_text;
 use crate::report::layout::wrapped;
+use crate::report::{Units, bench_fit, json_text, session_uptake, setting};
 use crate::work::ExitStatus;
-use crate::work::demo::{DemoRun, DemoShop, demo as run_demo};
+use crate::work::demo::{DemoDiver, DemoRun, DemoShop, demo as run_demo};
 
 pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ended> {
     let units = units(global);
     note(&format!("an invented shop is measured into {} …", arguments.into.display()));
     let demonstration = run_demo(&arguments.into, units)?;
-    let (runs, shop) = (&demonstration.runs, &demonstration.shop);
+    let (runs, shop, diver) = (&demonstration.runs, &demonstration.shop, &demonstration.diver);
     if global.json {
         let runs = runs.iter().map(Named::of).collect();
-        return say(&json_text(&Left { runs, shop: NamedShop::of(shop) }), ExitStatus::Done);
+        let left = Left { runs, shop: NamedShop::of(shop), diver: NamedDiver::of(diver) };
+        return say(&json_text(&left), ExitStatus::Done);
     }
     let mut text =
         String::from("The demonstration: every orifice, instrument and person in it is invented.\n");
@@ -47,6 +47,7 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
         "The files are the same on every machine. The book is not to the byte: when something was recorded, and the salts \
          of its chain, are its own.",
     ));
+    text.push_str(&diver_text(diver, &units));
     text.push_str("\nTry one yourself (where ebbline is not installed: cargo run --release -- …):\n");
     if let Some(first) = runs.first() {
         text.push_str(&format!("  ebbline bench fit {}\n", first.file.display()));
@@ -54,7 +55,42 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
     let book = shop.book.display();
     text.push_str(&format!("  ebbline --book {book} orifice list\n"));
     text.push_str(&format!("  ebbline --book {book} orifice show {}\n", shop.clogging));
+    text.push_str(&format!("  ebbline --book {book} session uptake {}\n", DemoDiver::DIVER));
+    text.push_str(&format!(
+        "  ebbline --book {book} setting --orifice {} --diver {} --first-stage {} \\\n    {} --on {}\n",
+        DemoDiver::ORIFICES[0],
+        DemoDiver::DIVER,
+        DemoDiver::FIRST_STAGE,
+        DemoDiver::ASKED,
+        diver.on
+    ));
     say(&text, ExitStatus::Done)
+}
+
+/// What was made of the diver, and the files it stands in.
+fn diver_text(diver: &DemoDiver, units: &Units) -> String {
+    let mut text = String::from("\n");
+    let about = format!(
+        "{} couch sessions on two days, the uptake from them, and the IP to set:",
+        diver.sessions.len()
+    );
+    text.push_str(&wrapped(&format!("{}: ", DemoDiver::DIVER), "  ", &about));
+    let named = diver.uptake.named();
+    text.push_str(&wrapped(
+        "  ",
+        "    ",
+        &session_uptake::summary_line(&diver.uptake.reported(&named), units),
+    ));
+    let orifices = diver.setting.named();
+    text.push_str(&wrapped("  ", "    ", &setting::summary_line(&diver.setting.reported(&orifices), units)));
+    for (what, path) in std::iter::once(("run file", &diver.orifice))
+        .chain(diver.sessions.iter().map(|path| ("session", path)))
+        .chain(diver.plots.iter().map(|path| ("plot", path)))
+        .chain([("plot", &diver.setting_plot), ("sheet", &diver.sheet)])
+    {
+        text.push_str(&format!("  {what:<9} {}\n", path.display()));
+    }
+    text
 }
 
 /// What `--json` says.
@@ -62,6 +98,41 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
 struct Left {
     runs: Vec<Named>,
     shop: NamedShop,
+    diver: NamedDiver,
+}
+
+/// What it says of the diver.
+#[derive(Serialize)]
+struct NamedDiver {
+    diver: &'static str,
+    orifice: String,
+    sessions: Vec<String>,
+    plots: Vec<String>,
+    setting_plot: String,
+    sheet: String,
+    uptake: String,
+    setting: String,
+    on: String,
+}
+
+impl NamedDiver {
+    fn of(diver: &DemoDiver) -> Self {
+        let shown =
+            |paths: &[std::path::PathBuf]| paths.iter().map(|path| path.display().to_string()).collect();
+        let (named, orifices) = (diver.uptake.named(), diver.setting.named());
+        let units = Units::default();
+        Self {
+            diver: DemoDiver::DIVER,
+            orifice: diver.orifice.display().to_string(),
+            sessions: shown(&diver.sessions),
+            plots: shown(&diver.plots),
+            setting_plot: diver.setting_plot.display().to_string(),
+            sheet: diver.sheet.display().to_string(),
+            uptake: session_uptake::summary_line(&diver.uptake.reported(&named), &units),
+            setting: setting::summary_line(&diver.setting.reported(&orifices), &units),
+            on: diver.on.to_string(),
+        }
+    }
 }
 
 /// What it says of the book.
@@ -104,7 +175,7 @@ struct Named {
 
 impl Named {
     fn of(run: &DemoRun) -> Self {
-        let line = bench_fit::verdict_line(&run.outcome.fitted(), &crate::report::Units::default());
+        let line = bench_fit::verdict_line(&run.outcome.fitted(), &Units::default());
         Self {
             orifice: run.outcome.run.orifice.to_string(),
             about: run.about,

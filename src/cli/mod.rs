@@ -11,6 +11,8 @@ mod demo;
 pub mod enter;
 mod manual;
 mod registers;
+mod session;
+mod setting;
 
 use std::ffi::OsString;
 use std::io::{self, Write};
@@ -81,6 +83,8 @@ fn verb(arguments: &Arguments) -> Result<ExitStatus, Ended> {
             Bench::List(list) => bench::list(list, &arguments.global),
             Bench::Show(show) => bench::show(show, &arguments.global),
         },
+        Command::Session(verb) => session::session(verb, &arguments.global),
+        Command::Setting(arguments_of) => setting::setting(arguments_of, &arguments.global),
         Command::Orifice(verb) => registers::orifice(verb, &arguments.global),
         Command::Instrument(verb) => registers::instrument(verb, &arguments.global),
         Command::FirstStage(verb) => registers::first_stage(verb, &arguments.global),

@@ -3,12 +3,10 @@
 use chrono::{DateTime, FixedOffset};
 use serde::Serialize;
 
-use super::Units;
 use super::layout::{shortened, table};
 use super::number::{Plain, fixed, shortest};
 use super::typed::tame;
 use crate::entry::{Diluent, LoopKept, Place, Session, SessionLeftOut, SessionNumber};
-use crate::quantity::unit::Kind;
 
 /// Longest name of a diver in the table, in columns.
 const NAME: usize = 16;
@@ -24,22 +22,22 @@ pub struct Row {
     pub place: Place,
     /// How the loop was kept at the first reading.
     pub kept: LoopKept,
-    /// What it was made up with.
-    pub diluent: Diluent,
     /// When it was begun.
     pub taken: DateTime<FixedOffset>,
     /// Minutes from the first reading to the last.
     pub minutes: f64,
     /// Oxygen cells that were read.
     pub cells: usize,
-    /// Loop volume as stated, litres.
-    pub loop_volume_l: Option<f64>,
-    /// What was left out by hand.
-    pub left_out: Vec<SessionLeftOut>,
+    /// Rows of readings.
+    pub readings: usize,
+    /// Whether the whole session is left out of the diver's uptake.
+    pub left_out: bool,
+    /// Stretches left out of it by hand.
+    pub stretches_left_out: usize,
 }
 
 impl Row {
-    /// The row of a session.
+    /// The row of a session that is at hand.
     #[must_use]
     pub fn of(number: SessionNumber, session: &Session, left_out: &[SessionLeftOut]) -> Self {
         Self {
@@ -47,18 +45,13 @@ impl Row {
             diver: session.diver.to_string(),
             place: session.place,
             kept: session.kept,
-            diluent: session.diluent,
             taken: session.taken,
             minutes: minutes(session),
             cells: session.readings.cells.len(),
-            loop_volume_l: session.loop_volume.map(|volume| volume.value.as_m3() * 1e3),
-            left_out: left_out.to_vec(),
+            readings: session.readings.time_s.len(),
+            left_out: left_out.iter().any(|out| out.stretch_s.is_none()),
+            stretches_left_out: left_out.iter().filter(|out| out.stretch_s.is_some()).count(),
         }
-    }
-
-    /// Why the whole session is left out, when it is.
-    fn whole(&self) -> Option<&SessionLeftOut> {
-        self.left_out.iter().find(|out| out.stretch_s.is_none())
     }
 }
 
@@ -72,11 +65,10 @@ pub fn minutes(session: &Session) -> f64 {
 
 /// The list as a table; `more` says that older sessions are not shown.
 #[must_use]
-pub fn text(rows: &[Row], more: bool, units: &Units) -> String {
+pub fn text(rows: &[Row], more: bool) -> String {
     if rows.is_empty() {
         return "No sessions in the book yet: session import FILE.toml, or session log.\n".to_owned();
     }
-    let volume = units.unit(Kind::Volume);
     let cells: Vec<Vec<String>> = rows
         .iter()
         .map(|row| {
@@ -88,18 +80,17 @@ pub fn text(rows: &[Row], more: bool, units: &Units) -> String {
                 row.kept.name().to_owned(),
                 fixed(row.minutes, 0),
                 row.cells.to_string(),
-                row.loop_volume_l.map_or_else(String::new, |l| fixed(volume.from_si(l / 1e3), 1)),
+                row.readings.to_string(),
                 left_out(row),
             ]
         })
         .collect();
     let mut text = table(
-        &["session", "diver", "taken", "place", "loop", "time", "cells", "volume", ""],
-        &["", "", "", "", "", "min", "", volume.symbol, ""],
+        &["session", "diver", "taken", "place", "loop", "time", "cells", "readings", ""],
+        &["", "", "", "", "", "min", "", "", ""],
         &cells,
         true,
     );
-    text.push_str("  Loop volume as stated, lungs included, at the first reading.\n");
     if more {
         text.push_str("  Older sessions are not shown: --all shows every session.\n");
     }
@@ -107,11 +98,11 @@ pub fn text(rows: &[Row], more: bool, units: &Units) -> String {
 }
 
 fn left_out(row: &Row) -> String {
-    match (row.whole(), row.left_out.len()) {
-        (Some(whole), _) => format!("left out: {}", tame(&whole.why)),
-        (None, 0) => String::new(),
-        (None, 1) => "1 stretch left out".to_owned(),
-        (None, n) => format!("{n} stretches left out"),
+    match (row.left_out, row.stretches_left_out) {
+        (true, _) => "left out".to_owned(),
+        (false, 0) => String::new(),
+        (false, 1) => "1 stretch left out".to_owned(),
+        (false, n) => format!("{n} stretches left out"),
     }
 }
 
@@ -130,28 +121,19 @@ pub fn json(rows: &[Row]) -> String {
     super::json_text(&rows.iter().map(JsonRow::of).collect::<Vec<_>>())
 }
 
-/// A session in JSON; also part of what `session show` writes.
+/// A session in a list, in JSON; also part of what `session show` writes.
 #[derive(Debug, Serialize)]
 pub(super) struct JsonRow {
     session: String,
     diver: String,
     place: &'static str,
     r#loop: &'static str,
-    diluent: String,
     taken: String,
     minutes: Plain,
     cells: usize,
-    loop_volume_l: Option<Plain>,
-    left_out: Vec<JsonLeftOut>,
-}
-
-#[derive(Debug, Serialize)]
-struct JsonLeftOut {
-    from_s: Option<Plain>,
-    to_s: Option<Plain>,
-    why: String,
-    by: Option<String>,
-    at: String,
+    readings: usize,
+    left_out_whole: bool,
+    stretches_left_out: usize,
 }
 
 impl JsonRow {
@@ -161,22 +143,12 @@ impl JsonRow {
             diver: row.diver.clone(),
             place: row.place.name(),
             r#loop: row.kept.name(),
-            diluent: diluent(row.diluent),
             taken: row.taken.to_rfc3339(),
             minutes: Plain(row.minutes),
             cells: row.cells,
-            loop_volume_l: row.loop_volume_l.map(Plain),
-            left_out: row
-                .left_out
-                .iter()
-                .map(|out| JsonLeftOut {
-                    from_s: out.stretch_s.map(|s| Plain(s.0)),
-                    to_s: out.stretch_s.map(|s| Plain(s.1)),
-                    why: out.why.clone(),
-                    by: out.by.clone(),
-                    at: out.at.to_rfc3339(),
-                })
-                .collect(),
+            readings: row.readings,
+            left_out_whole: row.left_out,
+            stretches_left_out: row.stretches_left_out,
         }
     }
 }

@@ -366,6 +366,9 @@ pub fn json(shown: &Shown<'_>) -> String {
 struct Document {
     #[serde(flatten)]
     row: JsonRow,
+    diluent: String,
+    loop_volume_l: Option<Plain>,
+    left_out: Vec<Value>,
     recorded: String,
     files: Vec<String>,
     conditions: Value,
@@ -384,6 +387,9 @@ impl Document {
         let extremes = session_limits::extremes(session, &[], None);
         Self {
             row: JsonRow::of(&Row::of(shown.number, session, shown.left_out)),
+            diluent: diluent(session.diluent),
+            loop_volume_l: session.loop_volume.map(|volume| Plain(volume.value.as_m3() * 1e3)),
+            left_out: shown.left_out.iter().map(left_out_json).collect(),
             recorded: shown.recorded.to_rfc3339(),
             files: shown.files.to_vec(),
             conditions: conditions_json(session),
@@ -396,6 +402,16 @@ impl Document {
             notes: shown.notes.to_vec(),
         }
     }
+}
+
+fn left_out_json(out: &SessionLeftOut) -> Value {
+    json!({
+        "from_s": out.stretch_s.map(|(from_s, _)| Plain(from_s)),
+        "to_s": out.stretch_s.map(|(_, to_s)| Plain(to_s)),
+        "why": out.why,
+        "by": out.by,
+        "at": out.at.to_rfc3339(),
+    })
 }
 
 fn conditions_json(session: &Session) -> Value {

@@ -220,6 +220,36 @@ pub fn text(reported: &Reported<'_>, units: &Units) -> String {
     text
 }
 
+/// The setting in one sentence.
+#[must_use]
+pub fn summary_line(reported: &Reported<'_>, units: &Units) -> String {
+    let setting = reported.setting;
+    let ip = |bar: f64| ip_on_gauge(bar, setting.used.gauge_division_bar, units);
+    match setting.recommended() {
+        Some((orifice, described)) => {
+            let (injected, _) =
+                injection(described.at.surface.nominal_l_min, described.at.surface.u_l_min, units);
+            let never = orifice
+                .never_exceed_ip_bar_gauge
+                .map_or_else(String::new, |bar| format!(", never above {}", ip(bar)));
+            format!(
+                "set {} gauge through {}{never}: injects {injected} STPD (k = 2), {} less than the resting uptake of \
+                 another day",
+                ip(described.at.ip_bar_gauge),
+                orifice.orifice,
+                share_down(
+                    described.at.shortfall_l_min
+                        / (described.at.shortfall_l_min + described.at.surface.nominal_l_min)
+                ),
+            )
+        }
+        None => {
+            let why = reported.reasons(|why| refusal(why, setting, units)).unwrap_or_default();
+            format!("no setting: {why}")
+        }
+    }
+}
+
 /// Why there is no setting, or what speaks against the IP to be judged: what goes to stderr with exit 1.
 #[must_use]
 pub fn why_not(reported: &Reported<'_>) -> Option<String> {

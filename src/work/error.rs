@@ -7,8 +7,10 @@ use super::png::PngError;
 use crate::bench::BenchError;
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
 use crate::book::{BookError, NoHead};
-use crate::entry::{Id, IdError};
-use crate::record::RecordError;
+use crate::entry::{Id, IdError, SessionNumber};
+use crate::record::{RecordError, Refusal};
+use crate::setting::SettingError;
+use crate::uptake::UptakeError;
 
 /// How a call ended.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -68,6 +70,71 @@ pub enum WorkError {
         /// What nearly was steady and why it is not, ready to be appended.
         nearly: String,
     },
+    /// A session cannot be worked out.
+    #[error("{session}: {error}")]
+    Uptake {
+        /// The session's number or file.
+        session: String,
+        /// What is wrong.
+        error: UptakeError,
+    },
+    /// A setting is asked for wrongly.
+    #[error(transparent)]
+    Setting(SettingError),
+    /// A time within a session that is none.
+    #[error(transparent)]
+    SessionTime(Refusal),
+    /// A stretch outside a session's readings, or the wrong way round.
+    #[error(
+        "{session}: its readings run from {first_s:.0} s to {last_s:.0} s, and no stretch of them begins at {from} and ends \
+         at {until}: correct --from or --until", from = from.escape_debug(), until = until.escape_debug()
+    )]
+    Stretch {
+        /// The session.
+        session: SessionNumber,
+        /// Its beginning as typed.
+        from: String,
+        /// Its end as typed.
+        until: String,
+        /// First reading, seconds.
+        first_s: f64,
+        /// Last reading, seconds.
+        last_s: f64,
+    },
+    /// A text that is no session's number.
+    #[error(
+        "\"{}\" is no session: a session of the book is named like S0001, and a session file has a slash or ends in .toml",
+        .0.escape_debug()
+    )]
+    NoSessionNumber(String),
+    /// A diver without a session that counts.
+    #[error("{0} has no session in the book that counts: session import FILE.toml, or session enter {0}")]
+    NoSessionOf(Id),
+    /// An orifice that is not in the register.
+    #[error(
+        "there is no orifice {0} in the book: orifice list shows those there are; a run file has a slash or ends in .toml"
+    )]
+    NoOrifice(Id),
+    /// An orifice without a complete run.
+    #[error("{0} has no complete run in the book, so no line: bench import FILE.toml, or bench enter {0}")]
+    NoRunOf(Id),
+    /// One orifice twice in a comparison.
+    #[error("{0} was named twice: name each orifice once")]
+    OrificeTwice(Id),
+    /// Nobody's uptake.
+    #[error("nobody to set for: give --diver DIVER, or --session FILE.toml")]
+    NobodyToSetFor,
+    /// No such first stage.
+    #[error(
+        "there is no first stage {0} in the register: say uncompensated or compensated, or add it with first-stage add"
+    )]
+    NoFirstStage(Id),
+    /// No such flow meter.
+    #[error("there is no flow meter {0} in the register: add it with instrument add")]
+    NoMeter(Id),
+    /// A sheet's file name has another ending.
+    #[error("{0}: the sheet is written as .txt, name the file so")]
+    SheetKind(PathBuf),
     /// The book.
     #[error(transparent)]
     Book(#[from] BookError),
@@ -176,6 +243,19 @@ impl WorkError {
             | Self::TooFewSteady { .. }
             | Self::Enter(_)
             | Self::NoRunNumber(_)
+            | Self::Uptake { .. }
+            | Self::Setting(_)
+            | Self::SessionTime(_)
+            | Self::Stretch { .. }
+            | Self::NoSessionNumber(_)
+            | Self::NoSessionOf(_)
+            | Self::NoOrifice(_)
+            | Self::NoRunOf(_)
+            | Self::OrificeTwice(_)
+            | Self::NobodyToSetFor
+            | Self::NoFirstStage(_)
+            | Self::NoMeter(_)
+            | Self::SheetKind(_)
             | Self::Text { .. }
             | Self::NoName(_)
             | Self::NothingGiven

@@ -212,6 +212,6 @@ pub(super) fn write_plot(svg: &str, kind: PlotKind, path: &Path) -> Result<(), W
     }
 }
 
-fn threads() -> usize {
+pub(super) fn threads() -> usize {
     std::thread::available_parallelism().map_or(1, std::num::NonZero::get)
 }

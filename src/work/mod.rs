@@ -9,10 +9,14 @@ pub mod error;
 pub mod export;
 pub mod fit;
 pub mod history;
+pub mod lines;
 pub mod output;
 pub mod png;
 pub mod registers;
 pub mod runs;
+pub mod sessions;
+pub mod setting;
 pub mod shelf;
+pub mod uptake;
 
 pub use error::{ExitStatus, WorkError};

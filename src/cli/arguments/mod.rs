@@ -4,6 +4,8 @@ mod bench;
 mod book;
 mod keys;
 mod registers;
+mod session;
+mod setting;
 
 use std::path::PathBuf;
 
@@ -15,17 +17,20 @@ pub use registers::{
     ShopVerbs, ShowOrifice, ShowShop,
 };
 
+pub use session::{ImportSessions, LeaveOutSession, ListSessions, Sessions, ShowSession, UptakeOf};
+pub use setting::{Setting, Water};
+
 use crate::quantity::Shown;
 
-/// Bench calibration of constant-mass-flow orifices for manual closed-circuit rebreathers: readings of flow against
-/// intermediate pressure become a line with its uncertainty, checks and a verdict.
+/// Bench calibration of constant-mass-flow orifices for manual closed-circuit rebreathers, resting oxygen uptake of
+/// divers, and the intermediate pressure that injects slightly less than that.
 #[derive(Debug, Parser)]
 #[command(
     name = "ebbline",
     version,
     disable_help_subcommand = true,
     max_term_width = 80,
-    after_help = "Exit status: 0 done and favourable; 1 done, the verdict is fail or undecided; 2 the input or the call \
+    after_help = "Exit status: 0 done and favourable; 1 done, and the verdict is fail, undecided, no uptake or no setting; 2 the input or the call \
                   is wrong; 3 a disk or output file failed.\n\nAn aid to trained people, no life-support monitor. \
                   Training, the unit's manual, the regulator maker's limits and local rules come first."
 )]
@@ -63,6 +68,11 @@ pub enum Command {
     /// Bench runs of orifices
     #[command(subcommand)]
     Bench(Bench),
+    /// Couch and pool sessions of a diver, and the resting oxygen uptake from them
+    #[command(subcommand)]
+    Session(Sessions),
+    /// The intermediate pressure to set: through which orifice, how PO2 then sinks, and to which depth it holds
+    Setting(Box<Setting>),
     /// Orifices: their register, and their history
     #[command(subcommand)]
     Orifice(Orifices),

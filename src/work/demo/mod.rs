@@ -1,9 +1,11 @@
-//! `demo`: an invented shop's orifices, from input files through the real code to sheets and plots.
+//! `demo`: an invented shop's orifices and an invented diver, from input files through the real code to sheets and plots.
 //!
 //! The readings are drawn from a model of a bench with a fixed seed, so that the files are the same on every machine;
 //! each says in its first line that it is invented. Nothing after the drawing knows that it is a demonstration: the
 //! files are read and fitted like anybody's.
 
+mod breath;
+mod diver;
 mod model;
 mod shop;
 
@@ -20,6 +22,7 @@ use crate::report::Units;
 use crate::stats::monte_carlo::Random;
 use model::{Around, Bench, Day, Errors, Hole};
 
+pub use diver::DemoDiver;
 pub use shop::DemoShop;
 
 /// First line of every file.
@@ -64,9 +67,11 @@ pub struct Demonstration {
     pub runs: Vec<DemoRun>,
     /// The book of the shop.
     pub shop: DemoShop,
+    /// The diver's sessions, uptake and setting.
+    pub diver: DemoDiver,
 }
 
-/// Fills `folder`: fits single orifices from their files, and keeps the book of the shop.
+/// Fills `folder`: fits single orifices from their files, keeps the book of the shop, and rests its diver.
 ///
 /// # Errors
 /// When the folder cannot be written, or holds a book that no demonstration made; an error in reading back or fitting
@@ -77,7 +82,8 @@ pub fn demo(folder: &Path, units: Units) -> Result<Demonstration, WorkError> {
     let orifices = invented().into_iter().enumerate();
     let runs =
         orifices.map(|(i, orifice)| one(folder, units, i as u64, &orifice)).collect::<Result<_, _>>()?;
-    Ok(Demonstration { runs, shop: shop::keep(folder, units)? })
+    let (shop, diver) = shop::keep(folder, units)?;
+    Ok(Demonstration { runs, shop, diver })
 }
 
 /// An orifice of the invented shop, and how its run is taken.

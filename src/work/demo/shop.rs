@@ -9,11 +9,12 @@ use std::path::{Path, PathBuf};
 
 use chrono::{DateTime, Duration, FixedOffset, NaiveDate};
 
+use super::diver::{self, DemoDiver};
 use super::model::{self, Around, Bench, Day, Errors, Hole};
 use super::{
     ERRORS, GOOD, INVENTED, METER_CERTIFICATE, METER_DUE, SEED, TRANSDUCER_CERTIFICATE, TRANSDUCER_DUE, id,
 };
-use crate::book::{Book, BookError, Options, RunQuery};
+use crate::book::{Book, BookError, Options, RunQuery, SessionQuery};
 use crate::entry::{
     Build, Diluent, Diver, FirstStage, Instrument, InstrumentPapers, Measures, Orifice, Purpose, Shop,
     Signatory,
@@ -82,6 +83,12 @@ pub(super) fn may_be_written(folder: &Path) -> Result<(), WorkError> {
         return refuse("is a book that no demonstration made, and stays as it is".to_owned());
     }
     let of_others = |orifice: &str| !orifice.starts_with(PREFIX);
+    if let Some(other) = book.sessions(&SessionQuery::default())?.iter().find(|s| of_others(&s.diver)) {
+        return refuse(format!(
+            "is the book of a demonstration, but somebody recorded session {} of {} in it, so it stays",
+            other.number, other.diver
+        ));
+    }
     if let Some(other) = book.runs(&RunQuery::default())?.iter().find(|run| of_others(&run.orifice)) {
         return refuse(format!(
             "is the book of a demonstration, but somebody recorded run {} of {} in it, so it stays",
@@ -91,11 +98,12 @@ pub(super) fn may_be_written(folder: &Path) -> Result<(), WorkError> {
     Ok(())
 }
 
-/// Writes the files of the shop, takes them into a book, judges every run and draws the history of the one that clogs.
+/// Writes the files of the shop and of its diver, takes them into a book, judges every run, draws the history of the one
+/// that clogs, and works out the diver's setting.
 ///
 /// # Errors
 /// When the folder cannot be written; another error would be a defect of the program.
-pub(super) fn keep(folder: &Path, units: Units) -> Result<DemoShop, WorkError> {
+pub(super) fn keep(folder: &Path, units: Units) -> Result<(DemoShop, DemoDiver), WorkError> {
     let (book, files) = (book_in(folder), folder.join("shop"));
     let scratch = folder.join(format!(".book.db.{}.part", std::process::id()));
     remove(&scratch);
@@ -105,18 +113,20 @@ pub(super) fn keep(folder: &Path, units: Units) -> Result<DemoShop, WorkError> {
             HistoryRequest { orifice: CLOGGING.to_owned(), all: true, plot: Some(plot.clone()), units };
         let (_, history) = history::show(&Shelf::at(&scratch), &request)?;
         let warnings = history.warnings(&units);
+        let diver = diver::rest(folder, &Shelf::at(&scratch), units)?;
         let failed = |source| WorkError::Write { path: book.clone(), source };
         remove(&book);
         fs::rename(&scratch, &book).map_err(failed)?;
-        Ok(DemoShop {
+        let shop = DemoShop {
             book: book.clone(),
             files: files.clone(),
-            orifices,
-            runs,
+            orifices: orifices + 1,
+            runs: runs + 1,
             clogging: CLOGGING,
             plot,
             warnings,
-        })
+        };
+        Ok((shop, diver))
     });
     remove(&scratch);
     kept
@@ -393,7 +403,10 @@ fn entries(orifices: &[Kept]) -> Vec<RegisterEntry> {
             ip_spread: Some(PressureDifference::from_bar(0.2)),
             ip_repeat: Some(PressureDifference::from_bar(0.1)),
             max_ip: Some(GaugePressure::from_bar(13.5)),
-            trapped_volume: None,
+            trapped_volume: Some(Uncertain {
+                value: Volume::from_l(0.015),
+                expanded: Some(Volume::from_l(0.003)),
+            }),
             fall_observed: None,
             maker: Some("invented".to_owned()),
             serial: None,

@@ -1,0 +1,294 @@
+//! `session uptake`: sessions from files and from the book, with their lines, to the diver's resting uptake.
+
+use std::path::{Path, PathBuf};
+
+use super::fit::{names_a_file, plot_kind, threads, write_plot};
+use super::lines::{self, FoundLine};
+use super::registers::id_of;
+use super::sessions::{all_of, kept};
+use super::shelf::Shelf;
+use super::{ExitStatus, WorkError};
+use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
+use crate::book::Book;
+use crate::entry::{Event, LineReference, Place, Session, SessionLeftOut, SessionNumber, What};
+use crate::plot::{SessionPlot, session_plot};
+use crate::record::read_session;
+use crate::report::Units;
+use crate::report::session_uptake::{Named, Reported};
+use crate::stats::monte_carlo::Plan;
+use crate::uptake::{MonteCarlo, SessionInput, Uptake, uptake, uptake_by_monte_carlo};
+
+/// Seed of the Monte Carlo check; stored with its result.
+const SEED: u64 = 101;
+
+/// What is asked of sessions.
+#[derive(Debug, Clone, Default)]
+pub struct UptakeRequest {
+    /// Session files, numbers of sessions of the book, or a diver of the book for all of that diver's.
+    pub of: Vec<String>,
+    /// Trials of a Monte Carlo check.
+    pub monte_carlo: Option<usize>,
+    /// Where the book is, if it was said.
+    pub book: Option<PathBuf>,
+    /// Where to draw it, `.svg` or `.png`; with several sessions each gets a file of its own.
+    pub plot: Option<PathBuf>,
+    /// The units of the plot.
+    pub units: Units,
+}
+
+/// A session with what belongs to it.
+#[derive(Debug, Clone, PartialEq)]
+pub struct GatheredSession {
+    /// Its number in the book, or its file.
+    pub name: String,
+    /// The session, with what was left out of it since excluded.
+    pub session: Session,
+    /// Its line.
+    pub line: Option<FoundLine>,
+    /// Stretches a person left out.
+    pub left_out: Vec<SessionLeftOut>,
+}
+
+/// What came of it.
+#[derive(Debug, Clone, PartialEq)]
+pub struct UptakeOutcome {
+    /// The sessions.
+    pub sessions: Vec<GatheredSession>,
+    /// What was made of them.
+    pub uptake: Uptake,
+    /// The Monte Carlo check, for each place that has an answer.
+    pub monte_carlo: Vec<(Place, MonteCarlo)>,
+    /// What was noticed on the way.
+    pub notes: Vec<String>,
+    /// The plots that were written.
+    pub plots: Vec<PathBuf>,
+}
+
+impl UptakeOutcome {
+    /// Favourable when there is a number.
+    #[must_use]
+    pub fn status(&self) -> ExitStatus {
+        if self.uptake.lowest().is_some() { ExitStatus::Done } else { ExitStatus::Unfavourable }
+    }
+
+    /// The sessions for `report`.
+    #[must_use]
+    pub fn named(&self) -> Vec<Named<'_>> {
+        named(&self.sessions)
+    }
+
+    /// The same for `report`.
+    #[must_use]
+    pub fn reported<'a>(&'a self, named: &'a [Named<'a>]) -> Reported<'a> {
+        Reported { uptake: &self.uptake, sessions: named, monte_carlo: &self.monte_carlo, notes: &self.notes }
+    }
+}
+
+pub(super) fn named(sessions: &[GatheredSession]) -> Vec<Named<'_>> {
+    sessions
+        .iter()
+        .map(|s| Named {
+            name: &s.name,
+            session: &s.session,
+            line: s.line.as_ref().map(|line| line.words.as_str()),
+        })
+        .collect()
+}
+
+/// Reads sessions, works out the uptake, and draws it.
+///
+/// # Errors
+/// A file that is missing or refused, a session or diver that is not in the book, sessions that cannot be worked out, a
+/// plot that cannot be written.
+pub fn session_uptake(request: &UptakeRequest) -> Result<UptakeOutcome, WorkError> {
+    if let Some(trials) = request.monte_carlo.filter(|n| !(FEWEST_TRIALS..=MOST_TRIALS).contains(n)) {
+        return Err(WorkError::Trials(trials));
+    }
+    let kind = request.plot.as_deref().map(plot_kind).transpose()?;
+    let mut notes = Vec::new();
+    let sessions = gather(&request.of, request.book.as_deref(), &mut notes)?;
+    let uptake = work_out(&sessions)?;
+    let inputs = inputs(&sessions);
+    let mut monte_carlo = Vec::new();
+    if let Some(trials) = request.monte_carlo {
+        let plan = Plan { trials, seed: SEED, threads: threads() };
+        for place in uptake.places.iter().filter(|place| place.answer.is_ok()) {
+            let found = uptake_by_monte_carlo(&inputs, place.place, &plan);
+            let found = found.map_err(|error| wrong(&sessions, error))?;
+            monte_carlo.push((place.place, found.ok_or(WorkError::NoMonteCarlo(trials))?));
+        }
+    }
+    let mut outcome = UptakeOutcome { sessions, uptake, monte_carlo, notes, plots: Vec::new() };
+    if let (Some(kind), Some(path)) = (kind, &request.plot) {
+        let mut drawn = Vec::new();
+        for (gathered, svg) in drawings(&outcome, &request.units) {
+            let at = if outcome.sessions.len() == 1 { path.clone() } else { beside(path, &gathered.name) };
+            drawn.push((at, svg));
+        }
+        for (at, svg) in &drawn {
+            write_plot(svg, kind, at)?;
+        }
+        outcome.plots = drawn.into_iter().map(|(at, _)| at).collect();
+    }
+    Ok(outcome)
+}
+
+/// Every session's drawing, in the order of the sessions.
+fn drawings<'a>(outcome: &'a UptakeOutcome, units: &Units) -> Vec<(&'a GatheredSession, String)> {
+    let of = |index: usize, gathered: &'a GatheredSession| {
+        let place = outcome.uptake.places.iter().find(|place| place.place == gathered.session.place)?;
+        let worked = place.sessions.iter().find(|worked| worked.index == index)?;
+        let why_not = worked.answer.as_ref().err().map(crate::report::uptake_sentences::why_not);
+        let options = SessionPlot {
+            units: *units,
+            name: gathered.name.clone(),
+            left_out: gathered.left_out.iter().filter_map(|left| left.stretch_s).collect(),
+            why_not,
+            ..SessionPlot::default()
+        };
+        Some((gathered, session_plot(&gathered.session, worked, &options)))
+    };
+    outcome.sessions.iter().enumerate().filter_map(|(index, gathered)| of(index, gathered)).collect()
+}
+
+/// `plot.svg` of a session named `S0001` or `data/couch-1.toml`: `plot-S0001.svg`, `plot-couch-1.svg`.
+fn beside(path: &Path, name: &str) -> PathBuf {
+    let stem = Path::new(name).file_stem().unwrap_or_default().to_string_lossy();
+    let plain: String =
+        stem.chars().map(|c| if c.is_alphanumeric() || "-_.".contains(c) { c } else { '-' }).collect();
+    let own = path.file_stem().unwrap_or_default().to_string_lossy();
+    let ending = path.extension().unwrap_or_default().to_string_lossy();
+    path.with_file_name(format!("{own}-{plain}.{ending}"))
+}
+
+/// Works out the uptake of sessions that were gathered.
+///
+/// # Errors
+/// What is wrong with a session itself.
+pub fn work_out(sessions: &[GatheredSession]) -> Result<Uptake, WorkError> {
+    uptake(&inputs(sessions)).map_err(|error| wrong(sessions, error))
+}
+
+fn inputs(sessions: &[GatheredSession]) -> Vec<SessionInput<'_>> {
+    sessions
+        .iter()
+        .map(|s| SessionInput { session: &s.session, line: s.line.as_ref().map(FoundLine::line) })
+        .collect()
+}
+
+/// The first session that is refused on its own is named; what is wrong between sessions names them itself.
+fn wrong(sessions: &[GatheredSession], error: crate::uptake::UptakeError) -> WorkError {
+    let alone = sessions.iter().find_map(|gathered| {
+        let alone = uptake(&inputs(std::slice::from_ref(gathered))).err()?;
+        Some(WorkError::Uptake { session: gathered.name.clone(), error: alone })
+    });
+    alone.unwrap_or_else(|| {
+        let names: Vec<&str> = sessions.iter().map(|gathered| gathered.name.as_str()).collect();
+        WorkError::Uptake { session: names.join(", "), error }
+    })
+}
+
+/// Reads sessions by file, number or diver, each with its line. A session that was left out as a whole counts only when
+/// it is named by its number.
+///
+/// # Errors
+/// As [`session_uptake`].
+pub fn gather(
+    of: &[String],
+    book: Option<&Path>,
+    notes: &mut Vec<String>,
+) -> Result<Vec<GatheredSession>, WorkError> {
+    let mut sessions: Vec<GatheredSession> = Vec::new();
+    let mut opened: Option<Book> = None;
+    for of in of {
+        if names_a_file(of) {
+            sessions.push(from_file(Path::new(of), book, notes)?);
+            continue;
+        }
+        let opened = match &opened {
+            Some(opened) => opened,
+            None => opened.insert(Shelf::find(book)?.to_read()?),
+        };
+        let numbers = match SessionNumber::parse(of) {
+            Some(number) => vec![number],
+            None => {
+                let diver = id_of(of)?;
+                let rows = all_of(opened, &diver)?;
+                let (out, used): (Vec<_>, Vec<_>) = rows.into_iter().partition(|row| row.left_out);
+                for row in out {
+                    notes.push(format!("{} is left out of the diver's uptake", row.number));
+                }
+                if used.is_empty() {
+                    return Err(WorkError::NoSessionOf(diver));
+                }
+                used.into_iter().rev().map(|row| row.number).collect()
+            }
+        };
+        for number in numbers {
+            let gathered = from_book(opened, number, notes)?;
+            // The same session named twice is one observation, not two.
+            if !sessions.iter().any(|other| other.name == gathered.name) {
+                sessions.push(gathered);
+            }
+        }
+    }
+    Ok(sessions)
+}
+
+/// A session of a file, with its line from the run file it names, or from the book.
+fn from_file(
+    path: &Path,
+    book: Option<&Path>,
+    notes: &mut Vec<String>,
+) -> Result<GatheredSession, WorkError> {
+    let loaded = read_session(path)?;
+    let name = path.display().to_string();
+    notes.extend(loaded.notes.iter().map(|note| format!("{name}: {note}")));
+    let session = loaded.value;
+    let line = match &session.line {
+        None => None,
+        Some(LineReference::RunFile(file)) => {
+            let at = path.parent().unwrap_or(Path::new("")).join(file);
+            Some(lines::from_file(&at, Shelf::find(book).ok().as_ref(), session.taken.date_naive())?)
+        }
+        Some(LineReference::Orifice(orifice)) => {
+            let opened = Shelf::find(book)?.to_read()?;
+            Some(lines::from_book_at(&opened, orifice, session.taken)?)
+        }
+    };
+    note_line(&name, line.as_ref(), notes);
+    Ok(GatheredSession { name, session, line, left_out: Vec::new() })
+}
+
+fn from_book(
+    book: &Book,
+    number: SessionNumber,
+    notes: &mut Vec<String>,
+) -> Result<GatheredSession, WorkError> {
+    let kept = kept(book, number)?;
+    let name = number.to_string();
+    let mut session = kept.session;
+    let stretches = kept.left_out.iter().filter_map(|left| left.stretch_s);
+    session
+        .events
+        .extend(stretches.map(|(from_s, until_s)| Event { at_s: from_s, what: What::Exclude { until_s } }));
+    let line = match (&session.line, &kept.line_run) {
+        (_, Some(run)) => Some(lines::of_kept_run(run, Path::new(&name), session.taken.date_naive())?),
+        (Some(LineReference::Orifice(orifice)), None) => {
+            Some(lines::from_book_at(book, orifice, session.taken)?)
+        }
+        (Some(LineReference::RunFile(_)) | None, None) => None,
+    };
+    note_line(&name, line.as_ref(), notes);
+    Ok(GatheredSession { name, session, line, left_out: kept.left_out })
+}
+
+/// What is to be said of a session's line; several sessions through one line say it once.
+fn note_line(session: &str, line: Option<&FoundLine>, notes: &mut Vec<String>) {
+    for note in line.iter().flat_map(|line| &line.notes) {
+        let said = format!("{session}: {note}");
+        if !notes.contains(&said) {
+            notes.push(said);
+        }
+    }
+}
