@@ -37,7 +37,9 @@ pub enum Forgotten {
 }
 
 impl Book {
-    /// Deletes everything personal of a diver. The reason stays for good: it must not name the diver.
+    /// Deletes everything personal of a diver, in whatever case the code is written: the entry of the register and every
+    /// session with its readings, line, files and what was left out of it. The reason stays for good, and is what the
+    /// numbers of those sessions answer from then on: it must not name the diver.
     ///
     /// # Errors
     /// [`BookError::Unknown`] when there is no such diver and no earlier erasure to finish; those of every write.
