@@ -4,473 +4,24 @@
 
 mod setting_support;
 mod simulator;
+#[path = "report_setting/desk.rs"]
+mod desk;
+#[path = "report_setting/sentences.rs"]
+mod sentences;
 
 use std::collections::BTreeSet;
 
-use chrono::NaiveDate;
-use ebbline::bench::Analysis;
+use desk::*;
 use ebbline::bench::choke::Origin;
-use ebbline::entry::{Amount, Id, Meter, MeterKind, Papers, Run};
-use ebbline::gas::Species;
-use ebbline::quantity::{
-    AbsolutePressure, IndicatedFlow, Length, PressureRate, ReferenceConditions, Shown, Temperature,
-    Uncertain, Volume,
-};
-use ebbline::report::setting::{OrificeNamed, Reported, favourable, text, why_not};
-use ebbline::report::{Units, setting_json, setting_sentences, sheet};
-use ebbline::setting::{
-    Against, Defaulted, FirstStageKind, FittingDiameter, InjectionSource, OrificeInput, RestingUptake,
-    Setting, SettingOptions, Standing, Trapped, Warning, WhyNot, setting,
-};
+use ebbline::entry::{Id, Place};
+use ebbline::quantity::{PressureRate, Uncertain};
+use ebbline::report::setting::{favourable, text, why_not};
+use ebbline::report::{Units, setting_json, sheet};
+use ebbline::setting::{OrificeInput, SettingOptions, Standing, Trapped};
+use ebbline::uptake::{Estimate, NextDay, PlaceUptake, Shared, Uptake};
+use sentences::DEFAULTED;
 use serde_json::Value;
 use setting_support::*;
-use simulator::{Random, Scene, Trial};
-
-/// Everything a report is made of.
-struct Desk {
-    setting: Setting,
-    options: SettingOptions,
-    lines: Vec<String>,
-    run: Run,
-    analysis: Analysis,
-    diver: String,
-    sessions: Vec<String>,
-    uptake_why_not: Option<String>,
-    notes: Vec<String>,
-}
-
-impl Desk {
-    fn new(orifices: &[OrificeInput], uptake: Option<&RestingUptake>, options: SettingOptions) -> Self {
-        let trial = Trial::new(Scene::PLAIN, &mut Random::new(7));
-        Self {
-            setting: setting(orifices, uptake, &options).expect("a good call"),
-            options,
-            lines: vec!["run R0003 of 2026-11-12, accepted".into(); orifices.len()],
-            analysis: trial.analyse_nominal(),
-            run: trial.run,
-            diver: "D-07".into(),
-            sessions: vec!["S0001 of 2026-11-20, couch".into(), "S0002 of 2026-11-21, couch".into()],
-            uptake_why_not: None,
-            notes: Vec::new(),
-        }
-    }
-
-    fn say<T>(&self, say: impl FnOnce(&Reported<'_>) -> T) -> T {
-        let orifices: Vec<OrificeNamed<'_>> = self
-            .lines
-            .iter()
-            .map(|line| OrificeNamed { line, run: &self.run, analysis: &self.analysis })
-            .collect();
-        say(&Reported {
-            setting: &self.setting,
-            options: &self.options,
-            orifices: &orifices,
-            diver: Some(&self.diver),
-            sessions: &self.sessions,
-            uptake: None,
-            uptake_why_not: self.uptake_why_not.as_deref(),
-            first_stage: Some("FS-1"),
-            on: NaiveDate::from_ymd_opt(2026, 11, 22).unwrap(),
-            notes: &self.notes,
-        })
-    }
-
-    fn text(&self) -> String {
-        self.say(|reported| text(reported, &Units::default()))
-    }
-
-    fn sheet(&self) -> String {
-        self.say(|reported| sheet::text(reported, &Units::default()))
-    }
-
-    fn json(&self) -> Value {
-        serde_json::to_value(self.say(setting_json::json)).unwrap()
-    }
-}
-
-fn shown(units: &str) -> Units {
-    Units::new(Shown::parse(units).unwrap())
-}
-
-fn meter() -> Meter {
-    Meter {
-        id: Some(Id::new("FM-01").unwrap()),
-        kind: MeterKind::Mass {
-            reads_at: ReferenceConditions {
-                temperature: Temperature::from_c(20.0),
-                pressure: AbsolutePressure::STANDARD_ATMOSPHERE,
-            },
-            made_for: Species::Oxygen,
-            gas_factor: None,
-        },
-        papers: Papers {
-            gain: Some(0.008),
-            zero: None,
-            noise: Some(Amount::OfReading(0.002)),
-            resolution: None,
-            coverage: 2.0,
-            range: Some((IndicatedFlow::from_l_min(0.02), IndicatedFlow::from_l_min(2.0))),
-            certificate: None,
-            due: None,
-        },
-    }
-}
-
-/// What a careful diver says; the rest takes its default.
-fn careful() -> SettingOptions {
-    SettingOptions {
-        gauge_error: bar(0.2),
-        loop_volume: Some(Uncertain { value: Volume::from_l(7.0), expanded: None }),
-        water_temperature: water(12.0),
-        trapped: Some(Trapped::Volume(Uncertain { value: Volume::from_l(0.015), expanded: None })),
-        meter: Some(meter()),
-        ..SettingOptions::default()
-    }
-}
-
-fn recommended() -> Desk {
-    Desk::new(&[orifice("CMF-0417", bench_line(0.028))], Some(&diver(0.33, 0.014, 12.0)), careful())
-}
-
-fn compensated() -> Desk {
-    let options = SettingOptions {
-        first_stage: FirstStageKind::Compensated,
-        max_depth: Some(Length::from_m(20.0)),
-        ..careful()
-    };
-    Desk::new(&[orifice("CMF-0417", bench_line(0.028))], Some(&diver(0.33, 0.014, 12.0)), options)
-}
-
-/// A hole too large: even the lowest measured pressure feeds too much.
-fn refused() -> Desk {
-    let uptake = diver(0.33, 0.014, 12.0);
-    let options = SettingOptions { despite: Some("the other one is away".into()), ..careful() };
-    let too_large = OrificeInput { standing: Standing::Failed, ..orifice("CMF-0417", bench_line(0.12)) };
-    Desk::new(&[too_large], Some(&uptake), options)
-}
-
-fn judged(ip_bar: f64) -> Desk {
-    let options = SettingOptions { judge: Some(gauge(ip_bar)), ..careful() };
-    Desk::new(&[orifice("CMF-0417", bench_line(0.028))], Some(&diver(0.33, 0.014, 12.0)), options)
-}
-
-fn without_uptake() -> Desk {
-    let mut desk = Desk::new(&[orifice("CMF-0417", bench_line(0.028))], None, careful());
-    desk.uptake_why_not = Some("fewer than two cells agree".into());
-    desk
-}
-
-fn two_orifices() -> Desk {
-    let options = SettingOptions { ip_range: Some((gauge(8.0), gauge(11.0))), ..careful() };
-    let orifices = [
-        orifice("CMF-0417", bench_line(0.028)),
-        OrificeInput { standing: Standing::NeverJudged, ..orifice("CMF-0502", bench_line(0.12)) },
-    ];
-    Desk::new(&orifices, Some(&diver(0.33, 0.014, 12.0)), options)
-}
-
-fn all_desks() -> Vec<(&'static str, Desk)> {
-    vec![
-        ("recommended", recommended()),
-        ("compensated", compensated()),
-        ("refused", refused()),
-        ("judged well", judged(9.2)),
-        ("judged badly", judged(10.6)),
-        ("without uptake", without_uptake()),
-        ("two orifices", two_orifices()),
-    ]
-}
-
-fn columns(line: &str) -> usize {
-    line.chars().count()
-}
-
-/// Each of `all` has its own place in the match that numbers them, so that a new variant breaks the build, and none is
-/// forgotten.
-#[track_caller]
-fn all_there<T>(all: &[T], place: impl Fn(&T) -> usize, count: usize) {
-    let places: BTreeSet<usize> = all.iter().map(place).collect();
-    assert_eq!(places, (0..count).collect());
-}
-
-#[track_caller]
-fn all_different(says: &[String]) {
-    let different: BTreeSet<&String> = says.iter().collect();
-    assert_eq!(different.len(), says.len());
-    for say in says {
-        assert!(say.len() > 3 && !say.contains("NaN") && !say.contains("no number"), "{say}");
-    }
-}
-
-#[track_caller]
-fn holds(text: &str, needles: &[&str]) {
-    for needle in needles {
-        assert!(text.contains(needle), "{needle:?} is not in: {text}");
-    }
-}
-
-fn fitting() -> Option<FittingDiameter> {
-    Some(FittingDiameter { ip_bar_gauge: 9.0, um: 57.2, smallest_um: 53.1, largest_um: 63.4 })
-}
-
-#[test]
-fn every_refusal_says_what_why_and_what_to_do() {
-    let since = NaiveDate::from_ymd_opt(2026, 3, 1).unwrap();
-    // 0.95 of 0.33 is 0.3135.
-    let all: Vec<(WhyNot, &[&str])> = vec![
-        (WhyNot::NoUptake, &["measure it first"]),
-        (WhyNot::ImplausiblePerKilogram { ml_kg_min: 6.43 }, &["6.4 mL/(kg·min)", "--despite"]),
-        (WhyNot::Failed, &["failed", "cleaned", "--despite"]),
-        (WhyNot::Undecided, &["could not be decided", "--despite"]),
-        (WhyNot::Overdue { since }, &["2026-03-01", "--despite"]),
-        (WhyNot::LineDoesNotRise, &["does not rise"]),
-        (
-            WhyNot::NothingLowEnough {
-                lowest_ip_bar_gauge: 8.0,
-                richest_l_min: 0.412_31,
-                chance: 0.9,
-                fitting: fitting(),
-            },
-            &[
-                "8.0 bar (116 psi)",
-                "0.4124 L/min STPD",
-                "0.3135 L/min",
-                "90 %",
-                "2.5 %",
-                "57.2 µm",
-                "53.1 µm",
-                "63.4 µm",
-            ],
-        ),
-        (
-            WhyNot::NothingHighEnough { highest_ip_bar_gauge: 11.0, shortfall: 0.2741, fitting: fitting() },
-            &["11.0 bar (159 psi)", "27.5 %", "25 %", "57.2 µm"],
-        ),
-        (
-            WhyNot::NoDivisionInRange { range_bar_gauge: (9.71, 9.79), division_bar: 0.1 },
-            &["9.71 bar", "9.79 bar", "0.1 bar", "finer gauge"],
-        ),
-        (
-            WhyNot::OutsideSpan {
-                ip_bar_gauge: 9.8,
-                needs_bar_abs: 10.813,
-                span_bar_abs: (4.0, 9.5),
-                fitting: fitting(),
-            },
-            &["9.8 bar (142 psi)", "10.81 bar absolute", "4.00 to 9.50 bar absolute", "57.2 µm"],
-        ),
-        (
-            WhyNot::ShortfallTooLarge { ip_bar_gauge: 7.5, shortfall: 0.2512, fitting: None },
-            &["7.5 bar (108 psi)", "25.2 %", "too lean", "measure again", "No other hole"],
-        ),
-    ];
-    let place = |why: &WhyNot| match why {
-        WhyNot::NoUptake => 0,
-        WhyNot::ImplausiblePerKilogram { .. } => 1,
-        WhyNot::Failed => 2,
-        WhyNot::Undecided => 3,
-        WhyNot::Overdue { .. } => 4,
-        WhyNot::LineDoesNotRise => 5,
-        WhyNot::NothingLowEnough { .. } => 6,
-        WhyNot::NothingHighEnough { .. } => 7,
-        WhyNot::NoDivisionInRange { .. } => 8,
-        WhyNot::OutsideSpan { .. } => 9,
-        WhyNot::ShortfallTooLarge { .. } => 10,
-    };
-    all_there(&all, |(why, _)| place(why), 11);
-    let set = recommended().setting;
-    let says = |units: &Units| -> Vec<String> {
-        all.iter().map(|(why, _)| setting_sentences::why_not(why, &set, units)).collect()
-    };
-    let sentences = says(&Units::default());
-    all_different(&sentences);
-    for ((_, needles), sentence) in all.iter().zip(&sentences) {
-        holds(sentence, needles);
-    }
-    // For the page to keep: the same reasons, and no pressure one could dial.
-    let kept: Vec<String> = all
-        .iter()
-        .map(|(why, _)| setting_sentences::why_not_without_ip(why, &set, &Units::default()))
-        .collect();
-    all_different(&kept);
-    assert!(kept.iter().all(|say| !say.contains(" bar") && !say.contains("psi")), "{kept:#?}");
-    // 57.2 µm over 25.4 µm: 2.252 thousandths of an inch.
-    holds(&says(&shown("in"))[6], &["57.2 µm (2.25 thousandths of an inch)"]);
-    holds(&says(&shown("psi"))[6], &["116 psi (8.0 bar)"]);
-    // At the maximum depth of a compensated first stage it is the pressure there that is not held.
-    holds(&setting_sentences::why_not(&all[9].0, &compensated().setting, &Units::default()), &["at 20 m"]);
-}
-
-#[test]
-fn every_objection_to_a_judged_ip_has_its_sentence() {
-    let all: Vec<(Against, &[&str])> = vec![
-        (Against::Overfeeds { chance: 0.0251 }, &["2.6 %", "2.5 % is allowed", "lower it"]),
-        (Against::ShortfallTooSmall { shortfall: 0.0496 }, &["4.9 %", "5 % is asked", "lower it"]),
-        (Against::ShortfallTooLarge { shortfall: 0.2501 }, &["25.1 %", "over 25 %", "raise it"]),
-        (
-            Against::OutsideRange { range_bar_gauge: (7.0, 11.0) },
-            &["7 bar (101.5 psi)", "11 bar (159.5 psi)"],
-        ),
-        (Against::AboveMaximum { max_ip_bar_gauge: 10.5 }, &["10.5 bar (152.3 psi)", "maker"]),
-    ];
-    let place = |against: &Against| match against {
-        Against::Overfeeds { .. } => 0,
-        Against::ShortfallTooSmall { .. } => 1,
-        Against::ShortfallTooLarge { .. } => 2,
-        Against::OutsideRange { .. } => 3,
-        Against::AboveMaximum { .. } => 4,
-    };
-    all_there(&all, |(against, _)| place(against), 5);
-    let set = recommended().setting;
-    let say = |against: &Against| setting_sentences::against(against, &set, &Units::default());
-    let says: Vec<String> = all.iter().map(|(against, _)| say(against)).collect();
-    all_different(&says);
-    for ((_, needles), sentence) in all.iter().zip(&says) {
-        holds(sentence, needles);
-    }
-    holds(&say(&Against::ShortfallTooSmall { shortfall: -0.031 }), &["3.1 % more than the uptake"]);
-}
-
-#[test]
-fn every_warning_has_its_sentence() {
-    let since = NaiveDate::from_ymd_opt(2026, 3, 1).unwrap();
-    let why = || "spare is away".to_owned();
-    let all: Vec<(Warning, &[&str])> = vec![
-        (Warning::GaugeErrorAssumed { expanded_bar: 0.5 }, &["±0.5 bar (k = 2", "2.5 %", "transducer"]),
-        (Warning::IpSpreadAssumed { bar: 0.3 }, &["0.3 bar", "nearly empty cylinder"]),
-        (Warning::IpRepeatAssumed { expanded_bar: 0.1 }, &["±0.1 bar (k = 2)"]),
-        (Warning::WaterTemperatureUnknown, &["12 °C", "--water-temperature"]),
-        (Warning::LoopVolumeUnknown, &["no minutes", "--loop-volume"]),
-        (Warning::TrappedVolumeUnknown, &["contents gauge"]),
-        (Warning::UnusualPerKilogram { ml_kg_min: 4.8 }, &["4.8 mL/(kg·min)", "reference conditions"]),
-        (
-            Warning::DespitePerKilogram { ml_kg_min: 6.4, why: why() },
-            &["6.4 mL/(kg·min)", "\"spare is away\""],
-        ),
-        (Warning::NeverJudged, &["nobody has judged"]),
-        (Warning::DespiteFailed { why: why() }, &["failed", "\"spare is away\""]),
-        (Warning::DespiteUndecided { why: why() }, &["undecided", "\"spare is away\""]),
-        (Warning::DespiteOverdue { since, why: why() }, &["2026-03-01", "\"spare is away\""]),
-        (Warning::RangeLimits { highest_ip_bar_gauge: 9.0 }, &["9.0 bar (130 psi)", "larger hole"]),
-        (Warning::ChokeRatioBounded, &["only bounded", "low IP"]),
-        (Warning::ChokeModelFails, &["no choke ratio", "build"]),
-        (Warning::NotChokedAtSurface, &["at the surface"]),
-        (Warning::DeeperThanConstant { one_percent_at_m: 43.9, left: 0.8765 }, &["43 m", "20 m", "87.6 %"]),
-        (Warning::StopsAboveMaxDepth { stops_at_m: 18.7 }, &["18 m", "20 m", "run back"]),
-        (
-            Warning::BeyondSpanAtDepth { needs_bar_abs: 10.81, highest_bar_abs: 9.83 },
-            &["10.81 bar absolute", "9.83 bar absolute", "20 m", "10 %"],
-        ),
-        (Warning::LeanAtSurface { shortfall: 0.3175 }, &["31.8 %", "surface", "20 m"]),
-        (Warning::MeterOutOfRange, &["range of the meter"]),
-        (Warning::MeterWithoutGasFactor, &["another gas", "factor"]),
-    ];
-    let place = |warning: &Warning| match warning {
-        Warning::GaugeErrorAssumed { .. } => 0,
-        Warning::IpSpreadAssumed { .. } => 1,
-        Warning::IpRepeatAssumed { .. } => 2,
-        Warning::WaterTemperatureUnknown => 3,
-        Warning::LoopVolumeUnknown => 4,
-        Warning::TrappedVolumeUnknown => 5,
-        Warning::UnusualPerKilogram { .. } => 6,
-        Warning::DespitePerKilogram { .. } => 7,
-        Warning::NeverJudged => 8,
-        Warning::DespiteFailed { .. } => 9,
-        Warning::DespiteUndecided { .. } => 10,
-        Warning::DespiteOverdue { .. } => 11,
-        Warning::RangeLimits { .. } => 12,
-        Warning::ChokeRatioBounded => 13,
-        Warning::ChokeModelFails => 14,
-        Warning::NotChokedAtSurface => 15,
-        Warning::DeeperThanConstant { .. } => 16,
-        Warning::StopsAboveMaxDepth { .. } => 17,
-        Warning::BeyondSpanAtDepth { .. } => 18,
-        Warning::LeanAtSurface { .. } => 19,
-        Warning::MeterOutOfRange => 20,
-        Warning::MeterWithoutGasFactor => 21,
-    };
-    all_there(&all, |(warning, _)| place(warning), 22);
-    let set = compensated().setting;
-    let says: Vec<String> =
-        all.iter().map(|(warning, _)| setting_sentences::warning(warning, &set, &Units::default())).collect();
-    all_different(&says);
-    for ((_, needles), sentence) in all.iter().zip(&says) {
-        holds(sentence, needles);
-    }
-}
-
-/// Every option with a default.
-const DEFAULTED: [Defaulted; 18] = [
-    Defaulted::IpRange,
-    Defaulted::GaugeDivision,
-    Defaulted::GaugeScale,
-    Defaulted::GaugeError,
-    Defaulted::IpSpread,
-    Defaulted::IpRepeat,
-    Defaulted::Chance,
-    Defaulted::Shortfall,
-    Defaulted::Water,
-    Defaulted::WaterTemperature,
-    Defaulted::SetAt,
-    Defaulted::DiveAt,
-    Defaulted::Diluent,
-    Defaulted::Po2High,
-    Defaulted::Po2Low,
-    Defaulted::Work,
-    Defaulted::Oxygen,
-    Defaulted::Contents,
-];
-
-#[test]
-fn every_option_and_every_source_has_its_name() {
-    let place = |which: &Defaulted| match which {
-        Defaulted::IpRange => 0,
-        Defaulted::GaugeDivision => 1,
-        Defaulted::GaugeScale => 2,
-        Defaulted::GaugeError => 3,
-        Defaulted::IpSpread => 4,
-        Defaulted::IpRepeat => 5,
-        Defaulted::Chance => 6,
-        Defaulted::Shortfall => 7,
-        Defaulted::Water => 8,
-        Defaulted::WaterTemperature => 9,
-        Defaulted::SetAt => 10,
-        Defaulted::DiveAt => 11,
-        Defaulted::Diluent => 12,
-        Defaulted::Po2High => 13,
-        Defaulted::Po2Low => 14,
-        Defaulted::Work => 15,
-        Defaulted::Oxygen => 16,
-        Defaulted::Contents => 17,
-    };
-    all_there(&DEFAULTED, place, 18);
-    let names: Vec<String> =
-        DEFAULTED.iter().map(|d| setting_sentences::option_name(*d).to_owned()).collect();
-    all_different(&names);
-    let sources = [
-        InjectionSource::LineRandom,
-        InjectionSource::LineCommon,
-        InjectionSource::Gauge,
-        InjectionSource::Repeatability,
-        InjectionSource::Barometer,
-        InjectionSource::Purity,
-        InjectionSource::GasTemperature,
-    ];
-    let place = |source: &InjectionSource| match source {
-        InjectionSource::LineRandom => 0,
-        InjectionSource::LineCommon => 1,
-        InjectionSource::Gauge => 2,
-        InjectionSource::Repeatability => 3,
-        InjectionSource::Barometer => 4,
-        InjectionSource::Purity => 5,
-        InjectionSource::GasTemperature => 6,
-    };
-    all_there(&sources, place, 7);
-    let names: Vec<String> = sources.iter().map(|s| setting_sentences::source_name(*s).to_owned()).collect();
-    all_different(&names);
-    let text = recommended().text();
-    holds(&text, &names.iter().map(String::as_str).collect::<Vec<_>>());
-}
 
 #[test]
 fn every_default_is_printed_with_its_value() {
@@ -835,7 +386,43 @@ fn without_a_setting_the_page_says_so_and_gives_no_pressure_to_dial() {
         &refused().sheet(),
         &["N O   S E T T I N G", "injects too much", "µm", "DESPITE: \"the other one is away\""],
     );
-    holds(&without_uptake().sheet(), &["fewer than two cells agree"]);
+    let flat = without_uptake().sheet().split_whitespace().collect::<Vec<_>>().join(" ");
+    holds(&flat, &["there is no resting uptake to set by", "fewer than two cells agree"]);
+}
+
+#[test]
+fn another_days_uptake_says_where_and_on_how_many_days_it_was_measured() {
+    let mut desk = recommended();
+    // t(0.975; 12) = 2.178 81: 0.33 ± 2.178 81 · 0.014 = 0.2995 to 0.3605.
+    let next_day = NextDay {
+        uptake_l_min: 0.33,
+        u: 0.014,
+        dof: 12.0,
+        interval_95: (0.2995, 0.3605),
+        days: 2,
+        day_spread_l_min: 0.01,
+    };
+    let estimate = Estimate {
+        uptake_l_min: 0.33,
+        u: 0.009,
+        dof: 12.0,
+        interval_95: (0.31, 0.35),
+        budget: Vec::new(),
+        next_day,
+        would_help: Vec::new(),
+        per_kilogram: None,
+        shared: Shared::default(),
+    };
+    let place = PlaceUptake { place: Place::Couch, answer: Ok(estimate), sessions: Vec::new() };
+    desk.uptake = Some(Uptake { diver: Id::new("D-07").unwrap(), places: vec![place] });
+    for output in [desk.text(), desk.sheet()] {
+        let flat = output.split_whitespace().collect::<Vec<_>>().join(" ");
+        // Ending where the half-width of 0.0305 ends with two figures, rounded up: 0.031.
+        holds(&flat, &["on another day 0.330 L/min, 95 % from 0.299 to 0.361 L/min; couch, 2 days measured"]);
+    }
+    let json = desk.json();
+    let interval = |i: usize| json["uptake"]["interval_95"][i].as_f64().unwrap();
+    assert!((interval(0) - 0.2995).abs() < 5e-5 && (interval(1) - 0.3605).abs() < 5e-5, "{}", json["uptake"]);
 }
 
 #[test]
