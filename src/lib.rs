@@ -56,5 +56,6 @@ pub mod plot;
 pub mod clock;
 pub mod record;
 pub mod book;
+pub mod instrument;
 pub mod work;
 pub mod cli;

@@ -6,9 +6,9 @@ mod book_support;
 
 use std::path::{Path, PathBuf};
 
-use book_support::{Folder, QUICK, begin, decision, id, import, run, stamped};
+use book_support::{Folder, QUICK, begin, decision, id, import, import_session, run, session, stamped};
 use ebbline::book::{Book, BookError, Entry, Opening, Wrong};
-use ebbline::entry::{Diver, Orifice, RunNumber};
+use ebbline::entry::{Diver, Orifice, RunNumber, SessionNumber};
 use rusqlite::Connection;
 
 #[test]
@@ -99,6 +99,11 @@ fn freeze(form: u32) {
     for name in ["D-1", "D-2"] {
         stamped(|stamp| book.add(Entry::Diver(Diver::bare(id(name))), stamp)).unwrap();
     }
+    for (diver, text) in [("D-1", "gone"), ("D-2", "couch")] {
+        let number = import_session(&mut book, &session(diver, 30, 0.7), text).number;
+        let why = ("coughed", Some("I. Varga"));
+        stamped(|stamp| book.leave_out_of_session(number, Some((3.0, 5.5)), why.0, why.1, stamp)).unwrap();
+    }
     stamped(|stamp| book.forget_diver(&id("D-1"), "asked to", stamp)).unwrap();
     drop(book);
     std::fs::copy(folder.book(), frozen(&format!("book_{form}.db"))).unwrap();
@@ -140,6 +145,18 @@ fn a_book_of_every_form_still_holds_and_says_the_same() {
         assert_eq!((record.run.left_out[0].point, record.run.left_out[0].why.as_str()), (4, "door open"));
         assert_eq!(record.decisions, [decision(0.48)]);
         assert_eq!(book.source_of(record.number).unwrap(), Some(book_support::files("frozen")));
+        let [gone, there] = [1, 2].map(|number| SessionNumber::new(number).unwrap());
+        let error = book.session(gone).unwrap_err().to_string();
+        assert_eq!(error, "session S0001 was erased on 2026-11-12T10:00:00+11:00: asked to");
+        let record = book.session(there).unwrap();
+        assert_eq!(
+            (&record.session, &record.line_run),
+            (&session("D-2", 30, 0.7), &Some(run("CMF-0417", 20)))
+        );
+        assert_eq!(record.left_out[0].stretch_s, Some((3.0, 5.5)));
+        assert_eq!(record.left_out[0].at, book_support::time("2026-11-12T10:00:00+11:00"));
+        let files = book_support::session_files(&record.session, "couch");
+        assert_eq!(book.session_source_of(there).unwrap(), Some(files));
         assert_eq!(book.entries::<Orifice>(None, None).unwrap().len(), 1);
         assert_eq!(book.entries::<Diver>(None, None).unwrap()[0].entry, Diver::bare(id("D-2")));
     }

@@ -10,9 +10,11 @@ use std::process::{Child, Command, Stdio};
 use std::sync::mpsc;
 use std::time::Duration;
 
-use book_support::{Folder, begin, decision, files, import, point, run, stamped};
-use ebbline::book::{Book, Options, RunState};
-use ebbline::entry::{Readings, RunNumber};
+use book_support::{
+    Folder, begin, decision, files, import, import_session, point, run, session, session_files, stamped,
+};
+use ebbline::book::{Book, Options, RunState, SessionQuery};
+use ebbline::entry::{Readings, RunNumber, SessionNumber};
 
 /// Where a program started by a test finds its book.
 const BOOK: &str = "EBBLINE_TEST_BOOK";
@@ -55,12 +57,26 @@ fn works_until_killed(path: &Path, name: &str) {
         }
         stamped(|stamp| book.finish_run(typed, stamp)).unwrap();
         acknowledge(&format!("finished {typed}"));
+        let number = import_session(&mut book, &session(&orifice, 20, 0.7), &orifice).number;
+        acknowledge(&format!("session {number} {orifice}"));
+        stamped(|stamp| book.leave_out_of_session(number, None, "coughed", None, stamp)).unwrap();
+        acknowledge(&format!("left-out {number}"));
     }
 }
 
 /// Whether what was acknowledged is in the book.
 fn is_there(book: &Book, said: &str) -> bool {
     let words: Vec<&str> = said.split(' ').collect();
+    if let Some(number) = SessionNumber::parse(words[1]) {
+        let Ok(record) = book.session(number) else { return false };
+        if words[0] == "left-out" {
+            return record.left_out.len() == 1;
+        }
+        let files = session_files(&record.session, words[2]);
+        let same = record.session == session(words[2], 20, 0.7);
+        let line = record.line_run == Some(run("CMF-0417", 20));
+        return same && line && book.session_source_of(number).unwrap() == Some(files);
+    }
     let Ok(record) = book.run(RunNumber::parse(words[1]).unwrap()) else { return false };
     let points = match &record.run.readings {
         Readings::Points(points) => points.clone(),
@@ -147,6 +163,10 @@ fn writes_its_runs(path: &Path, name: &str) {
         let orifice = format!("{name}-{n}");
         let recorded = import(&mut book, &run(&orifice, 20), &orifice);
         assert!(recorded.new && recorded.orifice_created);
+        if n % 4 == 0 {
+            let recorded = import_session(&mut book, &session(&orifice, 20, 0.7), &orifice);
+            assert!(recorded.new && recorded.diver_created);
+        }
     }
 }
 
@@ -154,6 +174,13 @@ fn all_is_there(path: &Path) {
     let book = Book::open_to_read(path, &Options::default()).unwrap();
     let check = book.check(&[]).unwrap();
     assert_eq!((check.wrong, check.runs), (None, (WRITERS * RUNS_EACH) as u64));
+    // Numbers without a gap, none given twice.
+    let sessions = book.sessions(&SessionQuery::default()).unwrap();
+    let numbers: Vec<u32> = sessions.iter().rev().map(|row| row.number.get()).collect();
+    assert_eq!(numbers, (1..=(WRITERS * RUNS_EACH / 4) as u32).collect::<Vec<_>>());
+    for row in sessions {
+        assert_eq!(book.session(row.number).unwrap().session, session(&row.diver, 20, 0.7));
+    }
     for writer in 0..WRITERS {
         for n in 0..RUNS_EACH {
             let orifice = format!("w{writer}-{n}");

@@ -7,8 +7,10 @@ mod book_support;
 use std::collections::BTreeSet;
 use std::path::Path;
 
-use book_support::{Folder, QUICK, begin, decision, id, import, point, run, stamped};
-use ebbline::book::{Book, Check, Entry, Head, RunQuery, Wrong};
+use book_support::{
+    Folder, QUICK, begin, decision, id, import, import_session, point, run, session, stamped,
+};
+use ebbline::book::{Book, Check, Entry, Head, RunQuery, SessionQuery, Wrong};
 use ebbline::entry::{Acceptance, Diver, FirstStage, Instrument, Orifice};
 use rusqlite::Connection;
 
@@ -27,6 +29,11 @@ fn some_of_everything(path: &Path) -> Head {
     for name in ["D-1", "D-2"] {
         let diver = Diver { name: Some("Somebody".into()), ..Diver::bare(id(name)) };
         stamped(|stamp| book.add(Entry::Diver(diver), stamp)).unwrap();
+    }
+    for (diver, text) in [("D-1", "gone"), ("D-2", "couch"), ("D-2", "left out")] {
+        let number = import_session(&mut book, &session(diver, 30, 0.7), text).number;
+        let stretch = (text == "couch").then_some((3.0, 5.5));
+        stamped(|stamp| book.leave_out_of_session(number, stretch, "coughed", None, stamp)).unwrap();
     }
     stamped(|stamp| book.forget_diver(&id("D-1"), "asked to", stamp)).unwrap();
     book.check(&[]).unwrap().head
@@ -49,6 +56,12 @@ fn everything(path: &Path) -> Option<String> {
         all += &format!("{:?} {:?}", book.run(row.number).ok()?, book.source_of(row.number).ok()?);
         all += &format!("{:?}", book.history(&id(&row.orifice), None).ok()?);
     }
+    let rows = book.sessions(&SessionQuery::default()).ok()?;
+    all += &format!("{rows:?}");
+    for row in &rows {
+        all += &format!("{:?}", book.session(row.number).ok()?);
+        all += &format!("{:?}", book.session_source_of(row.number).ok()?);
+    }
     all += &format!("{:?}", book.entries::<Orifice>(None, None).ok()?);
     all += &format!("{:?}", book.entries::<Instrument>(None, None).ok()?);
     all += &format!("{:?}", book.entries::<FirstStage>(None, None).ok()?);
@@ -64,9 +77,21 @@ fn no_statement_changes_deletes_or_replaces_what_was_recorded() {
     let raw = Connection::open(folder.book()).unwrap();
     for recursive in ["ON", "OFF"] {
         raw.pragma_update(None, "recursive_triggers", recursive).unwrap();
-        for table in ["record", "payload", "run", "of_run", "decision", "register", "erased"] {
+        for (table, column) in [
+            ("record", "seq"),
+            ("payload", "seq"),
+            ("run", "seq"),
+            ("of_run", "seq"),
+            ("decision", "seq"),
+            ("register", "seq"),
+            ("session", "seq"),
+            ("of_session", "seq"),
+            ("session_left_out", "seq"),
+            ("session_erased", "number"),
+            ("erased", "seq"),
+        ] {
             for statement in [
-                format!("UPDATE {table} SET seq = seq"),
+                format!("UPDATE {table} SET {column} = {column}"),
                 format!("DELETE FROM {table}"),
                 format!("INSERT OR REPLACE INTO {table} SELECT * FROM {table}"),
                 format!("REPLACE INTO {table} SELECT * FROM {table} LIMIT 1"),
@@ -80,6 +105,10 @@ fn no_statement_changes_deletes_or_replaces_what_was_recorded() {
         for statement in [
             "INSERT OR REPLACE INTO run SELECT 2, number, orifice, orifice_key, gas, purpose, taken, taken_s, \
              technician, origin, NULL FROM run WHERE number = 1",
+            "INSERT OR REPLACE INTO session SELECT 1, number, diver, diver_key, place, kept, taken, recorded, origin, \
+             first_s, last_s, cells, readings, NULL FROM session WHERE number = 2",
+            "INSERT INTO session SELECT 1, 1, diver, diver_key, place, kept, taken, recorded, origin, \
+             first_s, last_s, cells, readings, NULL FROM session WHERE number = 2",
             "INSERT OR REPLACE INTO register SELECT 1, register, key, id, revision FROM register LIMIT 1",
         ] {
             assert!(raw.execute(statement, []).unwrap_err().to_string().contains("append-only"));
@@ -175,7 +204,7 @@ fn behind_its_back(path: &Path, change: &str) {
 #[test]
 fn each_way_to_alter_the_record_behind_its_back_is_named_with_its_place() {
     type Expected = fn(&Wrong) -> bool;
-    let alterations: [(&str, Expected); 15] = [
+    let alterations: [(&str, Expected); 22] = [
         ("DELETE FROM record WHERE seq = 9", |w| *w == Wrong::RecordMissing(9)),
         ("DELETE FROM payload WHERE seq = 9", |w| *w == Wrong::PayloadMissing(9)),
         ("UPDATE payload SET bytes = zeroblob(length(bytes)) WHERE seq = 9", |w| *w == Wrong::Payload(9)),
@@ -197,6 +226,25 @@ fn each_way_to_alter_the_record_behind_its_back_is_named_with_its_place() {
             matches!(w, Wrong::List { table: "decision", .. })
         }),
         ("INSERT INTO of_run VALUES (1, 1, 8)", |w| *w == Wrong::Unaccounted("of_run")),
+        ("UPDATE session SET last_s = 1200.0 WHERE number = 2", |w| {
+            matches!(w, Wrong::List { table: "session", .. })
+        }),
+        ("DELETE FROM session WHERE number = 3", |w| matches!(w, Wrong::List { table: "session", .. })),
+        ("DELETE FROM of_session WHERE kind = 1002 AND session = 2", |w| {
+            matches!(w, Wrong::List { table: "of_session", .. })
+        }),
+        ("DELETE FROM session_left_out WHERE whole", |w| {
+            matches!(w, Wrong::List { table: "session_left_out", .. })
+        }),
+        // The number of an erased session would be free again, or that of another taken.
+        ("DELETE FROM session_erased", |w| matches!(w, Wrong::List { table: "session_erased", .. })),
+        ("INSERT INTO session_erased SELECT 2, erasure FROM session_erased", |w| {
+            *w == Wrong::Unaccounted("session_erased")
+        }),
+        // The readings of a session go, but no erasure is recorded.
+        ("DELETE FROM payload WHERE seq = (SELECT max(seq) FROM record WHERE kind = 1002)", |w| {
+            matches!(w, Wrong::PayloadMissing(_))
+        }),
         ("DELETE FROM head", |w| *w == Wrong::CutTail),
         // The diver's entry goes as in an erasure, but no erasure is recorded.
         ("DELETE FROM payload WHERE seq = (SELECT max(seq) FROM record WHERE kind = 1000)", |w| {

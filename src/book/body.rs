@@ -8,11 +8,13 @@ use std::borrow::Cow;
 use chrono::{DateTime, FixedOffset};
 use rusqlite::types::Value;
 
-use super::canonical::{self, Bytes, Canonical, Reader, Unreadable, Writer};
+use super::canonical::{self, Bytes, Canonical, Reader, Unreadable, Writer, session_header};
 use super::registers::Entry;
 use super::runs::{Origin, SourceFiles};
+use super::sessions::{Extent, FileRole};
 use crate::entry::{
-    Decision, Diver, FirstStage, Instrument, LeftOut, Orifice, PointReading, Readings, Run, RunNumber, Shop,
+    Decision, Diver, FirstStage, Instrument, LeftOut, Orifice, PointReading, Readings, Run, RunNumber,
+    Session, SessionLeftOut, SessionNumber, Shop,
 };
 
 /// First byte of every payload: the form of the bytes that follow it.
@@ -44,10 +46,15 @@ pub(super) enum Kind {
     Erasure = 16,
     CopyMade = 17,
     Diver = 1000,
+    Session = 1001,
+    SessionReadings = 1002,
+    SessionLine = 1003,
+    SessionFile = 1004,
+    SessionLeftOut = 1005,
 }
 
 impl Kind {
-    const ALL: [Self; 18] = [
+    const ALL: [Self; 23] = [
         Self::Begun,
         Self::Run,
         Self::Readings,
@@ -66,6 +73,11 @@ impl Kind {
         Self::Erasure,
         Self::CopyMade,
         Self::Diver,
+        Self::Session,
+        Self::SessionReadings,
+        Self::SessionLine,
+        Self::SessionFile,
+        Self::SessionLeftOut,
     ];
 
     /// The kind of a number, if this program knows it.
@@ -113,8 +125,24 @@ pub(super) enum Body<'a> {
     Decided { run: RunNumber, decision: Box<Decision> },
     /// An entry of a register; `replaces` is the record of the revision before.
     Entry { revision: u32, replaces: Option<u64>, entry: Box<Entry> },
-    /// Payloads were erased.
-    Erasure { erased: Vec<u64>, why: String },
+    /// A session was recorded; its header.
+    Session {
+        number: SessionNumber,
+        origin: Origin,
+        source: Option<[u8; 32]>,
+        extent: Extent,
+        header: Cow<'a, Session>,
+    },
+    /// A block of readings of a session: its next rows, one piece of each column.
+    SessionReadings { session: SessionNumber, columns: Vec<Cow<'a, [f64]>> },
+    /// The run that a session's injection line was made from, with its readings.
+    SessionLine { session: SessionNumber, run: Cow<'a, Run> },
+    /// A piece of a file that a session was imported from.
+    SessionFile { session: SessionNumber, role: FileRole, name: String, bytes: Cow<'a, [u8]> },
+    /// A session or a stretch of it was left out of the diver's uptake.
+    SessionLeftOut { session: SessionNumber, left_out: SessionLeftOut },
+    /// Payloads were erased, among them those of `sessions`, whose numbers stay used.
+    Erasure { erased: Vec<u64>, sessions: Vec<SessionNumber>, why: String },
     /// A copy was made.
     CopyMade { kind: CopyKind, place: String },
 }
@@ -148,6 +176,11 @@ impl Body<'_> {
             Self::LeftOut { .. } => Kind::LeftOut,
             Self::Decided { .. } => Kind::Decided,
             Self::Entry { entry, .. } => entry.register().kind(),
+            Self::Session { .. } => Kind::Session,
+            Self::SessionReadings { .. } => Kind::SessionReadings,
+            Self::SessionLine { .. } => Kind::SessionLine,
+            Self::SessionFile { .. } => Kind::SessionFile,
+            Self::SessionLeftOut { .. } => Kind::SessionLeftOut,
             Self::Erasure { .. } => Kind::Erasure,
             Self::CopyMade { .. } => Kind::CopyMade,
         }
@@ -165,7 +198,27 @@ impl Body<'_> {
             | Self::RunFinished { run }
             | Self::LeftOut { run, .. }
             | Self::Decided { run, .. } => Some(*run),
-            Self::Begun | Self::Entry { .. } | Self::Erasure { .. } | Self::CopyMade { .. } => None,
+            Self::Begun
+            | Self::Entry { .. }
+            | Self::Session { .. }
+            | Self::SessionReadings { .. }
+            | Self::SessionLine { .. }
+            | Self::SessionFile { .. }
+            | Self::SessionLeftOut { .. }
+            | Self::Erasure { .. }
+            | Self::CopyMade { .. } => None,
+        }
+    }
+
+    /// The session it belongs to.
+    pub(super) const fn session(&self) -> Option<SessionNumber> {
+        match self {
+            Self::Session { number: session, .. }
+            | Self::SessionReadings { session, .. }
+            | Self::SessionLine { session, .. }
+            | Self::SessionFile { session, .. }
+            | Self::SessionLeftOut { session, .. } => Some(*session),
+            _ => None,
         }
     }
 }
@@ -231,8 +284,35 @@ pub(super) fn write(record: &Record<'_>) -> Vec<u8> {
                 Entry::Diver(entry) => entry.write(out),
             }
         }
-        Body::Erasure { erased, why } => {
+        Body::Session { number, origin, source, extent, header } => {
+            number.write(out);
+            origin.write(out);
+            source.write(out);
+            extent.write(out);
+            session_header::write(header, out);
+        }
+        Body::SessionReadings { session, columns } => {
+            session.write(out);
+            columns.write(out);
+        }
+        Body::SessionLine { session, run } => {
+            session.write(out);
+            canonical::header::write(run, out);
+            run.readings.write(out);
+        }
+        Body::SessionFile { session, role, name, bytes } => {
+            session.write(out);
+            role.write(out);
+            name.write(out);
+            bytes.write(out);
+        }
+        Body::SessionLeftOut { session, left_out } => {
+            session.write(out);
+            left_out.write(out);
+        }
+        Body::Erasure { erased, sessions, why } => {
             erased.write(out);
+            sessions.write(out);
             why.write(out);
         }
         Body::CopyMade { kind, place } => {
@@ -302,7 +382,35 @@ pub(super) fn read(kind: u16, bytes: &[u8]) -> Result<Record<'static>, Unreadabl
         Kind::Acceptance => entry(from, |from| Canonical::read(from).map(Entry::Acceptance))?,
         Kind::Shop => entry(from, |from| Shop::read(from).map(Entry::Shop))?,
         Kind::Diver => entry(from, |from| Diver::read(from).map(Entry::Diver))?,
-        Kind::Erasure => Body::Erasure { erased: Canonical::read(from)?, why: Canonical::read(from)? },
+        Kind::Session => Body::Session {
+            number: Canonical::read(from)?,
+            origin: Canonical::read(from)?,
+            source: Canonical::read(from)?,
+            extent: Canonical::read(from)?,
+            header: Cow::Owned(session_header::read(from)?),
+        },
+        Kind::SessionReadings => {
+            Body::SessionReadings { session: Canonical::read(from)?, columns: Canonical::read(from)? }
+        }
+        Kind::SessionLine => {
+            let (session, header) = (Canonical::read(from)?, canonical::header::read(from)?);
+            let run = Run { readings: Canonical::read(from)?, ..header };
+            Body::SessionLine { session, run: Cow::Owned(run) }
+        }
+        Kind::SessionFile => Body::SessionFile {
+            session: Canonical::read(from)?,
+            role: Canonical::read(from)?,
+            name: Canonical::read(from)?,
+            bytes: Canonical::read(from)?,
+        },
+        Kind::SessionLeftOut => {
+            Body::SessionLeftOut { session: Canonical::read(from)?, left_out: Canonical::read(from)? }
+        }
+        Kind::Erasure => Body::Erasure {
+            erased: Canonical::read(from)?,
+            sessions: Canonical::read(from)?,
+            why: Canonical::read(from)?,
+        },
         Kind::CopyMade => Body::CopyMade { kind: Canonical::read(from)?, place: Canonical::read(from)? },
     };
     reader.finish()?;
@@ -318,19 +426,22 @@ fn entry(
 }
 
 /// The rows by which a record is found.
-pub(super) fn rows(seq: u64, body: &Body<'_>) -> Vec<Row> {
+pub(super) fn rows(seq: u64, record: &Record<'_>) -> Vec<Row> {
+    let Record { at, body } = record;
     let mut rows = Vec::new();
+    let kind = Value::Integer(i64::from(body.kind().number()));
     if let Some(run) = body.run() {
-        let kind = Value::Integer(i64::from(body.kind().number()));
-        let columns = vec![("seq", place(seq)), ("run", number(run)), ("kind", kind)];
+        let columns = vec![("seq", place(seq)), ("run", number(run.get())), ("kind", kind)];
         rows.push(Row { table: "of_run", columns });
+    } else if let Some(session) = body.session() {
+        let columns = vec![("seq", place(seq)), ("session", number(session.get())), ("kind", kind)];
+        rows.push(Row { table: "of_session", columns });
     }
     match body {
         Body::Run { number: run, origin, source, header } => {
-            let digest = source.map_or(Value::Null, |digest| Value::Blob(digest.to_vec()));
             let columns = vec![
                 ("seq", place(seq)),
-                ("number", number(*run)),
+                ("number", number(run.get())),
                 ("orifice", text(header.orifice.as_str())),
                 ("orifice_key", text(&super::registers::key_of(header.orifice.as_str()))),
                 ("gas", code(&header.gas)),
@@ -339,7 +450,7 @@ pub(super) fn rows(seq: u64, body: &Body<'_>) -> Vec<Row> {
                 ("taken_s", Value::Integer(header.taken.timestamp())),
                 ("technician", header.technician.as_deref().map_or(Value::Null, text)),
                 ("origin", code(origin)),
-                ("source", digest),
+                ("source", digest(*source)),
             ];
             rows.push(Row { table: "run", columns });
         }
@@ -347,7 +458,7 @@ pub(super) fn rows(seq: u64, body: &Body<'_>) -> Vec<Row> {
             let figures = &decision.figures;
             let columns = vec![
                 ("seq", place(seq)),
-                ("run", number(*run)),
+                ("run", number(run.get())),
                 ("verdict", code(&decision.verdict)),
                 ("method", Value::Integer(i64::from(figures.method_revision))),
                 ("ip_pa", real(figures.ip.as_pa())),
@@ -367,7 +478,41 @@ pub(super) fn rows(seq: u64, body: &Body<'_>) -> Vec<Row> {
             ];
             rows.push(Row { table: "register", columns });
         }
-        Body::Erasure { erased, .. } => {
+        Body::Session { number: session, origin, source, extent, header } => {
+            let columns = vec![
+                ("seq", place(seq)),
+                ("number", number(session.get())),
+                ("diver", text(header.diver.as_str())),
+                ("diver_key", text(&super::registers::key_of(header.diver.as_str()))),
+                ("place", code(&header.place)),
+                ("kept", code(&header.kept)),
+                ("taken", text(&header.taken.to_rfc3339())),
+                ("recorded", text(&at.to_rfc3339())),
+                ("origin", code(origin)),
+                ("first_s", real(extent.first_s)),
+                ("last_s", real(extent.last_s)),
+                ("cells", count(header.readings.cells.len())),
+                ("readings", count(extent.rows)),
+                ("source", digest(*source)),
+            ];
+            rows.push(Row { table: "session", columns });
+        }
+        Body::SessionLeftOut { session, left_out } => {
+            let (from, to) = left_out.stretch_s.unzip();
+            let columns = vec![
+                ("seq", place(seq)),
+                ("session", number(session.get())),
+                ("whole", Value::Integer(i64::from(left_out.stretch_s.is_none()))),
+                ("from_s", from.map_or(Value::Null, real)),
+                ("to_s", to.map_or(Value::Null, real)),
+            ];
+            rows.push(Row { table: "session_left_out", columns });
+        }
+        Body::Erasure { erased, sessions, .. } => {
+            for session in sessions {
+                let columns = vec![("number", number(session.get())), ("erasure", place(seq))];
+                rows.push(Row { table: "session_erased", columns });
+            }
             for target in erased {
                 let columns = vec![("seq", place(*target)), ("erasure", place(seq))];
                 rows.push(Row { table: "erased", columns });
@@ -383,8 +528,16 @@ pub(super) fn place(seq: u64) -> Value {
     Value::Integer(i64::try_from(seq).unwrap_or(i64::MAX))
 }
 
-fn number(run: RunNumber) -> Value {
-    Value::Integer(i64::from(run.get()))
+fn number(number: u32) -> Value {
+    Value::Integer(i64::from(number))
+}
+
+fn count(count: usize) -> Value {
+    Value::Integer(i64::try_from(count).unwrap_or(i64::MAX))
+}
+
+fn digest(digest: Option<[u8; 32]>) -> Value {
+    digest.map_or(Value::Null, |digest| Value::Blob(digest.to_vec()))
 }
 
 fn text(text: &str) -> Value {

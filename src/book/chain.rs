@@ -91,11 +91,11 @@ pub(super) fn payload_digest(salt: &[u8], bytes: &[u8]) -> [u8; 32] {
     hash.finalize().into()
 }
 
-/// The digest of the files a run was imported from; each with its length, so that no two pairs share one.
-pub(super) fn source_digest(run_file: &[u8], readings: &[u8]) -> [u8; 32] {
+/// The digest of the files a run or a session was imported from; each with its length, so that no two lists share one.
+pub(super) fn source_digest<'f>(files: impl IntoIterator<Item = &'f [u8]>) -> [u8; 32] {
     let mut hash = Sha256::new();
     hash.update(b"ebbline source 1\0");
-    for file in [run_file, readings] {
+    for file in files {
         hash.update((file.len() as u64).to_le_bytes());
         hash.update(file);
     }
@@ -138,7 +138,7 @@ impl<'t, 's, 'f> Writing<'t, 's, 'f> {
         let mut payload =
             self.transaction.prepare_cached("INSERT INTO payload (seq, salt, bytes) VALUES (?, ?, ?)")?;
         payload.execute(params![place, salt, bytes])?;
-        for row in body::rows(head.seq, &record.body) {
+        for row in body::rows(head.seq, &record) {
             insert(&self.transaction, &row)?;
         }
         self.head = head;
@@ -206,7 +206,7 @@ mod tests {
         let head = Head::NONE.followed_by(2, &digest).followed_by(1000, &digest);
         assert_eq!(head.to_string(), "2-a4cbf274438856030959709e75613f6918ea8df0bc3d94a8dcc140c2e4ce7061");
         assert_eq!(
-            hex(source_digest(b"toml", b"csv")),
+            hex(source_digest([b"toml".as_slice(), b"csv"])),
             "4e1916c264b80299c42a0e31ca5b17deb482c82566092ddb818cdd8e156821cc"
         );
     }
@@ -230,6 +230,6 @@ mod tests {
 
     #[test]
     fn two_pairs_of_files_with_the_same_bytes_in_a_row_are_told_apart() {
-        assert_ne!(source_digest(b"ab", b"c"), source_digest(b"a", b"bc"));
+        assert_ne!(source_digest([b"ab".as_slice(), b"c"]), source_digest([b"a".as_slice(), b"bc"]));
     }
 }

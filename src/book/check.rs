@@ -21,6 +21,7 @@ use super::error::{BookError, Inside};
 use super::lists::count;
 use super::open::Book;
 use super::schema;
+use crate::entry::SessionNumber;
 
 /// What a check found.
 #[derive(Debug, Clone, PartialEq)]
@@ -29,6 +30,8 @@ pub struct Check {
     pub records: u64,
     /// Runs among them.
     pub runs: u64,
+    /// Sessions among them that were not erased.
+    pub sessions: u64,
     /// Erasures, in their order.
     pub erasures: Vec<ErasureNote>,
     /// The end of the chain, as far as it holds.
@@ -107,10 +110,21 @@ impl Book {
     }
 }
 
-const LISTS: [&str; 5] = ["run", "of_run", "decision", "register", "erased"];
+const LISTS: [&str; 9] = [
+    "run",
+    "of_run",
+    "decision",
+    "register",
+    "session",
+    "of_session",
+    "session_left_out",
+    "session_erased",
+    "erased",
+];
 
 fn check(connection: &Connection, against: &[Head]) -> Result<Check, Inside> {
-    let mut found = Check { records: 0, runs: 0, erasures: Vec::new(), head: Head::NONE, wrong: None };
+    let mut found =
+        Check { records: 0, runs: 0, sessions: 0, erasures: Vec::new(), head: Head::NONE, wrong: None };
     found.wrong = match file_and_schema(connection)? {
         Some(wrong) => Some(wrong),
         None => walk(connection, against, &mut found)?,
@@ -136,6 +150,8 @@ struct Walked {
     /// Personal records without a payload, until an erasure names them.
     without_payload: BTreeMap<u64, ()>,
     personal: BTreeMap<u64, ()>,
+    /// The sessions that are there, each with its record.
+    sessions: BTreeMap<SessionNumber, u64>,
 }
 
 fn walk(connection: &Connection, against: &[Head], found: &mut Check) -> Result<Option<Wrong>, Inside> {
@@ -202,14 +218,14 @@ fn record(
     if body::write(&record) != bytes {
         return Ok(Some(Wrong::Unreadable(seq, "it has another form than the canonical one".into())));
     }
-    for row in body::rows(seq, &record.body) {
+    for row in body::rows(seq, &record) {
         if !is_listed(connection, &row)? {
             return Ok(Some(Wrong::List { seq, table: row.table }));
         }
         *walked.rows.entry(row.table).or_default() += 1;
     }
     match record {
-        Record { at, body: Body::Erasure { erased, why } } => {
+        Record { at, body: Body::Erasure { erased, sessions, why } } => {
             for named in &erased {
                 if !walked.personal.contains_key(named) {
                     return Ok(Some(Wrong::Erasure { erasure: seq, named: *named }));
@@ -218,9 +234,13 @@ fn record(
                     return Ok(Some(Wrong::NotErased(*named)));
                 }
             }
-            found.erasures.push(ErasureNote { seq, at, why, erased });
+            found.erasures.push(ErasureNote { seq, at, why, erased, sessions });
         }
         Record { body: Body::Run { .. }, .. } => found.runs += 1,
+        Record { body: Body::Session { number, .. }, .. } => {
+            walked.sessions.insert(number, seq);
+            found.sessions += 1;
+        }
         _ => {}
     }
     Ok(None)
@@ -228,8 +248,8 @@ fn record(
 
 fn is_listed(connection: &Connection, row: &Row) -> Result<bool, Inside> {
     let names: Vec<&str> = row.columns.iter().map(|(name, _)| *name).collect();
-    let sql = format!("SELECT {} FROM {} WHERE seq = ?", names.join(", "), row.table);
-    let Some((_, key)) = row.columns.first() else { return Ok(false) };
+    let Some((by, key)) = row.columns.first() else { return Ok(false) };
+    let sql = format!("SELECT {} FROM {} WHERE {by} = ?", names.join(", "), row.table);
     let mut statement = connection.prepare_cached(&sql)?;
     let listed = statement.query_row(params![key], |listed| {
         for (index, (_, value)) in row.columns.iter().enumerate() {
@@ -252,6 +272,10 @@ fn ends(
 ) -> Result<Option<Wrong>, Inside> {
     if let Some(seq) = walked.without_payload.keys().next() {
         return Ok(Some(Wrong::PayloadMissing(*seq)));
+    }
+    let erased = found.erasures.iter().flat_map(|erasure| &erasure.sessions);
+    if let Some(seq) = erased.filter_map(|session| walked.sessions.get(session)).min() {
+        return Ok(Some(Wrong::NotErased(*seq)));
     }
     if let Some(kept) = against.iter().find(|kept| kept.seq > found.head.seq || kept.seq == 0) {
         return Ok(Some(Wrong::Head(*kept)));

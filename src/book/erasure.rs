@@ -5,15 +5,16 @@
 //! may leave a stale copy where SQLite moved a row between pages), and the log is emptied. While another program reads
 //! an older state, the log cannot be emptied; then the book remembers that, and asking again finishes.
 
-use rusqlite::params;
+use rusqlite::{Connection, params};
 
 use super::body::{Body, FIRST_PERSONAL_KIND, place};
 use super::chain::Stamp;
 use super::error::{BookError, Inside};
 use super::lists::{CopyMade, copies, count};
 use super::open::Book;
-use super::registers::{Register, key_of, latest};
-use crate::entry::Id;
+use super::registers::{Register, key_of};
+use super::sessions::sessions_of;
+use crate::entry::{Id, SessionNumber};
 
 /// What became of a diver's data.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -48,8 +49,8 @@ impl Book {
     ) -> Result<Forgotten, BookError> {
         let (records, copies) = self.write(stamp, |writing| {
             let copies = copies(&writing.transaction)?;
-            let known = latest(&writing.transaction, Register::Diver, diver.as_str())?.is_some();
-            if !known {
+            let erased = records_of(&writing.transaction, diver)?;
+            if erased.is_empty() {
                 return if count(&writing.transaction, "SELECT count(*) FROM wiping")? > 0 {
                     Ok((0, copies))
                 } else {
@@ -57,12 +58,15 @@ impl Book {
                         .into())
                 };
             }
-            let erased = records_of(&writing.transaction, diver)?;
             let records = erased.len();
-            writing.append(Body::Erasure { erased: erased.clone(), why: why.to_owned() })?;
-            for seq in erased {
-                writing.transaction.execute("DELETE FROM payload WHERE seq = ?", [place(seq)])?;
-                writing.transaction.execute("DELETE FROM register WHERE seq = ?", [place(seq)])?;
+            let sessions = sessions_of(&writing.transaction, diver)?;
+            writing.append(Body::Erasure { erased: erased.clone(), sessions, why: why.to_owned() })?;
+            for table in ERASABLE {
+                let sql = format!("DELETE FROM {table} WHERE seq = ?");
+                let mut statement = writing.transaction.prepare(&sql)?;
+                for seq in &erased {
+                    statement.execute([place(*seq)])?;
+                }
             }
             writing.transaction.execute("INSERT OR IGNORE INTO wiping (one) VALUES (1)", [])?;
             Ok((records, copies))
@@ -105,10 +109,15 @@ impl Book {
     }
 }
 
-/// Everything personal that belongs to a diver: so far the entries of the register, all revisions.
-fn records_of(connection: &rusqlite::Connection, diver: &Id) -> Result<Vec<u64>, Inside> {
+/// The tables whose rows go with the payload they repeat.
+const ERASABLE: [&str; 5] = ["payload", "register", "session", "of_session", "session_left_out"];
+
+/// Everything personal that belongs to a diver, in its order: all revisions of the entry, and all of the sessions.
+fn records_of(connection: &Connection, diver: &Id) -> Result<Vec<u64>, Inside> {
     let sql = "SELECT register.seq FROM register JOIN record USING (seq) \
-               WHERE register = ? AND key = ? AND kind >= ? ORDER BY seq";
+               WHERE register = ?1 AND key = ?2 AND kind >= ?3 \
+               UNION SELECT of_session.seq FROM session JOIN of_session ON session = number \
+               WHERE diver_key = ?2 ORDER BY 1";
     let mut statement = connection.prepare_cached(sql)?;
     let of = params![Register::Diver.number(), key_of(diver.as_str()), FIRST_PERSONAL_KIND];
     let seqs = statement.query_map(of, |row| row.get(0))?;
@@ -126,4 +135,6 @@ pub struct ErasureNote {
     pub why: String,
     /// The places whose payloads went.
     pub erased: Vec<u64>,
+    /// The sessions among them; their numbers are never given again.
+    pub sessions: Vec<SessionNumber>,
 }

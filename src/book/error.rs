@@ -2,11 +2,12 @@
 
 use std::path::{Path, PathBuf};
 
+use chrono::{DateTime, FixedOffset};
 use rusqlite::ErrorCode;
 
 use super::canonical::Unreadable;
 use super::registers::Register;
-use crate::entry::RunNumber;
+use crate::entry::{RunNumber, SessionNumber};
 
 /// Why the book could not do what was asked.
 #[derive(Debug, thiserror::Error)]
@@ -149,6 +150,52 @@ pub enum BookError {
     /// A run to be entered that brings a time series.
     #[error("a run that is entered has points, not a time series")]
     NotPoints,
+    /// A session that was never recorded.
+    #[error("there is no session {session} in {}", path.display())]
+    NoSuchSession {
+        /// The book.
+        path: PathBuf,
+        /// The session asked for.
+        session: SessionNumber,
+    },
+    /// A session whose diver was forgotten.
+    #[error("session {session} was erased on {}: {why}", at.to_rfc3339())]
+    SessionErased {
+        /// The session.
+        session: SessionNumber,
+        /// When it was erased.
+        at: DateTime<FixedOffset>,
+        /// Why.
+        why: String,
+    },
+    /// A session or a stretch of it that was left out before.
+    #[error("session {session} is already left out{}", stretch(*stretch_s))]
+    SessionAlreadyLeftOut {
+        /// The session.
+        session: SessionNumber,
+        /// The stretch, in seconds on the time column; none for the whole session.
+        stretch_s: Option<(f64, f64)>,
+    },
+    /// A stretch in which the session has no reading.
+    #[error(
+        "session {session} has no reading{}: a stretch goes from an earlier to a later time within its readings{}",
+        stretch(Some(*stretch_s)),
+        within(*readings_s)
+    )]
+    NoSuchStretch {
+        /// The session.
+        session: SessionNumber,
+        /// The stretch, in seconds on the time column.
+        stretch_s: (f64, f64),
+        /// Time of the first and of the last reading, in seconds; none when it has no readings.
+        readings_s: Option<(f64, f64)>,
+    },
+    /// Something left out without a reason.
+    #[error("nothing is left out of session {session} without a reason: say why")]
+    NoReason {
+        /// The session.
+        session: SessionNumber,
+    },
     /// A name that is there.
     #[error("{} {id} is already in the register: names that differ only in case are the same, so edit it or choose another", register.name())]
     Taken {
@@ -222,6 +269,11 @@ impl BookError {
             | Self::Incomplete { .. }
             | Self::AnotherRun { .. }
             | Self::NotPoints
+            | Self::NoSuchSession { .. }
+            | Self::SessionErased { .. }
+            | Self::SessionAlreadyLeftOut { .. }
+            | Self::NoSuchStretch { .. }
+            | Self::NoReason { .. }
             | Self::Taken { .. }
             | Self::Unknown { .. }
             | Self::CopyThere { .. } => true,
@@ -248,6 +300,17 @@ impl BookError {
     }
 }
 
+/// The words for a stretch after what is said of it.
+fn stretch(stretch_s: Option<(f64, f64)>) -> String {
+    stretch_s.map_or_else(String::new, |(from, to)| format!(" from {from} s to {to} s"))
+}
+
+/// The words for what a session has readings of.
+fn within(readings_s: Option<(f64, f64)>) -> String {
+    readings_s
+        .map_or_else(|| ", and it has none".to_owned(), |(first, last)| format!(", {first} s to {last} s"))
+}
+
 /// What goes wrong inside the room, where the path of the book is not at hand.
 #[derive(Debug)]
 pub(super) enum Inside {
@@ -259,6 +322,8 @@ pub(super) enum Inside {
     Damaged(String),
     /// A run that was never recorded.
     NoSuchRun(RunNumber),
+    /// A session that was never recorded.
+    NoSuchSession(SessionNumber),
     /// A sentence that needs no path.
     Said(BookError),
 }
@@ -281,6 +346,7 @@ impl Inside {
         match self {
             Self::Said(error) => error,
             Self::NoSuchRun(run) => BookError::NoSuchRun { path: path.to_owned(), run },
+            Self::NoSuchSession(session) => BookError::NoSuchSession { path: path.to_owned(), session },
             Self::Damaged(what) => BookError::damaged(path, what),
             Self::Unreadable(seq, why) => {
                 BookError::damaged(path, format!("record {seq} cannot be read, {why}"))

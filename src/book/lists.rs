@@ -86,6 +86,8 @@ pub struct Info {
     pub begun: DateTime<FixedOffset>,
     /// Runs.
     pub runs: u64,
+    /// Sessions that were not erased.
+    pub sessions: u64,
     /// Names in each register.
     pub entries: Vec<(Register, u64)>,
     /// Records whose payload was erased.
@@ -170,6 +172,7 @@ impl Book {
                 head: last_link(connection)?,
                 begun: first.at,
                 runs: count(connection, "SELECT count(*) FROM run")?,
+                sessions: count(connection, "SELECT count(*) FROM session")?,
                 entries,
                 erased: count(connection, "SELECT count(*) FROM erased")?,
                 file_bytes: count(connection, bytes)?,
@@ -232,10 +235,10 @@ fn run_row(row: &Row<'_>) -> Result<RunRow, Inside> {
 }
 
 /// A choice from its byte, the same as in the canonical bytes.
-fn choice<T: Canonical>(code: i64) -> Option<T> {
+pub(super) fn choice<T: Canonical>(code: i64) -> Option<T> {
     T::read(&mut Reader::new(&[u8::try_from(code).ok()?])).ok()
 }
 
-fn time(text: &str) -> Option<DateTime<FixedOffset>> {
+pub(super) fn time(text: &str) -> Option<DateTime<FixedOffset>> {
     DateTime::parse_from_rfc3339(text).ok()
 }

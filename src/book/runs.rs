@@ -288,7 +288,7 @@ impl Book {
 }
 
 fn import_one(writing: &mut Writing<'_, '_, '_>, item: ToImport<'_>) -> Result<Recorded, Inside> {
-    let digest = source_digest(&item.files.run_file, &item.files.readings);
+    let digest = source_digest([item.files.run_file.as_slice(), &item.files.readings]);
     let known = "SELECT number FROM run WHERE source = ?";
     let known: Option<u32> =
         writing.transaction.prepare_cached(known)?.query_row([digest], |row| row.get(0)).optional()?;

@@ -9,10 +9,11 @@ use proptest::strategy::ValueTree;
 use proptest::test_runner::TestRunner;
 
 use super::body::{self, Body, Record};
-use super::canonical::strategy;
+use super::canonical::{session_strategy, strategy};
+use super::sessions::{BLOCK_ROWS, Extent, FileRole, PIECE_BYTES};
 use super::*;
 use crate::entry::*;
-use crate::gas::Species;
+use crate::gas::{Species, Water};
 use crate::quantity::*;
 
 /// A folder of its own that goes when the test ends.
@@ -97,6 +98,108 @@ fn any_runs_and_entries_come_back_from_a_file_to_the_last_bit() {
 }
 
 #[test]
+fn any_sessions_come_back_from_a_file_to_the_last_bit() {
+    let folder = Folder::new("sessions");
+    let mut book = begin(&folder.book());
+    let mut runner = TestRunner::deterministic();
+    let sessions: Vec<Session> =
+        (0..150).map(|_| session_strategy::session().new_tree(&mut runner).unwrap().current()).collect();
+    let runs: Vec<Option<Run>> = (0..sessions.len())
+        .map(|n| (n % 3 == 0).then(|| strategy::run().new_tree(&mut runner).unwrap().current()))
+        .collect();
+    let sources: Vec<SessionSource> = (0..sessions.len()).map(|n| session_files(n, n % 3 == 0)).collect();
+    let items: Vec<SessionToImport<'_>> = sessions
+        .iter()
+        .zip(&runs)
+        .zip(&sources)
+        .map(|((session, run), files)| SessionToImport { session, line_run: run.as_ref(), files })
+        .collect();
+    let recorded = stamped(|stamp| book.import_sessions(&items, stamp)).unwrap();
+    drop(book);
+    let book = Book::open_to_read(&folder.book(), &Options::default()).unwrap();
+    for (index, recorded) in recorded.iter().enumerate() {
+        assert!(recorded.new);
+        let found = book.session(recorded.number).unwrap();
+        assert_eq!(format!("{:?}", found.session), format!("{:?}", sessions[index]));
+        assert_eq!(format!("{:?}", found.line_run), format!("{:?}", runs[index]));
+        assert_eq!(bits(&found.session), bits(&sessions[index]));
+        assert_eq!(book.session_source_of(recorded.number).unwrap().as_ref(), Some(&sources[index]));
+    }
+    let check = book.check(&[]).unwrap();
+    assert_eq!((check.wrong, check.sessions), (None, 150));
+    let rows = book.sessions(&SessionQuery::default()).unwrap();
+    assert_eq!(rows.len(), sessions.len());
+    for (row, session) in rows.iter().rev().zip(&sessions) {
+        let Session { diver, place, kept, taken, readings, .. } = session;
+        assert_eq!((row.diver.as_str(), row.place, row.kept), (diver.as_str(), *place, *kept));
+        assert_eq!(
+            (row.taken, row.readings, row.cells),
+            (*taken, readings.time_s.len(), readings.cells.len())
+        );
+        let times = || readings.time_s.iter().copied().filter(|time| !time.is_nan());
+        let (first, last) = (times().reduce(f64::min), times().reduce(f64::max));
+        let minutes = first.zip(last).map_or(0.0, |(first, last)| (last - first) / 60.0);
+        assert_eq!(format!("{:?}", row.minutes + 0.0), format!("{:?}", minutes + 0.0));
+    }
+}
+
+/// The bits of every number a session's columns and header hold.
+fn bits(session: &Session) -> (Vec<u8>, Vec<u64>) {
+    let number = SessionNumber::new(1).unwrap();
+    let record = |body| body::write(&Record { at: session.taken, body });
+    let extent = Extent { rows: 0, first_s: 0.0, last_s: 0.0 };
+    let header = Body::Session {
+        number,
+        origin: Origin::Entered,
+        source: None,
+        extent,
+        header: Cow::Borrowed(session),
+    };
+    let columns = sessions::columns(&session.readings).concat();
+    (record(header), columns.into_iter().map(f64::to_bits).collect())
+}
+
+/// Files of a session that no other has; empty ones among them.
+fn session_files(n: usize, with_line: bool) -> SessionSource {
+    let SourceFiles { run_file_name, run_file, readings_name, readings } = files(&format!("run {n}"));
+    let line = LineSource { file_name: run_file_name, file: run_file, readings_name, readings };
+    SessionSource {
+        session_file_name: format!("couch {n}.toml"),
+        session_file: format!("# session {n}").into_bytes(),
+        readings_name: format!("../couch {n}.csv"),
+        readings: if n.is_multiple_of(2) { Vec::new() } else { vec![0xFF; n] },
+        line: with_line.then_some(line),
+    }
+}
+
+#[test]
+fn readings_and_files_of_more_than_one_block_come_back_whole() {
+    let folder = Folder::new("blocks");
+    let mut book = begin(&folder.book());
+    let rows = 2 * BLOCK_ROWS + 1;
+    let column = |step: f64| (0..rows).map(|row| row as f64 * step).collect::<Vec<_>>();
+    let mut session = sample_session();
+    session.readings.time_s = column(0.1);
+    for (cell, step) in session.readings.cells.iter_mut().zip([1e-6, 1e-7]) {
+        let (CellSignal::Bar(readings) | CellSignal::Volts { readings, .. }) = &mut cell.signal;
+        *readings = column(step);
+    }
+    session.readings.depth_m = Some(column(1e-5));
+    let mut from = session_files(1, true);
+    from.readings = (0..2 * PIECE_BYTES + 1).map(|at| (at % 251) as u8).collect();
+    from.line.as_mut().unwrap().readings = vec![7; PIECE_BYTES];
+    let item = SessionToImport { session: &session, line_run: None, files: &from };
+    let before = book.info().unwrap().head.seq;
+    let number = stamped(|stamp| book.import_sessions(&[item], stamp)).unwrap()[0].number;
+    // The diver, the header, three blocks, and of the files one, three, one and one pieces.
+    assert_eq!(book.info().unwrap().head.seq - before, 1 + 1 + 3 + 6);
+    assert_eq!(book.session(number).unwrap().session, session);
+    assert_eq!(book.session_source_of(number).unwrap(), Some(from));
+    assert_eq!(book.sessions(&SessionQuery::default()).unwrap()[0].readings, rows);
+    assert_eq!(book.check(&[]).unwrap().wrong, None);
+}
+
+#[test]
 fn any_decision_is_listed_with_its_figures_or_without_those_that_are_none() {
     let folder = Folder::new("decisions");
     let mut book = begin(&folder.book());
@@ -137,7 +240,7 @@ fn each_connection_has_the_settings_the_record_rests_on() {
 }
 
 #[test]
-fn a_full_disk_is_said_and_nothing_of_the_runs_remains() {
+fn a_full_disk_is_said_and_nothing_of_the_runs_or_sessions_remains() {
     let folder = Folder::new("full");
     let mut book = begin(&folder.book());
     let run = sample_run();
@@ -152,10 +255,18 @@ fn a_full_disk_is_said_and_nothing_of_the_runs_remains() {
     assert!(matches!(refused, BookError::Full { .. }), "{refused}");
     assert!(!refused.is_of_the_call());
     assert!(refused.to_string().contains("is full: nothing was recorded"), "{refused}");
+    // Of sessions neither: the first fits, but not with the second.
+    let session = sample_session();
+    let (small, large) =
+        (session_files(0, false), SessionSource { readings: vec![b'7'; 100_000], ..session_files(1, false) });
+    let both = [&small, &large].map(|files| SessionToImport { session: &session, line_run: None, files });
+    let refused = stamped(|stamp| book.import_sessions(&both, stamp)).unwrap_err();
+    assert!(matches!(refused, BookError::Full { .. }), "{refused}");
     drop(book);
     let book = Book::open_to_read(&folder.book(), &Options::default()).unwrap();
     let check = book.check(&[]).unwrap();
-    assert_eq!((check.wrong, check.runs), (None, 1));
+    assert_eq!((check.wrong, check.runs, check.sessions), (None, 1, 0));
+    assert_eq!(book.info().unwrap().entries.last(), Some(&(Register::Diver, 0)));
 }
 
 /// A run written out by hand, with something in most of its fields.
@@ -241,9 +352,108 @@ fn sample_run() -> Run {
     }
 }
 
+/// A session's header written out by hand, with something in most of its fields and every kind of event.
+fn sample_session() -> Session {
+    let flow = |l_min: f64, u: f64| Uncertain {
+        value: StpdFlow::from_l_min(l_min),
+        expanded: Some(StpdFlow::from_l_min(u)),
+    };
+    let metered = Metered {
+        volume: Uncertain { value: Volume::from_l(0.4), expanded: None },
+        reads_at: Some(ReferenceConditions {
+            temperature: Temperature::from_c(25.0),
+            pressure: AbsolutePressure::from_pa(101_300.0),
+        }),
+    };
+    let ip =
+        Uncertain { value: GaugePressure::from_bar(9.4), expanded: Some(PressureDifference::from_bar(0.1)) };
+    let warm =
+        Uncertain { value: Temperature::from_c(24.0), expanded: Some(TemperatureDifference::from_k(1.0)) };
+    let contents = |bar: f64| Uncertain {
+        value: GaugePressure::from_bar(bar),
+        expanded: Some(PressureDifference::from_bar(1.0)),
+    };
+    let events = [
+        What::Injection(Injection::Flow(flow(0.31, 0.01))),
+        What::OxygenAdd(Some(metered)),
+        What::DiluentAdd(None),
+        What::Vent(Some(Metered { reads_at: None, ..metered })),
+        What::MakeUp { kept: Some(LoopKept::Sealed), mark: true },
+        What::Injection(Injection::Ip(ip)),
+        What::Exclude { until_s: 700.5 },
+        What::Injection(Injection::Off),
+        What::Stop,
+    ];
+    Session {
+        diver: Id::new("D-07").unwrap(),
+        mass: Some(Mass::from_kg(82.0)),
+        place: Place::Pool,
+        kept: LoopKept::Topped,
+        diluent: Diluent::Oxygen(Share::from_percent(18.0)),
+        loop_volume: Some(Uncertain { value: Volume::from_l(7.5), expanded: Some(Volume::from_l(1.0)) }),
+        leak_test: LeakTest::Measured(flow(0.005, 0.001)),
+        nose_clip: Some(false),
+        oxygen: Some(Purity { fraction: 0.995, expanded: 0.003 }),
+        taken: time("2026-11-20T18:05:00+11:00"),
+        readings: SessionReadings {
+            time_s: Vec::new(),
+            cells: vec![
+                CellReadings { name: "c1".into(), signal: CellSignal::Bar(Vec::new()) },
+                CellReadings {
+                    name: "Zelle 2".into(),
+                    signal: CellSignal::Volts { readings: Vec::new(), in_air: 0.0101, in_oxygen: 0.048 },
+                },
+            ],
+            depth_m: Some(Vec::new()),
+            loop_temperature_k: None,
+        },
+        line: Some(LineReference::RunFile("cmf-0417.toml".into())),
+        conditions: SessionConditions {
+            depth: Influence { value: Some(Length::from_m(1.5)), expanded: None },
+            water: Water::Sea,
+            time_on_loop: Some(Span::from_s(600.0)),
+            scrubber_warm: Some(true),
+            ..SessionConditions::default()
+        },
+        cells: CellPapers {
+            gain: Some(0.02),
+            calibrated_at: Some(CalibratedAt {
+                barometer: AbsolutePressure::from_pa(101_600.0),
+                temperature: Temperature::from_c(21.0),
+                humidity: 0.5,
+                oxygen: 0.995,
+            }),
+        },
+        rest: Rest {
+            posture: Some("lying".into()),
+            rested_for: Some(Span::from_s(1500.0)),
+            caffeine_or_nicotine: Some(false),
+            water_temperature: Some(Temperature::from_c(33.0)),
+            suit: Some("none".into()),
+            ..Rest::default()
+        },
+        assumptions: Assumptions { wander: 0.05, ..Assumptions::DEFAULT },
+        events: (0_u8..).zip(events).map(|(n, what)| Event { at_s: 60.0 * f64::from(n), what }).collect(),
+        cylinder: Some(Cylinder {
+            volume: Uncertain { value: Volume::from_l(2.0), expanded: None },
+            from: contents(182.0),
+            from_temperature: warm,
+            to: contents(171.0),
+            to_temperature: warm,
+            feeds: Feeds::Adds,
+        }),
+    }
+}
+
+fn session_left_out(stretch_s: Option<(f64, f64)>) -> SessionLeftOut {
+    let by = stretch_s.is_none().then(|| "I. Varga".to_owned());
+    SessionLeftOut { stretch_s, why: "coughed".into(), by, at: time("2026-11-21T09:00:00+11:00") }
+}
+
 /// One record of every kind.
 fn sample_records() -> Vec<Record<'static>> {
     let run = RunNumber::new(7).unwrap();
+    let session = SessionNumber::new(5).unwrap();
     let id = |text: &str| Id::new(text).unwrap();
     let header = || Cow::Owned(Run { readings: Readings::Points(Vec::new()), ..sample_run() });
     let Readings::Points(points) = sample_run().readings else { unreachable!("the sample has points") };
@@ -374,7 +584,27 @@ fn sample_records() -> Vec<Record<'static>> {
             loop_volume: Some(Uncertain { value: Volume::from_l(7.5), expanded: Some(Volume::from_l(1.0)) }),
             diluent: Some(Diluent::Oxygen(Share::from_percent(18.0))),
         })),
-        Body::Erasure { erased: vec![12, 19], why: "asked to".into() },
+        Body::Session {
+            number: session,
+            origin: Origin::Imported,
+            source: Some([8; 32]),
+            extent: Extent { rows: 2, first_s: 0.0, last_s: 1.0 },
+            header: Cow::Owned(sample_session()),
+        },
+        Body::SessionReadings {
+            session,
+            columns: [[0.0, 1.0], [0.7, f64::NAN], [0.048, 0.0479]].map(|c| Cow::Owned(c.to_vec())).into(),
+        },
+        Body::SessionLine { session, run: Cow::Owned(sample_run()) },
+        Body::SessionFile {
+            session,
+            role: FileRole::LineReadings,
+            name: "cmf-0417.csv".into(),
+            bytes: Cow::Owned(b"ip,flow\n".to_vec()),
+        },
+        Body::SessionLeftOut { session, left_out: session_left_out(Some((60.0, 90.5))) },
+        Body::SessionLeftOut { session, left_out: session_left_out(None) },
+        Body::Erasure { erased: vec![12, 19], sessions: vec![session], why: "asked to".into() },
         Body::CopyMade { kind: CopyKind::Backup, place: "stick/book.db".into() },
     ];
     bodies.into_iter().map(|body| Record { at: time("2026-11-12T10:00:00.25+11:00"), body }).collect()

@@ -15,10 +15,17 @@ mod ink;
 mod number;
 mod letters;
 mod svg;
+mod frame;
+mod places;
 mod axis;
+mod axes;
 mod range;
+mod column;
 mod run;
 mod history;
+mod session;
+mod setting;
 
 pub use history::{History, HistoryPlot, HistoryRun, Leaving, Trend, TrendPlace, history_plot};
 pub use run::{RunPlot, run_plot};
+pub use session::{SessionPlot, session_plot};

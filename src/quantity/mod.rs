@@ -6,12 +6,14 @@
 
 mod flow;
 mod length;
+mod partial_pressure;
 mod pressure;
 mod pressure_rate;
 mod share;
 mod temperature;
 mod time;
 mod typed;
+mod voltage;
 pub mod unit;
 mod error;
 mod number;
@@ -25,6 +27,7 @@ mod tests;
 pub use error::{Impossible, QuantityError};
 pub use flow::{ActualFlow, IndicatedFlow, ReferenceConditions, ReferenceFlow, StpdFlow};
 pub use length::{Length, Mass, Volume};
+pub use partial_pressure::PartialPressure;
 pub use pressure::{AbsolutePressure, GaugePressure, PressureDifference, STANDARD_ATMOSPHERE_PA};
 pub use pressure_rate::PressureRate;
 pub use reference::{PRESETS, Preset, presets_listed};
@@ -35,3 +38,4 @@ pub use text::Uncertain;
 pub use time::Span;
 pub use typed::Quantity;
 pub use unit::{Kind, Unit};
+pub use voltage::Voltage;

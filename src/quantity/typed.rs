@@ -3,8 +3,8 @@
 use super::error::Impossible;
 use super::unit::{self, Kind, Unit};
 use super::{
-    AbsolutePressure, GaugePressure, IndicatedFlow, Length, Mass, PressureDifference, PressureRate, Share,
-    Span, StpdFlow, Temperature, TemperatureDifference, Volume,
+    AbsolutePressure, GaugePressure, IndicatedFlow, Length, Mass, PartialPressure, PressureDifference,
+    PressureRate, Share, Span, StpdFlow, Temperature, TemperatureDifference, Voltage, Volume,
 };
 
 /// A typed quantity that people write as a number and a unit.
@@ -79,6 +79,7 @@ quantity!(StpdFlow, Flow, StpdFlow, from_m3_s, as_m3_s, |m3_s| not_negative(m3_s
 quantity!(Length, Length, Length, from_m, as_m, |m| not_negative(m, Kind::Length));
 quantity!(Mass, Mass, Mass, from_kg, as_kg, |kg| not_negative(kg, Kind::Mass));
 quantity!(Volume, Volume, Volume, from_m3, as_m3, |m3| not_negative(m3, Kind::Volume));
+quantity!(Voltage, Voltage, Voltage, from_v, as_v, finite);
 quantity!(Span, Time, Span, from_s, as_s, |s| not_negative(s, Kind::Time));
 quantity!(Share, Share, Share, from_ratio, as_ratio, |ratio| not_negative(ratio, Kind::Share));
 
@@ -106,6 +107,32 @@ impl Quantity for IndicatedFlow {
 
     fn shown(self, unit: Unit) -> f64 {
         unit::L_MIN.shown_in(self.as_l_min(), unit)
+    }
+}
+
+impl Quantity for PartialPressure {
+    const KIND: Kind = Kind::Pressure;
+    type Difference = Self;
+
+    fn from_si(si: f64) -> Self {
+        Self::from_pa(si)
+    }
+
+    fn si(self) -> f64 {
+        self.as_pa()
+    }
+
+    fn check(self) -> Result<(), Impossible> {
+        finite(self.as_bar())
+    }
+
+    // As for a meter's reading: what was shown in bar is kept to the last bit, which the way over Pa would not do.
+    fn from_shown(shown: f64, unit: Unit) -> Self {
+        Self::from_bar(unit.shown_in(shown, unit::BAR))
+    }
+
+    fn shown(self, unit: Unit) -> f64 {
+        unit::BAR.shown_in(self.as_bar(), unit)
     }
 }
 

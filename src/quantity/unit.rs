@@ -243,6 +243,9 @@ const fn remarked(row: Row, remark: &'static str) -> Row {
 /// The litre per minute, in which meters' readings are kept.
 pub(super) const L_MIN: Unit = row("L/min", &[], 1.0, 6e4).unit;
 
+/// The bar, in which partial pressures that were read are kept.
+pub(super) const BAR: Unit = row("bar", &[], 1e5, 1.0).unit;
+
 /// Pound-force per square inch in pascals: 0.453 592 37 kg · 9.806 65 m/s² / (0.0254 m)², exact (international pound
 /// and inch of 1959; standard gravity of the 3rd CGPM, 1901) = 6894.757 293 168 361…
 const PSI_PA: (f64, f64) = (44_482_216_152_605.0, 6_451_600_000.0);

@@ -211,7 +211,7 @@ pub(super) fn left_out(tables: &[Table<'_>], points: Option<usize>) -> Result<Ve
 
 /// What an uncertainty alone means for a condition.
 #[derive(Clone, Copy, PartialEq, Eq)]
-enum Alone {
+pub(super) enum Alone {
     /// A column gives the values; one that is written here is not used.
     Column,
     /// Another quantity gives the value (in the meter: that of the gas at the orifice).
@@ -228,14 +228,14 @@ struct AloneFor {
     meter_pressure: Alone,
 }
 
-struct Reader<'t, 'd> {
-    table: &'t Table<'d>,
+pub(super) struct Reader<'t, 'd> {
+    pub(super) table: &'t Table<'d>,
     /// Brings an expanded uncertainty to k = 2.
-    to_k2: f64,
+    pub(super) to_k2: f64,
 }
 
 impl Reader<'_, '_> {
-    fn influence<T: Quantity>(
+    pub(super) fn influence<T: Quantity>(
         &self,
         key: &str,
         alone: Alone,

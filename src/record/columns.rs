@@ -6,7 +6,7 @@ use super::note::Note;
 use super::sheet::Sheet;
 use crate::entry::MeterKind;
 use crate::quantity::unit::{self, Kind, Unit};
-use crate::quantity::{IndicatedFlow, Quantity};
+use crate::quantity::{IndicatedFlow, PartialPressure, Quantity};
 
 /// Every key of `[columns]`. The last three are for means that were taken elsewhere: their own scatter (a standard
 /// uncertainty of the mean) and how many independent readings went into each.
@@ -64,10 +64,20 @@ pub(super) struct Column {
     pub(super) name: String,
     /// None for a plain count.
     unit: Option<Unit>,
-    /// Flows are kept in litres per minute, as [`IndicatedFlow`] keeps them; everything else in SI.
-    is_flow: bool,
+    pub(super) kept: Kept,
     lowest: f64,
     below: fn(String) -> Refusal,
+}
+
+/// In what the entry keeps the numbers of a column.
+#[derive(Clone, Copy, PartialEq, Eq)]
+pub(super) enum Kept {
+    /// In SI, or as they stand where they have no unit.
+    Si,
+    /// In litres per minute, as [`IndicatedFlow`] keeps them.
+    LitresPerMinute,
+    /// In bar, as [`PartialPressure`] keeps them.
+    Bar,
 }
 
 /// A [`Column`] with its place in an opened table.
@@ -80,7 +90,7 @@ impl Columns {
     /// Reads the table for a meter of a kind; `series` allows a flow below zero and needs times.
     pub(super) fn read(table: &Table<'_>, kind: &MeterKind, series: bool) -> Result<Self, RecordError> {
         table.only(&KEYS)?;
-        let mut taken = Taken(Vec::new());
+        let mut taken = Taken::default();
         // A timed meter's flow may also stand there divided already.
         let timed = matches!(kind, MeterKind::Timed { .. });
         let divided = timed && table.field("flow").is_some();
@@ -210,8 +220,11 @@ impl Placed<'_> {
     fn value(&self, sheet: &mut Sheet) -> Result<Option<f64>, RecordError> {
         let Some(shown) = sheet.number(self.index)? else { return Ok(None) };
         let value = match self.column.unit {
-            Some(unit) if self.column.is_flow => IndicatedFlow::from_shown(shown, unit).as_l_min(),
-            Some(unit) => unit.to_si(shown),
+            Some(unit) => match self.column.kept {
+                Kept::Si => unit.to_si(shown),
+                Kept::LitresPerMinute => IndicatedFlow::from_shown(shown, unit).as_l_min(),
+                Kept::Bar => PartialPressure::from_shown(shown, unit).as_bar(),
+            },
             None => shown,
         };
         if value >= self.column.lowest && value < f64::INFINITY {
@@ -235,13 +248,13 @@ impl Placed<'_> {
 }
 
 /// What one key of `[columns]` holds.
-struct Spec {
-    key: &'static str,
-    table: &'static str,
-    kind: Kind,
-    example: &'static str,
-    lowest: f64,
-    below: fn(String) -> Refusal,
+pub(super) struct Spec {
+    pub(super) key: &'static str,
+    pub(super) table: &'static str,
+    pub(super) kind: Kind,
+    pub(super) example: &'static str,
+    pub(super) lowest: f64,
+    pub(super) below: fn(String) -> Refusal,
 }
 
 const PRESSURE: Spec = Spec {
@@ -276,7 +289,7 @@ const DURATION: Spec = Spec {
     lowest: f64::MIN_POSITIVE,
     below: Refusal::NoDuration,
 };
-const TEMPERATURE: Spec = Spec {
+pub(super) const TEMPERATURE: Spec = Spec {
     key: "temperature",
     table: "columns.temperature",
     kind: Kind::Temperature,
@@ -313,22 +326,23 @@ const FLOW_SCATTER: Spec = Spec {
 };
 
 /// The columns given away so far, with the key that has each.
-struct Taken(Vec<(String, &'static str)>);
+#[derive(Default)]
+pub(super) struct Taken(Vec<(String, &'static str)>);
 
 impl Taken {
-    fn of(&mut self, field: &Field<'_>, spec: &Spec) -> Result<Column, RecordError> {
+    pub(super) fn of(&mut self, field: &Field<'_>, spec: &Spec) -> Result<Column, RecordError> {
         let inner = field.table(spec.table)?;
         inner.only(&["column", "unit"])?;
         self.column(&inner, spec)
     }
 
-    fn column(&mut self, inner: &Table<'_>, spec: &Spec) -> Result<Column, RecordError> {
+    pub(super) fn column(&mut self, inner: &Table<'_>, spec: &Spec) -> Result<Column, RecordError> {
         let name = self.name(inner, spec.key)?;
         let unit = inner.field("unit").ok_or_else(|| inner.refuse("unit", Refusal::NoUnit(spec.example)))?;
         Ok(Column {
             name,
             unit: Some(find_unit(&unit, spec.kind)?),
-            is_flow: spec.kind == Kind::Flow,
+            kept: if spec.kind == Kind::Flow { Kept::LitresPerMinute } else { Kept::Si },
             lowest: spec.lowest,
             below: spec.below,
         })
@@ -350,10 +364,10 @@ impl Taken {
             return Err(unit.refuse(Refusal::UnitOfWords));
         }
         let below = |shown| Refusal::OutOfBounds { shown, want: "a count of readings, 1 or more" };
-        Ok(Column { name: self.name(&inner, "averaged")?, unit: None, is_flow: false, lowest: 1.0, below })
+        Ok(Column { name: self.name(&inner, "averaged")?, unit: None, kept: Kept::Si, lowest: 1.0, below })
     }
 
-    fn time(&mut self, field: &Field<'_>) -> Result<Time, RecordError> {
+    pub(super) fn time(&mut self, field: &Field<'_>) -> Result<Time, RecordError> {
         let inner = field.table("columns.time")?;
         inner.only(&["column", "unit"])?;
         let name = self.name(&inner, "time")?;
@@ -361,7 +375,7 @@ impl Taken {
         Ok(Time::Number(Column {
             name,
             unit: Some(find_unit(&unit, Kind::Time)?),
-            is_flow: false,
+            kept: Kept::Si,
             lowest: f64::MIN,
             below: Refusal::NotFinite,
         }))

@@ -332,21 +332,23 @@ impl<'d> Field<'d> {
 
     /// A calendar day, as a date or as a text.
     pub(super) fn date(&self) -> Result<NaiveDate, RecordError> {
-        let text = match self.value {
-            DeValue::Datetime(day) => day.to_string(),
-            _ => self.text()?.to_owned(),
-        };
+        let text = self.date_or_text()?;
         let day = if text.len() == 10 { NaiveDate::parse_from_str(&text, "%Y-%m-%d").ok() } else { None };
         day.ok_or_else(|| self.refuse(Refusal::NotADate(text)))
     }
 
     /// A time with its offset, as a date-time or as a text.
     pub(super) fn time(&self) -> Result<chrono::DateTime<chrono::FixedOffset>, RecordError> {
-        let text = match self.value {
-            DeValue::Datetime(time) => time.to_string(),
-            _ => self.text()?.to_owned(),
-        };
+        let text = self.date_or_text()?;
         chrono::DateTime::parse_from_rfc3339(&text).map_err(|_| self.refuse(Refusal::NotATime(text)))
+    }
+
+    /// A text, or one of TOML's own dates and times as the text it is.
+    pub(super) fn date_or_text(&self) -> Result<String, RecordError> {
+        match self.value {
+            DeValue::Datetime(time) => Ok(time.to_string()),
+            _ => self.text().map(str::to_owned),
+        }
     }
 
     /// A number above zero, or a text with such a number and its `±`.

@@ -6,6 +6,7 @@
 use std::fmt;
 
 use super::registers::RegisterRefusal;
+use super::session::SessionRefusal;
 use crate::entry::IdError;
 use crate::quantity::QuantityError;
 
@@ -64,6 +65,12 @@ pub enum Fault {
     /// It is far too long to be what it should be.
     #[error("a run file has at most 1 MiB; readings belong into the CSV file it names")]
     TooLarge,
+    /// It is far too long to be a session file.
+    #[error("a session file has at most 1 MiB; readings belong into the CSV file it names")]
+    LargeSession,
+    /// Readings longer than are kept.
+    #[error("readings have at most 500 MB; split or thin the file")]
+    LargeReadings,
     /// It is far too long to be an entry of a register.
     #[error("an entry of a register has at most 1 MiB; this must be another file")]
     LargeEntry,
@@ -162,6 +169,9 @@ pub enum Refusal {
     /// What only an entry of a register is refused for.
     #[error("{0}")]
     Register(RegisterRefusal),
+    /// What only a session is refused for.
+    #[error("{0}")]
+    Session(SessionRefusal),
     /// A purity for a gas that is not oxygen.
     #[error("the gas is {0}; leave the purity of oxygen out")]
     PurityOfOther(&'static str),

@@ -29,6 +29,15 @@ pub enum Note {
     PurityTaken,
     /// The purity of the oxygen was stated without its uncertainty.
     PurityUncertaintyTaken(Place),
+    /// Words that stand where a cell's reading should.
+    WordsForMissing {
+        /// The first of them.
+        place: Place,
+        /// Its word.
+        word: String,
+        /// How many there are in that column.
+        readings: usize,
+    },
     /// A value that nothing uses, and why.
     NotUsed {
         /// Where it stands.
@@ -45,6 +54,14 @@ impl fmt::Display for Note {
             Self::PurposeTaken => write!(f, "no purpose is stated: taken as \"check\""),
             Self::PurityTaken => write!(f, "no purity of the oxygen is stated: taken as 99.5 % ± 0.3 %"),
             Self::PurityUncertaintyTaken(place) => write!(f, "{place}: no ± is stated, taken as ± 0.3 %"),
+            Self::WordsForMissing { place, word, readings } => {
+                let others = match readings {
+                    0 | 1 => String::new(),
+                    2 => ", and so is one more word in this column".to_owned(),
+                    more => format!(", and so are {} more words in this column", more - 1),
+                };
+                write!(f, "{place}: {word:?} is no number and taken as a missing reading{others}")
+            }
             Self::NotUsed { place, why } => write!(f, "{place}: not used, {why}"),
         }
     }

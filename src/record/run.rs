@@ -140,16 +140,8 @@ pub fn read_run_and_files(
     let beside = path.parent().unwrap_or(Path::new(""));
     let (mut readings_name, mut readings) = (String::new(), Vec::new());
     let mut files = |file: &str| {
-        let at = beside.join(file);
         readings_name = file.to_owned();
-        let read = open(&at)?.take(LONGEST_READINGS + 1).read_to_end(&mut readings);
-        let refuse = |fault| RecordError::unreadable(&at.display().to_string(), fault);
-        read.map_err(|error| refuse(Fault::of(&error)))?;
-        if readings.len() as u64 > LONGEST_READINGS {
-            return Err(refuse(Fault::TooLarge));
-        }
-        let copy: Box<dyn Read> = Box::new(std::io::Cursor::new(readings.clone()));
-        Ok(copy)
+        open_and_keep(&beside.join(file), &mut readings)
     };
     let loaded = parse_run_with(text, &name, &mut files, registers)?;
     Ok((loaded, RunFiles { toml, readings_name, readings }))
@@ -337,6 +329,17 @@ pub(super) fn open(path: &Path) -> Result<Box<dyn Read>, RecordError> {
     let file = File::open(path).map_err(|error| refuse(Fault::of(&error)))?;
     let about = file.metadata().map_err(|error| refuse(Fault::of(&error)))?;
     if about.is_dir() { Err(refuse(Fault::Directory)) } else { Ok(Box::new(file)) }
+}
+
+/// Opens a file of readings and keeps its bytes.
+pub(super) fn open_and_keep(path: &Path, kept: &mut Vec<u8>) -> Result<Box<dyn Read>, RecordError> {
+    let read = open(path)?.take(LONGEST_READINGS + 1).read_to_end(kept);
+    let refuse = |fault| RecordError::unreadable(&path.display().to_string(), fault);
+    read.map_err(|error| refuse(Fault::of(&error)))?;
+    if kept.len() as u64 > LONGEST_READINGS {
+        return Err(refuse(Fault::LargeReadings));
+    }
+    Ok(Box::new(std::io::Cursor::new(kept.clone())))
 }
 
 /// The bytes of a file of ours as the text they should be.

@@ -4,7 +4,7 @@
 //! in one form, so an offset left out never matters to a difference; it is that of the run's `taken`. Left out: time
 //! zones and their changes.
 
-use chrono::NaiveDate;
+use chrono::{DateTime, FixedOffset, NaiveDate, Timelike};
 
 use super::error::Refusal;
 
@@ -13,6 +13,10 @@ const SECONDS_PER_DAY: i64 = 86_400;
 /// How far a clock may go back and still be one that ran backwards (or was put back an hour for winter), in seconds;
 /// farther back is past midnight. Our own choice, no source.
 const LONGEST_STEP_BACK_S: i64 = 3_600;
+
+/// Half a day in seconds: where rows may stand out of order, a step longer than this is past midnight, forwards or
+/// back, and a shorter one is what it seems. Our own choice, no source; no session lasts so long.
+const HALF_A_DAY_S: i64 = SECONDS_PER_DAY / 2;
 
 /// How the cells of a column are written.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -37,19 +41,46 @@ pub(super) struct Times {
     /// The clock time of the row before, in seconds since midnight.
     clock: i64,
     midnights: i64,
+    any_order: bool,
 }
 
 impl Times {
+    /// For rows that may stand out of order: a clock time is that nearest to the row before.
+    pub(super) fn in_any_order() -> Self {
+        Self { any_order: true, ..Self::default() }
+    }
+
+    /// When the first cell was, in seconds since 1970 and nanoseconds; a date or an offset that it lacks is that of
+    /// `taken`, and a clock time is that nearest to it.
+    pub(super) fn begins(&self, taken: &DateTime<FixedOffset>) -> Option<(i64, u32)> {
+        let first = self.first?;
+        let seconds = match first.form {
+            Form::Offset => first.seconds,
+            Form::Local => first.seconds - i64::from(taken.offset().local_minus_utc()),
+            Form::Clock => {
+                let away = first.seconds - i64::from(taken.time().num_seconds_from_midnight());
+                taken.timestamp() + away - SECONDS_PER_DAY * days(away)
+            }
+        };
+        Some((seconds, first.nanoseconds))
+    }
+
     /// Seconds since the first cell.
     pub(super) fn seconds(&mut self, cell: &[u8]) -> Result<f64, Refusal> {
         let shown = || String::from_utf8_lossy(cell).into_owned();
         let mut now = parse(cell).ok_or_else(|| Refusal::NotATimeCell(shown()))?;
+        if self.first.is_none() {
+            self.clock = now.seconds;
+        }
         let first = *self.first.get_or_insert(now);
         if first.form != now.form {
             return Err(Refusal::OtherTimeForm(shown()));
         }
         if now.form == Form::Clock {
-            if self.clock - now.seconds > LONGEST_STEP_BACK_S {
+            let step = now.seconds - self.clock;
+            if self.any_order {
+                self.midnights -= days(step);
+            } else if -step > LONGEST_STEP_BACK_S {
                 self.midnights += 1;
             }
             self.clock = now.seconds;
@@ -59,6 +90,11 @@ impl Times {
         let nanoseconds = i64::from(now.nanoseconds) - i64::from(first.nanoseconds);
         Ok(if nanoseconds == 0 { whole } else { whole + nanoseconds as f64 / 1e9 })
     }
+}
+
+/// Days by which a difference of two times of day is too large to be the nearest one: -1, 0 or 1.
+fn days(difference_s: i64) -> i64 {
+    i64::from(difference_s > HALF_A_DAY_S) - i64::from(difference_s < -HALF_A_DAY_S)
 }
 
 fn parse(cell: &[u8]) -> Option<Moment> {
@@ -141,6 +177,31 @@ mod tests {
     fn a_clock_put_back_an_hour_is_not_past_midnight() {
         assert_eq!(all(&["02:59:59", "02:00:00"]), [Ok(0.0), Ok(-3599.0)]);
         assert_eq!(all(&["17:30:00", "08:00:00"]), [Ok(0.0), Ok(14.5 * 3600.0)]);
+    }
+
+    #[test]
+    fn rows_out_of_order_about_midnight_keep_their_day() {
+        let mut times = Times::in_any_order();
+        let mut second = |cell: &str| times.seconds(cell.as_bytes()).unwrap();
+        let cells = ["23:59:58", "00:00:01", "23:59:59", "00:00:03", "12:00:02", "11:59:00"];
+        assert_eq!(cells.map(&mut second), [0.0, 3.0, 1.0, 5.0, 43_204.0, 43_142.0]);
+    }
+
+    #[test]
+    fn the_first_clock_time_is_the_one_nearest_to_when_it_was_taken() {
+        let begins = |cell: &str, taken: &str| {
+            let mut times = Times::in_any_order();
+            times.seconds(cell.as_bytes()).unwrap();
+            let taken = DateTime::parse_from_rfc3339(taken).unwrap();
+            let (seconds, nanoseconds) = times.begins(&taken).unwrap();
+            DateTime::from_timestamp(seconds, nanoseconds).unwrap().to_rfc3339()
+        };
+        let taken = "2026-11-20T18:05:00+11:00";
+        assert_eq!(begins("18:05:02.5", taken), "2026-11-20T07:05:02.500+00:00");
+        assert_eq!(begins("2026-11-20 18:04:00", taken), "2026-11-20T07:04:00+00:00");
+        assert_eq!(begins("2026-11-20T08:00:00+01:00", taken), "2026-11-20T07:00:00+00:00");
+        assert_eq!(begins("00:00:05", "2026-11-20T23:59:55Z"), "2026-11-21T00:00:05+00:00");
+        assert_eq!(begins("23:59:55", "2026-11-21T00:00:05Z"), "2026-11-20T23:59:55+00:00");
     }
 
     #[test]

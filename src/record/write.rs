@@ -48,10 +48,7 @@ pub fn write_run(run: &Run, readings_name: &str) -> (String, String) {
     toml.text("rows", rows);
     toml.table("columns");
     for column in &columns {
-        let name = quoted(&column.name);
-        let unit = column.unit.map_or_else(String::new, |unit| format!(", unit = {}", quoted(unit.symbol)));
-        let absolute = if column.absolute { ", absolute = true" } else { "" };
-        toml.line(column.key, &format!("{{ column = {name}{unit}{absolute} }}"));
+        toml.line(column.key, &column.said(if column.absolute { ", absolute = true" } else { "" }));
     }
     conditions(&mut toml, run);
     zero_and_leak(&mut toml, "before", run.before);
@@ -96,12 +93,17 @@ impl Toml {
         self.some(key, value.map(to_text).as_deref());
     }
 
-    fn share(&mut self, key: &str, ratio: Option<f64>) {
+    pub(super) fn share(&mut self, key: &str, ratio: Option<f64>) {
         self.quantity(key, ratio.map(Share::from_ratio));
     }
 
     /// As [`Toml::influence`], in a customary unit where value and ± both come back in it.
-    fn influence_in<T: Quantity>(&mut self, customary: &str, key: &str, given: Influence<T, T::Difference>) {
+    pub(super) fn influence_in<T: Quantity>(
+        &mut self,
+        customary: &str,
+        key: &str,
+        given: Influence<T, T::Difference>,
+    ) {
         let text = |value: Option<T>| {
             let unit = unit::lookup(T::KIND, customary).ok()?;
             let value = value.map(|v| cell(v, unit)).unwrap_or_else(|| Some(String::new()))?;
@@ -121,7 +123,7 @@ impl Toml {
         }
     }
 
-    fn influence<T: Quantity>(&mut self, key: &str, given: Influence<T, T::Difference>) {
+    pub(super) fn influence<T: Quantity>(&mut self, key: &str, given: Influence<T, T::Difference>) {
         let text = match (given.value, given.expanded) {
             (Some(value), expanded) => uncertain_to_text(Uncertain { value, expanded }),
             (None, Some(expanded)) => format!("± {}", to_text(expanded)),
@@ -278,12 +280,25 @@ pub(super) fn limits(toml: &mut Toml, given: &Acceptance) {
 }
 
 /// A column of the table: its key in `[columns]`, its head, and its cells.
-struct Column {
-    key: &'static str,
-    name: String,
+pub(super) struct Column {
+    pub(super) key: &'static str,
+    pub(super) name: String,
     unit: Option<Unit>,
     absolute: bool,
     cells: Vec<String>,
+}
+
+impl Column {
+    /// The same column under another name.
+    pub(super) fn named(self, name: String) -> Self {
+        Self { name, ..self }
+    }
+
+    /// The table that stands for it in `[columns]`, with `more` keys at its end.
+    pub(super) fn said(&self, more: &str) -> String {
+        let unit = self.unit.map_or_else(String::new, |unit| format!(", unit = {}", quoted(unit.symbol)));
+        format!("{{ column = {}{unit}{more} }}", quoted(&self.name))
+    }
 }
 
 fn of_points(points: &[PointReading]) -> Vec<Column> {
@@ -360,7 +375,7 @@ fn each<T: Quantity>(
 }
 
 /// A column in the customary unit, where each of its numbers comes back in it, else in the SI unit.
-fn column<T: Quantity>(key: &'static str, customary: &str, values: Vec<T>) -> Column {
+pub(super) fn column<T: Quantity>(key: &'static str, customary: &str, values: Vec<T>) -> Column {
     let customary = unit::lookup(T::KIND, customary).unwrap_or_else(|_| T::KIND.default_unit());
     let in_unit = |unit: Unit| values.iter().map(|value| cell(*value, unit)).collect::<Option<Vec<String>>>();
     let (unit, cells) = match in_unit(customary) {
@@ -417,7 +432,7 @@ pub(super) fn number(x: f64) -> String {
     if x.fract() == 0.0 && x.abs() < 1e15 { format!("{x}") } else { format!("{x:?}") }
 }
 
-fn csv(columns: &[Column]) -> String {
+pub(super) fn csv(columns: &[Column]) -> String {
     let mut text = columns.iter().map(|column| column.name.as_str()).collect::<Vec<_>>().join(",");
     text.push('\n');
     let rows = columns.iter().map(|column| column.cells.len()).max().unwrap_or(0);

@@ -145,7 +145,7 @@ pub(super) fn read(
 }
 
 /// Oxygen partial pressure in bar in the air and in the oxygen of a calibration; the oxygen is dry.
-fn calibration_points_bar(at: &CalibratedAt) -> (f64, f64) {
+pub(crate) fn calibration_points_bar(at: &CalibratedAt) -> (f64, f64) {
     let vapour = at.humidity * saturation_pressure(at.temperature).as_bar();
     (OXYGEN_IN_AIR * (at.barometer.as_bar() - vapour), at.oxygen * at.barometer.as_bar())
 }

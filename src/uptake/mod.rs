@@ -33,6 +33,7 @@ mod combine;
 mod help;
 mod monte_carlo;
 
+pub(crate) use cells::calibration_points_bar;
 pub use cells::{CellLeftOut, CellTrouble};
 pub use help::{Help, HelpWith};
 pub use injection::{InjectionLine, LineShift};

@@ -8,15 +8,20 @@ use std::sync::atomic::{AtomicU64, Ordering};
 use std::time::Duration;
 
 use chrono::{DateTime, FixedOffset};
-use ebbline::book::{Book, Options, Recorded, SourceFiles, Stamp, ToImport};
+use ebbline::book::{
+    Book, LineSource, Options, Recorded, SessionRecorded, SessionSource, SessionToImport, SourceFiles, Stamp,
+    ToImport,
+};
 use ebbline::entry::{
-    Conditions, Decision, Id, Indication, Influence, Meter, MeterKind, Papers, PointReading, Purity, Purpose,
-    Readings, Run, StoredFigures, StoredPart, StoredVerdict, Sweep, Transducer, ZeroAndLeak,
+    Assumptions, CellPapers, CellReadings, CellSignal, Conditions, Decision, Diluent, Event, Id, Indication,
+    Influence, Injection, LeakTest, LineReference, LoopKept, Meter, MeterKind, Papers, Place, PointReading,
+    Purity, Purpose, Readings, Rest, Run, Session, SessionConditions, SessionReadings, StoredFigures,
+    StoredPart, StoredVerdict, Sweep, Transducer, What, ZeroAndLeak,
 };
 use ebbline::gas::Species;
 use ebbline::quantity::{
-    AbsolutePressure, GaugePressure, IndicatedFlow, PressureDifference, ReferenceConditions, Temperature,
-    TemperatureDifference,
+    AbsolutePressure, GaugePressure, IndicatedFlow, Mass, PressureDifference, ReferenceConditions, Span,
+    Temperature, TemperatureDifference, Uncertain, Volume,
 };
 
 /// A folder of its own, removed at the end.
@@ -195,4 +200,75 @@ pub(crate) fn decision(flow_l_min: f64) -> Decision {
         by: Some("I. Varga".into()),
         remark: None,
     }
+}
+
+/// An invented couch session of three cells, a reading a second, whose injection came through the line of a run file;
+/// `mark` is a number that stands in no other session's readings, in bar.
+pub(crate) fn session(diver: &str, seconds: usize, mark: f64) -> Session {
+    let cell = |n: usize| {
+        let mut readings: Vec<f64> =
+            (0..seconds).map(|t| 0.98 + 0.003 * n as f64 - 1e-4 * t as f64).collect();
+        readings.iter_mut().skip(1).step_by(7).for_each(|reading| *reading = mark + 1e-6 * n as f64);
+        CellReadings { name: format!("c{n}"), signal: CellSignal::Bar(readings) }
+    };
+    let ip = Uncertain { value: GaugePressure::from_bar(9.4), expanded: None };
+    Session {
+        diver: id(diver),
+        mass: Some(Mass::from_kg(82.0)),
+        place: Place::Couch,
+        kept: LoopKept::Held,
+        diluent: Diluent::Air,
+        loop_volume: Some(Uncertain { value: Volume::from_l(7.5), expanded: Some(Volume::from_l(1.0)) }),
+        leak_test: LeakTest::Passed,
+        nose_clip: Some(true),
+        oxygen: None,
+        taken: time("2026-11-20T18:05:00+11:00"),
+        readings: SessionReadings {
+            time_s: (0..seconds).map(|t| t as f64).collect(),
+            cells: (1..=3).map(cell).collect(),
+            depth_m: None,
+            loop_temperature_k: None,
+        },
+        line: Some(LineReference::RunFile("cmf-0417.toml".into())),
+        conditions: SessionConditions { scrubber_warm: Some(true), ..SessionConditions::default() },
+        cells: CellPapers::default(),
+        rest: Rest { rested_for: Some(Span::from_s(1500.0)), ..Rest::default() },
+        assumptions: Assumptions::DEFAULT,
+        events: vec![Event { at_s: 0.0, what: What::Injection(Injection::Ip(ip)) }],
+        cylinder: None,
+    }
+}
+
+/// The files such a session comes from, as long as they are; `text` stands in no other's.
+pub(crate) fn session_files(session: &Session, text: &str) -> SessionSource {
+    let about: String =
+        (0..28).map(|line| format!("# {text} {line}: an invented session file, as long.\n")).collect();
+    let columns: Vec<&Vec<f64>> = session
+        .readings
+        .cells
+        .iter()
+        .map(|cell| match &cell.signal {
+            CellSignal::Bar(readings) | CellSignal::Volts { readings, .. } => readings,
+        })
+        .collect();
+    let row = |(index, time): (usize, &f64)| {
+        let cells: String = columns.iter().map(|column| format!(",{:.4}", column[index])).collect();
+        format!("{time:.0}{cells}\n")
+    };
+    let rows: String = session.readings.time_s.iter().enumerate().map(row).collect();
+    let SourceFiles { run_file_name, run_file, readings_name, readings } = files(text);
+    SessionSource {
+        session_file_name: format!("{text}.toml"),
+        session_file: format!("# {text}\ndiver = \"{}\"\n{about}", session.diver).into_bytes(),
+        readings_name: format!("{text}.csv"),
+        readings: format!("t,c1,c2,c3\n{rows}").into_bytes(),
+        line: Some(LineSource { file_name: run_file_name, file: run_file, readings_name, readings }),
+    }
+}
+
+/// Imports a session with the line of 20 points that its run file holds.
+pub(crate) fn import_session(book: &mut Book, session: &Session, text: &str) -> SessionRecorded {
+    let (line, files) = (run("CMF-0417", 20), session_files(session, text));
+    let item = SessionToImport { session, line_run: Some(&line), files: &files };
+    stamped(|stamp| book.import_sessions(&[item], stamp)).unwrap().remove(0)
 }

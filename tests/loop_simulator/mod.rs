@@ -11,9 +11,13 @@
 //! Amounts in litres at 0 °C and 101.325 kPa; pressures in bar; minutes.
 #![allow(dead_code, unused_imports)] // Each test file uses its own part.
 
+mod feed;
 mod script;
+mod stated;
 
-pub(crate) use script::{Extra, Kind, Scene, scene_of, truth};
+pub(crate) use feed::Feed;
+pub(crate) use script::{Errors, Extra, Kind, Scene, scene_of, scene_through, truth};
+pub(crate) use stated::{ALL_STATED, Stated, as_stated};
 
 /// Random numbers of the simulator's own: splitmix64 (Steele, Lea and Flood 2014), normal deviates by Box and Muller.
 #[derive(Debug, Clone)]
@@ -73,6 +77,8 @@ pub(crate) struct Truth {
     pub(crate) last_digit: f64,
     /// Vapour rises from 20 °C to that of the loop with this time constant from the first reading on; zero for at once.
     pub(crate) warming_min: f64,
+    /// Litres by which an oxygen add ends above the mark it was to end at.
+    pub(crate) mark_off_l: f64,
 }
 
 /// How the bag is kept.
@@ -189,7 +195,7 @@ pub(crate) fn run(
             match acts[next_act].1 {
                 Act::Inject(flow) => inject = flow,
                 Act::Oxygen(litres) => oxygen = litres,
-                Act::OxygenToMark => oxygen = missing.max(0.0),
+                Act::OxygenToMark => oxygen = (missing + truth.mark_off_l * k).max(0.0),
                 Act::DiluentToMark => {
                     bag.o += truth.diluent * missing.max(0.0);
                     bag.n += (1.0 - truth.diluent) * missing.max(0.0);

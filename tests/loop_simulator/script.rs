@@ -1,6 +1,6 @@
 //! Sessions to simulate: the truth drawn, what the diver does, and the record as the diver would write it.
 
-use super::{Act, Dice, Keeping, Log, Truth, run};
+use super::{Act, Dice, Feed, Keeping, Log, Truth, run};
 use chrono::DateTime;
 use ebbline::entry::{
     CellReadings, CellSignal, Cylinder, Diluent, Event, Feeds, Id, Influence, Injection, LeakTest, LoopKept,
@@ -52,6 +52,11 @@ impl Kind {
     ];
 }
 
+/// The random part of a line: variances of intercept and slope, and their covariance.
+pub(super) const LINE_RANDOM: (f64, f64, f64) = (1e-6, 1e-8, -0.95e-7);
+/// The part common to its points: a gain, relative.
+pub(super) const LINE_GAIN: f64 = 0.005;
+
 /// A simulated session: the truth, and what was written down.
 pub(crate) struct Scene {
     pub(crate) truth: Truth,
@@ -87,6 +92,7 @@ pub(crate) fn truth(dice: &mut Dice) -> Truth {
         cell_lag_min: 0.1,
         last_digit: 0.001,
         warming_min: 0.0,
+        mark_off_l: 0.0,
     }
 }
 
@@ -105,19 +111,45 @@ pub(crate) struct Extra {
     pub(crate) po2: Option<f64>,
     /// The injection over the uptake in a held or sealed session, if not drawn.
     pub(crate) share: Option<f64>,
+    /// What the record is off by, if not drawn.
+    pub(crate) errors: Option<Errors>,
+}
+
+/// What a record is off by: what it states less what is true, unless said otherwise.
+#[derive(Debug, Clone, Copy, Default)]
+pub(crate) struct Errors {
+    pub(crate) volume_l: f64,
+    pub(crate) barometer_bar: f64,
+    /// Flow meter and meter of what is added, relative.
+    pub(crate) flow: f64,
+    pub(crate) metered: f64,
+    /// Intercept and slope of the line.
+    pub(crate) line: (f64, f64),
+    pub(crate) ip_bar: f64,
+    /// True temperature of the gas at the orifice less the 20 °C that are assumed.
+    pub(crate) gas_k: f64,
 }
 
 impl Default for Extra {
     fn default() -> Self {
-        Self { every_s: 5.0, minutes: 0.0, then: None, volume_u_l: 0.5, po2: None, share: None }
+        Self { every_s: 5.0, minutes: 0.0, then: None, volume_u_l: 0.5, po2: None, share: None, errors: None }
     }
 }
 
 /// A session of a kind with a given truth.
 pub(crate) fn scene_of(kind: Kind, truth: Truth, extra: &Extra, dice: &mut Dice) -> Scene {
+    scene(kind, truth, extra, None, dice)
+}
+
+/// The same, injected through an orifice.
+pub(crate) fn scene_through(kind: Kind, truth: Truth, extra: &Extra, feed: &Feed, dice: &mut Dice) -> Scene {
+    scene(kind, truth, extra, Some(feed), dice)
+}
+
+fn scene(kind: Kind, truth: Truth, extra: &Extra, feed: Option<&Feed>, dice: &mut Dice) -> Scene {
     let m = truth.uptake;
     let part = |share: f64| (m * share / truth.purity).max(0.0);
-    let mut builder = Builder::new(&truth, extra.volume_u_l, dice);
+    let mut builder = Builder::new(&truth, extra, feed, dice);
     let (keep, mut po2, mut minutes): (LoopKept, f64, f64);
     match kind {
         Kind::Held => {
@@ -185,7 +217,7 @@ pub(crate) fn scene_of(kind: Kind, truth: Truth, extra: &Extra, dice: &mut Dice)
     builder.session.kept = keep;
     match kind {
         Kind::Topped => {
-            let meter = dice.normal(0.0, 0.01);
+            let meter = extra.errors.map_or_else(|| dice.normal(0.0, 0.01), |e| e.metered);
             for (at, litres) in [6.0, 12.0, 18.0, 24.0].into_iter().zip(&log.added) {
                 builder.added(at, litres * (1.0 + meter));
             }
@@ -266,16 +298,29 @@ fn oxygen_z(bar: f64) -> f64 {
 const Z_24C: [(f64, f64); 4] = [(100.0, 0.950_54), (120.0, 0.945_50), (140.0, 0.942_40), (160.0, 0.941_29)];
 
 /// The record as it grows.
-struct Builder {
+struct Builder<'a> {
     acts: Vec<(f64, Act)>,
     session: Session,
     line: Option<InjectionLine>,
     /// The flow meter's error in this session, relative.
     meter: f64,
+    errors: Option<Errors>,
+    feed: Option<(&'a Feed, Gas)>,
 }
 
-impl Builder {
-    fn new(truth: &Truth, volume_u_l: f64, dice: &mut Dice) -> Self {
+/// Where the gas that is injected comes from.
+#[derive(Debug, Clone, Copy)]
+struct Gas {
+    ambient_bar: f64,
+    kelvin: f64,
+}
+
+impl<'a> Builder<'a> {
+    fn new(truth: &Truth, extra: &Extra, feed: Option<&'a Feed>, dice: &mut Dice) -> Self {
+        let volume_u_l = extra.volume_u_l;
+        let errors = extra.errors;
+        let off_l = errors.map_or_else(|| dice.normal(0.0, volume_u_l), |e| e.volume_l);
+        let off_bar = errors.map_or_else(|| dice.normal(0.0, 0.001), |e| e.barometer_bar);
         let plus_minus_bar = |bar: f64| Some(PressureDifference::from_bar(bar));
         let session = Session {
             diver: Id::new("D-07").unwrap(),
@@ -284,7 +329,7 @@ impl Builder {
             kept: LoopKept::Held,
             diluent: Diluent::Air,
             loop_volume: Some(Uncertain {
-                value: Volume::from_m3((truth.volume_l + dice.normal(0.0, volume_u_l)) / 1e3),
+                value: Volume::from_m3((truth.volume_l + off_l) / 1e3),
                 expanded: Some(Volume::from_m3(2.0 * volume_u_l / 1e3)),
             }),
             leak_test: LeakTest::Passed,
@@ -295,7 +340,7 @@ impl Builder {
             line: None,
             conditions: SessionConditions {
                 barometer: Influence {
-                    value: Some(AbsolutePressure::from_bar(truth.ambient_bar + dice.normal(0.0, 0.001))),
+                    value: Some(AbsolutePressure::from_bar(truth.ambient_bar + off_bar)),
                     expanded: plus_minus_bar(0.002),
                 },
                 loop_temperature: Influence {
@@ -312,7 +357,13 @@ impl Builder {
             events: Vec::new(),
             cylinder: None,
         };
-        Self { acts: Vec::new(), session, line: None, meter: dice.normal(0.0, 0.01) }
+        let meter = errors.map_or_else(|| dice.normal(0.0, 0.01), |e| e.flow);
+        // The gas at the orifice is that of the room, which the session takes for 20 °C ± 5 °C.
+        let feed = feed.map(|feed| {
+            (feed, Gas { ambient_bar: truth.ambient_bar, kelvin: 293.15 + dice.normal(0.0, 2.5) })
+        });
+        let line = feed.map(|(feed, _)| feed.line.clone());
+        Self { acts: Vec::new(), session, line, meter, errors, feed }
     }
 
     fn event(&mut self, at_min: f64, what: What) {
@@ -320,7 +371,16 @@ impl Builder {
     }
 
     /// A true flow, and what the diver's meter says it is.
-    fn inject(&mut self, at_min: f64, flow: f64, _dice: &mut Dice) {
+    fn inject(&mut self, at_min: f64, flow: f64, dice: &mut Dice) {
+        if let Some((feed, gas)) = self.feed.filter(|_| flow > 0.0) {
+            let (shown_bar, flow) = feed.set(flow, gas.ambient_bar, gas.kelvin, dice);
+            self.acts.push((at_min, Act::Inject(flow)));
+            let ip = Uncertain {
+                value: GaugePressure::from_bar(shown_bar),
+                expanded: Some(PressureDifference::from_bar(feed.gauge_expanded_bar)),
+            };
+            return self.event(at_min, What::Injection(Injection::Ip(ip)));
+        }
         self.acts.push((at_min, Act::Inject(flow)));
         let shown = flow * (1.0 + self.meter);
         let injection = if flow > 0.0 {
@@ -337,27 +397,39 @@ impl Builder {
     /// A true flow by an intermediate pressure through a line that is a little wrong, on a gauge that is a little off.
     fn through_a_line(&mut self, at_min: f64, flow: f64, dice: &mut Dice) {
         self.acts.push((at_min, Act::Inject(flow)));
-        let (slope, gas_c) = (0.033, dice.normal(20.0, 2.5));
+        let slope = 0.033;
+        let gas_c = self.errors.map_or_else(|| dice.normal(20.0, 2.5), |e| 20.0 + e.gas_k);
         let at_20 = flow / (293.15 / (gas_c + 273.15)).sqrt();
-        let true_ip = at_20 / slope + 0.1 - self.session.conditions.barometer.value.unwrap().as_bar();
-        let gain = dice.normal(0.0, 0.005);
+        let ambient_bar = match self.errors {
+            Some(errors) => self.session.conditions.barometer.value.unwrap().as_bar() - errors.barometer_bar,
+            None => self.session.conditions.barometer.value.unwrap().as_bar(),
+        };
+        let true_ip = at_20 / slope + 0.1 - ambient_bar;
+        let off = match self.errors {
+            Some(errors) => errors.line,
+            None => {
+                let gain = dice.normal(0.0, 0.005);
+                (-0.1 * slope * gain, slope * gain)
+            }
+        };
         self.line = Some(InjectionLine {
-            intercept: -0.1 * slope * (1.0 + gain),
-            slope: slope * (1.0 + gain),
-            intercept_variance: 1e-6,
-            slope_variance: 1e-8,
-            covariance: -1e-7 * 0.95,
+            intercept: -0.1 * slope + off.0,
+            slope: slope + off.1,
+            intercept_variance: LINE_RANDOM.0,
+            slope_variance: LINE_RANDOM.1,
+            covariance: LINE_RANDOM.2,
             random_dof: 8.0,
             common: vec![ebbline::uptake::LineShift {
                 source: Some(ebbline::bench::correct::Source::MeterGain),
-                intercept: -0.1 * slope * 0.005,
-                slope: slope * 0.005,
+                intercept: -0.1 * slope * LINE_GAIN,
+                slope: slope * LINE_GAIN,
             }],
         });
+        let off_bar = self.errors.map_or_else(|| dice.normal(0.0, 0.1), |e| e.ip_bar);
         self.event(
             at_min,
             What::Injection(Injection::Ip(Uncertain {
-                value: GaugePressure::from_bar(true_ip + dice.normal(0.0, 0.1)),
+                value: GaugePressure::from_bar(true_ip + off_bar),
                 expanded: Some(PressureDifference::from_bar(0.2)),
             })),
         );

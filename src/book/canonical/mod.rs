@@ -18,6 +18,7 @@ mod quantities;
 mod papers;
 mod acceptance;
 mod run;
+mod session;
 mod judgement;
 mod orifice;
 mod instrument;
@@ -28,10 +29,13 @@ mod shop;
 #[cfg(test)]
 pub(super) mod strategy;
 #[cfg(test)]
+pub(super) mod session_strategy;
+#[cfg(test)]
 mod tests;
 
 pub(super) use primitives::Bytes;
 pub(super) use run::header;
+pub(super) use session::session_header;
 
 use crate::entry::IdError;
 
@@ -196,5 +200,5 @@ macro_rules! canonical_choice {
     };
 }
 
-pub(super) use canonical_choice as choice;
+pub(super) use {canonical_choice as choice, canonical_struct as fields};
 use {canonical_choice, canonical_struct};

@@ -1,7 +1,7 @@
 //! Quantities: the number each keeps inside, so that no conversion rounds.
 
 use super::{Canonical, Reader, Unreadable, Writer, canonical_choice, canonical_struct};
-use crate::gas::Species;
+use crate::gas::{Species, Water};
 use crate::quantity::{
     AbsolutePressure, GaugePressure, IndicatedFlow, Length, Mass, PressureDifference, PressureRate,
     ReferenceConditions, Share, Span, StpdFlow, Temperature, TemperatureDifference, Uncertain, Volume,
@@ -38,6 +38,7 @@ canonical_quantity! {
 }
 
 canonical_struct!(ReferenceConditions { temperature, pressure });
+canonical_choice!(Water, "water" { Sea = 1, Fresh = 2 });
 canonical_choice!(Species, "gas" { Oxygen = 1, Air = 2, Nitrogen = 3, Helium = 4 });
 
 impl<T: Canonical, D: Canonical> Canonical for Uncertain<T, D> {

@@ -10,7 +10,7 @@ use crate::gas::Species;
 use crate::quantity::*;
 
 /// Every bit pattern: NaNs with their payloads, infinities, subnormals, both noughts.
-fn float() -> BoxedStrategy<f64> {
+pub(super) fn float() -> BoxedStrategy<f64> {
     prop_oneof![any::<u64>().prop_map(f64::from_bits), Just(-0.0), Just(f64::NAN), -1e3..1e3].boxed()
 }
 
@@ -35,7 +35,7 @@ pub(crate) fn id() -> BoxedStrategy<Id> {
 }
 
 /// A time RFC 3339 can say: its offsets are of whole minutes.
-fn time() -> BoxedStrategy<DateTime<FixedOffset>> {
+pub(super) fn time() -> BoxedStrategy<DateTime<FixedOffset>> {
     (-60_000_000_000_i64..200_000_000_000, 0..1_000_000_000_u32, -1439..1440_i32)
         .prop_map(|(seconds, nanoseconds, minutes)| {
             let offset = FixedOffset::east_opt(60 * minutes).unwrap();
@@ -52,7 +52,7 @@ fn species() -> BoxedStrategy<Species> {
     prop::sample::select(Species::ALL.to_vec()).boxed()
 }
 
-fn uncertain<T: std::fmt::Debug + Clone + 'static, D: std::fmt::Debug + Clone + 'static>(
+pub(super) fn uncertain<T: std::fmt::Debug + Clone + 'static, D: std::fmt::Debug + Clone + 'static>(
     value: fn(f64) -> T,
     difference: fn(f64) -> D,
 ) -> BoxedStrategy<Uncertain<T, D>> {
@@ -61,7 +61,7 @@ fn uncertain<T: std::fmt::Debug + Clone + 'static, D: std::fmt::Debug + Clone + 
         .boxed()
 }
 
-fn influence<T: std::fmt::Debug + Clone + 'static, D: std::fmt::Debug + Clone + 'static>(
+pub(super) fn influence<T: std::fmt::Debug + Clone + 'static, D: std::fmt::Debug + Clone + 'static>(
     value: fn(f64) -> T,
     difference: fn(f64) -> D,
 ) -> BoxedStrategy<Influence<T, D>> {
@@ -70,7 +70,7 @@ fn influence<T: std::fmt::Debug + Clone + 'static, D: std::fmt::Debug + Clone + 
         .boxed()
 }
 
-fn reference() -> BoxedStrategy<ReferenceConditions> {
+pub(super) fn reference() -> BoxedStrategy<ReferenceConditions> {
     (float(), float())
         .prop_map(|(t, p)| ReferenceConditions {
             temperature: Temperature::from_k(t),

@@ -72,6 +72,50 @@ CREATE TABLE register (
 ) STRICT;
 CREATE UNIQUE INDEX register_key ON register (register, key, revision);
 
+-- Sessions, for lists. Personal: a row goes with the payload it repeats.
+CREATE TABLE session (
+  seq       INTEGER PRIMARY KEY REFERENCES record (seq), -- the record that began it
+  number    INTEGER NOT NULL UNIQUE,                    -- 7 for S0007
+  diver     TEXT    NOT NULL,                           -- code of the diver as given
+  diver_key TEXT    NOT NULL,                           -- the same in lower case
+  place     INTEGER NOT NULL,                           -- 1 couch, 2 pool
+  kept      INTEGER NOT NULL,                           -- how the loop is kept at first: 1 sealed, 2 held, 3 topped
+  taken     TEXT    NOT NULL,                           -- when it was begun, RFC 3339 with the offset as given
+  recorded  TEXT    NOT NULL,                           -- when it was recorded, RFC 3339 with its offset
+  origin    INTEGER NOT NULL,                           -- 1 imported, 2 entered
+  first_s   REAL,                                       -- earliest reading, s on the time column
+  last_s    REAL,                                       -- latest reading, s on the time column
+  cells     INTEGER NOT NULL,                           -- oxygen cells
+  readings  INTEGER NOT NULL,                           -- rows of readings
+  source    BLOB                                        -- SHA-256 of the files of an imported session
+) STRICT;
+CREATE UNIQUE INDEX session_source ON session (source) WHERE source IS NOT NULL;
+CREATE INDEX        session_diver  ON session (diver_key, number);
+
+-- Every record of a session, in order of seq: its header, readings, line, files, what was left out.
+CREATE TABLE of_session (
+  seq     INTEGER PRIMARY KEY REFERENCES record (seq),  -- the record
+  session INTEGER NOT NULL,                             -- number of the session
+  kind    INTEGER NOT NULL                              -- kind of the record
+) STRICT;
+CREATE INDEX of_session_session ON of_session (session, seq);
+
+-- What was left out of sessions, for lists.
+CREATE TABLE session_left_out (
+  seq     INTEGER PRIMARY KEY REFERENCES record (seq),  -- the record
+  session INTEGER NOT NULL,                             -- number of the session
+  whole   INTEGER NOT NULL,                             -- 1 for the whole session, 0 for a stretch of it
+  from_s  REAL,                                         -- first second of the stretch on the time column
+  to_s    REAL                                          -- last second of the stretch
+) STRICT;
+CREATE INDEX session_left_out_session ON session_left_out (session);
+
+-- Numbers of erased sessions: they stay used.
+CREATE TABLE session_erased (
+  number  INTEGER PRIMARY KEY,                          -- 7 for S0007
+  erasure INTEGER NOT NULL REFERENCES record (seq)      -- the record that says when and why
+) STRICT;
+
 -- Records whose payload was erased.
 CREATE TABLE erased (
   seq     INTEGER PRIMARY KEY REFERENCES record (seq),  -- the record without its payload
@@ -97,18 +141,37 @@ CREATE TRIGGER run_stays       BEFORE UPDATE ON run      BEGIN SELECT RAISE(ABOR
 CREATE TRIGGER of_run_stays    BEFORE UPDATE ON of_run   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER decision_stays  BEFORE UPDATE ON decision BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER register_stays  BEFORE UPDATE ON register BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_stays          BEFORE UPDATE ON session
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER of_session_stays       BEFORE UPDATE ON of_session
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_left_out_stays BEFORE UPDATE ON session_left_out
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_erased_stays   BEFORE UPDATE ON session_erased
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER erased_stays    BEFORE UPDATE ON erased   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 
 CREATE TRIGGER record_kept     BEFORE DELETE ON record   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER run_kept        BEFORE DELETE ON run      BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER of_run_kept     BEFORE DELETE ON of_run   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER decision_kept   BEFORE DELETE ON decision BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_erased_kept BEFORE DELETE ON session_erased
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER erased_kept     BEFORE DELETE ON erased   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 -- Only what an erasure names may go.
 CREATE TRIGGER payload_kept    BEFORE DELETE ON payload
   WHEN NOT EXISTS (SELECT 1 FROM erased WHERE seq = OLD.seq)
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER register_kept   BEFORE DELETE ON register
+  WHEN NOT EXISTS (SELECT 1 FROM erased WHERE seq = OLD.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_kept    BEFORE DELETE ON session
+  WHEN NOT EXISTS (SELECT 1 FROM erased WHERE seq = OLD.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER of_session_kept BEFORE DELETE ON of_session
+  WHEN NOT EXISTS (SELECT 1 FROM erased WHERE seq = OLD.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_left_out_kept BEFORE DELETE ON session_left_out
   WHEN NOT EXISTS (SELECT 1 FROM erased WHERE seq = OLD.seq)
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 
@@ -133,6 +196,20 @@ CREATE TRIGGER register_new    BEFORE INSERT ON register
   WHEN EXISTS (SELECT 1 FROM register WHERE seq = NEW.seq
                OR (register = NEW.register AND key = NEW.key AND revision = NEW.revision))
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_new     BEFORE INSERT ON session
+  WHEN EXISTS (SELECT 1 FROM session WHERE seq = NEW.seq OR number = NEW.number OR source = NEW.source)
+    OR EXISTS (SELECT 1 FROM session_erased WHERE number = NEW.number)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER of_session_new  BEFORE INSERT ON of_session
+  WHEN EXISTS (SELECT 1 FROM of_session WHERE seq = NEW.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_left_out_new BEFORE INSERT ON session_left_out
+  WHEN EXISTS (SELECT 1 FROM session_left_out WHERE seq = NEW.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_erased_new BEFORE INSERT ON session_erased
+  WHEN EXISTS (SELECT 1 FROM session_erased WHERE number = NEW.number)
+    OR NOT EXISTS (SELECT 1 FROM session WHERE number = NEW.number)
+  BEGIN SELECT RAISE(ABORT, 'only a session that is there can be erased'); END;
 -- Only personal records can be erased, each once.
 CREATE TRIGGER erased_new      BEFORE INSERT ON erased
   WHEN EXISTS (SELECT 1 FROM erased WHERE seq = NEW.seq)

@@ -11,6 +11,7 @@ use super::seen::Seen;
 use super::words::Words;
 
 use super::super::axis::{Scale, Ticks};
+pub(super) use super::super::frame::Frame;
 use super::super::ink::INK;
 use super::super::letters::{Weight, shorten, width};
 use super::super::number::short;
@@ -42,31 +43,6 @@ pub(super) struct Layout {
     pub limit_labels: Vec<(String, f64)>,
     flow_ticks: Ticks,
     date_ticks: DateTicks,
-}
-
-/// A rectangle.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub(super) struct Frame {
-    pub left: f64,
-    pub top: f64,
-    pub right: f64,
-    pub bottom: f64,
-}
-
-impl Frame {
-    pub(super) fn holds(&self, other: &Self) -> bool {
-        other.left >= self.left
-            && other.right <= self.right
-            && other.top >= self.top
-            && other.bottom <= self.bottom
-    }
-
-    pub(super) fn meets(&self, other: &Self) -> bool {
-        self.left < other.right
-            && other.left < self.right
-            && self.top < other.bottom
-            && other.top < self.bottom
-    }
 }
 
 /// The size of body text in a picture of this size: 12 px in one of 960 by 480, and never under 9 px.

@@ -9,6 +9,7 @@ use super::marks::{DRAWING_ORDER, arrow, begin, cross_of, hair, radius, sign, to
 use super::seen::{Mark, Nominal, Seen};
 use crate::bench::Analysis;
 
+use super::super::frame::hatch;
 use super::super::ink::{INK, SAND, SEA_GLASS};
 use super::super::number::coordinate;
 use super::super::svg::{Path, Svg};
@@ -206,25 +207,6 @@ fn draw_flow_box(svg: &mut Svg, nominal: &Nominal, layout: &Layout, x: f64, half
     svg.path(&outline, &[("class", "plot-flow-at-nominal"), ("stroke-width", "1")]);
 }
 
-/// Strokes slanting upward at 45° through a frame, `apart` pixels from one another along its edges.
-pub(super) fn hatch(frame: &Frame, apart: f64) -> Path {
-    let mut path = Path::default();
-    let (width, height) = (frame.width(), frame.height());
-    let count = ((width + height) / apart).clamp(0.0, 500.0) as u32;
-    for i in 1..=count {
-        // The stroke on which x + y, counted from the lower left corner, has this value.
-        let along = f64::from(i) * apart;
-        let (from, to) = (along.min(width), (along - height).max(0.0));
-        if from > to {
-            path.stroke(
-                (frame.left + from, frame.bottom - (along - from)),
-                (frame.left + to, frame.bottom - (along - to)),
-            );
-        }
-    }
-    path
-}
-
 fn draw_bars(svg: &mut Svg, seen: &Seen, layout: &Layout) {
     let mut path = Path::default();
     for m in seen.marks.iter().filter(|m| in_view(m, seen)) {
@@ -287,19 +269,4 @@ fn arrow_beyond(m: &Mark, seen: &Seen, layout: &Layout) -> Path {
 pub(super) fn in_view(m: &Mark, seen: &Seen) -> bool {
     (seen.pressures.0..=seen.pressures.1).contains(&m.pressure)
         && (seen.flows.0..=seen.flows.1).contains(&m.flow)
-}
-
-#[cfg(test)]
-mod tests {
-    use super::*;
-
-    #[test]
-    fn hatch_stays_in_its_frame_and_fills_it() {
-        let frame = Frame { left: 10.0, top: 20.0, right: 40.0, bottom: 28.0 };
-        let path = format!("{:?}", hatch(&frame, 4.0));
-        assert!(path.contains("M14.00 28.00L10.00 24.00"), "{path}");
-        assert_eq!(path.matches('M').count(), 9, "{path}");
-        // Frames of no height have nothing to hatch.
-        assert_eq!(format!("{:?}", hatch(&Frame { bottom: 20.0, ..frame }, 4.0)).matches('M').count(), 0);
-    }
 }

@@ -5,13 +5,14 @@
 //! verdict, flow, choke ratio and legend always stay.
 
 use super::RunPlot;
-use super::flow_panel::{hatch, in_view};
+use super::flow_panel::in_view;
 use super::layout::{Frame, Layout, body_size, edge};
 use super::marks::{Cross, arrow, begin, cross_of, sign};
 use super::residual_strip::beyond;
 use super::seen::{Seen, Shape, Use};
 use super::words::{Words, ip};
 
+use super::super::frame::hatch;
 use super::super::ink::{BRICK, INK, SAND, SEA_GLASS};
 use super::super::letters::{Weight, clean, shorten, width, wrap};
 use super::super::number::coordinate;

@@ -21,7 +21,7 @@ pub(super) fn read(file: &Table<'_>, stands: Option<&Id>) -> Result<Diver, Recor
 }
 
 /// "air", or "oxygen" with its share.
-fn diluent(field: &Field<'_>) -> Result<Diluent, RecordError> {
+pub(in crate::record) fn diluent(field: &Field<'_>) -> Result<Diluent, RecordError> {
     let text = field.text()?.trim();
     if text == "air" {
         return Ok(Diluent::Air);

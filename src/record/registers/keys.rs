@@ -23,7 +23,7 @@ pub(super) fn id(file: &Table<'_>, example: &'static str, stands: Option<&Id>) -
 }
 
 /// Words on one line.
-pub(super) fn words(file: &Table<'_>, key: &str) -> Result<Option<String>, RecordError> {
+pub(in crate::record) fn words(file: &Table<'_>, key: &str) -> Result<Option<String>, RecordError> {
     file.field(key).map_or(Ok(None), |field| field.free_text())
 }
 
@@ -38,7 +38,10 @@ pub(super) fn required_words(
 }
 
 /// A quantity above zero.
-pub(super) fn positive<T: Quantity>(file: &Table<'_>, key: &str) -> Result<Option<T>, RecordError> {
+pub(in crate::record) fn positive<T: Quantity>(
+    file: &Table<'_>,
+    key: &str,
+) -> Result<Option<T>, RecordError> {
     let read = |field: super::super::document::Field<'_>| above_zero(&field, field.quantity(value::<T>)?);
     file.field(key).map(read).transpose()
 }

@@ -32,7 +32,9 @@ use super::note::Loaded;
 use super::run::{Files, as_text, open};
 use crate::entry::{Acceptance, Diver, FirstStage, Id, Instrument, InstrumentPapers, Orifice, Shop, Socket};
 
+pub(super) use diver::diluent;
 pub use flags::flag_of;
+pub(super) use keys::{positive, words};
 pub use number_pattern::{NumberPattern, NumberPatternFault};
 pub use pattern::PatternFault;
 pub use refusal::RegisterRefusal;

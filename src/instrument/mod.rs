@@ -1,0 +1,3 @@
+//! Serial instruments: ports, framing, protocols, reconnecting; a stream of timed readings and faults.
+
+pub mod crc;
