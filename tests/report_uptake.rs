@@ -231,7 +231,7 @@ fn without_a_number_the_reason_and_the_advice_come_first() {
 
 #[test]
 fn what_is_no_uptake_is_never_printed() {
-    // 20 L of loop held at a constant PO2 without injection: nothing is used.
+    // A loop at a constant PO2 without injection: nothing is used.
     let mut scene = scene(Kind::Held, 5);
     for event in &mut scene.session.events {
         event.what = ebbline::entry::What::Injection(ebbline::entry::Injection::Off);
@@ -314,7 +314,7 @@ fn an_uneven_interval_is_given_by_its_ends() {
     let Ok(estimate) = &mut worked.uptake.places[0].answer else { panic!("no answer") };
     (estimate.uptake_l_min, estimate.interval_95) = (0.300, (0.270, 0.350));
     let line = worked.with(|reported| summary_line(reported, &Units::default()));
-    assert!(line.contains("0.300 L/min (95 % from 0.270 to 0.350 L/min)"), "{line}");
+    assert!(line.contains("0.300 L/min STPD (95 % from 0.270 to 0.350)"), "{line}");
 }
 
 #[test]
@@ -391,8 +391,12 @@ fn a_record_that_passed_a_limit_carries_its_own_caution() {
     );
     assert_eq!(json["sessions"][0]["po2_lowest_bar"], 0.381);
     assert!(
-        text.contains("below the floor")
-            || text.split_whitespace().collect::<Vec<_>>().join(" ").contains("below the floor")
+        text.replace(
+            "
+    ", " "
+        )
+        .contains("below the floor"),
+        "{text}"
     );
     let (json, _) = with(Place::Couch, 30, 1.004);
     let caution = of(&json, "above the ceiling").unwrap();
@@ -475,6 +479,10 @@ fn a_warning_of_several_sessions_is_said_once_with_their_names() {
     assert!(meal.len() == 1 && meal[0].starts_with("S0001, S0002: "), "{meal:?}");
     let posture: Vec<_> = warnings.iter().filter(|w| w.contains("posture")).collect();
     assert!(posture.len() == 1 && posture[0].starts_with("S0001: "), "{posture:?}");
+    // The text has what each did not say in one sentence.
+    let words = worked.text().split_whitespace().collect::<Vec<_>>().join(" ");
+    assert_eq!(words.matches("[rest] does not say").count(), 2, "{words}");
+    assert!(words.contains("S0002: [rest] does not say rested_for, last_meal,"), "{words}");
 }
 
 fn shown<'a>(session: &'a Session, left_out: &'a [SessionLeftOut]) -> Shown<'a> {
@@ -562,10 +570,12 @@ fn a_session_is_shown_as_it_was_recorded() {
     assert_eq!(json["session"], "S0012");
     let first = &json["readings"][0];
     let ebbline::entry::CellSignal::Bar(column) = &session.readings.cells[0].signal else { panic!("bar") };
-    assert_eq!(first["first"].as_f64(), Some(column[0]));
+    // Twelve significant figures.
+    let is = |value: &Value, want: f64| assert!((value.as_f64().unwrap() - want).abs() < 1e-11, "{value}");
+    is(&first["first"], column[0]);
     assert_eq!(first["readings"], column.len());
     let least = column.iter().copied().fold(f64::INFINITY, f64::min);
-    assert_eq!(first["lowest"].as_f64(), Some(least));
+    is(&first["lowest"], least);
     for key in [
         "diver",
         "place",

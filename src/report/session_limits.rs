@@ -50,8 +50,8 @@ pub fn cautions(session: &Session, extremes: Option<&Extremes>, units: &Units) -
     let mut cautions = Vec::new();
     if let Some(Extremes { lowest: (po2, at_s), .. }) = extremes.filter(|e| e.lowest.0 < floor) {
         cautions.push(format!(
-            "PO2 fell to {} bar at {}, below the floor of {} bar for a {} session: the record is used, but that was \
-             near fainting; add oxygen earlier, or stop",
+            "PO2 fell to {} bar at {}, below the floor of {} bar for a {} session: the record is used, but add oxygen \
+             earlier, or stop before",
             fixed(*po2, 3),
             clock(*at_s),
             fixed(floor, 2),

@@ -18,7 +18,6 @@ use crate::entry::{
     Metered, Session, SessionLeftOut, SessionNumber, What,
 };
 use crate::gas::Water;
-use crate::quantity::show::reference_to_text;
 use crate::quantity::unit::{Kind, Unit};
 use crate::quantity::{
     GaugePressure, PressureDifference, Span, Temperature, TemperatureDifference, Uncertain,
@@ -69,8 +68,8 @@ pub fn text(shown: &Shown<'_>, units: &Units) -> String {
         text.push_str("  none\n");
     }
     for event in in_order(session) {
-        let line = format!("{}  {}", clock(event.at_s), what(&event.what, units));
-        text.push_str(&wrapped("  ", "            ", &line));
+        let first = format!("  {}  ", clock(event.at_s));
+        text.push_str(&wrapped(&first, "            ", &what(&event.what, units)));
     }
     text.push('\n');
     text.push_str(&cells(session));
@@ -279,7 +278,13 @@ fn what(what: &What, units: &Units) -> String {
 fn metered(amount: Option<&Metered>, units: &Units) -> String {
     let Some(amount) = amount else { return ", not metered".to_owned() };
     let volume = &amount.volume;
-    let at = amount.reads_at.map_or_else(|| "the state of the loop".to_owned(), reference_to_text);
+    let at = amount.reads_at.map_or_else(
+        || "the state of the loop".to_owned(),
+        |at| {
+            let temperature = given(units.unit(Kind::Temperature), at.temperature.as_k(), None);
+            format!("{temperature}, {} kPa", shortest(at.pressure.as_pa() / 1000.0, 6))
+        },
+    );
     format!(
         " of {}, litres at {at}",
         given(units.unit(Kind::Volume), volume.value.as_m3(), volume.expanded.map(|d| d.as_m3()))

@@ -7,11 +7,11 @@ use super::number::{figures, fixed, u_alone, value_and_u};
 use super::session_limits;
 use super::typed::{clock, tame};
 use super::uptake_sentences::{self as say, from_to};
-use crate::entry::{Place, Session};
+use crate::entry::{LoopKept, Place, Session};
 use crate::quantity::unit::Kind as Quantity;
 use crate::uptake::{
-    Estimate, Kind, LoopVolume, MonteCarlo, Origin, PlaceUptake, SegmentUptake, SessionUptake,
-    StretchLeftOut, StretchWhy, Uptake, Warning, WhyNot,
+    Estimate, Kind, LoopVolume, MonteCarlo, Origin, PlaceUptake, RestDoubt, RestItem, SegmentUptake,
+    SessionUptake, StretchLeftOut, StretchWhy, Uptake, Warning, WhyNot,
 };
 
 /// A session that was handed in, with what it is called.
@@ -66,7 +66,7 @@ pub fn text(reported: &Reported<'_>, units: &Units) -> String {
     text.push_str(&wrapped(
         "  ",
         "  ",
-        "Flows are litres of oxygen at 0 °C and 101.325 kPa, dry (STPD); ± stands for 95 %, u for one standard \
+        "Flows are of oxygen at 0 °C and 101.325 kPa, dry (STPD); ± stands for 95 %, u for one standard \
          uncertainty.",
     ));
     if let Some((lowest, _)) = reported.uptake.lowest().filter(|_| reported.uptake.places.len() > 1) {
@@ -108,11 +108,12 @@ pub fn summary_line(reported: &Reported<'_>, units: &Units) -> String {
         return format!("No resting oxygen uptake of {diver}: {why}");
     };
     let next = &estimate.next_day;
+    let stpd = format!("{} STPD", units.flow_symbol());
     format!(
-        "Resting oxygen uptake of {diver} ({}): {} STPD; another day {} STPD",
+        "Resting oxygen uptake of {diver} ({}): {}; another day {}",
         place.place.name(),
-        with_interval(estimate.uptake_l_min, estimate.interval_95, units),
-        with_interval(next.uptake_l_min, next.interval_95, units)
+        in_words(estimate.uptake_l_min, estimate.interval_95, units, &stpd),
+        in_words(next.uptake_l_min, next.interval_95, units, &stpd)
     )
 }
 
@@ -143,30 +144,34 @@ fn session_why_not(session: &SessionUptake) -> Option<&WhyNot> {
 }
 
 /// What to know before trusting the number, a sentence each, with the sessions it holds for where there are several;
-/// `with_jumps` also those that propose an event.
-pub(super) fn warnings(reported: &Reported<'_>, with_jumps: bool, units: &Units) -> Vec<String> {
-    let mut said: Vec<(String, Vec<String>)> = Vec::new();
-    let mut add = |sentence: String, name: String| match said.iter_mut().find(|(there, _)| *there == sentence)
-    {
-        Some((_, names)) if names.contains(&name) => {}
-        Some((_, names)) => names.push(name),
-        None => said.push((sentence, vec![name])),
-    };
+/// `whole` each by itself, also those that propose
+/// an event and stand in the text with it.
+pub(super) fn warnings<'a>(reported: &Reported<'a>, whole: bool, units: &Units) -> Vec<String> {
+    let mut said: Vec<(String, Vec<&SessionUptake>)> = Vec::new();
+    let mut add =
+        |sentence: String, session: &'a SessionUptake| match said.iter_mut().find(|s| s.0 == sentence) {
+            Some((_, sessions)) if sessions.iter().any(|s| s.index == session.index) => {}
+            Some((_, sessions)) => sessions.push(session),
+            None => said.push((sentence, vec![session])),
+        };
     for place in &reported.uptake.places {
         for session in &place.sessions {
-            let name = reported.name(session);
-            for sentence in session_warnings(reported, session, with_jumps, units) {
-                add(sentence, name.clone());
+            for sentence in session_warnings(reported, session, whole, units) {
+                add(sentence, session);
             }
             if let (Ok(_), Some(why)) = (&place.answer, session_why_not(session)) {
-                add(format!("no number, and no part of the uptake: {}", say::why_not(why)), name);
+                add(format!("no number, and no part of the uptake: {}", say::why_not(why)), session);
             }
         }
     }
     let several = reported.sessions.len() > 1;
+    let names = |mut sessions: Vec<&SessionUptake>| {
+        sessions.sort_by_key(|session| session.index);
+        sessions.into_iter().map(|session| reported.name(session)).collect::<Vec<_>>().join(", ")
+    };
     let mut warnings: Vec<String> = said
         .into_iter()
-        .map(|(sentence, names)| if several { format!("{}: {sentence}", names.join(", ")) } else { sentence })
+        .map(|(sentence, of)| if several { format!("{}: {sentence}", names(of)) } else { sentence })
         .collect();
     for place in &reported.uptake.places {
         let (name, lowest) = (place.place.name(), reported.uptake.lowest());
@@ -191,7 +196,7 @@ pub(super) fn warnings(reported: &Reported<'_>, with_jumps: bool, units: &Units)
 pub(super) fn session_warnings(
     reported: &Reported<'_>,
     session: &SessionUptake,
-    with_jumps: bool,
+    whole: bool,
     units: &Units,
 ) -> Vec<String> {
     let mut warnings = Vec::new();
@@ -200,8 +205,17 @@ pub(super) fn session_warnings(
             session_limits::extremes(named.session, &session.cells_left_out, Some(&session.series));
         warnings.extend(session_limits::cautions(named.session, extremes.as_ref(), units));
     }
-    let told = session.warnings.iter().filter(|w| with_jumps || !matches!(w, Warning::UnmarkedJump(_)));
+    let not_said = |w: &Warning| match w {
+        Warning::Rest(RestDoubt::NotSaid(item)) => Some(*item),
+        _ => None,
+    };
+    let stands_elsewhere = |w: &Warning| matches!(w, Warning::UnmarkedJump(_)) || not_said(w).is_some();
+    let told = session.warnings.iter().filter(|w| whole || !stands_elsewhere(w));
     warnings.extend(told.map(|w| say::warning(w, units)));
+    if !whole {
+        let items: Vec<RestItem> = session.warnings.iter().filter_map(not_said).collect();
+        warnings.extend(say::rest_not_said(&items, units));
+    }
     warnings
 }
 
@@ -212,6 +226,8 @@ fn place_text(reported: &Reported<'_>, place: &PlaceUptake, units: &Units) -> St
     };
     match &place.answer {
         Ok(estimate) => text.push_str(&estimate_text(reported, place.place, estimate, units)),
+        // Where nothing else was handed in, the reason is the headline.
+        Err(_) if reported.sessions.len() < 2 => {}
         Err(why) if place.sessions.len() < 2 => text.push_str(&row("no number", &say::why_not(why))),
         Err(_) => text.push_str(&row("no number", "none of the sessions has one; each says why")),
     }
@@ -245,7 +261,7 @@ fn estimate_text(reported: &Reported<'_>, place: Place, estimate: &Estimate, uni
         "another day",
         &format!(
             "{}; u = {} {q}, degrees of freedom {}. A prediction from {days}, and the only figure a setting uses; from \
-             day to day ± {} {q} was taken (one standard deviation)",
+             day to day ±{} {q} was taken (one standard deviation)",
             with_interval(next.uptake_l_min, next.interval_95, units),
             u_alone(units.flow(next.u)),
             dof(next.dof),
@@ -353,10 +369,16 @@ fn cells(session: &SessionUptake) -> String {
     text
 }
 
+/// Whether a stretch is not used at all; a topped loop's one segment spans the times after its adds.
+pub(super) fn is_unused(stretch: &StretchLeftOut) -> bool {
+    let spanned = stretch.kept == LoopKept::Topped && stretch.why == StretchWhy::DeadTime;
+    stretch.to_s > stretch.from_s && !spanned
+}
+
 /// Stretches that are not used, those with one reason together.
 fn left_out(stretches: &[StretchLeftOut]) -> String {
     let mut reasons: Vec<(&StretchWhy, Vec<String>)> = Vec::new();
-    for stretch in stretches.iter().filter(|s| s.to_s > s.from_s) {
+    for stretch in stretches.iter().filter(|stretch| is_unused(stretch)) {
         let times = from_to(stretch.from_s, stretch.to_s);
         match reasons.iter_mut().find(|(why, _)| **why == stretch.why) {
             Some((_, there)) => there.push(times),
@@ -397,9 +419,11 @@ fn segments(segments: &[SegmentUptake], units: &Units) -> String {
         &rows,
         false,
     );
-    let sealed = segments.iter().any(|s| s.kind == Kind::Sealed);
-    let of = if sealed { "the oxygen fraction f, sealed of 1/(1 − f)" } else { "the oxygen fraction" };
-    text.push_str(&wrapped("  ", "  ", &format!("Slope of {of}{}", ordinary(segments))));
+    let any = |kind: Kind| segments.iter().any(|segment| segment.kind == kind);
+    let sealed = if any(Kind::Sealed) { "; sealed: of 1/(1 − f)" } else { "" };
+    let topped = if any(Kind::Topped) { "; topped: its change from end to end over the time" } else { "" };
+    let of = format!("Slope of the oxygen fraction f{sealed}{topped}{}", ordinary(segments));
+    text.push_str(&wrapped("  ", "  ", &of));
     text
 }
 
@@ -459,17 +483,20 @@ fn half_widths(estimate: &Estimate) -> (f64, f64) {
 }
 
 /// "0.296 ± 0.018 L/min (95 %)"; an interval that is not even is given by its ends.
-fn with_interval(l_min: f64, (low, high): (f64, f64), units: &Units) -> String {
+fn with_interval(l_min: f64, interval: (f64, f64), units: &Units) -> String {
+    in_words(l_min, interval, units, units.flow_symbol())
+}
+
+fn in_words(l_min: f64, (low, high): (f64, f64), units: &Units, unit: &str) -> String {
     let half = 0.5 * (high - low);
     let uneven = (0.5 * (high + low) - l_min).abs() > 0.025 * half;
     let (value, u) = value_and_u(units.flow(l_min), units.flow(half));
-    let q = units.flow_symbol();
     if uneven {
         let places = decimals(&value);
         let end = |l_min: f64| fixed(units.flow(l_min), places);
-        format!("{value} {q} (95 % from {} to {} {q})", end(low), end(high))
+        format!("{value} {unit} (95 % from {} to {})", end(low), end(high))
     } else {
-        format!("{value} ± {u} {q} (95 %)")
+        format!("{value} ± {u} {unit} (95 %)")
     }
 }
 
@@ -478,7 +505,14 @@ fn row(label: &str, says: &str) -> String {
 }
 
 fn dof(dof: f64) -> String {
-    if dof.is_finite() { fixed(dof, 0) } else { "no limit".into() }
+    // Beyond a thousand Student's t is the normal distribution to all digits shown.
+    if dof.is_infinite() {
+        "no limit".into()
+    } else if dof > 1000.0 {
+        "over 1000".into()
+    } else {
+        fixed(dof, 0)
+    }
 }
 
 fn decimals(text: &str) -> i32 {

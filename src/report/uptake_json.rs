@@ -5,7 +5,7 @@ use serde::Serialize;
 use super::Units;
 use super::number::Plain;
 use super::session_limits;
-use super::session_uptake::{Named, Reported, origin_name, session_warnings, warnings, why_not};
+use super::session_uptake::{Named, Reported, is_unused, origin_name, session_warnings, warnings, why_not};
 use super::typed::clock;
 use super::uptake_sentences as say;
 use crate::entry::Place;
@@ -322,7 +322,7 @@ impl JsonSession {
             cells_used: session.cells_used,
             cells_left_out: session.cells_left_out.iter().map(|cell| cell.name.clone()).collect(),
             cells_left_out_why: session.cells_left_out.iter().map(say::cell).collect(),
-            left_out: session.left_out.iter().map(JsonStretch::of).collect(),
+            left_out: session.left_out.iter().filter(|s| is_unused(s)).map(JsonStretch::of).collect(),
             proposed_events: session.warnings.iter().filter_map(JsonProposal::of).collect(),
             po2_lowest_bar: extremes.map(|e| Plain(e.lowest.0)),
             po2_highest_bar: extremes.map(|e| Plain(e.highest.0)),

@@ -71,7 +71,7 @@ pub fn warning(warning: &Warning, units: &Units) -> String {
             length(1.0, units)
         ),
         Warning::DepthAssumed => format!(
-            "no ± is given for the depth of the counterlung; ± {} (k = 2) was taken: state it in [conditions]",
+            "no ± is given for the depth of the counterlung; ±{} (k = 2) was taken: state it in [conditions]",
             length(0.2, units)
         ),
         Warning::TimeOnLoopUnknown => {
@@ -364,6 +364,23 @@ pub fn rest(doubt: &RestDoubt, units: &Units) -> String {
     }
 }
 
+/// What is not said about rest, in one sentence; none when all is.
+#[must_use]
+pub fn rest_not_said(items: &[RestItem], units: &Units) -> Option<String> {
+    match items {
+        [] => None,
+        [only] => Some(rest(&RestDoubt::NotSaid(*only), units)),
+        several => {
+            let keys: Vec<&str> = several.iter().map(|item| rest_item(*item).1).collect();
+            Some(format!(
+                "[rest] does not say {}, so nobody can tell whether it was rest; what disturbs it reads high, the \
+                 dangerous side",
+                keys.join(", ")
+            ))
+        }
+    }
+}
+
 const fn rest_item(item: RestItem) -> (&'static str, &'static str) {
     match item {
         RestItem::Posture => ("in which posture the diver was", "posture"),
@@ -420,14 +437,14 @@ pub fn help_with(what: &HelpWith, place: Place, units: &Units) -> String {
             )
         }
         HelpWith::MeasuredVolume { expanded_l } => {
-            format!("the loop volume measured to ± {} (k = 2)", litres(*expanded_l, units))
+            format!("the loop volume measured to ±{} (k = 2)", litres(*expanded_l, units))
         }
         HelpWith::LongerRest { minutes } => {
             format!("{} minutes more at the same injection", fixed(*minutes, 0))
         }
         HelpWith::AnotherDay => "the same session again on another day".into(),
         HelpWith::ComparedGauge { expanded_bar } => format!(
-            "the gauge of the intermediate pressure compared with a calibrated one, to ± {} (k = 2)",
+            "the gauge of the intermediate pressure compared with a calibrated one, to ±{} (k = 2)",
             units.pressure_text(*expanded_bar)
         ),
     }
@@ -436,17 +453,30 @@ pub fn help_with(what: &HelpWith, place: Place, units: &Units) -> String {
 /// A proposal with what it would bring; `now` are the half-widths of the uptake's and of another day's interval, L/min.
 #[must_use]
 pub fn help(help: &Help, now: (f64, f64), place: Place, units: &Units) -> String {
-    let half = |l_min: f64| u_alone(units.flow(l_min));
-    format!(
-        "{} would bring ± {} to ± {} {}, and another day's ± {} to ± {} {}",
-        help_with(&help.what, place, units),
-        half(now.0),
-        half(help.half_width_l_min),
-        units.flow_symbol(),
-        half(now.1),
-        half(help.next_day_half_width_l_min),
-        units.flow_symbol()
-    )
+    let q = units.flow_symbol();
+    let what = help_with(&help.what, place, units);
+    let still = |l_min: f64| format!("±{} {q}", u_alone(units.flow(l_min)));
+    let uptake = narrowed(now.0, help.half_width_l_min, units);
+    let next_day = narrowed(now.1, help.next_day_half_width_l_min, units);
+    match (uptake, next_day) {
+        (Some(uptake), Some(next)) => {
+            format!("{what} would bring {uptake} {q}, and another day's {next} {q}")
+        }
+        (Some(uptake), None) => {
+            format!("{what} would bring {uptake} {q}, and leave another day's at {}", still(now.1))
+        }
+        (None, Some(next)) => {
+            format!("{what} would bring another day's {next} {q}, and leave {}", still(now.0))
+        }
+        (None, None) => format!("{what} would leave {} and another day's {}", still(now.0), still(now.1)),
+    }
+}
+
+/// "±0.018 to ±0.013", to as many figures as show the difference, up to three; none when they do not.
+fn narrowed(now: f64, then: f64, units: &Units) -> Option<String> {
+    let (now, then) = (units.flow(now), units.flow(then));
+    let pairs = [(u_alone(now), u_alone(then)), (figures(now, 3), figures(then, 3))];
+    pairs.into_iter().find(|(now, then)| now != then).map(|(now, then)| format!("±{now} to ±{then}"))
 }
 
 /// "from 00:01:30 to 00:09:00".
