@@ -221,6 +221,8 @@ fn model(
     let model = plan(session, line, given, &bins, &cells, &events, warnings);
     uptake.series = Series { time_s: model.time_s.clone(), po2_bar: model.po2.clone() };
     uptake.left_out.clone_from(&model.left_out);
+    // Two events at one time leave the same stretch out.
+    uptake.left_out.dedup();
     let ordinary = |w: &StretchWhy| {
         matches!(
             w,
