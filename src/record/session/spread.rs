@@ -31,8 +31,12 @@ pub(super) fn expanded<T: Quantity>(field: &Field<'_>, to_k2: f64) -> Result<T::
 ///
 /// Nothing beside it could say other reference conditions, so litres that hide theirs are refused in their own words.
 pub(super) fn flow(field: &Field<'_>, to_k2: f64) -> Result<Uncertain<StpdFlow>, RecordError> {
-    let wanted = "the flow in L/min STPD (0 °C, 101.325 kPa, dry)";
-    given::<StpdFlow>(field, to_k2).map_err(|error| with_wanted(error, wanted))
+    given::<StpdFlow>(field, to_k2).map_err(stpd_wanted)
+}
+
+/// The refusal of a flow that hides its reference conditions, in the words of [`flow`]; any other as it is.
+pub(super) fn stpd_wanted(error: RecordError) -> RecordError {
+    with_wanted(error, "the flow in L/min STPD (0 °C, 101.325 kPa, dry)")
 }
 
 /// A volume of actual litres, above zero, with or without its ±.
