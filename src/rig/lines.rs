@@ -66,6 +66,8 @@ impl LinesDevice {
                     }
                     Fault::NotANumber => text = Some("NaN"),
                     Fault::Overflow(overflow) => text = Some(overflow.text()),
+                    // Another instrument says its own unit.
+                    Fault::WrongDevice => wrong = true,
                     _ => {}
                 }
             }
