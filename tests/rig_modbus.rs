@@ -1,4 +1,5 @@
 //! The Modbus devices of the rig, against the examples of the specification and worked frames.
+#![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
 
 use std::io::{Read, Write};
 use std::sync::{Arc, Mutex};

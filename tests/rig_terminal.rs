@@ -1,4 +1,5 @@
 //! The rig on pseudo-terminals, read and written as any program would.
+#![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
 #![cfg(unix)]
 
 use std::fs::File;
@@ -127,11 +128,7 @@ fn what_the_last_reader_left_is_not_for_the_next() {
     drop(line);
     let lost = || {
         let rig = served.rig();
-        rig.log()
-            .sent()
-            .filter(|s| s.port == "flow")
-            .next_back()
-            .is_some_and(|s| s.delivery == Delivery::Lost)
+        rig.log().sent().rfind(|s| s.port == "flow").is_some_and(|s| s.delivery == Delivery::Lost)
     };
     wait(&lost);
     let before = whole(&served);
