@@ -428,3 +428,10 @@ fn a_rig_that_cannot_be_is_refused() {
         Command::parse("open the window").unwrap_err().to_string().starts_with("\"open the window\" is no")
     );
 }
+
+#[test]
+fn a_line_and_a_rig_go_to_other_threads() {
+    fn goes<T: Send>() {}
+    goes::<Transport>();
+    goes::<Rig>();
+}

@@ -40,7 +40,7 @@ pub enum Fault {
     NotANumber,
     /// An overflow; a device with numbers shows 9.9E37 or the largest integer.
     Overflow(Overflow),
-    /// The plug is out: end of file for whoever reads; the line is new when it is in again.
+    /// The plug is out, of every device on its port: end of file for whoever reads; the line is new when it is in again.
     Unplugged,
     /// The number is in another unit; a device that says its unit says so.
     WrongUnit(String),

@@ -62,7 +62,7 @@ pub struct Sent {
 }
 
 /// Lines that are kept in memory; older ones are only in the file.
-const MOST_KEPT: usize = 500_000;
+const MOST_KEPT: usize = 200_000;
 
 /// The log: in memory, and as lines of JSON in a file, each handed to the system whole before the next.
 #[derive(Debug, Default)]
@@ -83,7 +83,7 @@ impl Log {
         Ok(())
     }
 
-    /// What was sent, in order; the newest half million.
+    /// What was sent, in order; the newest two hundred thousand.
     pub fn sent(&self) -> impl DoubleEndedIterator<Item = &Sent> + ExactSizeIterator {
         self.kept.iter()
     }
