@@ -61,10 +61,7 @@ pub(crate) fn as_stated(kind: Kind, stated: Stated, extra: &Extra, dice: &mut Di
         barometer_bar: normal(Source::Barometer, 0.001),
         flow: normal(Source::StatedFlow, 0.01),
         metered: normal(Source::Metered, 0.01),
-        line: (
-            first * line_a - 0.1 * 0.033 * gain,
-            across * line_a + rest * line_b + 0.033 * gain,
-        ),
+        line: (first * line_a - 0.1 * 0.033 * gain, across * line_a + rest * line_b + 0.033 * gain),
         ip_bar: normal(Source::IpGauge, 0.1),
         gas_k: normal(Source::GasTemperature, 2.5),
     };
