@@ -7,6 +7,7 @@
 #![allow(clippy::print_stdout, reason = "a benchmark's result is what it prints")]
 #![allow(clippy::unwrap_used, reason = "a benchmark that cannot go on has nothing to clean up")]
 
+#[allow(dead_code, reason = "each benchmark uses its own part")]
 mod common;
 #[path = "../loop_simulator/mod.rs"]
 mod loop_simulator;
