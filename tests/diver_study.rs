@@ -292,8 +292,8 @@ fn on_another_day_overfeed_is_no_oftener_than_stated_and_the_rest_is_little() {
     let [right, no_other_day] = study(Drawn::Usual, [Way::Right, Way::NoOtherDay]);
     assert!(right.overfed <= most_by_chance(right.set, CHANCE), "{right:?}");
     assert!(right.median_shortfall < 0.22, "{right:?}");
-    // Hardly any is refused: where little is known of the uptake (of the others half know it to 6 % or better), and where a thin plate is
-    // choked only at the high end of the run, so that the line holds from some 7 bar on.
+    // Hardly any is refused: where little is known of the uptake, and where a thin plate is choked only at the high end of the run, so that
+    // the line begins at some 8 bar absolute.
     assert!(right.set * 100 >= 98 * DIVERS as usize, "{right:?}");
     for (why, (_, least_u)) in &right.refused {
         let too_little_known = why == "ShortfallTooLarge" && *least_u > 0.07;
