@@ -130,7 +130,7 @@ pub fn from_book_at(book: &Book, orifice: &Id, taken: DateTime<FixedOffset>) -> 
     let row = sound()
         .filter(|row| holds(row))
         .find(before)
-        .or_else(|| sound().filter(|row| holds(row)).next_back())
+        .or_else(|| sound().rfind(|row| holds(row)))
         .or_else(|| sound().find(before))
         .or_else(|| sound().next_back())
         .or_else(|| rows.iter().find(before))
