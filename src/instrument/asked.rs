@@ -57,7 +57,10 @@ struct Waiting {
     at_most_s: f64,
     /// Readers of whom a reading or a fault was found.
     done: Vec<usize>,
-    anything: bool,
+    /// Lines were heard that nobody could read; each was said.
+    strange: bool,
+    /// Empty lines were heard: some instruments put one before their answer.
+    blank: bool,
 }
 
 impl Asked {
@@ -85,13 +88,14 @@ impl Asked {
         if let Some(asking) = self.questions.get_mut(waiting.question) {
             let half = asking.splitter.half();
             let (kind, heard) = match half.trim_ascii() {
+                [] if waiting.blank => (FaultKind::Empty, [].as_slice()),
                 [] => (FaultKind::Silence, [].as_slice()),
                 // The echo of the question alone is no answer begun.
                 said if said == asking.question.ask.trim_ascii() => (FaultKind::Silence, [].as_slice()),
                 _ => (FaultKind::HalfLine, half),
             };
             // Lines that nobody could read were said already.
-            let said = waiting.anything && waiting.done.is_empty() && kind == FaultKind::Silence;
+            let said = waiting.strange && waiting.done.is_empty() && kind != FaultKind::HalfLine;
             if !said {
                 let open =
                     asking.question.readers.iter().filter(|(member, _)| !waiting.done.contains(member));
@@ -99,7 +103,7 @@ impl Asked {
                     open.map(|(member, _)| Found { member: *member, what: Err(Fault::new(kind, heard)) }),
                 );
             }
-            if kind == FaultKind::Silence && waiting.done.is_empty() {
+            if kind == FaultKind::Silence && !waiting.strange && waiting.done.is_empty() {
                 asking.schedule.silent(now_s);
             }
         }
@@ -141,14 +145,19 @@ impl Conversation for Asked {
                 }
             };
             let Some(line) = without_echo(&line, &asking.question.ask) else { continue };
+            if line.trim_ascii().is_empty() {
+                waiting.blank = true;
+                continue;
+            }
             let first = found.len();
             let readers = asking.question.readers.iter();
             let open = readers.filter(|(member, _)| !waiting.done.contains(member));
             shared(line, open.map(|(member, reader)| (*member, reader)), found);
-            waiting.anything = true;
             for one in found.iter().skip(first) {
-                if !matches!(&one.what, Err(fault) if fault.kind == FaultKind::NoMatch) {
-                    waiting.done.push(one.member);
+                // Noise and a greeting may come before the answer.
+                match &one.what {
+                    Err(Fault { kind: FaultKind::NoMatch | FaultKind::Garbage, .. }) => waiting.strange = true,
+                    _ => waiting.done.push(one.member),
                 }
             }
             if asking.question.readers.iter().all(|(member, _)| waiting.done.contains(member)) {
@@ -189,7 +198,7 @@ impl Conversation for Asked {
         let until_s = now_s + wire_s(ask.len(), self.baud) + ANSWER_S;
         let at_most_s = until_s + wire_s(LONGEST_LINE, self.baud);
         self.state =
-            State::Waiting(Waiting { question, until_s, at_most_s, done: Vec::new(), anything: false });
+            State::Waiting(Waiting { question, until_s, at_most_s, done: Vec::new(), strange: false, blank: false });
         Some(ask)
     }
 
