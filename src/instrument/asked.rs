@@ -156,7 +156,9 @@ impl Conversation for Asked {
             for one in found.iter().skip(first) {
                 // Noise and a greeting may come before the answer.
                 match &one.what {
-                    Err(Fault { kind: FaultKind::NoMatch | FaultKind::Garbage, .. }) => waiting.strange = true,
+                    Err(Fault { kind: FaultKind::NoMatch | FaultKind::Garbage, .. }) => {
+                        waiting.strange = true
+                    }
                     _ => waiting.done.push(one.member),
                 }
             }
@@ -197,8 +199,14 @@ impl Conversation for Asked {
         let ask = asking.question.ask.clone();
         let until_s = now_s + wire_s(ask.len(), self.baud) + ANSWER_S;
         let at_most_s = until_s + wire_s(LONGEST_LINE, self.baud);
-        self.state =
-            State::Waiting(Waiting { question, until_s, at_most_s, done: Vec::new(), strange: false, blank: false });
+        self.state = State::Waiting(Waiting {
+            question,
+            until_s,
+            at_most_s,
+            done: Vec::new(),
+            strange: false,
+            blank: false,
+        });
         Some(ask)
     }
 

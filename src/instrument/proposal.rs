@@ -160,12 +160,16 @@ pub fn fitting_text(raw: &[u8], instrument: &Instrument) -> Vec<Proposal> {
             set_lines(&mut changed, Some(other), None);
         }
         let Some(as_it_is) = tried(raw, &changed) else { continue };
+        let before = proposals.len();
         units(raw, &as_it_is, &changed, &changes, &mut proposals);
         if as_it_is.fits() {
             if other == ends {
                 return best(proposals);
             }
             proposals.push(proposal(changes, changed, &as_it_is));
+            continue;
+        }
+        if proposals.len() > before {
             continue;
         }
         for (other_pattern, other_unit) in patterns(&as_it_is.lines, &changed) {

@@ -39,8 +39,11 @@ impl UsbIdentity {
         let mut parts = wanted.trim().splitn(3, ':');
         let mut number = || u16::from_str_radix(parts.next()?, 16).ok();
         let numbers = (number(), number());
+        // Two devices without a serial number are not known to be one.
+        let serial = self.serial.as_deref().map(str::trim).filter(|serial| !serial.is_empty());
         numbers == (Some(self.vendor), Some(self.product))
-            && parts.next().map(str::trim) == self.serial.as_deref().map(str::trim)
+            && serial.is_some()
+            && parts.next().map(str::trim) == serial
     }
 }
 

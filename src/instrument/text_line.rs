@@ -117,8 +117,13 @@ fn is_of_text(c: char) -> bool {
 
 /// Whether the number begins earlier in the line than the pattern says.
 fn begins_earlier(before: &str) -> bool {
-    before.ends_with(|c: char| c.is_ascii_digit() || ".-\u{2212}".contains(c))
-        || before.strip_suffix(',').is_some_and(|head| head.ends_with(|c: char| c.is_ascii_digit()))
+    if before.ends_with(|c: char| c.is_ascii_digit() || ".-\u{2212}".contains(c)) {
+        return true;
+    }
+    // Behind "0.512" a comma parts columns, behind "0" or "1" it may be a decimal comma or part thousands.
+    let Some(head) = before.strip_suffix(',') else { return false };
+    let column = head.rsplit(|c: char| !c.is_ascii_digit() && c != '.').next().unwrap_or("");
+    !column.is_empty() && !column.contains('.')
 }
 
 /// Whether the number goes on in the line.

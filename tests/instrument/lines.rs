@@ -72,6 +72,8 @@ fn every_fault_of_a_line_holds_its_bytes_and_is_no_reading() {
         (flow(r"(?P<value>\d+\.\d+)"), b"-0.5", CutNumber),
         (flow(r"(?P<value>\d\.\d\d)"), b"0.512", CutNumber),
         (flow(r"(?P<value>\d\.\d\d)"), b"10.51", CutNumber),
+        (flow(r"(?P<value>\d+)$"), b"0,512", CutNumber),
+        (flow(r"(?P<value>[\d.]+)$"), b"1,013.2", CutNumber),
         (flow(WORD), b"-.-", NotANumber),
         (flow(WORD), b"----", NotANumber),
         (flow(WORD), b"+-5", NotANumber),
@@ -111,6 +113,7 @@ fn what_only_looks_doubtful_is_a_reading() {
     };
     for (pattern, line, shown) in [
         (NUMBER, b"0.512,21.3,1009".as_slice(), 0.512),
+        (r"(?P<value>[\d.]+)$", b"21.3,0.512", 0.512),
         (NUMBER, b"\n0.512\r", 0.512),
         (NUMBER, b"\x020.512\x03", 0.512),
         (NUMBER, b"0.512 \xb0", 0.512),
@@ -216,6 +219,7 @@ fn an_asked_instrument_is_asked_in_time_and_its_echo_is_no_answer() {
         b"READ?\r\n0.512\r\n",
         b"READ?\n0.512\r\n",
         b"READ?\n\r\n0.512\r\n",
+        b"\r\n0.512\r\n",
         b"ready\r\n0.512\r\n",
     ] {
         assert_eq!(talk.until_sent(), b"READ?\n");
