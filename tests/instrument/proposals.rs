@@ -22,7 +22,7 @@ fn only(trial: &Trial, port: &Port) -> Vec<Change> {
 
 /// A flow meter that says this every fifth of a second for a very long time.
 fn meter(set: &str, baud: u32, line: &str) -> Port {
-    Port::new(set, baud).says(0.0, 0.2, 2_000, |_| line.to_owned())
+    Port::new(set, baud).says(0.05, 0.2, 2_000, |_| line.to_owned())
 }
 
 fn flow() -> Instrument {

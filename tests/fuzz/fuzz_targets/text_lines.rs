@@ -92,6 +92,7 @@ fuzz_target!(|data: &[u8]| {
     if choice & 64 == 0 {
         return;
     }
-    let is_good = |one: &Found| matches!(&one.what, Ok(reading) if reading.shown.to_bits() == 0.5_f64.to_bits());
+    let is_good =
+        |one: &Found| matches!(&one.what, Ok(reading) if reading.shown.to_bits() == 0.5_f64.to_bits());
     assert!(found.iter().any(is_good), "{found:?}");
 });
