@@ -104,6 +104,15 @@ impl Window {
             *rows = SeriesReadings::default();
             place = 0;
         }
+        // Readings that were held back on their way come all at one second: only the newest of them is of that second.
+        let at_once = (0..place).rev().take_while(|row| rows.time_s.get(*row).is_some_and(|t| *t >= at_s));
+        let column = if role == Role::Flow { &mut rows.flow_l_min } else { &mut rows.pressure_pa };
+        for row in at_once {
+            if let Some(older) = column.get_mut(row).filter(|older| older.is_finite()) {
+                *older = value;
+                return;
+            }
+        }
         rows.time_s.insert(place, at_s);
         rows.pressure_pa.insert(place, pressure);
         rows.flow_l_min.insert(place, flow);
