@@ -16,6 +16,7 @@ use crate::book::Book;
 use crate::clock;
 use crate::entry::{Diluent, Diver, FirstStage, Id, Purity};
 use crate::gas::Water;
+use crate::plot::{SettingPlot, setting_plot};
 use crate::quantity::{
     AbsolutePressure, GaugePressure, Length, PressureDifference, Share, StpdFlow, Temperature,
     TemperatureDifference, Uncertain, Volume,
@@ -277,10 +278,8 @@ pub fn make_setting(request: &SettingRequest) -> Result<SettingOutcome, WorkErro
         write_whole(path, sheet::text(&outcome.reported(&named), &request.units).as_bytes())?;
     }
     if let (Some(kind), Some(path)) = (kind, &request.plot) {
-        // WAIT
-        let _ = kind;
-        let _ = write_plot;
-        let _ = path;
+        let plot = SettingPlot { units: request.units, ..SettingPlot::default() };
+        write_plot(&setting_plot(&outcome.setting, &plot), kind, path)?;
     }
     Ok(outcome)
 }
