@@ -345,8 +345,10 @@ fn volume_of_sessions(uptake: &Uptake) -> Option<Uncertain<Volume>> {
     let (place, _) = uptake.lowest()?;
     let last = place.sessions.iter().rev().find_map(|session| session.answer.as_ref().ok())?;
     let litres = |l: f64| Volume::from_m3(l * 1e-3);
+    // To a tenth of a litre, which is less than anybody knows.
+    let rounded = |l: f64| libm::round(10.0 * l) / 10.0;
     let volume = last.loop_volume;
-    Some(Uncertain { value: litres(volume.litres), expanded: Some(litres(2.0 * volume.u)) })
+    Some(Uncertain { value: litres(rounded(volume.litres)), expanded: Some(litres(2.0 * volume.u)) })
 }
 
 fn session_words(gathered: &GatheredSession) -> String {
