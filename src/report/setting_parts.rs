@@ -231,7 +231,7 @@ pub(super) fn depth_table(
     let (used, limits) = (&reported.setting.used, &described.depth);
     let compensated = limits.first_stage == FirstStageKind::Compensated;
     let (_, decimals) = injection(described.at.surface.nominal_l_min, described.at.surface.u_l_min, units);
-    let rows: Vec<Vec<String>> = thinned(&limits.rows, most)
+    let mut rows: Vec<Vec<String>> = thinned(&limits.rows, most)
         .map(|row| {
             let mut cells = vec![
                 down(depth_shown(row.depth_m, units), 0),
@@ -246,6 +246,13 @@ pub(super) fn depth_table(
             cells
         })
         .collect();
+    // Of two rows at the same shown depth the deeper stays: there is less left.
+    let shown: Vec<String> = rows.iter().filter_map(|cells| cells.first().cloned()).collect();
+    let mut at = 0;
+    rows.retain(|_| {
+        at += 1;
+        shown.get(at) != shown.get(at - 1)
+    });
     let q = units.flow_symbol();
     let (mut heads, mut symbols) =
         (vec!["depth", "ambient", "injects", "at least"], vec![depth_symbol(units), "bar abs", q, q]);
