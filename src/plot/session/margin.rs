@@ -23,11 +23,12 @@ struct Fullness {
 }
 
 /// From all that there is to say to the least.
-const FULLNESS: [Fullness; 5] = [
+const FULLNESS: [Fullness; 6] = [
     Fullness { notes: Some(0), lines: 4, keys: 26 },
     Fullness { notes: Some(1), lines: 4, keys: 26 },
-    Fullness { notes: Some(1), lines: 2, keys: 12 },
-    Fullness { notes: None, lines: 2, keys: 6 },
+    Fullness { notes: Some(1), lines: 2, keys: 26 },
+    Fullness { notes: None, lines: 2, keys: 16 },
+    Fullness { notes: None, lines: 1, keys: 6 },
     Fullness { notes: None, lines: 1, keys: 3 },
 ];
 
