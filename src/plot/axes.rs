@@ -36,7 +36,7 @@ pub(super) fn tick_size(body: f64) -> f64 {
 
 /// How far from a frame the labels of its upper and lower side reach.
 pub(super) fn label_room(body: f64) -> f64 {
-    0.75 * body + 1.05 * tick_size(body)
+    0.75 * body + 1.12 * tick_size(body)
 }
 
 /// The widest label of some ticks.
@@ -131,7 +131,7 @@ impl Axes {
                 label(&text, frame.right + gap, y, Anchor::Start);
             }
         }
-        let below = frame.bottom + 0.75 * body + 0.75 * size;
+        let below = frame.bottom + 0.75 * body + 0.85 * size;
         let above = frame.top - 0.75 * body;
         for (side, y) in [(Some(&self.bottom), below), (self.top.as_ref(), above)] {
             let Some(side) = side else { continue };

@@ -29,3 +29,4 @@ mod setting;
 pub use history::{History, HistoryPlot, HistoryRun, Leaving, Trend, TrendPlace, history_plot};
 pub use run::{RunPlot, run_plot};
 pub use session::{SessionPlot, session_plot};
+pub use setting::{SettingPlot, depth_plot, ip_plot, setting_plot};

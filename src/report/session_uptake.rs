@@ -126,11 +126,10 @@ pub fn why_not(reported: &Reported<'_>) -> Option<String> {
     let worked: Vec<&SessionUptake> = reported.worked().collect();
     let reasons: Vec<String> = match worked.as_slice() {
         [] => Vec::new(),
-        [only] => session_why_not(only).map(say::why_not).into_iter().collect(),
-        several => several
-            .iter()
-            .filter_map(|s| Some(format!("{}: {}", reported.name(s), say::why_not(session_why_not(s)?))))
-            .collect(),
+        [only] => reason(only).into_iter().collect(),
+        several => {
+            several.iter().filter_map(|s| Some(format!("{}: {}", reported.name(s), reason(s)?))).collect()
+        }
     };
     if !reasons.is_empty() {
         return Some(reasons.join("; "));
@@ -141,6 +140,21 @@ pub fn why_not(reported: &Reported<'_>) -> Option<String> {
 
 fn session_why_not(session: &SessionUptake) -> Option<&WhyNot> {
     session.answer.as_ref().err()
+}
+
+/// Why a session has no number; a stretch that was left out for a jump could have been what is missing.
+fn reason(session: &SessionUptake) -> Option<String> {
+    let why = session_why_not(session)?;
+    let mut reason = say::why_not(why);
+    let missed = matches!(why, WhyNot::NoVolumeOneInjection | WhyNot::TooShort { .. } | WhyNot::Unbounded);
+    let jump = session.left_out.iter().find(|s| matches!(s.why, StretchWhy::UnmarkedJump(_)));
+    if let (true, Some(stretch)) = (missed, jump) {
+        reason.push_str(&format!(
+            "; {} is left out because PO2 jumps there and no event says why: an event that does may bring it back",
+            from_to(stretch.from_s, stretch.to_s)
+        ));
+    }
+    Some(reason)
 }
 
 /// What to know before trusting the number, a sentence each, with the sessions it holds for where there are several;

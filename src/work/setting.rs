@@ -16,6 +16,7 @@ use crate::book::Book;
 use crate::clock;
 use crate::entry::{Diluent, Diver, FirstStage, Id, Purity};
 use crate::gas::Water;
+use crate::plot::{SettingPlot, setting_plot};
 use crate::quantity::{
     AbsolutePressure, GaugePressure, Length, PressureDifference, Share, StpdFlow, Temperature,
     TemperatureDifference, Uncertain, Volume,
@@ -277,10 +278,8 @@ pub fn make_setting(request: &SettingRequest) -> Result<SettingOutcome, WorkErro
         write_whole(path, sheet::text(&outcome.reported(&named), &request.units).as_bytes())?;
     }
     if let (Some(kind), Some(path)) = (kind, &request.plot) {
-        // WAIT
-        let _ = kind;
-        let _ = write_plot;
-        let _ = path;
+        let plot = SettingPlot { units: request.units, ..SettingPlot::default() };
+        write_plot(&setting_plot(&outcome.setting, &plot), kind, path)?;
     }
     Ok(outcome)
 }
@@ -346,8 +345,10 @@ fn volume_of_sessions(uptake: &Uptake) -> Option<Uncertain<Volume>> {
     let (place, _) = uptake.lowest()?;
     let last = place.sessions.iter().rev().find_map(|session| session.answer.as_ref().ok())?;
     let litres = |l: f64| Volume::from_m3(l * 1e-3);
+    // To a tenth of a litre, which is less than anybody knows.
+    let rounded = |l: f64| libm::round(10.0 * l) / 10.0;
     let volume = last.loop_volume;
-    Some(Uncertain { value: litres(volume.litres), expanded: Some(litres(2.0 * volume.u)) })
+    Some(Uncertain { value: litres(rounded(volume.litres)), expanded: Some(litres(2.0 * volume.u)) })
 }
 
 fn session_words(gathered: &GatheredSession) -> String {

@@ -168,7 +168,13 @@ fn legend(
         entries.push((Sign::Cell(cell.index), text.clone()));
     }
     if !seen.fits.is_empty() {
-        entries.push((Sign::Fit, "segment with its fitted slope".to_owned()));
+        let topped = |fit: &super::seen::Fit| fit.segment.kind == crate::uptake::Kind::Topped;
+        let text = if seen.fits.iter().all(topped) {
+            "segment, from its first level to its last"
+        } else {
+            "segment with its fitted slope"
+        };
+        entries.push((Sign::Fit, text.to_owned()));
     }
     for reason in Reason::ALL {
         if seen.stretches.iter().any(|s| s.reason == reason) {
