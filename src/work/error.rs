@@ -110,6 +110,17 @@ pub enum WorkError {
     /// A diver without a session that counts.
     #[error("{0} has no session in the book that counts: session import FILE.toml, or session enter {0}")]
     NoSessionOf(Id),
+    /// Readings that two sessions hold, of which each says something else.
+    #[error(
+        "{one} and {other} hold the same readings and say different things about them, so they cannot count as two \
+         sessions: name one of them, or leave the other out (session leave-out)"
+    )]
+    SameReadings {
+        /// One session.
+        one: String,
+        /// The other.
+        other: String,
+    },
     /// An orifice that is not in the register.
     #[error(
         "there is no orifice {0} in the book: orifice list shows those there are; a run file has a slash or ends in .toml"
@@ -249,6 +260,7 @@ impl WorkError {
             | Self::Stretch { .. }
             | Self::NoSessionNumber(_)
             | Self::NoSessionOf(_)
+            | Self::SameReadings { .. }
             | Self::NoOrifice(_)
             | Self::NoRunOf(_)
             | Self::OrificeTwice(_)

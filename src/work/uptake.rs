@@ -10,7 +10,9 @@ use super::shelf::Shelf;
 use super::{ExitStatus, WorkError};
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
 use crate::book::Book;
-use crate::entry::{Event, LineReference, Place, Session, SessionLeftOut, SessionNumber, What};
+use crate::entry::{
+    CellSignal, Event, LineReference, Place, Session, SessionLeftOut, SessionNumber, SessionReadings, What,
+};
 use crate::plot::{SessionPlot, session_plot};
 use crate::record::read_session;
 use crate::report::Units;
@@ -122,7 +124,8 @@ pub fn session_uptake(request: &UptakeRequest) -> Result<UptakeOutcome, WorkErro
     if let (Some(kind), Some(path)) = (kind, &request.plot) {
         let mut drawn = Vec::new();
         for (gathered, svg) in drawings(&outcome, &request.units) {
-            let at = if outcome.sessions.len() == 1 { path.clone() } else { beside(path, &gathered.name) };
+            let at =
+                if outcome.sessions.len() == 1 { path.clone() } else { beside(path, &gathered.name, &drawn) };
             drawn.push((at, svg));
         }
         for (at, svg) in &drawn {
@@ -151,14 +154,18 @@ fn drawings<'a>(outcome: &'a UptakeOutcome, units: &Units) -> Vec<(&'a GatheredS
     outcome.sessions.iter().enumerate().filter_map(|(index, gathered)| of(index, gathered)).collect()
 }
 
-/// `plot.svg` of a session named `S0001` or `data/couch-1.toml`: `plot-S0001.svg`, `plot-couch-1.svg`.
-fn beside(path: &Path, name: &str) -> PathBuf {
+/// `plot.svg` of a session named `S0001` or `data/couch-1.toml`: `plot-S0001.svg`, `plot-couch-1.svg`; `plot-couch-1-2.svg`
+/// where another folder's `couch-1.toml` was drawn before.
+fn beside(path: &Path, name: &str, drawn: &[(PathBuf, String)]) -> PathBuf {
     let stem = Path::new(name).file_stem().unwrap_or_default().to_string_lossy();
     let plain: String =
         stem.chars().map(|c| if c.is_alphanumeric() || "-_.".contains(c) { c } else { '-' }).collect();
     let own = path.file_stem().unwrap_or_default().to_string_lossy();
     let ending = path.extension().unwrap_or_default().to_string_lossy();
-    path.with_file_name(format!("{own}-{plain}.{ending}"))
+    let taken = |at: &PathBuf| drawn.iter().any(|(other, _)| other == at);
+    let first = path.with_file_name(format!("{own}-{plain}.{ending}"));
+    let others = (2..).map(|n: u64| path.with_file_name(format!("{own}-{plain}-{n}.{ending}")));
+    std::iter::once(first.clone()).chain(others).find(|at| !taken(at)).unwrap_or(first)
 }
 
 /// Works out the uptake of sessions that were gathered.
@@ -202,7 +209,8 @@ pub fn gather(
     let mut opened: Option<Book> = None;
     for of in of {
         if names_a_file(of) {
-            sessions.push(from_file(Path::new(of), book, notes)?);
+            let gathered = from_file(Path::new(of), book, notes)?;
+            take(&mut sessions, gathered, notes)?;
             continue;
         }
         let opened = match &opened {
@@ -225,14 +233,53 @@ pub fn gather(
             }
         };
         for number in numbers {
-            let gathered = from_book(opened, number, notes)?;
-            // The same session named twice is one observation, not two.
-            if !sessions.iter().any(|other| other.name == gathered.name) {
-                sessions.push(gathered);
+            if sessions.iter().all(|other| other.name != number.to_string()) {
+                let gathered = from_book(opened, number, notes)?;
+                take(&mut sessions, gathered, notes)?;
             }
         }
     }
     Ok(sessions)
+}
+
+/// Takes a session in, unless it is there. The same readings are one observation, however often they are named; counted
+/// twice they would make the uptake look surer than it is.
+fn take(
+    sessions: &mut Vec<GatheredSession>,
+    gathered: GatheredSession,
+    notes: &mut Vec<String>,
+) -> Result<(), WorkError> {
+    let same = |other: &&GatheredSession| {
+        let (a, b) = (&other.session, &gathered.session);
+        a.taken == b.taken && same_readings(&a.readings, &b.readings)
+    };
+    let Some(twin) = sessions.iter().find(same) else {
+        sessions.push(gathered);
+        return Ok(());
+    };
+    let said = |session: &Session| Session { readings: SessionReadings::default(), ..session.clone() };
+    let line = |of: &GatheredSession| of.line.as_ref().map(|found| found.line().clone());
+    if said(&twin.session) != said(&gathered.session) || line(twin) != line(&gathered) {
+        return Err(WorkError::SameReadings { one: twin.name.clone(), other: gathered.name });
+    }
+    notes.push(format!("{} is the same session as {} and counts once", gathered.name, twin.name));
+    Ok(())
+}
+
+fn shown(signal: &CellSignal) -> &[f64] {
+    match signal {
+        CellSignal::Bar(column) | CellSignal::Volts { readings: column, .. } => column,
+    }
+}
+
+/// Whether what was read is the same to the last bit, whatever was made of it.
+fn same_readings(a: &SessionReadings, b: &SessionReadings) -> bool {
+    let same = |(a, b): (&f64, &f64)| a.to_bits() == b.to_bits() || (a.is_nan() && b.is_nan());
+    let columns = |a: &[f64], b: &[f64]| a.len() == b.len() && a.iter().zip(b).all(same);
+    let cells = || a.cells.iter().zip(&b.cells);
+    columns(&a.time_s, &b.time_s)
+        && a.cells.len() == b.cells.len()
+        && cells().all(|(a, b)| columns(shown(&a.signal), shown(&b.signal)))
 }
 
 /// A session of a file, with its line from the run file it names, or from the book.
