@@ -83,7 +83,15 @@ pub(super) fn injected(reported: &Reported<'_>, described: &Described, units: &U
     };
     let richest = short(at.least_shortfall, share_down);
     let leanest = short(at.largest_shortfall, share_up);
-    lines.push(("shortfall", format!("{nominal}; {richest} at its richest, {leanest} at its leanest")));
+    let ends = format!("{richest} at its richest, {leanest} at its leanest");
+    lines.push((
+        "shortfall",
+        if used.first_stage == FirstStageKind::Compensated {
+            format!("{nominal}, at the surface; at {}: {ends}", max_depth(reported.setting, units))
+        } else {
+            format!("{nominal}; {ends}")
+        },
+    ));
     lines.push((
         "overfeeding",
         format!(
@@ -255,7 +263,7 @@ pub(super) fn depth_table(
     });
     let q = units.flow_symbol();
     let (mut heads, mut symbols) =
-        (vec!["depth", "ambient", "injects", "at least"], vec![depth_symbol(units), "bar abs", q, q]);
+        (vec!["depth", "ambient", "injects", "low b"], vec![depth_symbol(units), "bar abs", q, q]);
     if compensated {
         heads.push("chance");
         symbols.push("");

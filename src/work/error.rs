@@ -78,6 +78,27 @@ pub enum WorkError {
         /// What is wrong.
         error: UptakeError,
     },
+    /// Two sessions of one diver at one time.
+    #[error(
+        "{0} and {1} overlap in time, and one diver cannot rest twice at once: correct \"taken\" of one, name only one of \
+         them, or leave one out (session leave-out)"
+    )]
+    Overlap(String, String),
+    /// An intermediate pressure that the bench run says nothing about.
+    #[error(
+        "{session}: an IP of {ip_bar_gauge} bar gauge is beyond what the bench run of {orifice} measured ({:.1} to {:.1} \
+         bar gauge): correct it, measure the orifice there, or give the flow", span_bar_gauge.0, span_bar_gauge.1
+    )]
+    IpOutsideBench {
+        /// The session's number or file.
+        session: String,
+        /// The pressure.
+        ip_bar_gauge: f64,
+        /// The orifice.
+        orifice: Id,
+        /// What was measured.
+        span_bar_gauge: (f64, f64),
+    },
     /// A setting is asked for wrongly.
     #[error(transparent)]
     Setting(SettingError),
@@ -255,6 +276,8 @@ impl WorkError {
             | Self::Enter(_)
             | Self::NoRunNumber(_)
             | Self::Uptake { .. }
+            | Self::Overlap(..)
+            | Self::IpOutsideBench { .. }
             | Self::Setting(_)
             | Self::SessionTime(_)
             | Self::Stretch { .. }

@@ -11,15 +11,21 @@ use super::{ExitStatus, WorkError};
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
 use crate::book::Book;
 use crate::entry::{
-    CellSignal, Event, LineReference, Place, Session, SessionLeftOut, SessionNumber, SessionReadings, What,
+    CellSignal, Diver, Event, Injection, LineReference, Place, Session, SessionLeftOut, SessionNumber,
+    SessionReadings, What,
 };
 use crate::plot::{SessionPlot, session_plot};
+use crate::quantity::AbsolutePressure;
 use crate::record::read_session;
 use crate::report::Units;
 use crate::report::session_uptake::{Named, Reported};
 use crate::stats::monte_carlo::Plan;
 use crate::uptake::{MonteCarlo, SessionInput, Uptake, uptake, uptake_by_monte_carlo};
 
+/// An IP may lie so far beyond the pressures of the bench run, as a factor of the absolute pressure.
+const BEYOND_BENCH: f64 = 1.1;
+/// Absolute pressures this near the ends of the bench run count as measured, bar: barometers differ.
+const SPAN_TOLERANCE_BAR: f64 = 0.1;
 /// Seed of the Monte Carlo check; stored with its result.
 const SEED: u64 = 101;
 
@@ -239,6 +245,7 @@ pub fn gather(
             }
         }
     }
+    no_overlap(&sessions)?;
     Ok(sessions)
 }
 
@@ -303,7 +310,7 @@ fn from_file(
             Some(lines::from_book_at(&opened, orifice, session.taken)?)
         }
     };
-    note_line(&name, line.as_ref(), notes);
+    note_line(&name, &session, line.as_ref(), notes)?;
     Ok(GatheredSession { name, session, line, left_out: Vec::new() })
 }
 
@@ -326,16 +333,69 @@ fn from_book(
         }
         (Some(LineReference::RunFile(_)) | None, None) => None,
     };
-    note_line(&name, line.as_ref(), notes);
+    if session.mass.is_none() {
+        session.mass = book.entry::<Diver>(&session.diver)?.and_then(|found| found.entry.mass);
+    }
+    note_line(&name, &session, line.as_ref(), notes)?;
     Ok(GatheredSession { name, session, line, left_out: kept.left_out })
 }
 
-/// What is to be said of a session's line; several sessions through one line say it once.
-fn note_line(session: &str, line: Option<&FoundLine>, notes: &mut Vec<String>) {
-    for note in line.iter().flat_map(|line| &line.notes) {
-        let said = format!("{session}: {note}");
+/// What is to be said of a session's line, and whether it says anything at the pressures it is asked at.
+fn note_line(
+    name: &str,
+    session: &Session,
+    line: Option<&FoundLine>,
+    notes: &mut Vec<String>,
+) -> Result<(), WorkError> {
+    let Some(line) = line else { return Ok(()) };
+    for note in line.notes.iter().cloned().chain(line.doubts(session.taken)) {
+        let said = format!("{name}: {note}");
         if !notes.contains(&said) {
             notes.push(said);
         }
     }
+    let barometer = session.conditions.barometer.value.unwrap_or(AbsolutePressure::STANDARD_ATMOSPHERE);
+    let (low, high) = line.input.span_bar_abs;
+    for event in &session.events {
+        let What::Injection(Injection::Ip(ip)) = event.what else { continue };
+        let p1_bar = ip.value.above(barometer).as_bar();
+        // A tenth beyond the bench is where depths end too; further out nothing says that the line is one.
+        if p1_bar < low / BEYOND_BENCH || p1_bar > high * BEYOND_BENCH {
+            let span_bar_gauge = (low - barometer.as_bar(), high - barometer.as_bar());
+            return Err(WorkError::IpOutsideBench {
+                session: name.to_owned(),
+                ip_bar_gauge: ip.value.as_bar(),
+                orifice: line.input.id.clone(),
+                span_bar_gauge,
+            });
+        }
+        if p1_bar < low - SPAN_TOLERANCE_BAR || p1_bar > high + SPAN_TOLERANCE_BAR {
+            notes.push(format!(
+                "{name}: the IP of {} bar lies outside what the bench run of {} measured: the line is stretched",
+                ip.value.as_bar(),
+                line.input.id
+            ));
+        }
+    }
+    Ok(())
+}
+
+/// One diver cannot rest twice at once: of two sessions that overlap in time one has a wrong date, or both are the same.
+fn no_overlap(sessions: &[GatheredSession]) -> Result<(), WorkError> {
+    let span = |gathered: &GatheredSession| {
+        let times = gathered.session.readings.time_s.iter().copied().filter(|t| t.is_finite());
+        let begun = gathered.session.taken.timestamp() as f64;
+        let (first, last) =
+            times.fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), t| (low.min(t), high.max(t)));
+        (begun + first, begun + last)
+    };
+    for (i, one) in sessions.iter().enumerate() {
+        for other in &sessions[i + 1..] {
+            let (a, b) = (span(one), span(other));
+            if a.0 < b.1 && b.0 < a.1 {
+                return Err(WorkError::Overlap(one.name.clone(), other.name.clone()));
+            }
+        }
+    }
+    Ok(())
 }
