@@ -303,7 +303,8 @@ fn from_file(
             Some(lines::from_book_at(&opened, orifice, session.taken)?)
         }
     };
-    note_line(&name, line.as_ref(), notes);
+    let of_file = matches!(session.line, Some(LineReference::RunFile(_)));
+    note_line((!of_file).then_some(&name), line.as_ref(), notes);
     Ok(GatheredSession { name, session, line, left_out: Vec::new() })
 }
 
@@ -326,14 +327,15 @@ fn from_book(
         }
         (Some(LineReference::RunFile(_)) | None, None) => None,
     };
-    note_line(&name, line.as_ref(), notes);
+    note_line(Some(&name), line.as_ref(), notes);
     Ok(GatheredSession { name, session, line, left_out: kept.left_out })
 }
 
-/// What is to be said of a session's line; several sessions through one line say it once.
-fn note_line(session: &str, line: Option<&FoundLine>, notes: &mut Vec<String>) {
+/// What is to be said of a session's line, behind the session's name unless it names a file; several sessions through one
+/// line say it once.
+fn note_line(session: Option<&String>, line: Option<&FoundLine>, notes: &mut Vec<String>) {
     for note in line.iter().flat_map(|line| &line.notes) {
-        let said = format!("{session}: {note}");
+        let said = session.map_or_else(|| note.clone(), |session| format!("{session}: {note}"));
         if !notes.contains(&said) {
             notes.push(said);
         }
