@@ -55,7 +55,7 @@ fn an_import_begins_the_book_and_the_same_bytes_again_add_nothing() {
     write(&desk, "held", &stated(Kind::Held, 1));
     let said = desk.call(&["session", "import", "held.toml"]);
     assert_eq!(said.status, 0, "{said:?}");
-    assert!(said.stdout.contains("S0001  D-07 imported from held.toml"), "{said:?}");
+    assert!(said.stdout.contains("S0001 D-07 imported from held.toml"), "{said:?}");
     assert!(said.stdout.contains("the diver is new and was created"), "{said:?}");
     assert!(said.stderr.contains("a new book was begun"), "{said:?}");
     assert_eq!(desk.json(&["diver", "show", "D-07"])["entry"]["id"], "D-07");
@@ -145,7 +145,7 @@ fn list_and_show_say_what_was_recorded() {
         &["session", "diver", "place", "loop", "taken", "minutes", "cells", "readings", "left_out_whole"],
     );
     assert_eq!((&list[1]["taken"], &list[1]["cells"]), (&json!("2026-11-24T18:30:00+11:00"), &json!(3)));
-    assert_eq!((&list[2]["loop"], &list[2]["minutes"]), (&json!("sealed"), &json!(20)));
+    assert_eq!((&list[2]["loop"], &list[2]["minutes"]), (&json!("sealed"), &json!(20.0)));
     assert_eq!(desk.json(&["session", "list", "d-08"]).as_array().unwrap().len(), 1);
     assert_eq!(desk.json(&["session", "list", "D-09"]), json!([]));
     let text = desk.done(&["session", "list", "--all"]);
@@ -250,6 +250,11 @@ fn a_file_a_number_and_a_diver_give_the_same_to_the_last_bit() {
     let of_files = desk.json(&files);
     near_the_truth(&of_files);
     assert!(!desk.book().exists(), "a file needs no book");
+    // What the run file leaves unsaid is said once, and of the run file.
+    assert_eq!(
+        of_files["notes"],
+        json!(["small.toml: no purity of the oxygen is stated: taken as 99.5 % ± 0.3 %"])
+    );
     desk.done(&["session", "import", "couch-1.toml", "couch-2.toml", "couch-3.toml"]);
     // The files are not needed any more.
     for name in ["small.toml", "small.csv", "couch-1.csv", "couch-2.csv", "couch-3.csv"] {
@@ -260,6 +265,9 @@ fn a_file_a_number_and_a_diver_give_the_same_to_the_last_bit() {
             session["session"].take();
             session["line"].take();
         }
+        // Both say it of sessions by their names.
+        json["warnings"].take();
+        json["notes"].take();
         json
     };
     let of_files = without_names(of_files);

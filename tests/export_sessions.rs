@@ -149,6 +149,8 @@ fn uptakes(desk: &Desk, book: &str, of: &[&str]) -> Value {
     for session in json["sessions"].as_array_mut().unwrap() {
         session["session"].take();
     }
+    // Both say it of sessions by their numbers, which an erased one shifts.
+    json["warnings"].take();
     json["notes"].take();
     json
 }

@@ -85,6 +85,10 @@ pub fn from_file(path: &Path, shelf: Option<&Shelf>, on: NaiveDate) -> Result<Fo
     };
     let (run, mut notes) = loaded;
     let analysis = of_run(&run, path, &mut notes)?;
+    // The file is named, so that nobody takes what is said of it for the session's.
+    for note in &mut notes {
+        note.insert_str(0, &format!("{}: ", path.display()));
+    }
     let standing = by_own_limits(&analysis);
     let judged = match standing {
         Standing::Accepted => "passed by its own limits",

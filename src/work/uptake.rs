@@ -310,7 +310,8 @@ fn from_file(
             Some(lines::from_book_at(&opened, orifice, session.taken)?)
         }
     };
-    note_line(&name, &session, line.as_ref(), notes)?;
+    let of_file = matches!(session.line, Some(LineReference::RunFile(_)));
+    note_line(&name, of_file, &session, line.as_ref(), notes)?;
     Ok(GatheredSession { name, session, line, left_out: Vec::new() })
 }
 
@@ -336,20 +337,22 @@ fn from_book(
     if session.mass.is_none() {
         session.mass = book.entry::<Diver>(&session.diver)?.and_then(|found| found.entry.mass);
     }
-    note_line(&name, &session, line.as_ref(), notes)?;
+    note_line(&name, false, &session, line.as_ref(), notes)?;
     Ok(GatheredSession { name, session, line, left_out: kept.left_out })
 }
 
-/// What is to be said of a session's line, and whether it says anything at the pressures it is asked at.
+/// What is to be said of a session's line, behind the session's name unless it names a run file itself, and whether it says anything at the pressures it is asked at.
 fn note_line(
     name: &str,
+    names_file: bool,
     session: &Session,
     line: Option<&FoundLine>,
     notes: &mut Vec<String>,
 ) -> Result<(), WorkError> {
     let Some(line) = line else { return Ok(()) };
-    for note in line.notes.iter().cloned().chain(line.doubts(session.taken)) {
-        let said = format!("{name}: {note}");
+    let of_run =
+        line.notes.iter().map(|note| if names_file { note.clone() } else { format!("{name}: {note}") });
+    for said in of_run.chain(line.doubts(session.taken).into_iter().map(|doubt| format!("{name}: {doubt}"))) {
         if !notes.contains(&said) {
             notes.push(said);
         }

@@ -20,7 +20,7 @@ pub struct Setting {
     #[arg(long, value_name = "ORIFICE|FILE.toml", required = true)]
     pub orifice: Vec<String>,
     /// A diver of the book, with all sessions
-    #[arg(long, value_name = "DIVER", conflicts_with = "session", required_unless_present = "session")]
+    #[arg(long, value_name = "DIVER", conflicts_with = "session")]
     pub diver: Option<String>,
     /// A session file, or a session of the book; repeat for several
     #[arg(long, value_name = "FILE.toml|SESSION")]
