@@ -1,8 +1,10 @@
 //! `instrument try` and `instrument ports` on the terminal.
 
+use std::io::{self, IsTerminal as _};
+
 use super::arguments::{Global, Try};
 use super::{Ended, note, say, shelf, tell_notes, units};
-use crate::report::{instrument_trial, port_list};
+use crate::report::{instrument_trial, port_list, typed};
 use crate::work::ExitStatus;
 use crate::work::instruments::{self, TrialRequest};
 
@@ -12,6 +14,12 @@ pub(super) fn try_instrument(arguments: &Try, global: &Global) -> Result<ExitSta
         lasts: arguments.lasts,
         book: global.book.as_ref().map(|book| book.display().to_string()),
     };
+    if io::stderr().is_terminal() {
+        note(&format!(
+            "listening for {}; where that does not do well, other settings are tried, which may take a minute or two …",
+            typed::span(arguments.lasts.as_s())
+        ));
+    }
     let mut notes = Vec::new();
     let trial = instruments::try_instrument(&shelf(global)?, &request, &mut notes)?;
     tell_notes(&notes);

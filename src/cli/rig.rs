@@ -1,6 +1,6 @@
 //! `rig` on the terminal: the list of its ports, then an answer to each line that is typed.
 
-use std::io::{self, BufRead as _, IsTerminal as _, Read as _, Write as _};
+use std::io::{self, BufRead as _, Read as _, Write as _};
 use std::sync::mpsc;
 
 use super::arguments::{Global, Rig};
@@ -35,7 +35,7 @@ pub(super) fn rig(arguments: &Rig, global: &Global) -> Result<ExitStatus, Ended>
     });
     let by = Attended {
         commands: &commands,
-        by_hand: io::stdin().is_terminal(),
+        anybody: !nowhere(),
         interrupted: &interrupted,
         lasts: arguments.lasts,
     };
@@ -83,4 +83,20 @@ fn next_line() -> Option<String> {
     let mut stdin = io::stdin().lock();
     let read = stdin.by_ref().take(LONGEST).read_until(b'\n', &mut line).ok()?;
     (read > 0).then(|| String::from_utf8_lossy(&line).into_owned())
+}
+
+/// Whether the input comes from nowhere: a null device, as of a program in the background.
+fn nowhere() -> bool {
+    #[cfg(unix)]
+    {
+        use std::fs::File;
+        use std::io::IsTerminal as _;
+        use std::os::fd::AsFd as _;
+        use std::os::unix::fs::FileTypeExt as _;
+        let stdin = io::stdin();
+        let device = stdin.as_fd().try_clone_to_owned().map(File::from).and_then(|file| file.metadata());
+        !stdin.is_terminal() && device.is_ok_and(|device| device.file_type().is_char_device())
+    }
+    #[cfg(not(unix))]
+    false
 }

@@ -7,7 +7,7 @@ use serde::Serialize;
 
 use super::json_text;
 use super::layout::wrapped;
-use super::typed::tame;
+use super::typed::{shell_word, tame};
 use crate::entry::{Instrument, Socket};
 
 /// First line of every profile that the rig writes.
@@ -85,10 +85,10 @@ pub fn begun(rig: &RigShown, commands: &str) -> String {
     text.push('\n');
     text.push_str(&list(rig));
     text.push('\n');
-    let folder = tame(&rig.folder);
+    let folder = tame(&shell_word(&rig.folder));
     let first = rig.instruments.first().map_or("", |one| one.profile.as_str());
     text.push_str(&format!("Register them:  ebbline instrument add {folder}/*.toml\n"));
-    text.push_str(&format!("Try one:        ebbline instrument try {}\n", tame(first)));
+    text.push_str(&format!("Try one:        ebbline instrument try {}\n", tame(&shell_word(first))));
     text.push_str(&format!("What was sent:  {}\n", tame(&rig.log)));
     text.push_str(&wrapped(
         "",

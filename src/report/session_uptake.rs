@@ -127,9 +127,10 @@ pub fn why_not(reported: &Reported<'_>) -> Option<String> {
     let reasons: Vec<String> = match worked.as_slice() {
         [] => Vec::new(),
         [only] => reason(only).into_iter().collect(),
-        several => {
-            several.iter().filter_map(|s| Some(format!("{}: {}", reported.name(s), reason(s)?))).collect()
-        }
+        several => several
+            .iter()
+            .filter_map(|s| Some(format!("{}: {}", reported.name(s), reason(s)?)))
+            .collect(),
     };
     if !reasons.is_empty() {
         return Some(reasons.join("; "));

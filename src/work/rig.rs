@@ -79,8 +79,8 @@ pub enum RigEnd {
 pub struct Attended<'a> {
     /// Lines that are typed; hung up at the end of them.
     pub commands: &'a Receiver<String>,
-    /// Whether a person types them, so that their end is the person's wish.
-    pub by_hand: bool,
+    /// Whether there is anybody who could give one: in the background there is not, and the end of the lines means nothing.
+    pub anybody: bool,
     /// Set when somebody interrupts.
     pub interrupted: &'a AtomicBool,
     /// How long it runs; without it until it is told to end.
@@ -143,7 +143,7 @@ impl Running {
     /// Does what is typed until it is over. `tell` says whether anybody still hears.
     pub fn attend(&self, by: &Attended<'_>, tell: &mut dyn FnMut(RigEvent<'_>) -> bool) -> RigEnd {
         let clock = Monotonic::start();
-        let (mut open, mut any) = (true, false);
+        let mut open = true;
         loop {
             let left_s = by.lasts.map_or(f64::INFINITY, |lasts| lasts.as_s() - clock.now_s());
             if by.interrupted.load(Ordering::Relaxed) {
@@ -164,16 +164,12 @@ impl Running {
             }
             match by.commands.recv_timeout(Duration::from_secs_f64(look_s)) {
                 Ok(line) => {
-                    any = true;
-                    match self.obey(&line, tell) {
-                        Some(end) => return end,
-                        None => continue,
+                    if let Some(end) = self.obey(&line, tell) {
+                        return end;
                     }
                 }
                 Err(RecvTimeoutError::Timeout) => {}
-                // Started without anybody to command it, in the background, it runs on; so it does for as long as it
-                // was told to.
-                Err(RecvTimeoutError::Disconnected) if by.lasts.is_none() && (any || by.by_hand) => {
+                Err(RecvTimeoutError::Disconnected) if by.anybody && by.lasts.is_none() => {
                     return RigEnd::NoMoreCommands;
                 }
                 Err(RecvTimeoutError::Disconnected) => open = false,

@@ -10,7 +10,7 @@ use crate::quantity::{Span, text};
 #[derive(Debug, Args)]
 #[command(
     after_help = "While it runs it takes commands, one a line: help lists them. It ends at quit, at Ctrl-C, after --for, or, \
-                        without --for, when no more commands can come; started without any, in the background, it runs on."
+                        without --for, when its input ends; in the background, with the null device as input, it runs on."
 )]
 pub struct Rig {
     /// The folder that is filled with profiles, the names of the ports, and the log of what was sent

@@ -3,7 +3,7 @@
 use super::{FIGURES, ProfileFrom, TrialShown};
 use crate::report::layout::{counted, wrapped};
 use crate::report::number::shortest;
-use crate::report::typed::tame;
+use crate::report::typed::{shell_word, tame};
 
 /// A key of the profile with another value.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -42,7 +42,7 @@ impl ChangeShown {
         let says = match self.key {
             "baud" => format!("the baud rate {}", self.to),
             "frame" => format!("the frame {}", self.to),
-            "protocol.ends" => format!("lines that end in {}", escaped(&self.to)),
+            "protocol.ends" => format!("lines that end in {}", tame(&self.to)),
             // It is long, and stands below.
             "protocol.pattern" => return "another pattern".to_owned(),
             "unit" => format!("the unit {}", self.to),
@@ -53,7 +53,7 @@ impl ChangeShown {
         match (self.key, &self.from) {
             (_, None) => format!("{says} instead of none"),
             ("protocol.word_order", Some(from)) => format!("{says} instead of the {}", end_of(from)),
-            (_, Some(from)) => format!("{says} instead of {}", escaped(from)),
+            (_, Some(from)) => format!("{says} instead of {}", tame(from)),
         }
     }
 
@@ -171,11 +171,6 @@ fn end_of(order: &str) -> &str {
     }
 }
 
-/// A text with escapes for what does not show.
-fn escaped(text: &str) -> String {
-    tame(text)
-}
-
 /// A text as a value of TOML: literal where it has backslashes, else with escapes for what does not show.
 fn toml_text(text: &str) -> String {
     let tamed = tame(text) == text;
@@ -197,13 +192,4 @@ fn toml_text(text: &str) -> String {
     }
     quoted.push('"');
     quoted
-}
-
-/// A word for a shell: as it is where nothing in it means anything there, else between single quotes.
-fn shell_word(text: &str) -> String {
-    let plain = |c: char| c.is_ascii_alphanumeric() || "_./%+:,@=-".contains(c);
-    if !text.is_empty() && text.chars().all(plain) {
-        return text.to_owned();
-    }
-    format!("'{}'", text.replace('\'', r"'\''"))
 }

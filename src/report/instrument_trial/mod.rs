@@ -114,13 +114,13 @@ pub fn summary(trial: &TrialShown) -> String {
     let (readings, faults) = (trial.readings.len() as u64, trial.fault_count() as u64);
     let listened = format!("{} s", fixed(trial.listened_s, 1));
     let came = counted(readings, "reading");
-    let rate = trial.rate_per_s.map_or_else(String::new, |rate| format!(", {} a second", shortest(rate, 3)));
+    let rate = trial.rate_per_s.map_or_else(String::new, |rate| format!(" ({} a second)", shortest(rate, 3)));
     let begins = match (readings, trial.bytes) {
         (0, 0) => format!("{id} said nothing in {listened}"),
         (0, bytes) => {
             format!("{id} gives no reading: {} in {listened}, none of them readable", counted(bytes, "byte"))
         }
-        _ if faults == 0 => format!("{id} reads: {came} in {listened}{rate}, no fault"),
+        _ if faults == 0 => format!("{id} reads: {came}{rate} and no fault in {listened}"),
         _ => format!("{id} reads with faults: {came}{rate} and {} in {listened}", counted(faults, "fault")),
     };
     let mut text = begins;
@@ -160,8 +160,10 @@ fn readings(trial: &TrialShown, units: &Units) -> String {
     let Some((low, high)) = trial.extremes() else { return String::new() };
     // The unit asked for stands beside the instrument's own, which is what its display shows.
     let also = |reading: &TrialReading| {
-        let unit = units.unit(reading.kind?);
-        (unit.symbol != reading.unit).then(|| (unit.from_si(reading.si), unit.symbol))
+        let kind = reading.kind?;
+        let unit = units.unit(kind);
+        (unit != kind.default_unit() && unit.symbol != reading.unit)
+            .then(|| (unit.from_si(reading.si), unit.symbol))
     };
     let count = trial.readings.len();
     let wanted = |place: usize| count <= SHOWN || place + 1 < SHOWN || place + 1 == count;
