@@ -67,7 +67,7 @@ pub fn minutes(session: &Session) -> f64 {
 #[must_use]
 pub fn text(rows: &[Row], more: bool) -> String {
     if rows.is_empty() {
-        return "No sessions in the book yet: session import FILE.toml, or session log.\n".to_owned();
+        return "No sessions in the book yet: session import FILE.toml, or session enter DIVER.\n".to_owned();
     }
     let cells: Vec<Vec<String>> = rows
         .iter()

@@ -349,11 +349,17 @@ fn fitting_sentence(fitting: Option<&FittingDiameter>, units: &Units) -> String 
                 .to_owned()
         },
         |fitting| {
+            // Where none fits at the bottom, the largest is the one that is named already.
+            let bottom = if fitting.largest_um > fitting.um {
+                format!("{} at its bottom", diameter(fitting.largest_um, units))
+            } else {
+                "none at its bottom".to_owned()
+            };
             format!(
-                "An effective diameter of {} would fit (from {} at the top of the range to {} at its bottom)",
+                "An effective diameter of {} would fit, set to {} ({} at the top of the range, {bottom})",
                 diameter(fitting.um, units),
+                ip_on_gauge(fitting.ip_bar_gauge, 0.1, units),
                 diameter(fitting.smallest_um, units),
-                diameter(fitting.largest_um, units)
             )
         },
     )

@@ -80,6 +80,27 @@ pub enum WorkError {
         /// What is wrong.
         error: UptakeError,
     },
+    /// Two sessions of one diver at one time.
+    #[error(
+        "{0} and {1} overlap in time, and one diver cannot rest twice at once: correct \"taken\" of one, name only one of \
+         them, or leave one out (session leave-out)"
+    )]
+    Overlap(String, String),
+    /// An intermediate pressure that the bench run says nothing about.
+    #[error(
+        "{session}: an IP of {ip_bar_gauge} bar gauge is beyond what the bench run of {orifice} measured ({:.1} to {:.1} \
+         bar gauge): correct it, measure the orifice there, or give the flow", span_bar_gauge.0, span_bar_gauge.1
+    )]
+    IpOutsideBench {
+        /// The session's number or file.
+        session: String,
+        /// The pressure.
+        ip_bar_gauge: f64,
+        /// The orifice.
+        orifice: Id,
+        /// What was measured.
+        span_bar_gauge: (f64, f64),
+    },
     /// A setting is asked for wrongly.
     #[error(transparent)]
     Setting(SettingError),
@@ -112,6 +133,17 @@ pub enum WorkError {
     /// A diver without a session that counts.
     #[error("{0} has no session in the book that counts: session import FILE.toml, or session enter {0}")]
     NoSessionOf(Id),
+    /// Readings that two sessions hold, of which each says something else.
+    #[error(
+        "{one} and {other} hold the same readings and say different things about them, so they cannot count as two \
+         sessions: name one of them, or leave the other out (session leave-out)"
+    )]
+    SameReadings {
+        /// One session.
+        one: String,
+        /// The other.
+        other: String,
+    },
     /// An orifice that is not in the register.
     #[error(
         "there is no orifice {0} in the book: orifice list shows those there are; a run file has a slash or ends in .toml"
@@ -269,11 +301,14 @@ impl WorkError {
             | Self::Enter(_)
             | Self::NoRunNumber(_)
             | Self::Uptake { .. }
+            | Self::Overlap(..)
+            | Self::IpOutsideBench { .. }
             | Self::Setting(_)
             | Self::SessionTime(_)
             | Self::Stretch { .. }
             | Self::NoSessionNumber(_)
             | Self::NoSessionOf(_)
+            | Self::SameReadings { .. }
             | Self::NoOrifice(_)
             | Self::NoRunOf(_)
             | Self::OrificeTwice(_)
