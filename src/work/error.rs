@@ -8,7 +8,9 @@ use crate::bench::BenchError;
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
 use crate::book::{BookError, NoHead};
 use crate::entry::{Id, IdError, SessionNumber};
+use crate::instrument::{OpenError, ProfileError};
 use crate::record::{RecordError, Refusal};
+use crate::rig::RigError;
 use crate::setting::SettingError;
 use crate::uptake::UptakeError;
 
@@ -248,6 +250,29 @@ pub enum WorkError {
         "too few of the {0} Monte Carlo trials converged for an interval: look at the checks of the run first"
     )]
     NoMonteCarlo(usize),
+    /// A profile that cannot be listened to.
+    #[error(transparent)]
+    Profile(#[from] ProfileError),
+    /// A port that does not open, or a system that does not list its ports.
+    #[error(transparent)]
+    Port(#[from] OpenError),
+    /// A time to listen outside the bounds.
+    #[error("--for takes 0.5 s to 1 h, not {0} s")]
+    ListenFor(f64),
+    /// The simulated bench.
+    #[error(transparent)]
+    Rig(#[from] RigError),
+    /// A step of the rig's script that is none.
+    #[error(
+        "\"{}\" is no step of a script: write pressure and time, with commas between steps, as in \"4 bar 45 s, 5 bar 45 s\"",
+        .0.escape_debug()
+    )]
+    RigScript(String),
+    /// No pseudo-terminals on this system.
+    #[error(
+        "the simulated bench needs pseudo-terminals, which this system does not have: it runs on Linux, macOS and other Unix systems"
+    )]
+    NoPseudoTerminals,
     /// A plot's file name has another ending.
     #[error("{0}: a plot is written as .svg or .png, name the file so")]
     PlotKind(PathBuf),
@@ -300,14 +325,21 @@ impl WorkError {
             | Self::NothingToDraw(_)
             | Self::NoHead(_)
             | Self::NotReplaced { .. }
+            | Self::Profile(_)
+            | Self::ListenFor(_)
+            | Self::RigScript(_)
             | Self::NoDataFolder
             | Self::Trials(_)
             | Self::NoMonteCarlo(_)
             | Self::PlotKind(_) => ExitStatus::Wrong,
             Self::Book(error) => book_status(error),
-            Self::StillHeld { .. } | Self::NoRandomNumbers | Self::Png(_) | Self::Write { .. } => {
-                ExitStatus::Failed
-            }
+            Self::Rig(error) => rig_status(error),
+            Self::Port(_)
+            | Self::NoPseudoTerminals
+            | Self::StillHeld { .. }
+            | Self::NoRandomNumbers
+            | Self::Png(_)
+            | Self::Write { .. } => ExitStatus::Failed,
         }
     }
 }
@@ -315,4 +347,14 @@ impl WorkError {
 /// What is asked of the book is wrong, or the book itself failed.
 const fn book_status(error: &BookError) -> ExitStatus {
     if error.is_of_the_call() { ExitStatus::Wrong } else { ExitStatus::Failed }
+}
+
+/// What is asked of the rig is wrong, or the system failed it.
+const fn rig_status(error: &RigError) -> ExitStatus {
+    match error {
+        RigError::Terminal { .. } | RigError::Link { .. } | RigError::Log { .. } | RigError::Stopped => {
+            ExitStatus::Failed
+        }
+        _ => ExitStatus::Wrong,
+    }
 }
