@@ -17,7 +17,10 @@ pub use registers::{
     ShopVerbs, ShowOrifice, ShowShop,
 };
 
-pub use session::{ImportSessions, LeaveOutSession, ListSessions, Sessions, ShowSession, UptakeOf};
+pub use session::{
+    EnterSession, ImportSessions, LeaveOutSession, ListSessions, ResumeSession, Sessions, ShowSession,
+    UptakeOf,
+};
 pub use setting::{Setting, Water};
 
 use crate::quantity::Shown;
