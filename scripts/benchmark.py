@@ -1,12 +1,12 @@
 #!/usr/bin/env python3
-"""Measures Ebbline against the same whole analysis in numpy and scipy, in one run.
+"""Measures Ebbline against the same whole analyses in numpy, scipy and statsmodels, in one run.
 
     scripts/benchmark.py            every figure, a few minutes
     scripts/benchmark.py --quick    fewer repetitions, for continuous integration
 
 First both programs analyse the same runs and must agree; then each figure is measured on both in turn, so that a machine
 that speeds up or slows down does so for both, and the table gives the medians, the ratio, and what is aimed at. Without
-numpy, scipy and pandas in the Python that runs this, a virtual environment is made in tests/benchmarks/.venv.
+numpy, scipy, pandas and statsmodels in the Python that runs this, a virtual environment is made in tests/benchmarks/.venv.
 
 Exit status: 0 both agree; 1 they do not, or, with --strict, an aim is missed; 2 something cannot be run.
 
@@ -18,7 +18,10 @@ What is measured:
 2. 100 000 Monte Carlo trials of the whole chain of that run, two threads on either side;
 3. `ebbline bench fit FILE`, the whole process from start to end; the alternative starts Python, imports numpy and
    scipy.special, reads the same file and analyses it;
-4. a time series of a million rows read and fitted, the whole process and its peak memory; the alternatives only read it.
+4. a time series of a million rows read and fitted, the whole process and its peak memory; the alternatives only read it;
+5. the resting uptake from an hour's session at 10 Hz with three cells and two injections, whole budget, in a process that is already
+   running (tests/benchmarks/uptake.rs, tests/benchmarks/uptake_alternative.py, which does a little less, as it says); then without an
+   alternative the same hour as a million rows, and 100 000 Monte Carlo trials of two sessions of 20 minutes.
 
 Reasons to doubt it: the machine's other work is in every figure (look at the range, and at how the ratio repeats); the
 alternative has been made fast by people who do not live from numpy; the peak memory the system tells of a finished process
@@ -40,10 +43,12 @@ import venv
 
 ROOT = pathlib.Path(__file__).resolve().parent.parent
 BENCHMARKS = ROOT / "tests" / "benchmarks"
-NEEDED = ("numpy", "scipy", "pandas")
+NEEDED = ("numpy", "scipy", "pandas", "statsmodels")
 ROWS = 1_000_000
 # Figure of ours in the JSON of `bench fit`, name in the alternative's summary, relative tolerance.
 TOLERANCE, TOLERANCE_OF_B = 1e-6, 1e-3
+# Of uptake, standard uncertainty and that of another day: both solve the same equations, sums in another order.
+TOLERANCE_OF_UPTAKE = 1e-8
 
 
 def main():
@@ -62,7 +67,7 @@ def main():
 
 def measure(arguments):
     python = interpreter()
-    program, analyse_bench, monte_carlo_bench = build()
+    program, analyse_bench, monte_carlo_bench, uptake_bench = build()
     alternative = [python, str(BENCHMARKS / "alternative.py")]
     points = BENCHMARKS / "twenty_points.toml"
 
@@ -93,6 +98,11 @@ def measure(arguments):
     )
     text_only = [process([*alternative, "loadtxt", str(series.with_suffix(".csv"))]) for _ in range(1 + rounds // 3)]
 
+    uptakes = measure_uptake(python, uptake_bench, rounds, arguments.quick)
+    if uptakes is None:
+        return 1
+    hour, hour_alternative, hour_unchecked, million, trials = uptakes
+
     odr = json.loads(run([*alternative, "odr", points]))
     rows = [
         Row("20-point run, whole budget, one core", "1/s", ours, stats, "numpy, scipy.stats", "ratio", 30.0, more=True),
@@ -102,6 +112,10 @@ def measure(arguments):
         Row("1 000 000 rows read and fitted, whole process", "s", seconds(long), seconds(long_pandas), "pandas, reading only", "ours", 1.0),
         Row("", "s", seconds(long), seconds(text_only), "numpy.loadtxt, reading only", None, None),
         Row("  its peak memory", "MB", megabytes(long), megabytes(long_pandas), "pandas, reading only", "ours", 200.0),
+        Row("uptake, one hour at 10 Hz, whole budget", "ms", hour, hour_alternative, "numpy, pandas, statsmodels", "ratio", 8.0),
+        Row("", "ms", hour, hour_unchecked, "without its checks of the readings", "ours", 30.0),
+        Row("uptake, the hour as 1 000 000 rows", "s", million, None, "", "ours", 1.0),
+        Row("uptake, 100 000 trials of two sessions", "s", trials, None, "", "ours", 1.0),
     ]
     print()
     print(f"{'':46} {'unit':>4} {'ours':>10} {'from':>10} {'to':>10} {'other':>10} {'ratio':>7}  aim        against")
@@ -118,17 +132,42 @@ def measure(arguments):
     return 1 if missed and arguments.strict else 0
 
 
+def measure_uptake(python, bench, rounds, quick):
+    """Milliseconds of both on the same hour (the alternative with its checks of the readings and without), seconds of a million rows and of
+    the trials; none where they do not agree."""
+    folder = ROOT / "target" / "benchmark" / "uptake"
+    run([bench, "--write", folder])
+    number = r"([\d.]+)"
+    hour, other, unchecked, million, trials = [], [], [], [], []
+    for _ in range(rounds):
+        printed = run([bench, "--bench", *(["--quick"] if quick else [])])
+        first, second, third = printed.splitlines()
+        hour.append(float(re.search(f"median {number} ms", first).group(1)))
+        million.append(float(re.search(f"median {number} s", second).group(1)))
+        trials.append(float(re.search(f"median {number} s", third).group(1)))
+        theirs = json.loads(run([python, BENCHMARKS / "uptake_alternative.py", folder, "3" if quick else "7"]))
+        other.append(1e3 * theirs["s"])
+        unchecked.append(1e3 * theirs["estimate_s"])
+    figures = re.search(f"uptake {number}, u {number}, another day {number}", first).groups()
+    off = [abs(float(got) / theirs[name] - 1.0) for got, name in zip(figures, ("uptake", "u", "next_u"))]
+    good = max(off) <= TOLERANCE_OF_UPTAKE
+    verdict = "agree" if good else "DO NOT AGREE"
+    say(f"uptake: both {verdict} on uptake, u and another day's u ({max(off):.1e} apart, {TOLERANCE_OF_UPTAKE:.0e} allowed)")
+    return (hour, other, unchecked, million, trials) if good else None
+
+
 class Row:
-    """One figure: ours, the alternative's, and what is aimed at."""
+    """One figure: ours, the alternative's if there is one, and what is aimed at."""
 
     def __init__(self, what, unit, ours, other, against, aim_of, aim, more=False):
         self.what, self.unit, self.against, self.more = what, unit, against, more
-        self.ours, self.other = statistics.median(ours), statistics.median(other)
+        self.ours = statistics.median(ours)
+        self.other = statistics.median(other) if other else None
         self.least, self.most = min(ours), max(ours)
         self.aim_of, self.aim = aim_of, aim
         # Neighbours in time are compared with one another.
-        pairs = [(a / b if more else b / a) for a, b in zip(ours, other)]
-        self.ratio = statistics.median(pairs)
+        pairs = [(a / b if more else b / a) for a, b in zip(ours, other or [])]
+        self.ratio = statistics.median(pairs) if pairs else None
 
     def met(self):
         if self.aim_of is None:
@@ -147,7 +186,9 @@ class Row:
 
 
 def short(value):
-    """Three significant digits, whole numbers whole."""
+    """Three significant digits, whole numbers whole; nothing for nothing."""
+    if value is None:
+        return ""
     if value >= 100.0:
         return f"{value:.0f}"
     return f"{value:.{2 - math.floor(math.log10(value))}f}"
@@ -170,16 +211,16 @@ def interpreter():
 
 
 def build():
-    """The release binary and the two benchmarks."""
+    """The release binary and the three benchmarks."""
     say("building")
     found = {}
-    for what in (["build", "--release", "--bin", "ebbline"], ["bench", "--no-run", "--bench", "analyse", "--bench", "monte_carlo"]):
+    for what in (["build", "--release", "--bin", "ebbline"], ["bench", "--no-run", "--bench", "analyse", "--bench", "monte_carlo", "--bench", "uptake"]):
         output = run(["cargo", *what, "--message-format=json"], cwd=ROOT)
         for line in output.splitlines():
             message = json.loads(line) if line.startswith("{") else {}
             if message.get("executable"):
                 found[message["target"]["name"]] = message["executable"]
-    return found["ebbline"], found["analyse"], found["monte_carlo"]
+    return found["ebbline"], found["analyse"], found["monte_carlo"], found["uptake"]
 
 
 def agree(program, alternative, file):

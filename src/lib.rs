@@ -57,5 +57,6 @@ pub mod clock;
 pub mod record;
 pub mod book;
 pub mod instrument;
+pub mod rig;
 pub mod work;
 pub mod cli;

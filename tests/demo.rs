@@ -32,7 +32,7 @@ fn the_book_of_the_invented_shop_shows_an_orifice_that_clogs_before_it_fails() {
     let desk = Desk::new("demo");
     let left: Value = serde_json::from_str(&desk.done(&["demo", "--into", "out", "--json"])).unwrap();
     let shop = &left["shop"];
-    assert_eq!(shop["orifices"], 12);
+    assert_eq!(shop["orifices"], 13);
     let book = shop["book"].as_str().unwrap();
     let said = |arguments: &[&str]| -> Value {
         let said = desk.call_on(book, &[arguments, &["--json"]].concat());

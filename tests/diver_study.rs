@@ -25,6 +25,8 @@ use simulator::{Hole, NOMINAL_IP_BAR, Papers, Random, Trial};
 const DIVERS: u64 = 1_200;
 /// Day-to-day spread of the uptake, relative, one standard deviation.
 const DAY: f64 = 0.05;
+/// Degrees of freedom of the stated spread.
+const DAY_DOF: u32 = 8;
 /// The stated chance.
 const CHANCE: f64 = 0.025;
 /// Ways to rest whose injections an orifice for this diver can give.
@@ -38,13 +40,15 @@ const KINDS: [Kind; 7] = [
     Kind::Topped,
 ];
 
-/// Where IP and water are among what is possible.
+/// Which divers and days.
 #[derive(Debug, Clone, Copy, PartialEq)]
-enum Upward {
-    /// Anywhere within their bounds.
-    Within,
-    /// At the bounds: the IP risen by its whole spread, water that is not known as cold as it gets.
-    AtBounds,
+enum Drawn {
+    /// Every day lies about the mean with 5 %; half of the divers set by the gauge of their sessions; IP and water of unknown temperature
+    /// are anywhere within their bounds.
+    Usual,
+    /// As the setting takes it to be: the spread from day to day is 5 % as well as eight degrees of freedom know it, the gauge is
+    /// another one, the IP has risen by its whole spread, and water of unknown temperature is as cold as it gets.
+    AsStated,
 }
 
 /// A diver with an orifice, sessions, and a day to dive.
@@ -68,9 +72,12 @@ struct Dive {
 }
 
 impl Diver {
-    fn draw(seed: u64, upward: Upward) -> Self {
+    fn draw(seed: u64, drawn: Drawn) -> Self {
         let mut dice = Dice::new(5_000_000 + seed);
         let usual = truth(&mut dice);
+        let as_stated = drawn == Drawn::AsStated;
+        let chi_squared: f64 = (0..DAY_DOF).map(|_| dice.normal(0.0, 1.0).powi(2)).sum();
+        let day = if as_stated { DAY * (f64::from(DAY_DOF) / chi_squared).sqrt() } else { DAY };
         let (trial, orifice) = bench(seed, usual.uptake, &mut dice);
         let hole = trial.hole;
         let gauge_expanded_bar = [0.2, 0.3, 0.5][(dice.bits() % 3) as usize];
@@ -83,32 +90,26 @@ impl Diver {
         };
         let days = 1 + dice.bits() % 3;
         let scenes = (0..days)
-            .map(|day| {
+            .map(|number| {
                 let mut today = usual.clone();
-                today.uptake = usual.uptake * (1.0 + dice.normal(0.0, DAY));
+                today.uptake = usual.uptake * (1.0 + dice.normal(0.0, day));
                 today.ambient_bar = dice.between(0.98, 1.03);
                 let kind = KINDS[(dice.bits() % KINDS.len() as u64) as usize];
                 let mut scene = scene_through(kind, today, &Extra::default(), &feed, &mut dice);
-                scene.session.taken += chrono::Duration::days(day as i64);
+                scene.session.taken += chrono::Duration::days(number as i64);
                 scene
             })
             .collect();
-        // Half of the divers set with the gauge of their sessions, the others with another one of the same papers.
-        let same_gauge = dice.bits().is_multiple_of(2);
+        let same_gauge = dice.bits().is_multiple_of(2) && !as_stated;
         let other_off_bar = dice.normal(0.0, gauge_expanded_bar / 2.0);
         let spread = dice.between(0.1, 0.3);
         let water = dice.bits().is_multiple_of(2).then(|| dice.between(4.0, 30.0));
         let gas_c = match water {
             Some(c) => c + dice.normal(0.0, 0.5),
-            None => match (upward, dice.between(4.0, 30.0)) {
-                (Upward::Within, c) => c,
-                (Upward::AtBounds, _) => 4.0,
-            },
+            None if as_stated => 4.0,
+            None => dice.between(4.0, 30.0),
         };
-        let rise = match (upward, dice.between(0.0, spread)) {
-            (Upward::Within, rise) => rise,
-            (Upward::AtBounds, _) => spread,
-        };
+        let rise = if as_stated { spread } else { dice.between(0.0, spread) };
         let bar = |bar| Some(PressureDifference::from_bar(bar));
         let options = SettingOptions {
             gauge_error: bar(gauge_expanded_bar),
@@ -123,7 +124,7 @@ impl Diver {
         };
         let gauge = if same_gauge { gauge_off_bar } else { other_off_bar };
         let dive = Dive {
-            uptake: usual.uptake * (1.0 + dice.normal(0.0, DAY)),
+            uptake: usual.uptake * (1.0 + dice.normal(0.0, day)),
             ip_off_bar: gauge + dice.normal(0.0, 0.05) + rise,
             ambient_bar: 1.013_25 + dice.normal(0.0, 0.015),
             gas_k: gas_c + 273.15,
@@ -185,34 +186,33 @@ fn bench(seed: u64, uptake: f64, dice: &mut Dice) -> (Trial, OrificeInput) {
 #[derive(Debug, Clone, Copy)]
 enum Way {
     /// As it should be.
-    Right = 0,
+    Right,
     /// The sessions' own uncertainty taken for another day's.
-    NoOtherDay = 1,
+    NoOtherDay,
     /// The sessions' line in litres of 20 °C.
-    At20Degrees = 2,
+    At20Degrees,
 }
 
-const WAYS: [Way; 3] = [Way::Right, Way::NoOtherDay, Way::At20Degrees];
+/// Injection over uptake on the day of the dive, or the name of the reason why there is no setting and the relative standard
+/// uncertainty of the uptake that it was to be set by.
+type Came = Result<f64, (String, f64)>;
 
-/// Injection over uptake on the day of the dive, or the name of the reason why there is no setting.
-type Came = Result<f64, String>;
-
-fn ways(diver: &Diver) -> [Came; 3] {
+fn came<const N: usize>(diver: &Diver, ways: [Way; N]) -> [Came; N] {
     let line = &diver.orifice.line;
     let scale = 293.15 / 273.15;
     let at_20_degrees =
         InjectionLine { intercept: scale * line.intercept, slope: scale * line.slope, ..line.clone() };
-    WAYS.map(|way| {
+    ways.map(|way| {
         let estimate = match way {
             Way::Right | Way::NoOtherDay => diver.estimate(line),
             Way::At20Degrees => diver.estimate(&at_20_degrees),
         };
-        let estimate = estimate.ok_or_else(|| "NoUptake".to_owned())?;
+        let estimate = estimate.ok_or_else(|| ("NoUptake".to_owned(), f64::INFINITY))?;
         let mut by = RestingUptake::from(&estimate);
         if matches!(way, Way::NoOtherDay) {
             (by.u_l_min, by.dof) = (estimate.u, estimate.dof);
         }
-        diver.set(&by).map_err(|why| name_of(&why))
+        diver.set(&by).map_err(|why| (name_of(&why), by.u_l_min / by.uptake_l_min))
     })
 }
 
@@ -228,18 +228,20 @@ struct Outcome {
     set: usize,
     overfed: usize,
     median_shortfall: f64,
-    refused: BTreeMap<String, usize>,
+    /// Refusals by their reason, each with the least relative standard uncertainty of the uptake among them.
+    refused: BTreeMap<String, (usize, f64)>,
 }
 
 impl Outcome {
-    fn of(came: &[[Came; 3]], way: Way) -> Self {
-        let came = || came.iter().map(|ways| &ways[way as usize]);
+    fn of<'a>(came: impl Iterator<Item = &'a Came> + Clone) -> Self {
+        let came = || came.clone();
         let mut shortfalls: Vec<f64> =
             came().filter_map(|c| c.as_ref().ok()).map(|share| 1.0 - share).collect();
         shortfalls.sort_by(f64::total_cmp);
         let mut refused = BTreeMap::new();
-        for why in came().filter_map(|c| c.as_ref().err()) {
-            *refused.entry(why.clone()).or_insert(0) += 1;
+        for (why, u) in came().filter_map(|c| c.as_ref().err()) {
+            let (count, least) = refused.entry(why.clone()).or_insert((0, f64::INFINITY));
+            (*count, *least) = (*count + 1, least.min(*u));
         }
         Self {
             set: shortfalls.len(),
@@ -267,35 +269,46 @@ fn most_by_chance(n: usize, p: f64) -> usize {
     count
 }
 
-/// Every diver, in every way; two threads.
-fn study(upward: Upward) -> [Outcome; 3] {
-    let half = |first: u64| -> Vec<[Came; 3]> {
-        (first..DIVERS).step_by(2).map(|seed| ways(&Diver::draw(seed, upward))).collect()
+/// Every diver, in some ways; two threads.
+fn study<const N: usize>(drawn: Drawn, ways: [Way; N]) -> [Outcome; N] {
+    let half = |first: u64| -> Vec<[Came; N]> {
+        (first..DIVERS).step_by(2).map(|seed| came(&Diver::draw(seed, drawn), ways)).collect()
     };
-    let came = std::thread::scope(|scope| {
+    let all = std::thread::scope(|scope| {
         let other = scope.spawn(|| half(1));
-        let mut came = half(0);
-        came.extend(other.join().unwrap());
-        came
+        let mut all = half(0);
+        all.extend(other.join().unwrap());
+        all
     });
-    WAYS.map(|way| {
-        let outcome = Outcome::of(&came, way);
-        println!("{upward:?}, {way:?}: {:.2} % overfed, {outcome:?}", 100.0 * outcome.share());
+    std::array::from_fn(|i| {
+        let outcome = Outcome::of(all.iter().map(|came| &came[i]));
+        println!("{drawn:?}, {:?}: {:.2} % overfed, {outcome:?}", ways[i], 100.0 * outcome.share());
         outcome
     })
 }
 
 #[test]
 fn on_another_day_overfeed_is_no_oftener_than_stated_and_the_rest_is_little() {
-    let [right, ..] = study(Upward::Within);
+    let [right, no_other_day] = study(Drawn::Usual, [Way::Right, Way::NoOtherDay]);
     assert!(right.overfed <= most_by_chance(right.set, CHANCE), "{right:?}");
     assert!(right.median_shortfall < 0.22, "{right:?}");
+    // Hardly any is refused: where little is known of the uptake, and where a thin plate is choked only at the high end of the run, so that
+    // the line begins at some 8 bar absolute.
+    assert!(right.set * 100 >= 98 * DIVERS as usize, "{right:?}");
+    for (why, (_, least_u)) in &right.refused {
+        let too_little_known = why == "ShortfallTooLarge" && *least_u > 0.07;
+        assert!(too_little_known || why == "NothingLowEnough", "not to be expected: {right:?}");
+    }
+    assert!(no_other_day.overfed > 2 * most_by_chance(no_other_day.set, CHANCE), "{no_other_day:?}");
 }
 
 #[test]
-fn at_the_upward_bounds_the_chance_still_holds_and_each_mistake_shows() {
-    let [right, no_other_day, at_20_degrees] = study(Upward::AtBounds);
+fn where_all_is_as_stated_the_chance_is_the_real_one_and_each_mistake_shows() {
+    let [right, no_other_day, at_20_degrees] =
+        study(Drawn::AsStated, [Way::Right, Way::NoOtherDay, Way::At20Degrees]);
     assert!(right.overfed <= most_by_chance(right.set, CHANCE), "{right:?}");
+    // Rounded down to a tenth of a bar it is a little less than stated; under four tenths of it would be timid.
+    assert!(right.share() >= 0.01, "{right:?}");
     for wrong in [no_other_day, at_20_degrees] {
         assert!(wrong.overfed > most_by_chance(wrong.set, CHANCE), "goes unnoticed: {wrong:?}");
         assert!(wrong.share() > 2.0 * right.share(), "is no worse: {wrong:?}");

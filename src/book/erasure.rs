@@ -7,8 +7,8 @@
 
 use rusqlite::{Connection, params};
 
-use super::body::{Body, FIRST_PERSONAL_KIND, place};
-use super::chain::Stamp;
+use super::body::{Body, FIRST_PERSONAL_KIND, Kind, Record, place};
+use super::chain::{Stamp, record_at};
 use super::error::{BookError, Inside};
 use super::lists::{CopyMade, copies, count};
 use super::open::Book;
@@ -86,6 +86,27 @@ impl Book {
     /// Those of every read.
     pub fn erasure_unfinished(&self) -> Result<bool, BookError> {
         self.read(|connection| Ok(count(connection, "SELECT count(*) FROM wiping")? > 0))
+    }
+
+    /// What was erased, in its order: when, why, and which sessions went.
+    ///
+    /// # Errors
+    /// Those of every read.
+    pub fn erasures(&self) -> Result<Vec<ErasureNote>, BookError> {
+        self.read(|connection| {
+            let sql = "SELECT seq FROM record WHERE kind = ? ORDER BY seq";
+            let mut statement = connection.prepare_cached(sql)?;
+            let seqs = statement.query_map([Kind::Erasure.number()], |row| row.get(0))?;
+            let mut notes = Vec::new();
+            for seq in seqs.collect::<Result<Vec<u64>, _>>()? {
+                if let Some(Record { at, body: Body::Erasure { erased, sessions, why } }) =
+                    record_at(connection, seq)?
+                {
+                    notes.push(ErasureNote { seq, at, why, erased, sessions });
+                }
+            }
+            Ok(notes)
+        })
     }
 
     /// Writes the file anew without what was deleted and empties its log; whether that could be done.

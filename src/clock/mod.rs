@@ -1,12 +1,16 @@
 //! The only caller of the system clock.
 //!
-//! Goes out: the time of day with its offset. A test hands a time of its own where a verb takes one; nothing below
+//! Goes out: the time of day with its offset, and seconds that never run back ([`Ticks`]). A test hands a time of its own where a verb takes one; nothing below
 //! this room asks for the time. Time zones are left out: what the program records itself is in UTC and says so, what
 //! a person wrote keeps the offset it was written with.
+
+mod ticks;
 
 use std::time::SystemTime;
 
 use chrono::{DateTime, FixedOffset, Utc};
+
+pub use ticks::{Monotonic, Ticks, Virtual};
 
 /// The time now, in UTC, to the millisecond.
 #[must_use]

@@ -7,6 +7,8 @@ use serde_json::json;
 
 use super::json_text;
 use super::layout::{counted, wrapped};
+use super::typed::tame;
+use crate::entry::SessionNumber;
 
 /// What a book holds.
 #[derive(Debug, Clone, PartialEq)]
@@ -21,10 +23,14 @@ pub struct BookInfo {
     pub records: u64,
     /// Its runs.
     pub runs: u64,
+    /// Its sessions, but for those that were erased.
+    pub sessions: u64,
     /// Names in each register, with the words for the register.
     pub entries: Vec<(&'static str, u64)>,
     /// Records whose content was erased.
     pub erased: u64,
+    /// What was erased, in its order.
+    pub erasures: Vec<Erasure>,
     /// Whether an erasure has yet to be carried through.
     pub erasure_unfinished: bool,
     /// Copies that were made: what, where, when.
@@ -43,6 +49,21 @@ impl BookInfo {
     }
 }
 
+/// Something that was erased, as the chain tells it.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Erasure {
+    /// Its place in the chain.
+    pub record: u64,
+    /// When.
+    pub at: DateTime<FixedOffset>,
+    /// Why.
+    pub why: String,
+    /// How many records.
+    pub records: usize,
+    /// The sessions among them; their numbers are never given again.
+    pub sessions: Vec<SessionNumber>,
+}
+
 /// What a check found.
 #[derive(Debug, Clone, PartialEq)]
 pub struct BookCheck {
@@ -52,8 +73,10 @@ pub struct BookCheck {
     pub records: u64,
     /// Runs among them.
     pub runs: u64,
-    /// Erasures: place in the chain, when, why, how many records.
-    pub erasures: Vec<(u64, DateTime<FixedOffset>, String, usize)>,
+    /// Sessions among them, but for those that were erased.
+    pub sessions: u64,
+    /// What was erased, in its order.
+    pub erasures: Vec<Erasure>,
     /// End of the chain, as far as it holds.
     pub head: String,
     /// Heads that were kept elsewhere and looked for.
@@ -82,6 +105,7 @@ pub fn info_text(info: &BookInfo) -> String {
     row("begun", &info.begun.to_rfc3339());
     row("records", &info.records.to_string());
     row("runs", &info.runs.to_string());
+    row("sessions", &info.sessions.to_string());
     for (register, count) in &info.entries {
         row(register, &count.to_string());
     }
@@ -95,6 +119,9 @@ pub fn info_text(info: &BookInfo) -> String {
         (n, true) => format!("{}, not yet carried through: give diver forget again", counted(n, "record")),
     };
     row("erased", &erased);
+    for erasure in &info.erasures {
+        row("", &erasure_line(erasure));
+    }
     for (kind, place, at) in &info.copies {
         row("copy", &format!("{kind} of {}: {place}", at.to_rfc3339()));
     }
@@ -115,8 +142,10 @@ pub fn info_json(info: &BookInfo) -> String {
         "begun": info.begun.to_rfc3339(),
         "records": info.records,
         "runs": info.runs,
+        "sessions": info.sessions,
         "entries": entries,
         "erased_records": info.erased,
+        "erasures": info.erasures.iter().map(erasure_value).collect::<Vec<_>>(),
         "erasure_unfinished": info.erasure_unfinished,
         "copies": info.copies.iter().map(copy).collect::<Vec<_>>(),
         "head": info.head,
@@ -131,7 +160,8 @@ pub fn check_line(check: &BookCheck) -> String {
     match &check.wrong {
         None => {
             let (records, runs) = (counted(check.records, "record"), counted(check.runs, "run"));
-            format!("holds: {records}, {runs}, from the first to the last")
+            let sessions = counted(check.sessions, "session");
+            format!("holds: {records}, {runs}, {sessions}, from the first to the last")
         }
         Some(wrong) => format!("does not hold: {wrong}"),
     }
@@ -160,10 +190,8 @@ pub fn check_text(check: &BookCheck) -> String {
             let _ = writeln!(text, "  The chain passes through the {n} heads that were given.");
         }
     }
-    for (place, at, why, records) in &check.erasures {
-        let erased = counted(*records as u64, "record");
-        let line = format!("record {place} of {} erased {erased}: {why}", at.to_rfc3339());
-        text.push_str(&wrapped("  ", "    ", &line));
+    for erasure in &check.erasures {
+        text.push_str(&wrapped("  ", "    ", &erasure_line(erasure)));
     }
     let _ = writeln!(text, "  head of the chain\n    {}", check.head);
     text
@@ -176,17 +204,63 @@ pub fn check_json(check: &BookCheck) -> String {
 }
 
 fn check_value(check: &BookCheck) -> serde_json::Value {
-    let erasure = |(place, at, why, records): &(u64, DateTime<FixedOffset>, String, usize)| json!({ "record": place, "at": at.to_rfc3339(), "why": why, "records": records });
     json!({
         "path": check.path,
         "holds": check.wrong.is_none(),
         "wrong": check.wrong,
         "records": check.records,
         "runs": check.runs,
-        "erasures": check.erasures.iter().map(erasure).collect::<Vec<_>>(),
+        "sessions": check.sessions,
+        "erasures": check.erasures.iter().map(erasure_value).collect::<Vec<_>>(),
         "heads_given": check.heads,
         "head": check.head,
     })
+}
+
+fn erasure_line(erasure: &Erasure) -> String {
+    let Erasure { record, at, why, records, sessions } = erasure;
+    let erased = counted(*records as u64, "record");
+    let sessions = match session_numbers(sessions) {
+        named if named.is_empty() => String::new(),
+        named => format!(", {named} among them"),
+    };
+    format!("record {record} of {} erased {erased}{sessions}: {}", at.to_rfc3339(), tame(why))
+}
+
+fn erasure_value(erasure: &Erasure) -> serde_json::Value {
+    json!({
+        "record": erasure.record,
+        "at": erasure.at.to_rfc3339(),
+        "why": erasure.why,
+        "records": erasure.records,
+        "sessions": erasure.sessions.iter().map(ToString::to_string).collect::<Vec<_>>(),
+    })
+}
+
+/// Sessions in a sentence: "session S0002", "sessions S0001 to S0003 and S0007"; nothing for none.
+#[must_use]
+pub fn session_numbers(sessions: &[SessionNumber]) -> String {
+    let mut stretches: Vec<(SessionNumber, SessionNumber)> = Vec::new();
+    for &number in sessions {
+        match stretches.last_mut() {
+            Some((_, last)) if last.get().checked_add(1) == Some(number.get()) => *last = number,
+            _ => stretches.push((number, number)),
+        }
+    }
+    let said: Vec<String> = stretches
+        .iter()
+        .flat_map(|&(first, last)| match last.get() - first.get() {
+            0 => vec![first.to_string()],
+            1 => vec![first.to_string(), last.to_string()],
+            _ => vec![format!("{first} to {last}")],
+        })
+        .collect();
+    let noun = if sessions.len() == 1 { "session" } else { "sessions" };
+    match said.as_slice() {
+        [] => String::new(),
+        [one] => format!("{noun} {one}"),
+        [most @ .., last] => format!("{noun} {} and {last}", most.join(", ")),
+    }
 }
 
 /// What was copied, as text.
@@ -215,5 +289,23 @@ fn size(bytes: u64) -> String {
         format!("{kibi:.1} KiB")
     } else {
         format!("{:.1} MiB", kibi / KILO)
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn sessions_are_named_as_a_person_says_them() {
+        let said = |numbers: &[u32]| {
+            let numbers: Vec<SessionNumber> = numbers.iter().filter_map(|n| SessionNumber::new(*n)).collect();
+            session_numbers(&numbers)
+        };
+        assert_eq!(said(&[]), "");
+        assert_eq!(said(&[2]), "session S0002");
+        assert_eq!(said(&[1, 2]), "sessions S0001 and S0002");
+        assert_eq!(said(&[1, 2, 3]), "sessions S0001 to S0003");
+        assert_eq!(said(&[1, 2, 3, 7, 9, 10]), "sessions S0001 to S0003, S0007, S0009 and S0010");
     }
 }

@@ -43,6 +43,7 @@ pub const SETTING_UNCOMPENSATED: [&str; 2] = [
 /// Beside a setting for a first stage that follows depth.
 pub const SETTING_COMPENSATED: &str = "This first stage follows depth, so the injection grows with every metre: the \
     setting holds down to its maximum depth and no deeper, and is leanest at the surface.";
+
 /// Beside a couch or pool session: before the next one is begun.
 pub const SESSION: [&str; 6] = [
     "Oxygen in the loop sinks while one rests on it, and one faints from that unwarned: never alone. A second person \

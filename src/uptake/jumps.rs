@@ -7,10 +7,12 @@
 use super::why_not::{Jump, Proposal};
 use crate::entry::LoopKept;
 
-/// Bins on each side whose medians are compared.
-const SIDE: usize = 4;
-/// Bins in between, for the cells' lag.
-const LAG: usize = 3;
+/// Seconds on each side whose medians are compared, and the bins that are enough for that.
+const SIDE_S: f64 = 20.0;
+const MOST_SIDE: usize = 4;
+/// Seconds in between, for the cells' lag, and the bins that are enough for that.
+const LAG_S: f64 = 15.0;
+const MOST_LAG: usize = 3;
 /// The trend is taken over this many reaches of the medians to each side.
 const AROUND: usize = 3;
 /// Least jump upward, and downward in a sealed loop, bar (common practice, no source).
@@ -24,12 +26,13 @@ const TIMES_NOISE: f64 = 6.0;
 /// Jumps in a stretch; `time_s` and `po2_bar` are its bins.
 pub(super) fn jumps(time_s: &[f64], po2_bar: &[f64], kept: LoopKept) -> Vec<Proposal> {
     let n = po2_bar.len();
-    let reach = 2 * SIDE + LAG;
+    let (side, lag) = spans(time_s);
+    let reach = 2 * side + lag;
     if n < reach + 2 || kept == LoopKept::Topped {
         return Vec::new();
     }
     let differences: Vec<f64> = (0..=n - reach)
-        .map(|k| median(&po2_bar[k + SIDE + LAG..k + reach]) - median(&po2_bar[k..k + SIDE]))
+        .map(|k| median(&po2_bar[k + side + lag..k + reach]) - median(&po2_bar[k..k + side]))
         .collect();
     // The trend at each place is the median of the differences around it, of which a jump is a minority; not of all, because
     // a loop that shrinks falls faster and faster, and that is no jump. Noise is the usual departure from the trend.
@@ -58,13 +61,25 @@ pub(super) fn jumps(time_s: &[f64], po2_bar: &[f64], kept: LoopKept) -> Vec<Prop
         let largest = (k..end).max_by(|&a, &b| sizes[a].total_cmp(&sizes[b])).unwrap_or(k);
         let change_bar = departures[largest];
         found.push(Proposal {
-            at_s: time_s[largest + SIDE],
+            at_s: time_s[largest + side],
             change_bar,
             looks_like: if change_bar > 0.0 { Jump::OxygenAdd } else { Jump::DiluentAdd },
         });
         k = largest + reach;
     }
     found
+}
+
+/// Bins on each side and between: fewer where readings were written down every half minute, so that a place is compared
+/// with what stood near it.
+fn spans(time_s: &[f64]) -> (usize, usize) {
+    let intervals: Vec<f64> = time_s.windows(2).map(|pair| pair[1] - pair[0]).collect();
+    if intervals.is_empty() {
+        return (MOST_SIDE, MOST_LAG);
+    }
+    let every_s = median(&intervals);
+    let bins = |seconds: f64, most: usize| (1..most).find(|n| *n as f64 * every_s >= seconds - 0.5 * every_s);
+    (bins(SIDE_S, MOST_SIDE).unwrap_or(MOST_SIDE), bins(LAG_S, MOST_LAG).unwrap_or(MOST_LAG))
 }
 
 fn median(values: &[f64]) -> f64 {
@@ -103,6 +118,20 @@ mod tests {
         let (time_s, po2) = stretch(60, -0.05);
         assert_eq!(jumps(&time_s, &po2, LoopKept::Held), []);
         assert_eq!(jumps(&time_s, &po2, LoopKept::Sealed)[0].looks_like, Jump::DiluentAdd);
+    }
+
+    #[test]
+    fn readings_of_two_decimals_every_half_minute_hide_a_real_jump_only_and_invent_none() {
+        // As written down from a handset: 0.66, 0.65, 0.63 …, with the roundings that come of it.
+        let time_s: Vec<f64> = (0..20).map(|i| 30.0 * f64::from(i)).collect();
+        let fall = |i: f64| libm::round(100.0 * (0.875 - 0.0172 * i)) / 100.0;
+        let steady: Vec<f64> = (0..20).map(|i| fall(f64::from(i))).collect();
+        assert_eq!(jumps(&time_s, &steady, LoopKept::Sealed), []);
+        let added: Vec<f64> =
+            steady.iter().enumerate().map(|(i, po2)| po2 + if i >= 9 { 0.07 } else { 0.0 }).collect();
+        let found = jumps(&time_s, &added, LoopKept::Sealed);
+        assert_eq!(found.len(), 1, "{found:?}");
+        assert!((found[0].at_s - 270.0).abs() <= 30.0, "{found:?}");
     }
 
     #[test]

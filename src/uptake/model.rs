@@ -123,7 +123,9 @@ impl Model {
     /// Bins whose readings all lie between two times.
     pub(super) fn bins_between(&self, from_s: f64, to_s: f64) -> Range<usize> {
         let start = self.ends_s.partition_point(|ends| ends.0 < from_s);
-        let end = self.ends_s.partition_point(|ends| ends.1 <= to_s);
+        // A reading at the very moment of an event may already show it; the last reading of all has no event after it.
+        let last_s = self.ends_s.last().map_or(f64::INFINITY, |ends| ends.1);
+        let end = self.ends_s.partition_point(|ends| ends.1 < to_s || (to_s >= last_s && ends.1 <= to_s));
         start..end.max(start)
     }
 

@@ -4,8 +4,8 @@ use std::path::Path;
 
 use super::shelf::{Shelf, stamped};
 use super::{ExitStatus, WorkError};
-use crate::book::{Check, CopyKind, Head};
-use crate::report::book::{Backup, BookCheck, BookInfo};
+use crate::book::{Check, CopyKind, ErasureNote, Head};
+use crate::report::book::{Backup, BookCheck, BookInfo, Erasure};
 
 /// What the book holds.
 ///
@@ -20,8 +20,10 @@ pub fn info(shelf: &Shelf) -> Result<BookInfo, WorkError> {
         begun: info.begun,
         records: info.head.seq,
         runs: info.runs,
+        sessions: info.sessions,
         entries: info.entries.iter().map(|(register, count)| (register.name(), *count)).collect(),
         erased: info.erased,
+        erasures: book.erasures()?.into_iter().map(erasure).collect(),
         erasure_unfinished: book.erasure_unfinished()?,
         copies: book.copies()?.into_iter().map(|copy| (said_copy(copy.kind), copy.place, copy.at)).collect(),
         head: info.head.to_string(),
@@ -75,13 +77,15 @@ fn shown(path: &Path, check: Check, heads: usize) -> BookCheck {
         path: path.display().to_string(),
         records: check.records,
         runs: check.runs,
-        erasures: check
-            .erasures
-            .into_iter()
-            .map(|erasure| (erasure.seq, erasure.at, erasure.why, erasure.erased.len()))
-            .collect(),
+        sessions: check.sessions,
+        erasures: check.erasures.into_iter().map(erasure).collect(),
         head: check.head.to_string(),
         heads,
         wrong: check.wrong.map(|wrong| wrong.to_string()),
     }
+}
+
+fn erasure(note: ErasureNote) -> Erasure {
+    let ErasureNote { seq, at, why, erased, sessions } = note;
+    Erasure { record: seq, at, why, records: erased.len(), sessions }
 }

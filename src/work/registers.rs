@@ -187,7 +187,10 @@ pub fn forget(shelf: &Shelf, diver: &str, why: &str) -> Result<ForgottenDiver, W
     let copies = |copies: Vec<CopyMade>| copies.into_iter().map(copy_named).collect::<Vec<_>>();
     match done {
         Forgotten::Done { records, copies: made } => {
-            Ok(ForgottenDiver { diver: diver.to_owned(), records, copies: copies(made) })
+            // The last erasure of the book is this one, unless this only finished an earlier one.
+            let last = if records == 0 { None } else { book.erasures()?.pop() };
+            let sessions = last.map(|erasure| erasure.sessions).unwrap_or_default();
+            Ok(ForgottenDiver { diver: diver.to_owned(), records, sessions, copies: copies(made) })
         }
         Forgotten::StillHeld { records, copies: made } => Err(WorkError::StillHeld {
             diver: diver.to_owned(),

@@ -93,7 +93,7 @@ fn read(path: &Path, shelf: &Shelf) -> Result<Read, WorkError> {
             Ok(found) => found,
             Err(refused) => return Err(registers.failure().unwrap_or_else(|| refused.into())),
         };
-        notes.extend(run.notes.iter().map(ToString::to_string));
+        notes.extend(run.notes.iter().map(|note| format!("{file}: {note}")));
         let source = LineSource {
             file_name: file.clone(),
             file: bytes.toml,

@@ -10,7 +10,7 @@ use super::super::instruments::share;
 use super::SessionRefusal;
 use super::around::not_negative;
 use super::cells::fraction;
-use super::spread::{expanded, given, to_k2};
+use super::spread::{expanded, given, stpd_wanted, to_k2};
 use crate::entry::Assumptions;
 use crate::quantity::text::{range, span, value};
 use crate::quantity::{
@@ -136,13 +136,14 @@ impl<'d> Reader<'_, 'd> {
 /// The lowest and the highest of a flow: "20 mL/min to 60 mL/min", or a list of the two, which may be equal.
 fn flows(field: &Field<'_>) -> Result<(StpdFlow, StpdFlow), RecordError> {
     if field.is_text() {
-        return field.quantity(range::<StpdFlow>);
+        return field.quantity(range::<StpdFlow>).map_err(stpd_wanted);
     }
     let items = field.items()?;
     let [low, high] = items.as_slice() else {
         return Err(field.refuse(SessionRefusal::NotTwoEnds.into()));
     };
-    let ends = (low.quantity(value::<StpdFlow>)?, high.quantity(value::<StpdFlow>)?);
+    let end = |item: &Field<'_>| item.quantity(value::<StpdFlow>).map_err(stpd_wanted);
+    let ends = (end(low)?, end(high)?);
     if ends.0.si() <= ends.1.si() {
         return Ok(ends);
     }

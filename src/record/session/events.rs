@@ -10,11 +10,11 @@ use super::super::document::{Field, Origin, Source, Table};
 use super::super::error::{Place, RecordError, Refusal};
 use super::super::write::{number, quoted};
 use super::moment::{Axis, elapsed_or_time};
-use super::spread::{given, to_k2};
+use super::spread::{flow, given, to_k2};
 use super::{LOOPS, SessionRefusal};
 use crate::entry::{Event, Injection, Metered, What};
 use crate::quantity::text::reference_conditions;
-use crate::quantity::{GaugePressure, StpdFlow, Volume};
+use crate::quantity::{GaugePressure, Volume};
 
 /// Every key of an event.
 const KEYS: [&str; 11] =
@@ -166,7 +166,7 @@ fn injection(table: &Table<'_>) -> Result<Injection, RecordError> {
         return Err(again.refuse(SessionRefusal::InjectionTwice.into()));
     }
     match key {
-        "flow" => Ok(Injection::Flow(given::<StpdFlow>(&field, to_k2(table)?)?)),
+        "flow" => Ok(Injection::Flow(flow(&field, to_k2(table)?)?)),
         "ip" => Ok(Injection::Ip(given::<GaugePressure>(&field, to_k2(table)?)?)),
         _ if field.flag()? => Ok(Injection::Off),
         _ => Err(field.refuse(SessionRefusal::OffIsFalse.into())),

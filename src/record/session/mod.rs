@@ -19,6 +19,7 @@ mod setup;
 
 use std::path::Path;
 
+use self::spread::{actual_volume, flow};
 use super::document::{Field, Source, Table};
 use super::error::{Fault, RecordError, Refusal};
 use super::note::{Loaded, Note};
@@ -29,8 +30,6 @@ use crate::entry::{
     Cylinder, Event, Injection, LeakTest, LineReference, LoopKept, Place, Session, SessionReadings, What,
 };
 use crate::gas::Species;
-use crate::quantity::text::uncertain;
-use crate::quantity::{StpdFlow, Uncertain, Volume};
 
 pub use events::event_from;
 pub use moment::{When, elapsed_or_time};
@@ -139,7 +138,7 @@ fn session(file: &Table<'_>, name: &str, files: Files<'_>) -> Result<Session, Re
     let place = file.required("place", "place = \"couch\"")?.word(&PLACES)?;
     let kept = file.required("loop", "loop = \"held\"")?.word(&LOOPS)?;
     let diluent = diluent(&file.required("diluent", "diluent = \"air\"")?)?;
-    let loop_volume = file.field("loop_volume").map(|field| volume(&field)).transpose()?;
+    let loop_volume = file.field("loop_volume").map(|field| actual_volume(&field, 1.0)).transpose()?;
     let leak_test = file.field("leak_test").map_or(Ok(LeakTest::NotDone), |field| leak_test(&field))?;
     let nose_clip = file.field("nose_clip").map(|field| field.flag()).transpose()?;
     let oxygen = match file.field("oxygen") {
@@ -198,12 +197,6 @@ fn session(file: &Table<'_>, name: &str, files: Files<'_>) -> Result<Session, Re
     })
 }
 
-fn volume(field: &Field<'_>) -> Result<Uncertain<Volume>, RecordError> {
-    let given = field.quantity(uncertain::<Volume>)?;
-    super::around::above_zero(field, given.value)?;
-    Ok(given)
-}
-
 /// "passed", or the leak that was measured.
 fn leak_test(field: &Field<'_>) -> Result<LeakTest, RecordError> {
     let text = field.quantity_text()?.trim();
@@ -215,7 +208,7 @@ fn leak_test(field: &Field<'_>) -> Result<LeakTest, RecordError> {
         let known = "passed, or the leak as in \"0.005 L/min\"".to_owned();
         return Err(field.refuse(Refusal::UnknownWord { word: text.to_owned(), known }));
     }
-    field.quantity(uncertain::<StpdFlow>).map(LeakTest::Measured)
+    flow(field, 1.0).map(LeakTest::Measured)
 }
 
 /// The run file or the orifice, if one is named.

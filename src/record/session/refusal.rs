@@ -24,6 +24,15 @@ pub enum SessionRefusal {
     )]
     CylinderNotTopped,
 
+    /// Litres counted at reference conditions that nobody stated.
+    #[error("{text:?} does not say at which temperature and pressure its litres are counted; give {wanted}")]
+    UnstatedLitres {
+        /// The text as written.
+        text: String,
+        /// What is wanted in its place.
+        wanted: &'static str,
+    },
+
     /// No cell.
     #[error("no cell is named; write for example cells = [ {{ column = \"c1\", unit = \"bar\" }} ]")]
     NoCells,

@@ -13,7 +13,8 @@ use super::super::registers::{diluent, positive};
 use super::super::run::{purity, read_toml};
 use super::super::write::quoted;
 use super::{
-    KEYS, LOOPS, PLACES, SessionRefusal, around, assumptions, leak_test, line, session_text, spread, volume,
+    KEYS, LOOPS, PLACES, SessionRefusal, actual_volume, around, assumptions, leak_test, line, session_text,
+    spread,
 };
 use crate::entry::{
     Assumptions, CellPapers, Cylinder, Diluent, Id, LeakTest, LineReference, LoopKept, Place, Purity, Rest,
@@ -113,7 +114,7 @@ fn setup(file: &Table<'_>) -> Result<SessionSetup, RecordError> {
         place: file.field("place").map(|field| field.word(&PLACES)).transpose()?,
         kept: file.field("loop").map(|field| field.word(&LOOPS)).transpose()?,
         diluent: file.field("diluent").map(|field| diluent(&field)).transpose()?,
-        loop_volume: file.field("loop_volume").map(|field| volume(&field)).transpose()?,
+        loop_volume: file.field("loop_volume").map(|field| actual_volume(&field, 1.0)).transpose()?,
         leak_test: file.field("leak_test").map(|field| leak_test(&field)).transpose()?,
         nose_clip: file.field("nose_clip").map(|field| field.flag()).transpose()?,
         oxygen: match file.field("oxygen") {

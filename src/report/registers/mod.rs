@@ -11,7 +11,7 @@ mod show;
 use chrono::{DateTime, FixedOffset, NaiveDate};
 
 use super::run_list::ListedRun;
-use crate::entry::{Acceptance, Diver, FirstStage, Instrument, Orifice, Shop};
+use crate::entry::{Acceptance, Diver, FirstStage, Instrument, Orifice, SessionNumber, Shop};
 
 pub use list::{json as list_json, text as list_text};
 pub use show::{copies_text, forgotten_json, forgotten_text, json, json_value, saved_json, saved_text, text};
@@ -131,6 +131,8 @@ pub struct ForgottenDiver {
     pub diver: String,
     /// Records whose content went; nought when an earlier erasure was finished.
     pub records: usize,
+    /// Sessions among what went.
+    pub sessions: Vec<SessionNumber>,
     /// Copies that it cannot reach.
     pub copies: Vec<CopyNamed>,
 }

@@ -4,6 +4,7 @@ use serde_json::{Value, json};
 
 use super::rows::rows;
 use super::{CopyNamed, ForgottenDiver, Revision, Saved, ShownEntry};
+use crate::report::book::session_numbers;
 use crate::report::layout::{columns, wrapped};
 use crate::report::{Units, json_text};
 
@@ -117,14 +118,18 @@ pub fn saved_json(saved: &[Saved]) -> String {
 /// What forgetting a diver did.
 #[must_use]
 pub fn forgotten_text(forgotten: &ForgottenDiver) -> String {
-    let ForgottenDiver { diver, records, copies } = forgotten;
+    let ForgottenDiver { diver, records, sessions, copies } = forgotten;
+    let among = match session_numbers(sessions) {
+        named if named.is_empty() => String::new(),
+        named => format!(", everything of {named} among them"),
+    };
     let what = match records {
         0 => format!("{diver}: the earlier erasure is finished; no byte is left in the book or its log"),
         1 => {
             format!("{diver} is forgotten: 1 record is erased, no byte of it is left in the book or its log")
         }
         n => format!(
-            "{diver} is forgotten: {n} records are erased, no byte of them is left in the book or its log"
+            "{diver} is forgotten: {n} records are erased{among}; no byte of them is left in the book or its log"
         ),
     };
     let mut text =
@@ -169,6 +174,7 @@ pub fn forgotten_json(forgotten: &ForgottenDiver) -> String {
     json_text(&json!({
         "diver": forgotten.diver,
         "records_erased": forgotten.records,
+        "sessions_erased": forgotten.sessions.iter().map(ToString::to_string).collect::<Vec<_>>(),
         "copies": forgotten.copies.iter().map(copy).collect::<Vec<_>>(),
     }))
 }

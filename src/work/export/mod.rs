@@ -1,7 +1,9 @@
 //! `book export`: everything in the book as TOML and CSV that `add` and `import` take back.
 //!
 //! One folder a kind. A run is written as the files it came from, to the byte, wherever those still say what the book
-//! says; a point that was left out since is added at the end of its TOML; else the run is written as it stands. CSV holds
+//! says; a point that was left out since is added at the end of its TOML; else the run is written as it stands. So is a
+//! session, with the run file its line comes from; what was left out of it stands beside them, with the command that leaves
+//! it out again, because a session file has no words for it. CSV holds
 //! numbers, times and fixed words and nothing a spreadsheet would run: what a person typed stands in TOML. The export is
 //! written beside its folder and put in place when it is whole.
 //!
@@ -11,6 +13,8 @@
 mod decisions;
 mod folder;
 mod run_files;
+mod session_files;
+mod sessions;
 mod spreadsheet;
 
 use std::collections::BTreeSet;
@@ -25,7 +29,7 @@ use super::shelf::{Shelf, meter_of, stamped, transducer_of};
 use crate::book::{Book, CopyKind, Kept, RunQuery, RunState};
 use crate::entry::{Acceptance, Diver, FirstStage, Id, Instrument, Meter, Orifice, RunNumber, Transducer};
 use crate::record::{RegisterEntry, Registers, write_register};
-use crate::report::export::{self as words, Exported, RunForm};
+use crate::report::export::{self as words, Exported, Form};
 use folder::Folder;
 
 /// Up to this number runs stand in one folder; with more, each thousand has its own, so that names sort as numbers.
@@ -60,10 +64,14 @@ fn fill(folder: &mut Folder, book: &Book, to: &Path, with_divers: bool) -> Resul
     let mut exported = Exported {
         folder: to.display().to_string(),
         runs: Vec::new(),
+        sessions: Vec::new(),
+        sessions_behind: 0,
+        left_out: Vec::new(),
         entries: Vec::new(),
         judgements: 0,
         with_divers,
         blocks: false,
+        session_blocks: false,
         notes: Vec::new(),
     };
     let mut listed = Vec::new();
@@ -77,6 +85,11 @@ fn fill(folder: &mut Folder, book: &Book, to: &Path, with_divers: bool) -> Resul
     folder.write("entries.toml", toml_text(&Listed { entry: listed }).as_bytes())?;
     runs(folder, book, &mut exported)?;
     let info = book.info()?;
+    if with_divers {
+        sessions::sessions(folder, book, &mut exported)?;
+    } else {
+        exported.sessions_behind = info.sessions;
+    }
     folder.write("book.toml", toml_text(&about(book, &info)?).as_bytes())?;
     folder.write("README.txt", words::readme(&exported, &info.head.to_string()).as_bytes())?;
     Ok(exported)
@@ -232,7 +245,7 @@ fn runs(folder: &mut Folder, book: &Book, exported: &mut Exported) -> Result<(),
         if record.state == RunState::Open {
             exported.notes.push(format!("{number} is still open: an import takes it as complete"));
         }
-        if files.form == RunForm::Incomplete {
+        if files.form == Form::Incomplete {
             exported.notes.push(format!(
                 "{number}: a run file cannot say all that the book holds of it, such as a quantity read at some points only"
             ));
@@ -255,6 +268,7 @@ struct About {
     form: u32,
     records: u64,
     runs: u64,
+    sessions: u64,
     program: &'static str,
     #[serde(skip_serializing_if = "Vec::is_empty")]
     copy: Vec<AboutCopy>,
@@ -279,6 +293,7 @@ fn about(book: &Book, info: &crate::book::Info) -> Result<About, WorkError> {
         form: info.version,
         records: info.head.seq,
         runs: info.runs,
+        sessions: info.sessions,
         program: concat!("ebbline ", env!("CARGO_PKG_VERSION")),
         copy,
     })

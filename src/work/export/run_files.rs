@@ -7,7 +7,7 @@ use super::spreadsheet;
 use crate::book::{RunRecord, SourceFiles};
 use crate::entry::{LeftOut, Readings, Run};
 use crate::record::{Files, NoRegisters, RecordError, Registers, parse_run_with, write_run};
-use crate::report::export::RunForm;
+use crate::report::export::Form;
 
 /// The files of a run.
 pub(super) struct RunFiles {
@@ -15,7 +15,7 @@ pub(super) struct RunFiles {
     /// As the run file names it.
     pub(super) readings_name: String,
     pub(super) readings: Vec<u8>,
-    pub(super) form: RunForm,
+    pub(super) form: Form,
 }
 
 /// The files of a run; none when it has no point yet.
@@ -50,7 +50,7 @@ fn as_it_came(name: &str, run: &Run, source: &SourceFiles, registers: &dyn Regis
         form,
     };
     if same(&read, run) {
-        return Some(files(source.run_file.clone(), RunForm::Original));
+        return Some(files(source.run_file.clone(), Form::Original));
     }
     // Points that were left out since stand behind those of the file.
     let since = run.left_out.strip_prefix(read.left_out.as_slice())?;
@@ -60,10 +60,11 @@ fn as_it_came(name: &str, run: &Run, source: &SourceFiles, registers: &dyn Regis
     }
     text.push_str(&left_out(since));
     let read = reads_as(&text, name, &source.readings, registers)?;
-    same(&read, run).then(|| files(text.into_bytes(), RunForm::LeftOutAdded))
+    same(&read, run).then(|| files(text.into_bytes(), Form::LeftOutAdded))
 }
 
-fn as_it_stands(name: &str, run: &Run, readings_name: &str) -> RunFiles {
+/// The files of a run as it stands in the book.
+pub(super) fn as_it_stands(name: &str, run: &Run, readings_name: &str) -> RunFiles {
     let (toml, csv) = write_run(run, readings_name);
     let read = reads_as(&toml, name, csv.as_bytes(), &NoRegisters);
     let whole = read.is_some_and(|read| same(&read, run));
@@ -71,7 +72,7 @@ fn as_it_stands(name: &str, run: &Run, readings_name: &str) -> RunFiles {
         toml: toml.into_bytes(),
         readings_name: readings_name.to_owned(),
         readings: csv.into_bytes(),
-        form: if whole { RunForm::Written } else { RunForm::Incomplete },
+        form: if whole { Form::Written } else { Form::Incomplete },
     }
 }
 
@@ -84,7 +85,8 @@ fn left_out(points: &[LeftOut]) -> String {
     points.iter().map(each).collect()
 }
 
-fn reads_as(toml: &str, name: &str, readings: &[u8], registers: &dyn Registers) -> Option<Run> {
+/// The run of a run file and its readings; none when they are refused.
+pub(super) fn reads_as(toml: &str, name: &str, readings: &[u8], registers: &dyn Registers) -> Option<Run> {
     let mut open =
         |_: &str| -> Result<Box<dyn Read>, RecordError> { Ok(Box::new(Cursor::new(readings.to_vec()))) };
     let files: Files<'_> = &mut open;
@@ -93,13 +95,13 @@ fn reads_as(toml: &str, name: &str, readings: &[u8], registers: &dyn Registers) 
 
 /// Whether two runs are the same to the last bit. A missing reading of a series is no number and so not equal to itself,
 /// but is written as the same empty cell.
-fn same(a: &Run, b: &Run) -> bool {
+pub(super) fn same(a: &Run, b: &Run) -> bool {
     let offset = a.taken.offset() == b.taken.offset();
     offset && (a == b || (matches!(a.readings, Readings::Series(_)) && write_run(a, "") == write_run(b, "")))
 }
 
 /// Whether a name of readings stays beside the run file on any system, and is not the run file's own.
-fn travels(readings_name: &str, run_file: &str) -> bool {
+pub(super) fn travels(readings_name: &str, run_file: &str) -> bool {
     let plain = |part: &str| {
         let kept = |c: char| c.is_alphanumeric() || " -_.()".contains(c);
         part.chars().all(kept)
