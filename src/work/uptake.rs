@@ -354,8 +354,9 @@ pub(super) fn with_left_out(mut session: Session, left_out: &[SessionLeftOut]) -
     session
 }
 
-/// What is to be said of a session's line, behind the session's name unless it names a run file itself, and whether it says anything at the pressures it is asked at.
-fn note_line(
+/// What is to be said of a session's line, behind the session's name unless it names a run file itself, and whether it
+/// says anything at the pressures it is asked at.
+pub(super) fn note_line(
     name: &str,
     names_file: bool,
     session: &Session,

@@ -12,9 +12,9 @@ use super::super::note::{Loaded, Note};
 use super::super::registers::{diluent, positive};
 use super::super::run::{purity, read_toml};
 use super::super::write::quoted;
-use super::spread::actual_volume;
 use super::{
-    KEYS, LOOPS, PLACES, SessionRefusal, around, assumptions, leak_test, line, session_text, spread,
+    KEYS, LOOPS, PLACES, SessionRefusal, actual_volume, around, assumptions, leak_test, line, session_text,
+    spread,
 };
 use crate::entry::{
     Assumptions, CellPapers, Cylinder, Diluent, Id, LeakTest, LineReference, LoopKept, Place, Purity, Rest,

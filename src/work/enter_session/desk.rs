@@ -27,7 +27,7 @@ use crate::work::lines::FoundLine;
 use crate::work::runs::said;
 use crate::work::sessions::number_of;
 use crate::work::shelf::{Shelf, stamped};
-use crate::work::uptake::{GatheredSession, UptakeOutcome, with_left_out, work_out};
+use crate::work::uptake::{GatheredSession, UptakeOutcome, note_line, with_left_out, work_out};
 
 /// A reading above ambient by more than this share is a fault and no PO2 (interface).
 const ABOVE_AMBIENT: f64 = 1.05;
@@ -160,8 +160,10 @@ impl SessionDesk {
     #[must_use]
     pub fn outcome(&self) -> Option<UptakeOutcome> {
         let uptake = self.worked.as_ref()?.as_ref().ok()?.clone();
-        let notes = self.line.as_ref().map_or_else(Vec::new, |line| line.notes.clone());
         let sessions = vec![self.gathered()];
+        let mut notes = Vec::new();
+        // What keeps the session from ending is said there.
+        let _ = self.of_line(&self.session, &mut notes);
         Some(UptakeOutcome { sessions, uptake, monte_carlo: Vec::new(), notes, plots: Vec::new() })
     }
 
@@ -307,6 +309,7 @@ impl SessionDesk {
         if !has_injection(&self.session) {
             return Err(SessionEnterError::NoInjection.into());
         }
+        self.of_line(&self.session, &mut Vec::new())?;
         match work_out(std::slice::from_ref(&self.gathered())) {
             Ok(_) => Ok(()),
             Err(WorkError::Uptake {
@@ -387,33 +390,42 @@ impl SessionDesk {
     }
 
     /// Refuses a row that cannot be; `replaces` is the row it is to correct.
-    fn refused(&self, row: &Row, replaces: Option<usize>) -> Result<(), SessionEnterError> {
+    fn refused(&self, row: &Row, replaces: Option<usize>) -> Result<(), WorkError> {
         match row {
             Row::Event(Event { at_s, .. }) if *at_s < 0.0 => {
-                Err(SessionEnterError::BeforeFirst(clock(*at_s)))
+                Err(SessionEnterError::BeforeFirst(clock(*at_s)).into())
             }
             Row::Event(Event { what: What::Injection(Injection::Ip(_)), .. }) if self.line.is_none() => {
-                Err(SessionEnterError::NoLine)
+                Err(SessionEnterError::NoLine.into())
             }
-            Row::Event(_) => Ok(()),
+            Row::Event(event) => {
+                let alone = Session { events: vec![*event], ..self.session.clone() };
+                self.of_line(&alone, &mut Vec::new())
+            }
             Row::Readings { at_s, po2_bar } => {
                 let first = self.first_reading();
                 if (first.is_none() || first == replaces) && at_s.abs() > 0.0 {
-                    return Err(SessionEnterError::NotAtZero);
+                    return Err(SessionEnterError::NotAtZero.into());
                 }
                 if *at_s < 0.0 {
-                    return Err(SessionEnterError::BeforeFirst(clock(*at_s)));
+                    return Err(SessionEnterError::BeforeFirst(clock(*at_s)).into());
                 }
                 let cells = self.session.readings.cells.len();
                 if cells > 0 && po2_bar.len() != cells {
-                    return Err(SessionEnterError::OtherCells { got: po2_bar.len(), cells });
+                    return Err(SessionEnterError::OtherCells { got: po2_bar.len(), cells }.into());
                 }
                 if po2_bar.iter().all(|po2| po2.is_nan()) {
-                    return Err(SessionEnterError::NoCell);
+                    return Err(SessionEnterError::NoCell.into());
                 }
-                self.impossible(po2_bar)
+                Ok(self.impossible(po2_bar)?)
             }
         }
+    }
+
+    /// Whether the line says anything at the pressures of a session, and what is to be said of it.
+    fn of_line(&self, session: &Session, notes: &mut Vec<String>) -> Result<(), WorkError> {
+        let name = self.number.map_or_else(|| "the session".to_owned(), |number| number.to_string());
+        note_line(&name, false, session, self.line.as_ref(), notes)
     }
 
     /// Refuses a PO2 that cannot be here: from a file it would be counted as a fault of the cell, from a keyboard it is

@@ -7,7 +7,7 @@
 use super::{SessionEnterError, refused};
 use crate::entry::{Event, Session};
 use crate::quantity::text::{uncertain, value};
-use crate::quantity::{AbsolutePressure, GaugePressure, StpdFlow};
+use crate::quantity::{AbsolutePressure, GaugePressure, QuantityError, StpdFlow};
 use crate::record::{elapsed_or_time, event_from};
 use crate::report::session_enter_questions::SessionQuestion;
 
@@ -202,7 +202,8 @@ fn injected(text: &str) -> Result<(&'static str, String), SessionEnterError> {
     if let Some(ip) = keyed("ip").or_else(|| keyed("IP")) {
         return Ok(("ip", ip));
     }
-    if uncertain::<StpdFlow>(text).is_ok() {
+    // Litres that hide their reference conditions are refused as a flow, in their own words.
+    if matches!(uncertain::<StpdFlow>(text), Ok(_) | Err(QuantityError::UnstatedReference { .. })) {
         return Ok(("flow", text.to_owned()));
     }
     if uncertain::<GaugePressure>(text).is_ok() {
@@ -313,4 +314,65 @@ fn nearest(typed: &str, known: impl Iterator<Item = &'static str>) -> Option<Str
 
 fn is_meant(name: &str) -> String {
     format!(" (is {name} meant?)")
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn times_are_those_of_a_watch() {
+        for (typed, written) in [
+            ("0:00", "00:00:00"),
+            ("10:30", "00:10:30"),
+            ("75:05", "01:15:05"),
+            ("10:30.5", "00:10:30.5"),
+            ("1:05:00", "1:05:00"),
+            ("630", "630 s"),
+            ("0.5", "0.5 s"),
+            ("2026-11-20T18:05:00+11:00", "2026-11-20T18:05:00+11:00"),
+        ] {
+            assert_eq!(moment(typed), Ok(written.to_owned()), "{typed}");
+        }
+        for bad in
+            ["", "10:60", "10:5", "10:", ":30", "-1:00", "1:2:3:4", "10:3o", "6000:00", "2026-11-20T18:05:00"]
+        {
+            assert_eq!(moment(bad), Err(SessionEnterError::Moment(bad.to_owned())), "{bad}");
+        }
+    }
+
+    #[test]
+    fn cells_are_bar_to_the_last_bit_and_a_dash_is_no_reading() {
+        let bits = |text: &str| cells(text).map(|all| all.into_iter().map(f64::to_bits).collect::<Vec<_>>());
+        let plain = Ok(vec![0.95_f64.to_bits(), 0.9371_f64.to_bits()]);
+        for text in ["0.95 0.9371", "0.95, 0.9371", "0.95; 0.9371", "  0.95\t0.9371"] {
+            assert_eq!(bits(text), plain, "{text}");
+        }
+        let mixed = cells("0.95 bar 937.1 mbar -").unwrap();
+        assert!((mixed[0] - 0.95).abs() < 1e-12 && (mixed[1] - 0.9371).abs() < 1e-12 && mixed[2].is_nan());
+        assert_eq!(cells("- 0.9").unwrap().len(), 2);
+        for bad in ["0,95 0,94", "0.95 nan", "1e999", "-0.5", "0.95 V"] {
+            assert!(cells(bad).is_err(), "{bad}");
+        }
+    }
+
+    #[test]
+    fn what_happened_is_written_as_a_file_writes_it() {
+        let pairs = |text: &str| {
+            let pairs = happening(text).unwrap();
+            pairs.iter().map(|(key, text)| format!("{key}={text}")).collect::<Vec<_>>().join("|")
+        };
+        assert_eq!(pairs("injection off"), "what=injection|off=true");
+        assert_eq!(pairs("Injection 0.31 L/min ± 2 mL/min"), "what=injection|flow=0.31 L/min ± 2 mL/min");
+        assert_eq!(pairs("injection 9.4 bar"), "what=injection|ip=9.4 bar");
+        assert_eq!(pairs("injection ip=9.4 bar"), "what=injection|ip=9.4 bar");
+        assert_eq!(pairs("injection 300 sccm"), "what=injection|flow=300 sccm");
+        assert_eq!(pairs("oxygen add"), "what=oxygen add");
+        let metered = "what=oxygen add|volume=0.4 L|reads_at=25 °C, 101.3 kPa";
+        assert_eq!(pairs("oxygen add 0.4 L at 25 °C, 101.3 kPa"), metered);
+        assert_eq!(pairs("make-up loop=sealed mark"), "what=make-up|loop=sealed|mark=true");
+        assert_eq!(pairs("make-up Held"), "what=make-up|loop=held");
+        assert_eq!(pairs("exclude until 12:30"), "what=exclude|until=00:12:30");
+        assert_eq!(pairs("stop"), "what=stop");
+    }
 }

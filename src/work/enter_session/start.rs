@@ -23,6 +23,7 @@ use crate::report::session_enter_words::stands;
 use crate::work::WorkError;
 use crate::work::lines::{self, FoundLine};
 use crate::work::shelf::{Shelf, ShelfRegisters};
+use crate::work::uptake::note_line;
 
 /// What is known of a session before it begins.
 #[derive(Debug)]
@@ -236,7 +237,7 @@ impl SessionStart {
             self.notes.push(crate::record::Note::PurityTaken.to_string());
         }
         let line = line_of(&self.shelf, &self.session, self.line_run.as_ref())?;
-        self.notes.extend(line.iter().flat_map(|line| line.notes.clone()));
+        note_line("the session", false, &self.session, line.as_ref(), &mut self.notes)?;
         Ok(SessionReady {
             shelf: self.shelf,
             session: self.session,
