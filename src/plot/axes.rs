@@ -120,7 +120,7 @@ impl Axes {
                 pieces: &[(text, Weight::Regular)],
             });
         };
-        let upright = |side: &Side| side.labelled.then(|| side.ticks.major.clone()).unwrap_or_default();
+        let upright = |side: &Side| if side.labelled { side.ticks.major.clone() } else { Vec::new() };
         for (value, text) in upright(&self.left) {
             let y = self.left.scale.at(value) + TO_BASELINE * size;
             label(&text, frame.left - gap, y, Anchor::End);

@@ -131,7 +131,9 @@ pub(super) fn read(
         return Err(WhyNot::NoUsableCell { left_out });
     }
     if sound.len() > 1 {
-        disagreeing(readings, &mut sound, &mut left_out, assumptions.cell_limit.as_bar());
+        // Two cells lie half their distance from the middle: it is their distance that is held to the limit.
+        let limit_bar = assumptions.cell_limit.as_bar() * if sound.len() == 2 { 0.5 } else { 1.0 };
+        disagreeing(readings, &mut sound, &mut left_out, limit_bar);
         if sound.len() < 2 {
             return Err(WhyNot::CellsDisagree { left_out });
         }

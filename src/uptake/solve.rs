@@ -20,6 +20,8 @@ use crate::stats::inverse::{Fieller, fieller};
 pub const COVERAGE_PROBABILITY: f64 = 0.95;
 /// Volumes further apart than this many standard uncertainties disagree, drops and metered oxygen likewise.
 const DISAGREES: f64 = 3.0;
+/// Volumes further apart than this many are not two views of one thing: one of them is wrong, and nobody can say which.
+const CONTRADICTS: f64 = 4.0;
 
 /// What a row of the budget does.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -164,7 +166,7 @@ impl Work<'_> {
         if interval.0.is_nan() || interval.0 <= 0.0 || !interval.1.is_finite() {
             return Err(WhyNot::NotPositive { came_out: uptake });
         }
-        self.warn(&fit, several);
+        self.warn(&fit, several)?;
         let volume_l = 1.0 / (fit.inverse_n * self.model.kappa(&Shift::default()));
         let wander = (0..self.noise.len())
             .map(|i| self.wander * self.wander_variance(i).sqrt() / self.inverse_n)
@@ -309,7 +311,7 @@ impl Work<'_> {
         Ok((per_line, parts))
     }
 
-    fn warn(&mut self, fit: &Fit, several: bool) {
+    fn warn(&mut self, fit: &Fit, several: bool) -> Result<(), WhyNot> {
         for (i, segment) in self.model.segments.iter().enumerate() {
             if segment.kept != LoopKept::Held {
                 continue;
@@ -330,6 +332,9 @@ impl Work<'_> {
                 let kappa = self.model.kappa(&Shift::default());
                 let litres = |inverse_n: f64| 1.0 / (inverse_n * kappa);
                 let (stated_l, found_l) = (litres(prior.inverse_n), litres(found));
+                if apart > CONTRADICTS {
+                    return Err(WhyNot::LoopVolumeContradicts { stated_l, found_l, apart });
+                }
                 self.warnings.push(Warning::LoopVolumeDisagrees { stated_l, found_l, apart });
             }
         }
@@ -339,6 +344,7 @@ impl Work<'_> {
                 self.warnings.push(Warning::CylinderDisagrees { difference_l_min, apart });
             }
         }
+        Ok(())
     }
 }
 

@@ -29,12 +29,15 @@ fn parsed(svg: &str) -> usvg::Tree {
 }
 
 fn texts(group: &usvg::Group) -> Vec<&usvg::Text> {
-    let of = |node| match node {
-        &usvg::Node::Group(ref g) => texts(g),
-        usvg::Node::Text(t) => vec![&**t],
-        _ => Vec::new(),
-    };
-    group.children().iter().flat_map(of).collect()
+    group
+        .children()
+        .iter()
+        .flat_map(|node| match node {
+            usvg::Node::Group(g) => texts(g),
+            usvg::Node::Text(t) => vec![&**t],
+            _ => Vec::new(),
+        })
+        .collect()
 }
 
 fn words(text: &usvg::Text) -> String {

@@ -140,9 +140,14 @@ fn loop_volume(text: &str) -> Result<Uncertain<Volume>, QuantityError> {
 
 /// An altitude where the unit is one of length, else a barometer.
 fn place(text: &str) -> Result<PlaceGiven, QuantityError> {
-    match text::value::<Length>(text) {
-        Ok(altitude) => Ok(PlaceGiven::Altitude(altitude)),
-        Err(_) => text::uncertain(text).map(PlaceGiven::Barometer),
+    match (text::value::<Length>(text), text::uncertain(text)) {
+        (Ok(altitude), _) => Ok(PlaceGiven::Altitude(altitude)),
+        (Err(_), Ok(barometer)) => Ok(PlaceGiven::Barometer(barometer)),
+        // With a unit of length it was meant as an altitude.
+        (Err(of_length), Err(_)) if text.trim_end().ends_with('m') || text.trim_end().ends_with("ft") => {
+            Err(of_length)
+        }
+        (Err(_), Err(of_pressure)) => Err(of_pressure),
     }
 }
 

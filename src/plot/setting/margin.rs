@@ -75,7 +75,7 @@ fn column(
     fullness: Fullness,
 ) -> Column<Sign> {
     let mut c = Column::new(body, width);
-    let brick = Style { fill: BRICK, ..c.plain("plot-never-above") };
+    let brick = Style { fill: BRICK, weight: Weight::Bold, ..c.plain("plot-never-above") };
     if words.is_setting {
         c.paragraph("Set the IP to", c.muted("plot-set-head"), 1);
     }
@@ -110,7 +110,7 @@ fn column(
         c.paragraph(&words.notes[which], Style { size, ..c.muted("plot-notes") }, 20);
     }
     if c.y <= room {
-        c.to_foot(first, room);
+        c.move_to_foot(first, room);
     }
     c
 }
@@ -135,7 +135,7 @@ fn rows(
     let style = answer_style(words, &c, 1.15 * body);
     c.led(&words.answer, style, &detail.join(". "), c.plain("plot-why"), fullness.lines);
     if let Some(never) = &words.never {
-        c.paragraph(never, Style { fill: BRICK, ..c.plain("plot-never-above") }, 1);
+        c.paragraph(never, Style { fill: BRICK, weight: Weight::Bold, ..c.plain("plot-never-above") }, 1);
     }
     if let Some(judged) = &words.judged {
         c.paragraph(judged, c.plain("plot-judgement"), 2);

@@ -8,7 +8,7 @@ use super::seen::{Mark, Marked, Seen, Whose, described};
 use super::{Panels, SettingPlot};
 use crate::gas::Water;
 use crate::quantity::unit::Kind;
-use crate::report::number::{figures, fixed, percent, probability, shortest, value_and_u};
+use crate::report::number::{figures, fixed, percent, shortest, value_and_u};
 use crate::setting::{AtIp, FirstStageKind, Setting};
 
 use super::super::letters::clean;
@@ -218,7 +218,7 @@ fn facts(at: &AtIp, seen: &Seen, setting: &Setting) -> Vec<String> {
         short_by,
         format!(
             "Chance of overfeed{held}: {}, held under {}",
-            probability(at.overfeed_chance),
+            chance_up(at.overfeed_chance),
             percent(setting.used.chance)
         ),
     ];
@@ -233,7 +233,7 @@ fn judged(setting: &Setting, seen: &Seen) -> Option<String> {
         own.then_some(judged)
     })?;
     let chance = judged.described.at.overfeed_chance;
-    let chance = if chance.is_finite() { format!(", chance {}", probability(chance)) } else { String::new() };
+    let chance = if chance.is_finite() { format!(", chance {}", chance_up(chance)) } else { String::new() };
     let against = match judged.against.len() {
         0 => "nothing speaks against it".to_owned(),
         1 => "one thing speaks against it".to_owned(),
@@ -323,4 +323,15 @@ fn describe(seen: &Seen, words: &Words, panels: Panels) -> String {
         text.push_str(&format!("{sentence}. "));
     }
     text.trim_end().replace('\u{a0}', " ")
+}
+
+/// A chance that is worse the larger it is, rounded up to a tenth of a per cent.
+fn chance_up(p: f64) -> String {
+    if p > 0.99 {
+        "over 99\u{a0}%".to_owned()
+    } else if p < 0.001 {
+        "under 0.1\u{a0}%".to_owned()
+    } else {
+        format!("{}\u{a0}%", fixed((1000.0 * p - 1e-6).ceil() / 10.0, 1))
+    }
 }
