@@ -361,7 +361,10 @@ fn the_newest_judged_run_counts_and_newer_ones_are_named() {
     assert_eq!(newer["recommended"], judged["recommended"]);
     desk.done(&["bench", "accept", "R0002"]);
     let after = desk.json(&call);
-    assert!(after["orifices"][0]["line"].as_str().unwrap().contains("run R0002, accepted"), "{after}");
+    assert!(
+        after["orifices"][0]["line"].as_str().unwrap().contains("run R0002 of 2026-11-15, accepted"),
+        "{after}"
+    );
     assert!(ip(&after) >= ip(&judged), "the hole passes less: {after}");
     // A point left out since: the judgement is of an earlier state.
     desk.done(&["bench", "leave-out", "R0002", "3", "--why", "hose touched"]);
