@@ -1,5 +1,9 @@
 //! `setting` as its users see it: from files alone, from the book, and every reason for which there is none.
 
+#![allow(
+    clippy::float_cmp,
+    reason = "an IP is a mark of the gauge, a printed decimal that is the same on both sides"
+)]
 #![allow(clippy::unwrap_used, reason = "a test may panic")]
 
 #[allow(dead_code, reason = "these tests have a desk of their own")]
