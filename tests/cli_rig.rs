@@ -277,8 +277,8 @@ fn a_wrong_baud_rate_is_found() {
     let said = desk.call(&["instrument", "try", "FM-9.toml", "--for", "1 s"]);
     assert_eq!(said.status, 1, "{said:?}");
     for words in [
-        "with the baud rate 19200 instead of 9600 it gives",
-        "no fault, such as 0.4812 L/min",
+        "with the baud rate 19200 instead of 9600 it gives ",
+        "such as 0.4812 L/min:",
         "        baud = 19200\n",
     ] {
         assert!(said.stdout.contains(words), "{words}: {said:?}");

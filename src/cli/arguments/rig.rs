@@ -17,7 +17,7 @@ pub struct Rig {
     #[arg(long, value_name = "DIR", default_value = "ebbline-rig")]
     pub into: PathBuf,
     /// Seed of everything that is drawn
-    #[arg(long, value_name = "N", default_value_t = 2_026)]
+    #[arg(long, value_name = "N", default_value_t = 2_026, allow_negative_numbers = true)]
     pub seed: u64,
     /// Something that goes wrong, as in "rig-flow silence for 5 s in 30 s"; repeat
     #[arg(
