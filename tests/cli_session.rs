@@ -253,7 +253,10 @@ fn a_file_a_number_and_a_diver_give_the_same_to_the_last_bit() {
     // What the run file leaves unsaid is said once, and of the run file.
     assert_eq!(
         of_files["notes"],
-        json!(["small.toml: no purity of the oxygen is stated: taken as 99.5 % ± 0.3 %"])
+        json!([
+            "small.toml: no purity of the oxygen is stated: taken as 99.5 % ± 0.3 %",
+            "couch-1.toml: the IP of 4.7 bar lies outside what the bench run of small measured: the line is stretched"
+        ])
     );
     desk.done(&["session", "import", "couch-1.toml", "couch-2.toml", "couch-3.toml"]);
     // The files are not needed any more.
@@ -310,6 +313,10 @@ fn plots_have_a_file_each_and_only_a_number_or_a_reason_makes_one() {
     let svg = desk.read("one.svg");
     assert!(svg.starts_with("<svg") && svg.contains("couch-1.toml"), "{svg}");
     write(&desk, "b/couch-2", &stated(Kind::Sealed, 6));
+    // On another day: one diver cannot rest twice at once.
+    let toml = desk.read("b/couch-2.toml");
+    let day = toml.split("taken = \"").nth(1).unwrap()[..10].to_owned();
+    desk.write("b/couch-2.toml", toml.replace(&day, "2026-12-03"));
     let files = ["couch-1.toml", "couch-2.toml", "b/couch-2.toml"];
     let said = desk.call(&[&["session", "uptake"], files.as_slice(), &["--plot", "all.svg"]].concat());
     assert_eq!(said.status, 0, "{said:?}");

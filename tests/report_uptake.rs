@@ -493,6 +493,8 @@ fn shown<'a>(session: &'a Session, left_out: &'a [SessionLeftOut]) -> Shown<'a> 
         left_out,
         files: &[],
         notes: &[],
+        open: false,
+        changes: &[],
     }
 }
 

@@ -3,6 +3,7 @@
 use std::path::PathBuf;
 
 use super::enter::EnterError;
+use super::enter_session::SessionEnterError;
 use super::png::PngError;
 use crate::bench::BenchError;
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
@@ -175,6 +176,9 @@ pub enum WorkError {
     /// An answer or a point that is not taken.
     #[error(transparent)]
     Enter(#[from] EnterError),
+    /// An answer or a row of a session that is not taken.
+    #[error(transparent)]
+    EnterSession(#[from] SessionEnterError),
     /// A text that is no run's number.
     #[error(
         "\"{}\" is no run: a run of the book is named like R0001, and a run file has a slash or ends in .toml",
@@ -299,6 +303,7 @@ impl WorkError {
             | Self::Bench { .. }
             | Self::TooFewSteady { .. }
             | Self::Enter(_)
+            | Self::EnterSession(_)
             | Self::NoRunNumber(_)
             | Self::Uptake { .. }
             | Self::Overlap(..)

@@ -5,6 +5,7 @@
 pub mod book;
 pub mod demo;
 pub mod enter;
+pub mod enter_session;
 pub mod error;
 pub mod export;
 pub mod fit;

@@ -23,7 +23,7 @@ use crate::quantity::{
 };
 use crate::report::Units;
 use crate::report::session_uptake;
-use crate::report::setting::{OrificeNamed, Reported, favourable};
+use crate::report::setting::{self as words, OrificeNamed, Reported, favourable};
 use crate::report::sheet;
 use crate::setting::{
     DEFAULT_CHANCE, DEFAULT_PURITY, DEFAULT_SHORTFALL, FirstStageKind, RestingUptake, Setting,
@@ -281,7 +281,10 @@ pub fn make_setting(request: &SettingRequest) -> Result<SettingOutcome, WorkErro
         write_whole(path, sheet::text(&outcome.reported(&named), &request.units).as_bytes())?;
     }
     if let (Some(kind), Some(path)) = (kind, &request.plot) {
-        let plot = SettingPlot { units: request.units, ..SettingPlot::default() };
+        let named = outcome.named();
+        let why_not = words::why_not(&outcome.reported(&named));
+        let why_not = why_not.map(|why| why.strip_prefix("no setting: ").map_or(why.clone(), str::to_owned));
+        let plot = SettingPlot { units: request.units, why_not, ..SettingPlot::default() };
         write_plot(&setting_plot(&outcome.setting, &plot), kind, path)?;
     }
     Ok(outcome)

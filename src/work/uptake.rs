@@ -9,7 +9,7 @@ use super::sessions::{all_of, kept};
 use super::shelf::Shelf;
 use super::{ExitStatus, WorkError};
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
-use crate::book::Book;
+use crate::book::{Book, RunState};
 use crate::entry::{
     CellSignal, Diver, Event, Injection, LineReference, Place, Session, SessionLeftOut, SessionNumber,
     SessionReadings, What,
@@ -201,8 +201,8 @@ fn wrong(sessions: &[GatheredSession], error: crate::uptake::UptakeError) -> Wor
     })
 }
 
-/// Reads sessions by file, number or diver, each with its line. A session that was left out as a whole counts only when
-/// it is named by its number.
+/// Reads sessions by file, number or diver, each with its line. A session that was left out as a whole, or is still open,
+/// counts only when it is named by its number.
 ///
 /// # Errors
 /// As [`session_uptake`].
@@ -228,9 +228,17 @@ pub fn gather(
             None => {
                 let diver = id_of(of)?;
                 let rows = all_of(opened, &diver)?;
-                let (out, used): (Vec<_>, Vec<_>) = rows.into_iter().partition(|row| row.left_out);
+                let (out, rest): (Vec<_>, Vec<_>) = rows.into_iter().partition(|row| row.left_out);
                 for row in out {
                     notes.push(format!("{} is left out of the diver's uptake", row.number));
+                }
+                let (open, used): (Vec<_>, Vec<_>) =
+                    rest.into_iter().partition(|row| row.state == RunState::Open);
+                for row in open {
+                    notes.push(format!(
+                        "{number} is still open and does not count yet: session resume {number} goes on with it",
+                        number = row.number
+                    ));
                 }
                 if used.is_empty() {
                     return Err(WorkError::NoSessionOf(diver));
@@ -322,11 +330,7 @@ fn from_book(
 ) -> Result<GatheredSession, WorkError> {
     let kept = kept(book, number)?;
     let name = number.to_string();
-    let mut session = kept.session;
-    let stretches = kept.left_out.iter().filter_map(|left| left.stretch_s);
-    session
-        .events
-        .extend(stretches.map(|(from_s, until_s)| Event { at_s: from_s, what: What::Exclude { until_s } }));
+    let mut session = with_left_out(kept.session, &kept.left_out);
     let line = match (&session.line, &kept.line_run) {
         (_, Some(run)) => Some(lines::of_kept_run(run, Path::new(&name), session.taken.date_naive())?),
         (Some(LineReference::Orifice(orifice)), None) => {
@@ -339,6 +343,15 @@ fn from_book(
     }
     note_line(&name, false, &session, line.as_ref(), notes)?;
     Ok(GatheredSession { name, session, line, left_out: kept.left_out })
+}
+
+/// A session with the stretches excluded that a person left out since.
+pub(super) fn with_left_out(mut session: Session, left_out: &[SessionLeftOut]) -> Session {
+    let stretches = left_out.iter().filter_map(|left| left.stretch_s);
+    session
+        .events
+        .extend(stretches.map(|(from_s, until_s)| Event { at_s: from_s, what: What::Exclude { until_s } }));
+    session
 }
 
 /// What is to be said of a session's line, behind the session's name unless it names a run file itself, and whether it says anything at the pressures it is asked at.
@@ -395,7 +408,8 @@ fn no_overlap(sessions: &[GatheredSession]) -> Result<(), WorkError> {
     for (i, one) in sessions.iter().enumerate() {
         for other in &sessions[i + 1..] {
             let (a, b) = (span(one), span(other));
-            if a.0 < b.1 && b.0 < a.1 {
+            // Two divers are refused for being two.
+            if one.session.diver.same_as(&other.session.diver) && a.0 < b.1 && b.0 < a.1 {
                 return Err(WorkError::Overlap(one.name.clone(), other.name.clone()));
             }
         }

@@ -83,9 +83,10 @@ fn warning_case(warning: &Warning) -> Case<Warning> {
             &["0.71", "2 min 10 s", "0.65", "dangerous"],
             Some(W::HeldButVents { from_s: 90.0, to_s: 840.0 }),
         ),
-        W::HeldButVents { .. } => {
-            (&["from 00:01:30 to 00:14:00", "8 %"], Some(W::HeldOrVenting { from_s: 90.0, to_s: 840.0 }))
-        }
+        W::HeldButVents { .. } => (
+            &["from 00:01:30 to 00:14:00", "read high"],
+            Some(W::HeldOrVenting { from_s: 90.0, to_s: 840.0 }),
+        ),
         W::HeldOrVenting { .. } => {
             (&["from 00:01:30 to 00:14:00"], Some(W::UnmarkedJump(jump(Jump::OxygenAdd))))
         }

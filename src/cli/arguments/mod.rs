@@ -19,7 +19,10 @@ pub use registers::{
 };
 pub use rig::Rig;
 
-pub use session::{ImportSessions, LeaveOutSession, ListSessions, Sessions, ShowSession, UptakeOf};
+pub use session::{
+    EnterSession, ImportSessions, LeaveOutSession, ListSessions, ResumeSession, Sessions, ShowSession,
+    UptakeOf,
+};
 pub use setting::{Setting, Water};
 
 use crate::quantity::Shown;
