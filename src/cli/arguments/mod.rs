@@ -36,7 +36,7 @@ use crate::quantity::Shown;
     disable_help_subcommand = true,
     max_term_width = 80,
     after_help = "Exit status: 0 done and favourable; 1 done, and the verdict is fail, undecided, no uptake or no setting; 2 the input or the call \
-                  is wrong; 3 a disk or output file failed.\n\nAn aid to trained people, no life-support monitor. \
+                  is wrong; 3 a port, a disk or an output file failed.\n\nAn aid to trained people, no life-support monitor. \
                   Training, the unit's manual, the regulator maker's limits and local rules come first."
 )]
 pub struct Arguments {
