@@ -83,20 +83,20 @@ impl Solved {
 /// Solves a session.
 pub(super) fn solve(model: &Model, assumptions: &Assumptions) -> Result<Solved, WhyNot> {
     enough(model, assumptions)?;
-    let mut work = Work::start(model, assumptions)?;
+    let mut work = Work::start(model, assumptions, None)?;
     work.settle()?;
     work.learn_wander()?;
     work.finish()
 }
 
-/// Solves a session that was changed in thought: what the readings said of the wander stays.
+/// Solves a session that was changed in thought: what the readings said, their slopes and of the wander, stays.
 pub(super) fn solve_again(
     model: &Model,
     assumptions: &Assumptions,
     before: &Solved,
 ) -> Result<Solved, WhyNot> {
     enough(model, assumptions)?;
-    let mut work = Work::start(model, assumptions)?;
+    let mut work = Work::start(model, assumptions, Some(before))?;
     (work.wander, work.wander_dof) = (before.relative_wander, before.wander_dof);
     work.settle()?;
     work.finish()
