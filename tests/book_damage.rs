@@ -35,6 +35,9 @@ fn some_of_everything(path: &Path) -> Head {
         let stretch = (text == "couch").then_some((3.0, 5.5));
         stamped(|stamp| book.leave_out_of_session(number, stretch, "coughed", None, stamp)).unwrap();
     }
+    let row_by_row =
+        stamped(|stamp| book.begin_session(&session("D-2", 9, 0.7), None, stamp)).unwrap().number;
+    stamped(|stamp| book.finish_session(row_by_row, stamp)).unwrap();
     stamped(|stamp| book.forget_diver(&id("D-1"), "asked to", stamp)).unwrap();
     book.check(&[]).unwrap().head
 }

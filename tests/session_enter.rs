@@ -277,7 +277,7 @@ fn a_diver_is_led_from_the_cautions_to_an_uptake() {
         "Place (couch, pool) [couch]: Couch",
         "\"holding\" is not known here; use one of: sealed, held, topped",
         "Diluent, as in air or oxygen 18 % [oxygen 18 %]:",
-        "first reading, as in 7.5 L ± 1.0 L [7 L ± 0.8 L]: ?",
+        "first reading, as in 7.5 L ± 1 L [7 L ± 0.8 L]: ?",
         "then two injections that differ are needed",
         "Mass of the diver, as in 82 kg [82 kg]:",
         "\"82\" has a number without a unit",

@@ -332,7 +332,8 @@ impl Work<'_> {
                 let kappa = self.model.kappa(&Shift::default());
                 let litres = |inverse_n: f64| 1.0 / (inverse_n * kappa);
                 let (stated_l, found_l) = (litres(prior.inverse_n), litres(found));
-                if apart > CONTRADICTS {
+                // A stated volume that is too large reads high, the dangerous side; one that is too small is only warned of.
+                if apart > CONTRADICTS && stated_l > found_l {
                     return Err(WhyNot::LoopVolumeContradicts { stated_l, found_l, apart });
                 }
                 self.warnings.push(Warning::LoopVolumeDisagrees { stated_l, found_l, apart });

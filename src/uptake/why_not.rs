@@ -103,8 +103,8 @@ pub enum WhyNot {
     },
     /// Neither the loop volume nor a second injection: slopes alone are no flow. Measure the one or do the other.
     NoVolumeOneInjection,
-    /// The stated loop volume and the one found from the injections are so far apart that one of them is wrong, or an
-    /// injection is: their mean would be nobody's. Measure the volume again, or leave it out.
+    /// The stated loop volume is so far above the one found from the injections that one of them is wrong, or an
+    /// injection is: their mean would be nobody's, and high. Measure the volume again, or leave it out.
     LoopVolumeContradicts {
         /// Stated, litres.
         stated_l: f64,
