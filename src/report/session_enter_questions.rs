@@ -153,7 +153,7 @@ pub fn question(question: SessionQuestion, default: &str) -> String {
         SessionQuestion::Place => "Place (couch, pool)",
         SessionQuestion::Loop => "Loop (held, sealed, topped)",
         SessionQuestion::Diluent => "Diluent, as in air or oxygen 18 %",
-        SessionQuestion::LoopVolume => "Volume of loop and lungs at the first reading, as in 7.5 L ± 1 L",
+        SessionQuestion::LoopVolume => "Volume of loop and lungs at first reading, as in 7.5 L ± 1 L",
         SessionQuestion::Mass => "Mass of the diver, as in 82 kg",
         SessionQuestion::LeakTest => "Leak test (passed, or the leak as in 0.005 L/min)",
         SessionQuestion::NoseClip => "Nose clip worn (yes, no)",

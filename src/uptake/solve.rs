@@ -21,7 +21,10 @@ pub const COVERAGE_PROBABILITY: f64 = 0.95;
 /// Volumes further apart than this many standard uncertainties disagree, drops and metered oxygen likewise.
 const DISAGREES: f64 = 3.0;
 /// Volumes further apart than this many are not two views of one thing: one of them is wrong, and nobody can say which.
-const CONTRADICTS: f64 = 4.0;
+/// So many, because the volume found from injections that lie near each other scatters more than its uncertainty says.
+const CONTRADICTS: f64 = 10.0;
+/// And only when the stated volume is this many times the one found.
+const TOO_LARGE: f64 = 1.5;
 
 /// What a row of the budget does.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -333,7 +336,7 @@ impl Work<'_> {
                 let litres = |inverse_n: f64| 1.0 / (inverse_n * kappa);
                 let (stated_l, found_l) = (litres(prior.inverse_n), litres(found));
                 // A stated volume that is too large reads high, the dangerous side; one that is too small is only warned of.
-                if apart > CONTRADICTS && stated_l > found_l {
+                if apart > CONTRADICTS && found_l > 0.0 && stated_l > TOO_LARGE * found_l {
                     return Err(WhyNot::LoopVolumeContradicts { stated_l, found_l, apart });
                 }
                 self.warnings.push(Warning::LoopVolumeDisagrees { stated_l, found_l, apart });
