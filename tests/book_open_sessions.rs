@@ -76,7 +76,8 @@ fn rows_come_one_by_one_and_are_put_together_in_their_order() {
     let listed = book.sessions(&SessionQuery::default()).unwrap().remove(0);
     assert_eq!((listed.state, listed.cells, listed.readings), (RunState::Complete, 3, 2));
     assert!((listed.minutes - 0.5).abs() < 1e-12);
-    let more: [fn(&mut Book) -> Result<(), BookError>; 4] = [
+    type Step = fn(&mut Book) -> Result<(), BookError>;
+    let more: [Step; 4] = [
         |book| stamped(|stamp| book.add_session_event(number(1), &OFF, stamp)),
         |book| stamped(|stamp| book.add_session_readings(number(1), &row(60.0, 0.8), stamp)),
         |book| stamped(|stamp| book.strike_session_row(number(1), 1, "why", stamp)),
