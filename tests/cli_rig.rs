@@ -309,10 +309,11 @@ fn faults_come_when_they_are_asked_for() {
     assert_eq!((said.status, said.stdout.as_str()), (3, ""), "{said:?}");
     assert!(said.stderr.contains("is not there: check the cable"), "{said:?}");
 
-    assert_eq!(rig.answer("fault rig-flow nan for 20 s"), "done: fault rig-flow nan for 20 s\n");
-    let (trial, status) = tried(&desk, "rig/rig-flow.toml", "1 s");
-    assert_eq!(status, 1);
-    assert!(trial["faults"][0]["bytes"].as_str().unwrap().contains("NaN"), "{trial:#}");
+    assert_eq!(rig.answer("fault rig-barometer nan once"), "done: fault rig-barometer nan once\n");
+    let (trial, status) = tried(&desk, "rig/rig-barometer.toml", "1.5 s");
+    assert_eq!((status, &trial["faults"][0]["fault"]), (1, &"not-finite".into()), "{trial:#}");
+    assert!(trial["faults"][0]["times"] == 1 && trial["proposals"] == serde_json::json!([]), "{trial:#}");
+    assert_eq!(rig.answer("fault rig-ip late 0.01 always"), "done: fault rig-ip late 0.01 always\n");
     assert_eq!(rig.answer("clear"), "done: clear\n");
     assert_eq!(tried(&desk, "rig/rig-flow.toml", "1 s").1, 0);
     assert_eq!(tried(&desk, "rig/rig-ip.toml", "1 s").1, 0);
