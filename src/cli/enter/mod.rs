@@ -1,4 +1,4 @@
-//! `bench enter` and `bench resume`: a run typed at a prompt, or from a pipe; a session likewise, in [`session`].
+//! `bench enter` and `bench resume`: a run typed at a prompt, or from a pipe; a session likewise, in `session`.
 //!
 //! With a terminal questions and answers alternate on it; from a pipe nothing is asked, and each point is acknowledged
 //! on stdout as soon as it is in the book. With `--json` stdout holds the document alone and the talk goes to stderr.
