@@ -35,6 +35,9 @@ fn some_of_everything(path: &Path) -> Head {
         let stretch = (text == "couch").then_some((3.0, 5.5));
         stamped(|stamp| book.leave_out_of_session(number, stretch, "coughed", None, stamp)).unwrap();
     }
+    let row_by_row =
+        stamped(|stamp| book.begin_session(&session("D-2", 9, 0.7), None, stamp)).unwrap().number;
+    stamped(|stamp| book.finish_session(row_by_row, stamp)).unwrap();
     stamped(|stamp| book.forget_diver(&id("D-1"), "asked to", stamp)).unwrap();
     book.check(&[]).unwrap().head
 }
@@ -86,6 +89,7 @@ fn no_statement_changes_deletes_or_replaces_what_was_recorded() {
             ("register", "seq"),
             ("session", "seq"),
             ("of_session", "seq"),
+            ("session_finished", "seq"),
             ("session_left_out", "seq"),
             ("session_erased", "number"),
             ("erased", "seq"),
@@ -177,6 +181,9 @@ fn every_flip_in_what_was_recorded_is_found_and_no_flip_anywhere_goes_unnoticed_
     }
     println!("{found} flips found, {harmless} in bytes that hold nothing");
     assert!(found >= 300);
+    // Beside a book whose damage was met its log stays; beside a sound one it does not.
+    std::fs::write(&damaged, &whole).unwrap();
+    assert_eq!(check(&damaged, &[]).map(|check| check.wrong), Some(None));
     assert_eq!(folder.names(), ["book.db", "damaged.db"]);
 }
 

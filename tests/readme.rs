@@ -99,7 +99,7 @@ fn shows(screen: &[String], printed: &str) -> bool {
 #[test]
 fn every_screen_is_what_the_program_prints() {
     let (folder, names) = written();
-    assert_eq!(names, ["my-orifice.csv", "my-orifice.toml"]);
+    assert_eq!(names, ["my-orifice.csv", "my-orifice.toml", "couch-1.csv", "couch-1.toml"]);
     let mut shown = 0;
     for block in readme().iter().filter(|block| block.kind == "text") {
         let mut status = None;

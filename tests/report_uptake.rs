@@ -493,6 +493,8 @@ fn shown<'a>(session: &'a Session, left_out: &'a [SessionLeftOut]) -> Shown<'a> 
         left_out,
         files: &[],
         notes: &[],
+        open: false,
+        changes: &[],
     }
 }
 
@@ -605,7 +607,7 @@ fn a_list_says_what_was_left_out_and_that_there_is_more() {
     let text = session_list::text(&rows, true);
     assert!(
         text.contains("2 stretches left out")
-            && text.lines().any(|l| l.starts_with("  S0001") && l.ends_with("left out")),
+            && text.lines().any(|l| l.trim_start().starts_with("S0001") && l.ends_with("left out")),
         "{text}"
     );
     assert!(text.contains("--all") && text.lines().all(|l| columns(l) <= WIDTH), "{text}");

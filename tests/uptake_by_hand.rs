@@ -190,10 +190,15 @@ fn a_null_by_hand_needs_no_volume() {
     assert_eq!(both.loop_volume.origin, Origin::Both);
     assert!(both.loop_volume.litres > volume.litres && both.loop_volume.litres < 7.2);
     assert!(both.u < estimate.u);
-    // A volume that the slopes contradict is said so.
+    // A volume that the slopes contradict: one far too small reads low and is said so, one far too large gives no number.
+    session.loop_volume = Some(litres_given(4.0));
+    let small = self::place(&session).sessions.remove(0);
+    assert!(small.answer.is_ok());
+    let said = small.warnings.iter().any(|w| matches!(w, Warning::LoopVolumeDisagrees { .. }));
+    assert!(said, "{:?}", small.warnings);
     session.loop_volume = Some(litres_given(14.0));
-    let warnings = self::place(&session).sessions.remove(0).warnings;
-    assert!(warnings.iter().any(|w| matches!(w, Warning::LoopVolumeDisagrees { .. })), "{warnings:?}");
+    let large = self::place(&session).sessions.remove(0).answer.unwrap_err();
+    assert!(matches!(large, WhyNot::LoopVolumeContradicts { .. }), "{large:?}");
 }
 
 #[test]

@@ -13,7 +13,7 @@ use super::registers::Entry;
 use super::runs::{Origin, SourceFiles};
 use super::sessions::{Extent, FileRole};
 use crate::entry::{
-    Decision, Diver, FirstStage, Instrument, LeftOut, Orifice, PointReading, Readings, Run, RunNumber,
+    Decision, Diver, Event, FirstStage, Instrument, LeftOut, Orifice, PointReading, Readings, Run, RunNumber,
     Session, SessionLeftOut, SessionNumber, Shop,
 };
 
@@ -51,10 +51,16 @@ pub(super) enum Kind {
     SessionLine = 1003,
     SessionFile = 1004,
     SessionLeftOut = 1005,
+    SessionEvent = 1006,
+    SessionReadingCorrected = 1007,
+    SessionEventCorrected = 1008,
+    SessionRowStruck = 1009,
+    SessionRestated = 1010,
+    SessionFinished = 1011,
 }
 
 impl Kind {
-    const ALL: [Self; 23] = [
+    const ALL: [Self; 29] = [
         Self::Begun,
         Self::Run,
         Self::Readings,
@@ -78,6 +84,12 @@ impl Kind {
         Self::SessionLine,
         Self::SessionFile,
         Self::SessionLeftOut,
+        Self::SessionEvent,
+        Self::SessionReadingCorrected,
+        Self::SessionEventCorrected,
+        Self::SessionRowStruck,
+        Self::SessionRestated,
+        Self::SessionFinished,
     ];
 
     /// The kind of a number, if this program knows it.
@@ -125,12 +137,12 @@ pub(super) enum Body<'a> {
     Decided { run: RunNumber, decision: Box<Decision> },
     /// An entry of a register; `replaces` is the record of the revision before.
     Entry { revision: u32, replaces: Option<u64>, entry: Box<Entry> },
-    /// A session was recorded; its header.
+    /// A session was recorded or begun; its header, and how far its readings go, none while they still come.
     Session {
         number: SessionNumber,
         origin: Origin,
         source: Option<[u8; 32]>,
-        extent: Extent,
+        extent: Option<Extent>,
         header: Cow<'a, Session>,
     },
     /// A block of readings of a session: its next rows, one piece of each column.
@@ -141,6 +153,18 @@ pub(super) enum Body<'a> {
     SessionFile { session: SessionNumber, role: FileRole, name: String, bytes: Cow<'a, [u8]> },
     /// A session or a stretch of it was left out of the diver's uptake.
     SessionLeftOut { session: SessionNumber, left_out: SessionLeftOut },
+    /// The next row of an open session is an event.
+    SessionEvent { session: SessionNumber, event: Event },
+    /// A row of readings was recorded wrong: its values in the order of the columns; `replaces` held it.
+    SessionReadingCorrected { session: SessionNumber, row: u32, replaces: u64, values: Vec<f64> },
+    /// A row that is an event was recorded wrong; `replaces` is the record that held it.
+    SessionEventCorrected { session: SessionNumber, row: u32, replaces: u64, event: Event },
+    /// A row was struck; `replaces` is the record that held it.
+    SessionRowStruck { session: SessionNumber, row: u32, replaces: u64, why: String },
+    /// What stands around the rows of an open session was corrected; `replaces` is the header before.
+    SessionRestated { session: SessionNumber, replaces: u64, header: Cow<'a, Session> },
+    /// All rows of a session are in: its cells, and how far the readings that stand go.
+    SessionFinished { session: SessionNumber, cells: usize, extent: Extent },
     /// Payloads were erased, among them those of `sessions`, whose numbers stay used.
     Erasure { erased: Vec<u64>, sessions: Vec<SessionNumber>, why: String },
     /// A copy was made.
@@ -181,6 +205,12 @@ impl Body<'_> {
             Self::SessionLine { .. } => Kind::SessionLine,
             Self::SessionFile { .. } => Kind::SessionFile,
             Self::SessionLeftOut { .. } => Kind::SessionLeftOut,
+            Self::SessionEvent { .. } => Kind::SessionEvent,
+            Self::SessionReadingCorrected { .. } => Kind::SessionReadingCorrected,
+            Self::SessionEventCorrected { .. } => Kind::SessionEventCorrected,
+            Self::SessionRowStruck { .. } => Kind::SessionRowStruck,
+            Self::SessionRestated { .. } => Kind::SessionRestated,
+            Self::SessionFinished { .. } => Kind::SessionFinished,
             Self::Erasure { .. } => Kind::Erasure,
             Self::CopyMade { .. } => Kind::CopyMade,
         }
@@ -198,15 +228,7 @@ impl Body<'_> {
             | Self::RunFinished { run }
             | Self::LeftOut { run, .. }
             | Self::Decided { run, .. } => Some(*run),
-            Self::Begun
-            | Self::Entry { .. }
-            | Self::Session { .. }
-            | Self::SessionReadings { .. }
-            | Self::SessionLine { .. }
-            | Self::SessionFile { .. }
-            | Self::SessionLeftOut { .. }
-            | Self::Erasure { .. }
-            | Self::CopyMade { .. } => None,
+            _ => None,
         }
     }
 
@@ -217,7 +239,13 @@ impl Body<'_> {
             | Self::SessionReadings { session, .. }
             | Self::SessionLine { session, .. }
             | Self::SessionFile { session, .. }
-            | Self::SessionLeftOut { session, .. } => Some(*session),
+            | Self::SessionLeftOut { session, .. }
+            | Self::SessionEvent { session, .. }
+            | Self::SessionReadingCorrected { session, .. }
+            | Self::SessionEventCorrected { session, .. }
+            | Self::SessionRowStruck { session, .. }
+            | Self::SessionRestated { session, .. }
+            | Self::SessionFinished { session, .. } => Some(*session),
             _ => None,
         }
     }
@@ -309,6 +337,38 @@ pub(super) fn write(record: &Record<'_>) -> Vec<u8> {
         Body::SessionLeftOut { session, left_out } => {
             session.write(out);
             left_out.write(out);
+        }
+        Body::SessionEvent { session, event } => {
+            session.write(out);
+            event.write(out);
+        }
+        Body::SessionReadingCorrected { session, row, replaces, values } => {
+            session.write(out);
+            row.write(out);
+            replaces.write(out);
+            values.write(out);
+        }
+        Body::SessionEventCorrected { session, row, replaces, event } => {
+            session.write(out);
+            row.write(out);
+            replaces.write(out);
+            event.write(out);
+        }
+        Body::SessionRowStruck { session, row, replaces, why } => {
+            session.write(out);
+            row.write(out);
+            replaces.write(out);
+            why.write(out);
+        }
+        Body::SessionRestated { session, replaces, header } => {
+            session.write(out);
+            replaces.write(out);
+            session_header::write(header, out);
+        }
+        Body::SessionFinished { session, cells, extent } => {
+            session.write(out);
+            cells.write(out);
+            extent.write(out);
         }
         Body::Erasure { erased, sessions, why } => {
             erased.write(out);
@@ -406,6 +466,37 @@ pub(super) fn read(kind: u16, bytes: &[u8]) -> Result<Record<'static>, Unreadabl
         Kind::SessionLeftOut => {
             Body::SessionLeftOut { session: Canonical::read(from)?, left_out: Canonical::read(from)? }
         }
+        Kind::SessionEvent => {
+            Body::SessionEvent { session: Canonical::read(from)?, event: Canonical::read(from)? }
+        }
+        Kind::SessionReadingCorrected => Body::SessionReadingCorrected {
+            session: Canonical::read(from)?,
+            row: Canonical::read(from)?,
+            replaces: Canonical::read(from)?,
+            values: Canonical::read(from)?,
+        },
+        Kind::SessionEventCorrected => Body::SessionEventCorrected {
+            session: Canonical::read(from)?,
+            row: Canonical::read(from)?,
+            replaces: Canonical::read(from)?,
+            event: Canonical::read(from)?,
+        },
+        Kind::SessionRowStruck => Body::SessionRowStruck {
+            session: Canonical::read(from)?,
+            row: Canonical::read(from)?,
+            replaces: Canonical::read(from)?,
+            why: Canonical::read(from)?,
+        },
+        Kind::SessionRestated => Body::SessionRestated {
+            session: Canonical::read(from)?,
+            replaces: Canonical::read(from)?,
+            header: Cow::Owned(session_header::read(from)?),
+        },
+        Kind::SessionFinished => Body::SessionFinished {
+            session: Canonical::read(from)?,
+            cells: Canonical::read(from)?,
+            extent: Canonical::read(from)?,
+        },
         Kind::Erasure => Body::Erasure {
             erased: Canonical::read(from)?,
             sessions: Canonical::read(from)?,
@@ -489,10 +580,10 @@ pub(super) fn rows(seq: u64, record: &Record<'_>) -> Vec<Row> {
                 ("taken", text(&header.taken.to_rfc3339())),
                 ("recorded", text(&at.to_rfc3339())),
                 ("origin", code(origin)),
-                ("first_s", real(extent.first_s)),
-                ("last_s", real(extent.last_s)),
+                ("first_s", extent.map_or(Value::Null, |extent| real(extent.first_s))),
+                ("last_s", extent.map_or(Value::Null, |extent| real(extent.last_s))),
                 ("cells", count(header.readings.cells.len())),
-                ("readings", count(extent.rows)),
+                ("readings", extent.map_or(Value::Null, |extent| count(extent.rows))),
                 ("source", digest(*source)),
             ];
             rows.push(Row { table: "session", columns });
@@ -507,6 +598,17 @@ pub(super) fn rows(seq: u64, record: &Record<'_>) -> Vec<Row> {
                 ("to_s", to.map_or(Value::Null, real)),
             ];
             rows.push(Row { table: "session_left_out", columns });
+        }
+        Body::SessionFinished { session, cells, extent } => {
+            let columns = vec![
+                ("seq", place(seq)),
+                ("session", number(session.get())),
+                ("cells", count(*cells)),
+                ("readings", count(extent.rows)),
+                ("first_s", real(extent.first_s)),
+                ("last_s", real(extent.last_s)),
+            ];
+            rows.push(Row { table: "session_finished", columns });
         }
         Body::Erasure { erased, sessions, .. } => {
             for session in sessions {

@@ -110,13 +110,14 @@ impl Book {
     }
 }
 
-const LISTS: [&str; 9] = [
+const LISTS: [&str; 10] = [
     "run",
     "of_run",
     "decision",
     "register",
     "session",
     "of_session",
+    "session_finished",
     "session_left_out",
     "session_erased",
     "erased",

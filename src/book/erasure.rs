@@ -133,7 +133,8 @@ impl Book {
 }
 
 /// The tables whose rows go with the payload they repeat.
-const ERASABLE: [&str; 5] = ["payload", "register", "session", "of_session", "session_left_out"];
+const ERASABLE: [&str; 6] =
+    ["payload", "register", "session", "of_session", "session_finished", "session_left_out"];
 
 /// Everything personal that belongs to a diver, in its order: all revisions of the entry, and all of the sessions.
 fn records_of(connection: &Connection, diver: &Id) -> Result<Vec<u64>, Inside> {

@@ -168,6 +168,57 @@ pub enum BookError {
         /// Why.
         why: String,
     },
+    /// A session that is complete.
+    #[error(
+        "session {session} is complete: a stretch is left out with its reason, and new rows make a new session"
+    )]
+    SessionComplete {
+        /// The session.
+        session: SessionNumber,
+    },
+    /// A row that the session does not have.
+    #[error("session {session} has no row {row}{}", rows_there(*rows))]
+    NoSuchRow {
+        /// The session.
+        session: SessionNumber,
+        /// The row asked for.
+        row: usize,
+        /// The rows it has.
+        rows: usize,
+    },
+    /// A row that was struck before.
+    #[error("row {row} of session {session} is already struck")]
+    RowStruck {
+        /// The session.
+        session: SessionNumber,
+        /// The row.
+        row: usize,
+    },
+    /// A correction that would make readings of an event, or an event of readings.
+    #[error(
+        "row {row} of session {session} {}: strike it with the reason, and record the other anew",
+        if *is_event { "is an event" } else { "holds readings" }
+    )]
+    OtherKindOfRow {
+        /// The session.
+        session: SessionNumber,
+        /// The row.
+        row: usize,
+        /// Whether it is an event; else it holds readings.
+        is_event: bool,
+    },
+    /// Readings with other columns than those before, or a correction of more than one row.
+    #[error("session {session} has readings of other columns: each row has those of the first")]
+    OtherColumns {
+        /// The session.
+        session: SessionNumber,
+    },
+    /// A correction of what identifies a session.
+    #[error("session {session} keeps its diver, place, loop, time and cells: enter another session")]
+    AnotherSession {
+        /// The session.
+        session: SessionNumber,
+    },
     /// A session or a stretch of it that was left out before.
     #[error("session {session} is already left out{}", stretch(*stretch_s))]
     SessionAlreadyLeftOut {
@@ -271,6 +322,12 @@ impl BookError {
             | Self::NotPoints
             | Self::NoSuchSession { .. }
             | Self::SessionErased { .. }
+            | Self::SessionComplete { .. }
+            | Self::NoSuchRow { .. }
+            | Self::RowStruck { .. }
+            | Self::OtherKindOfRow { .. }
+            | Self::OtherColumns { .. }
+            | Self::AnotherSession { .. }
             | Self::SessionAlreadyLeftOut { .. }
             | Self::NoSuchStretch { .. }
             | Self::NoReason { .. }
@@ -303,6 +360,15 @@ impl BookError {
 /// The words for a stretch after what is said of it.
 fn stretch(stretch_s: Option<(f64, f64)>) -> String {
     stretch_s.map_or_else(String::new, |(from, to)| format!(" from {from} s to {to} s"))
+}
+
+/// The words for how many rows there are.
+fn rows_there(rows: usize) -> String {
+    match rows {
+        0 => ": it has none yet".to_owned(),
+        1 => ": there is only row 1".to_owned(),
+        _ => format!(": its rows are 1 to {rows}"),
+    }
 }
 
 /// The words for what a session has readings of.

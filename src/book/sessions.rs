@@ -1,4 +1,5 @@
-//! Sessions: imported whole from their files, or entered.
+//! Sessions: imported whole from their files, or entered whole; those that are recorded row by row are
+//! [`super::session_rows`]'s.
 //!
 //! A session is a header, blocks of readings, the run its injection line was made from, pieces of its files, and what
 //! was left out of it, each a record of its own; reading a session puts them together. All of these records are
@@ -10,12 +11,13 @@ use chrono::{DateTime, FixedOffset};
 use rusqlite::{Connection, OptionalExtension, params};
 
 use super::body::{Body, Kind, Record};
-use super::canonical;
 use super::chain::{Stamp, Writing, record_at, source_digest};
 use super::error::{BookError, Inside};
 use super::open::Book;
 use super::registers::{self, Entry, Register, key_of};
-use super::runs::Origin;
+use super::runs::{Origin, RunState};
+use super::session_rows::{ByRows, KeptRow, SessionChange};
+use super::{canonical, session_rows};
 use crate::entry::{
     CellSignal, Diver, Id, LineReference, Orifice, Run, Session, SessionLeftOut, SessionNumber,
     SessionReadings,
@@ -84,16 +86,22 @@ pub struct SessionRecorded {
 pub struct SessionRecord {
     /// Its number.
     pub number: SessionNumber,
-    /// The session as it was recorded; nothing that was left out is taken from it.
+    /// The session as it was recorded, with its corrections; nothing that was left out is taken from it.
     pub session: Session,
     /// The run its injection line is made from, when its file named a run file.
     pub line_run: Option<Run>,
     /// How it came.
     pub origin: Origin,
-    /// When it was recorded.
+    /// How far it is.
+    pub state: RunState,
+    /// When it was recorded or begun.
     pub recorded: DateTime<FixedOffset>,
     /// What was left out of it, in order.
     pub left_out: Vec<SessionLeftOut>,
+    /// The rows of one that was recorded row by row, struck ones too; of any other none.
+    pub rows: Vec<KeptRow>,
+    /// What was changed in them, in order.
+    pub changes: Vec<SessionChange>,
 }
 
 /// How far the readings of a session go, kept with its header so that a list need not read them.
@@ -110,7 +118,7 @@ pub(super) struct Extent {
 canonical::fields!(Extent { rows, first_s, last_s });
 
 impl Extent {
-    fn of(readings: &SessionReadings) -> Self {
+    pub(super) fn of(readings: &SessionReadings) -> Self {
         // Comparisons and not `min`: of two noughts of opposite sign those could give either.
         let (mut first_s, mut last_s) = (f64::NAN, f64::NAN);
         for &time in readings.time_s.iter().filter(|time| !time.is_nan()) {
@@ -241,22 +249,10 @@ fn append(
     line_run: Option<&Run>,
     files: Option<(&SessionSource, [u8; 32])>,
 ) -> Result<SessionRecorded, Inside> {
-    let diver_created =
-        created(writing, Register::Diver, &session.diver, |id| Entry::Diver(Diver::bare(id)))?;
-    let orifice_created = match &session.line {
-        Some(LineReference::Orifice(orifice)) => {
-            created(writing, Register::Orifice, orifice, |id| Entry::Orifice(Orifice::bare(id)))?
-        }
-        Some(LineReference::RunFile(_)) | None => false,
-    };
-    let number = next_number(&writing.transaction)?;
-    writing.append(Body::Session {
-        number,
-        origin: if files.is_some() { Origin::Imported } else { Origin::Entered },
-        source: files.map(|(_, digest)| digest),
-        extent: Extent::of(&session.readings),
-        header: Cow::Borrowed(session),
-    })?;
+    let origin = if files.is_some() { Origin::Imported } else { Origin::Entered };
+    let (extent, source) = (Some(Extent::of(&session.readings)), files.map(|(_, digest)| digest));
+    let recorded = head(writing, session, origin, extent, source)?;
+    let number = recorded.number;
     let columns = columns(&session.readings);
     let rows = columns.iter().map(|column| column.len()).max().unwrap_or(0);
     for from in (0..rows).step_by(BLOCK_ROWS) {
@@ -274,6 +270,27 @@ fn append(
             writing.append(Body::SessionFile { session: number, role, name, bytes })?;
         }
     }
+    Ok(recorded)
+}
+
+/// Puts the header of a new session at the end of the chain, with the register entries it needs.
+pub(super) fn head(
+    writing: &mut Writing<'_, '_, '_>,
+    session: &Session,
+    origin: Origin,
+    extent: Option<Extent>,
+    source: Option<[u8; 32]>,
+) -> Result<SessionRecorded, Inside> {
+    let diver_created =
+        created(writing, Register::Diver, &session.diver, |id| Entry::Diver(Diver::bare(id)))?;
+    let orifice_created = match &session.line {
+        Some(LineReference::Orifice(orifice)) => {
+            created(writing, Register::Orifice, orifice, |id| Entry::Orifice(Orifice::bare(id)))?
+        }
+        Some(LineReference::RunFile(_)) | None => false,
+    };
+    let number = next_number(&writing.transaction)?;
+    writing.append(Body::Session { number, origin, source, extent, header: Cow::Borrowed(session) })?;
     Ok(SessionRecorded { number, new: true, diver_created, orifice_created })
 }
 
@@ -310,7 +327,7 @@ pub(super) fn columns(readings: &SessionReadings) -> Vec<&[f64]> {
 }
 
 /// The same columns, to be filled.
-fn columns_mut(readings: &mut SessionReadings) -> Vec<&mut Vec<f64>> {
+pub(super) fn columns_mut(readings: &mut SessionReadings) -> Vec<&mut Vec<f64>> {
     let SessionReadings { time_s, cells, depth_m, loop_temperature_k } = readings;
     let cells = cells.iter_mut().map(|cell| match &mut cell.signal {
         CellSignal::Bar(column) | CellSignal::Volts { readings: column, .. } => column,
@@ -325,7 +342,7 @@ fn block(column: &[f64], from: usize) -> &[f64] {
 }
 
 /// Refuses the number of a session that was never recorded, and says when one was erased.
-fn exists(connection: &Connection, number: SessionNumber) -> Result<(), Inside> {
+pub(super) fn exists(connection: &Connection, number: SessionNumber) -> Result<(), Inside> {
     if connection.prepare_cached("SELECT 1 FROM session WHERE number = ?")?.exists([number.get()])? {
         return Ok(());
     }
@@ -340,7 +357,8 @@ fn exists(connection: &Connection, number: SessionNumber) -> Result<(), Inside> 
     }
 }
 
-/// Whether a session has such a stretch, and it was not left out before; without reading its readings.
+/// Whether a session has such a stretch, and it was not left out before; of a complete one without
+/// reading its readings.
 fn may_be_left_out(
     connection: &Connection,
     number: SessionNumber,
@@ -348,11 +366,7 @@ fn may_be_left_out(
 ) -> Result<(), Inside> {
     exists(connection, number)?;
     if let Some((from, to)) = stretch_s {
-        let sql = "SELECT first_s, last_s FROM session WHERE number = ?";
-        let readings_s: (Option<f64>, Option<f64>) = connection
-            .prepare_cached(sql)?
-            .query_row([number.get()], |row| Ok((row.get(0)?, row.get(1)?)))?;
-        let readings_s = readings_s.0.zip(readings_s.1);
+        let readings_s = ends(connection, number)?;
         let inside = readings_s.is_some_and(|(first, last)| from <= to && from <= last && to >= first);
         if !inside || !from.is_finite() || !to.is_finite() {
             return Err(
@@ -368,6 +382,19 @@ fn may_be_left_out(
     Ok(())
 }
 
+/// Earliest and latest reading of a session, in seconds; none without readings.
+fn ends(connection: &Connection, number: SessionNumber) -> Result<Option<(f64, f64)>, Inside> {
+    if session_rows::is_open(connection, number)? {
+        let Extent { first_s, last_s, .. } = Extent::of(&assemble(connection, number)?.session.readings);
+        return Ok((!first_s.is_nan()).then_some((first_s, last_s)));
+    }
+    let sql = "SELECT coalesce(done.first_s, session.first_s), coalesce(done.last_s, session.last_s) \
+               FROM session LEFT JOIN session_finished AS done ON done.session = number WHERE number = ?";
+    let ends: (Option<f64>, Option<f64>) =
+        connection.prepare_cached(sql)?.query_row([number.get()], |row| Ok((row.get(0)?, row.get(1)?)))?;
+    Ok(ends.0.zip(ends.1))
+}
+
 /// The places of a session's records, in their order: those of its files, or all the others.
 fn places(connection: &Connection, number: SessionNumber, of_files: bool) -> Result<Vec<u64>, Inside> {
     exists(connection, number)?;
@@ -378,21 +405,43 @@ fn places(connection: &Connection, number: SessionNumber, of_files: bool) -> Res
 }
 
 /// The record of a session at a place that its list names.
-fn record_of(connection: &Connection, seq: u64, number: SessionNumber) -> Result<Record<'static>, Inside> {
+pub(super) fn record_of(
+    connection: &Connection,
+    seq: u64,
+    number: SessionNumber,
+) -> Result<Record<'static>, Inside> {
     let lost = || Inside::Damaged(format!("record {seq} of session {number} is not there"));
     record_at(connection, seq)?.ok_or_else(lost)
 }
 
 /// The session of a number from its records, in their order; the files it came from are not read.
-fn assemble(connection: &Connection, number: SessionNumber) -> Result<SessionRecord, Inside> {
+pub(super) fn assemble(connection: &Connection, number: SessionNumber) -> Result<SessionRecord, Inside> {
     let mut seqs = places(connection, number, false)?.into_iter();
     let headless = || Inside::Damaged(format!("session {number} has no header"));
-    let first = record_of(connection, seqs.next().ok_or_else(headless)?, number)?;
+    let seq = seqs.next().ok_or_else(headless)?;
+    let first = record_of(connection, seq, number)?;
     let Record { at: recorded, body: Body::Session { origin, extent, header, .. } } = first else {
         return Err(headless());
     };
     let session = header.into_owned();
-    let mut found = SessionRecord { number, session, line_run: None, origin, recorded, left_out: Vec::new() };
+    let Some(extent) = extent else {
+        let mut by_rows = ByRows::begun(number, seq, recorded, session);
+        for seq in seqs {
+            by_rows.take(seq, record_of(connection, seq, number)?)?;
+        }
+        return by_rows.into_record();
+    };
+    let mut found = SessionRecord {
+        number,
+        session,
+        line_run: None,
+        origin,
+        state: RunState::Complete,
+        recorded,
+        left_out: Vec::new(),
+        rows: Vec::new(),
+        changes: Vec::new(),
+    };
     // Room for all rows at once, and for no more than the records that follow can hold, whatever the header says.
     let rows = extent.rows.min(seqs.len().saturating_mul(BLOCK_ROWS));
     for seq in seqs {

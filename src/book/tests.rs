@@ -147,7 +147,7 @@ fn any_sessions_come_back_from_a_file_to_the_last_bit() {
 fn bits(session: &Session) -> (Vec<u8>, Vec<u64>) {
     let number = SessionNumber::new(1).unwrap();
     let record = |body| body::write(&Record { at: session.taken, body });
-    let extent = Extent { rows: 0, first_s: 0.0, last_s: 0.0 };
+    let extent = Some(Extent { rows: 0, first_s: 0.0, last_s: 0.0 });
     let header = Body::Session {
         number,
         origin: Origin::Entered,
@@ -588,7 +588,7 @@ fn sample_records() -> Vec<Record<'static>> {
             number: session,
             origin: Origin::Imported,
             source: Some([8; 32]),
-            extent: Extent { rows: 2, first_s: 0.0, last_s: 1.0 },
+            extent: Some(Extent { rows: 2, first_s: 0.0, last_s: 1.0 }),
             header: Cow::Owned(sample_session()),
         },
         Body::SessionReadings {
@@ -604,6 +604,37 @@ fn sample_records() -> Vec<Record<'static>> {
         },
         Body::SessionLeftOut { session, left_out: session_left_out(Some((60.0, 90.5))) },
         Body::SessionLeftOut { session, left_out: session_left_out(None) },
+        Body::Session {
+            number: session,
+            origin: Origin::Entered,
+            source: None,
+            extent: None,
+            header: Cow::Owned(Session { events: Vec::new(), ..sample_session() }),
+        },
+        Body::SessionEvent { session, event: Event { at_s: 600.0, what: What::OxygenAdd(None) } },
+        Body::SessionReadingCorrected {
+            session,
+            row: 2,
+            replaces: 3,
+            values: vec![30.0, 0.69, f64::NAN, 1.5],
+        },
+        Body::SessionEventCorrected {
+            session,
+            row: 3,
+            replaces: 4,
+            event: Event { at_s: 90.0, what: What::Stop },
+        },
+        Body::SessionRowStruck { session, row: 4, replaces: 5, why: "read the wrong watch".into() },
+        Body::SessionRestated {
+            session,
+            replaces: 2,
+            header: Cow::Owned(Session { events: Vec::new(), mass: None, ..sample_session() }),
+        },
+        Body::SessionFinished {
+            session,
+            cells: 2,
+            extent: Extent { rows: 2, first_s: 0.0, last_s: f64::NAN },
+        },
         Body::Erasure { erased: vec![12, 19], sessions: vec![session], why: "asked to".into() },
         Body::CopyMade { kind: CopyKind::Backup, place: "stick/book.db".into() },
     ];

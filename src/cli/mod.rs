@@ -9,8 +9,11 @@ mod bench;
 mod book;
 mod demo;
 pub mod enter;
+mod instrument;
+mod interrupt;
 mod manual;
 mod registers;
+mod rig;
 mod session;
 mod setting;
 
@@ -91,6 +94,7 @@ fn verb(arguments: &Arguments) -> Result<ExitStatus, Ended> {
         Command::Diver(verb) => registers::diver(verb, &arguments.global),
         Command::Acceptance(verb) => registers::acceptance(verb, &arguments.global),
         Command::Shop(verb) => registers::shop(verb, &arguments.global),
+        Command::Rig(arguments_of) => rig::rig(arguments_of, &arguments.global),
         Command::Book(verb) => book::book(verb, &arguments.global),
         Command::Completions { shell } => manual::completions(*shell),
         Command::Man => manual::man(),

@@ -6,7 +6,7 @@ use super::arguments::{
     Acceptances, Add, Divers, Edit, EditShop, Entries, FirstStages, Forget, Global, Instruments, One,
     Orifices, ShopVerbs, ShowOrifice,
 };
-use super::{Ended, note, say, shelf, tell_notes, units};
+use super::{Ended, instrument, note, say, shelf, tell_notes, units};
 use crate::report::{orifice_history, registers as words};
 use crate::work::fit::names_a_file;
 use crate::work::history::{self, HistoryRequest};
@@ -30,6 +30,8 @@ pub(super) fn instrument(verb: &Instruments, global: &Global) -> Result<ExitStat
         Instruments::Edit(Edit { id, file, flags }) => edit(kind, id, file.as_ref(), &flags.given, global),
         Instruments::List(list) => self::list(kind, list, global),
         Instruments::Show(One { id, all }) => show(kind, id, *all, global),
+        Instruments::Ports => instrument::ports(global),
+        Instruments::Try(arguments) => instrument::try_instrument(arguments, global),
     }
 }
 

@@ -36,7 +36,7 @@ pub(super) fn tick_size(body: f64) -> f64 {
 
 /// How far from a frame the labels of its upper and lower side reach.
 pub(super) fn label_room(body: f64) -> f64 {
-    0.75 * body + 1.05 * tick_size(body)
+    0.75 * body + 1.12 * tick_size(body)
 }
 
 /// The widest label of some ticks.
@@ -120,7 +120,7 @@ impl Axes {
                 pieces: &[(text, Weight::Regular)],
             });
         };
-        let upright = |side: &Side| side.labelled.then(|| side.ticks.major.clone()).unwrap_or_default();
+        let upright = |side: &Side| if side.labelled { side.ticks.major.clone() } else { Vec::new() };
         for (value, text) in upright(&self.left) {
             let y = self.left.scale.at(value) + TO_BASELINE * size;
             label(&text, frame.left - gap, y, Anchor::End);
@@ -131,7 +131,7 @@ impl Axes {
                 label(&text, frame.right + gap, y, Anchor::Start);
             }
         }
-        let below = frame.bottom + 0.75 * body + 0.75 * size;
+        let below = frame.bottom + 0.75 * body + 0.85 * size;
         let above = frame.top - 0.75 * body;
         for (side, y) in [(Some(&self.bottom), below), (self.top.as_ref(), above)] {
             let Some(side) = side else { continue };

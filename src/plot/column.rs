@@ -151,7 +151,7 @@ impl<S: Copy> Column<S> {
     }
 
     /// Moves the lines from the `first` on down to the foot of a column of this height.
-    pub(super) fn to_foot(&mut self, first: usize, height: f64) {
+    pub(super) fn move_to_foot(&mut self, first: usize, height: f64) {
         let spare = (height - self.y).max(0.0);
         self.lines.iter_mut().skip(first).for_each(|line| line.y += spare);
         self.y += spare;

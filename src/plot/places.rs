@@ -76,7 +76,7 @@ pub(super) fn around(text: &str, size: f64, (x, y): (f64, f64), away: f64) -> Ve
         let y = y + step * size;
         places.push(at(x + away, y, Anchor::Start));
         places.push(at(x - away, y, Anchor::End));
-        if step < -0.5 || step > 0.5 {
+        if f64::abs(step) > 0.5 {
             places.push(at(x, y + 0.5 * step.signum() * size, Anchor::Middle));
         }
     }

@@ -34,10 +34,12 @@ pub struct Row {
     pub left_out: bool,
     /// Stretches left out of it by hand.
     pub stretches_left_out: usize,
+    /// Whether rows may still come.
+    pub open: bool,
 }
 
 impl Row {
-    /// The row of a session that is at hand.
+    /// The row of a session that is at hand, and complete.
     #[must_use]
     pub fn of(number: SessionNumber, session: &Session, left_out: &[SessionLeftOut]) -> Self {
         Self {
@@ -51,6 +53,7 @@ impl Row {
             readings: session.readings.time_s.len(),
             left_out: left_out.iter().any(|out| out.stretch_s.is_none()),
             stretches_left_out: left_out.iter().filter(|out| out.stretch_s.is_some()).count(),
+            open: false,
         }
     }
 }
@@ -67,7 +70,7 @@ pub fn minutes(session: &Session) -> f64 {
 #[must_use]
 pub fn text(rows: &[Row], more: bool) -> String {
     if rows.is_empty() {
-        return "No sessions in the book yet: session import FILE.toml, or session log.\n".to_owned();
+        return "No sessions in the book yet: session import FILE.toml, or session enter DIVER.\n".to_owned();
     }
     let cells: Vec<Vec<String>> = rows
         .iter()
@@ -81,7 +84,7 @@ pub fn text(rows: &[Row], more: bool) -> String {
                 fixed(row.minutes, 0),
                 row.cells.to_string(),
                 row.readings.to_string(),
-                left_out(row),
+                remarks(row),
             ]
         })
         .collect();
@@ -97,13 +100,15 @@ pub fn text(rows: &[Row], more: bool) -> String {
     text
 }
 
-fn left_out(row: &Row) -> String {
-    match (row.left_out, row.stretches_left_out) {
+fn remarks(row: &Row) -> String {
+    let left_out = match (row.left_out, row.stretches_left_out) {
         (true, _) => "left out".to_owned(),
         (false, 0) => String::new(),
         (false, 1) => "1 stretch left out".to_owned(),
         (false, n) => format!("{n} stretches left out"),
-    }
+    };
+    let parts = [if row.open { "open" } else { "" }, left_out.as_str()];
+    parts.into_iter().filter(|part| !part.is_empty()).collect::<Vec<_>>().join(", ")
 }
 
 /// A diluent as a session file writes it: "air", "oxygen 18 %".
@@ -134,6 +139,7 @@ pub(super) struct JsonRow {
     readings: usize,
     left_out_whole: bool,
     stretches_left_out: usize,
+    open: bool,
 }
 
 impl JsonRow {
@@ -149,6 +155,7 @@ impl JsonRow {
             readings: row.readings,
             left_out_whole: row.left_out,
             stretches_left_out: row.stretches_left_out,
+            open: row.open,
         }
     }
 }

@@ -9,6 +9,7 @@ use super::Units;
 use super::cautions::SESSION;
 use super::layout::{table, wrapped};
 use super::number::{Plain, fixed, limit_percent, shortest};
+use super::session_changes::{self, Change};
 use super::session_limits;
 use super::session_list::{JsonRow, Row, diluent, minutes};
 use super::typed::{clock, span, tame};
@@ -38,6 +39,10 @@ pub struct Shown<'a> {
     pub files: &'a [String],
     /// What was said on reading them.
     pub notes: &'a [String],
+    /// Whether rows may still come.
+    pub open: bool,
+    /// What was corrected or struck in it, in order.
+    pub changes: &'a [Change],
 }
 
 /// The session as text.
@@ -55,6 +60,10 @@ pub fn text(shown: &Shown<'_>, units: &Units) -> String {
     let mut text = wrapped("", "  ", &title);
     let recorded = format!("taken {}, recorded {}", session.taken.to_rfc3339(), shown.recorded.to_rfc3339());
     text.push_str(&wrapped("  ", "  ", &recorded));
+    if shown.open {
+        let open = format!("still open: session resume {} goes on with it", shown.number);
+        text.push_str(&wrapped("  ", "  ", &open));
+    }
     if !shown.files.is_empty() {
         let files: Vec<String> = shown.files.iter().map(|file| tame(file)).collect();
         text.push_str(&wrapped("  ", "  ", &format!("from {}", files.join(", "))));
@@ -77,6 +86,12 @@ pub fn text(shown: &Shown<'_>, units: &Units) -> String {
         text.push_str("\nLeft out by hand\n");
         for out in shown.left_out {
             text.push_str(&wrapped("  ", "    ", &left_out(out)));
+        }
+    }
+    if !shown.changes.is_empty() {
+        text.push_str("\nCorrected\n");
+        for change in shown.changes {
+            text.push_str(&wrapped("  ", "    ", &session_changes::words(change, units)));
         }
     }
     let extremes = session_limits::extremes(session, &[], None);
@@ -105,7 +120,7 @@ fn given(unit: Unit, si: f64, expanded_si: Option<f64>) -> String {
     }
 }
 
-fn hectopascal(pa: f64, expanded_pa: Option<f64>) -> String {
+pub(super) fn hectopascal(pa: f64, expanded_pa: Option<f64>) -> String {
     let expanded = expanded_pa.map_or_else(String::new, |u| format!(" ± {}", shortest(u / 100.0, 3)));
     format!("{}{expanded} hPa", shortest(pa / 100.0, 6))
 }
@@ -252,7 +267,7 @@ fn in_order(session: &Session) -> Vec<&Event> {
 }
 
 /// What happened, in words.
-fn what(what: &What, units: &Units) -> String {
+pub(super) fn what(what: &What, units: &Units) -> String {
     match what {
         What::Injection(Injection::Off) => "injection off".into(),
         What::Injection(Injection::Flow(flow)) => format!(
@@ -374,6 +389,7 @@ struct Document {
     diluent: String,
     loop_volume_l: Option<Plain>,
     left_out: Vec<Value>,
+    changes: Vec<Value>,
     recorded: String,
     files: Vec<String>,
     conditions: Value,
@@ -391,10 +407,11 @@ impl Document {
         let (session, units) = (shown.session, Units::default());
         let extremes = session_limits::extremes(session, &[], None);
         Self {
-            row: JsonRow::of(&Row::of(shown.number, session, shown.left_out)),
+            row: JsonRow::of(&Row { open: shown.open, ..Row::of(shown.number, session, shown.left_out) }),
             diluent: diluent(session.diluent),
             loop_volume_l: session.loop_volume.map(|volume| Plain(volume.value.as_m3() * 1e3)),
             left_out: shown.left_out.iter().map(left_out_json).collect(),
+            changes: shown.changes.iter().map(session_changes::json).collect(),
             recorded: shown.recorded.to_rfc3339(),
             files: shown.files.to_vec(),
             conditions: conditions_json(session),

@@ -206,6 +206,38 @@ pub(super) fn warnings<'a>(reported: &Reported<'a>, whole: bool, units: &Units) 
     warnings
 }
 
+/// What to know of the sessions behind a setting, by their names: what each warns of, and which gave no number.
+pub(super) fn behind(uptake: &Uptake, names: &[String], units: &Units) -> Vec<String> {
+    let Some((place, estimate)) = uptake.lowest() else { return Vec::new() };
+    let mut said: Vec<(String, Vec<String>)> = Vec::new();
+    let mut add = |sentence: String, name: &str| match said.iter_mut().find(|s| s.0 == sentence) {
+        Some((_, of)) => of.push(name.to_owned()),
+        None => said.push((sentence, vec![name.to_owned()])),
+    };
+    for session in &place.sessions {
+        let name = names.get(session.index).map_or("a session", String::as_str);
+        if let Err(why) = &session.answer {
+            add(format!("gave no number and is no part of the uptake: {}", say::why_not(why)), name);
+        }
+        let mut not_said = Vec::new();
+        for warning in &session.warnings {
+            match warning {
+                Warning::Rest(RestDoubt::NotSaid(item)) => not_said.push(*item),
+                other => add(say::warning(other, units), name),
+            }
+        }
+        if let Some(sentence) = say::rest_not_said(&not_said, units) {
+            add(sentence, name);
+        }
+    }
+    let mut all: Vec<String> =
+        said.into_iter().map(|(sentence, of)| format!("{}: {sentence}", tame(&of.join(", ")))).collect();
+    if estimate.per_kilogram.is_none() {
+        all.push(say::mass_unknown(estimate.uptake_l_min, units));
+    }
+    all
+}
+
 /// What to know of one session: first what endangered the diver, then what the record lacks.
 pub(super) fn session_warnings(
     reported: &Reported<'_>,
@@ -287,6 +319,8 @@ fn estimate_text(reported: &Reported<'_>, place: Place, estimate: &Estimate, uni
         let (value, u) = value_and_u(per.ml_kg_min, relative * per.ml_kg_min);
         let line = format!("{value} ± {u} mL/(kg·min), {}", say::plausible(per));
         text.push_str(&row("per kilogram", &line));
+    } else {
+        text.push_str(&row("per kilogram", &say::mass_unknown(estimate.uptake_l_min, units)));
     }
     if let Some(mc) = reported.monte_carlo_of(place) {
         text.push_str(&row("Monte Carlo", &monte_carlo(mc, units)));

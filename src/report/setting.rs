@@ -13,7 +13,7 @@ use super::setting_words::{
     bar_on_gauge, chance, data, diameter, injection, ip_given, ip_on_gauge, minutes, psi_on_gauge, rate,
     share_down,
 };
-use super::{Units, cautions, setting_assumed, warning_sentences};
+use super::{Units, cautions, session_uptake, setting_assumed, warning_sentences};
 use crate::bench::Analysis;
 use crate::bench::Warning as BenchWarning;
 use crate::entry::Run;
@@ -143,7 +143,16 @@ impl<'a> Reported<'a> {
                     .map(|w| format!("{name}in its bench run: {}", warning_sentences::sentence(w, units))),
             );
         }
+        all.extend(self.of_sessions(units));
         all
+    }
+
+    /// What the sessions behind the uptake warn of: most of it reads high, and a setting by it is too rich.
+    pub(super) fn of_sessions(&self, units: &Units) -> Vec<String> {
+        // A name alone; what stands behind it in a list of sessions is its date and place.
+        let short = |words: &String| words.split(" of ").next().unwrap_or(words).to_owned();
+        let names: Vec<String> = self.sessions.iter().map(short).collect();
+        self.uptake.map(|uptake| session_uptake::behind(uptake, &names, units)).unwrap_or_default()
     }
 
     /// The warnings that a setting was made in spite of.

@@ -83,7 +83,15 @@ pub(super) fn injected(reported: &Reported<'_>, described: &Described, units: &U
     };
     let richest = short(at.least_shortfall, share_down);
     let leanest = short(at.largest_shortfall, share_up);
-    lines.push(("shortfall", format!("{nominal}; {richest} at its richest, {leanest} at its leanest")));
+    let ends = format!("{richest} at its richest, {leanest} at its leanest");
+    lines.push((
+        "shortfall",
+        if used.first_stage == FirstStageKind::Compensated {
+            format!("{nominal}, at the surface; at {}: {ends}", max_depth(reported.setting, units))
+        } else {
+            format!("{nominal}; {ends}")
+        },
+    ));
     lines.push((
         "overfeeding",
         format!(
@@ -231,7 +239,7 @@ pub(super) fn depth_table(
     let (used, limits) = (&reported.setting.used, &described.depth);
     let compensated = limits.first_stage == FirstStageKind::Compensated;
     let (_, decimals) = injection(described.at.surface.nominal_l_min, described.at.surface.u_l_min, units);
-    let rows: Vec<Vec<String>> = thinned(&limits.rows, most)
+    let mut rows: Vec<Vec<String>> = thinned(&limits.rows, most)
         .map(|row| {
             let mut cells = vec![
                 down(depth_shown(row.depth_m, units), 0),
@@ -246,9 +254,16 @@ pub(super) fn depth_table(
             cells
         })
         .collect();
+    // Of two rows at the same shown depth the deeper stays: there is less left.
+    let shown: Vec<String> = rows.iter().filter_map(|cells| cells.first().cloned()).collect();
+    let mut at = 0;
+    rows.retain(|_| {
+        at += 1;
+        shown.get(at) != shown.get(at - 1)
+    });
     let q = units.flow_symbol();
     let (mut heads, mut symbols) =
-        (vec!["depth", "ambient", "injects", "at least"], vec![depth_symbol(units), "bar abs", q, q]);
+        (vec!["depth", "ambient", "injects", "low b"], vec![depth_symbol(units), "bar abs", q, q]);
     if compensated {
         heads.push("chance");
         symbols.push("");

@@ -31,7 +31,7 @@ pub fn why_not(why: &WhyNot, setting: &Setting, units: &Units) -> String {
             most_allowed(setting, units),
             chance(*p, used.chance),
             limit(used.chance),
-            fitting_sentence(fitting.as_ref(), units)
+            fitting_sentence(fitting.as_ref(), true, units)
         ),
         WhyNot::NothingHighEnough { highest_ip_bar_gauge, shortfall, fitting } => format!(
             "even {}, the highest IP of the range, may fall short by {} of the uptake at rest, and over {} is too \
@@ -39,7 +39,7 @@ pub fn why_not(why: &WhyNot, setting: &Setting, units: &Units) -> String {
             ip(*highest_ip_bar_gauge),
             share_up(*shortfall),
             limit(LARGEST_SHORTFALL),
-            fitting_sentence(fitting.as_ref(), units)
+            fitting_sentence(fitting.as_ref(), true, units)
         ),
         WhyNot::NoDivisionInRange { range_bar_gauge: (low, high), division_bar } => format!(
             "the range from {} to {} holds no mark of a gauge with divisions of {}: widen the range, or use a finer \
@@ -56,7 +56,7 @@ pub fn why_not(why: &WhyNot, setting: &Setting, units: &Units) -> String {
             at_max_depth(setting, units),
             fixed(span_bar_abs.0, 2),
             fixed(span_bar_abs.1, 2),
-            fitting_sentence(fitting.as_ref(), units)
+            fitting_sentence(fitting.as_ref(), true, units)
         ),
         WhyNot::ShortfallTooLarge { ip_bar_gauge, shortfall, fitting } => format!(
             "to keep the chance of overfeeding to {} the IP would be {}, where the injection may fall short by {} of \
@@ -66,7 +66,7 @@ pub fn why_not(why: &WhyNot, setting: &Setting, units: &Units) -> String {
             share_up(*shortfall),
             limit(LARGEST_SHORTFALL),
             MEASURE_AGAIN,
-            fitting_sentence(fitting.as_ref(), units)
+            fitting_sentence(fitting.as_ref(), true, units)
         ),
         other => why_not_without_ip(other, setting, units),
     }
@@ -110,14 +110,14 @@ pub fn why_not_without_ip(why: &WhyNot, setting: &Setting, units: &Units) -> Str
         }
         WhyNot::NothingLowEnough { fitting, .. } => format!(
             "even the lowest IP of the range injects too much; the hole is too large. {}",
-            fitting_sentence(fitting.as_ref(), units)
+            fitting_sentence(fitting.as_ref(), false, units)
         ),
         WhyNot::NothingHighEnough { shortfall, fitting, .. } => format!(
             "even the highest IP of the range may fall short by {} of the uptake at rest, and over {} is too lean; \
              the hole is too small. {}",
             share_up(*shortfall),
             limit(LARGEST_SHORTFALL),
-            fitting_sentence(fitting.as_ref(), units)
+            fitting_sentence(fitting.as_ref(), false, units)
         ),
         WhyNot::NoDivisionInRange { .. } => {
             "the range of the first stage holds no mark of the IP gauge: widen the \
@@ -128,7 +128,7 @@ pub fn why_not_without_ip(why: &WhyNot, setting: &Setting, units: &Units) -> Str
             "the setting needs a pressure{} at which the orifice was not measured: measure it there, or take another. \
              {}",
             at_max_depth(setting, units),
-            fitting_sentence(fitting.as_ref(), units)
+            fitting_sentence(fitting.as_ref(), false, units)
         ),
         WhyNot::ShortfallTooLarge { shortfall, fitting, .. } => format!(
             "to keep the chance of overfeeding to {} the injection may fall short by {} of the uptake at rest, and \
@@ -136,7 +136,7 @@ pub fn why_not_without_ip(why: &WhyNot, setting: &Setting, units: &Units) -> Str
             limit(setting.used.chance),
             share_up(*shortfall),
             limit(LARGEST_SHORTFALL),
-            fitting_sentence(fitting.as_ref(), units)
+            fitting_sentence(fitting.as_ref(), false, units)
         ),
     }
 }
@@ -341,19 +341,25 @@ pub const fn water_name(water: Water) -> &'static str {
     }
 }
 
-/// Which hole would fit.
-fn fitting_sentence(fitting: Option<&FittingDiameter>, units: &Units) -> String {
+/// Which hole would fit, and with `ip` what it would be set to.
+fn fitting_sentence(fitting: Option<&FittingDiameter>, ip: bool, units: &Units) -> String {
     fitting.map_or_else(
         || {
             "No other hole would do either: uptake and IP are not known well enough to set between too rich and too lean"
                 .to_owned()
         },
         |fitting| {
+            // Where none fits at the bottom, the largest is the one that is named already.
+            let bottom = if fitting.largest_um > fitting.um {
+                format!("{} at its bottom", diameter(fitting.largest_um, units))
+            } else {
+                "none at its bottom".to_owned()
+            };
+            let set = if ip { format!(", set to {}", ip_on_gauge(fitting.ip_bar_gauge, 0.1, units)) } else { String::new() };
             format!(
-                "An effective diameter of {} would fit (from {} at the top of the range to {} at its bottom)",
+                "An effective diameter of {} would fit{set} ({} at the top of the range, {bottom})",
                 diameter(fitting.um, units),
                 diameter(fitting.smallest_um, units),
-                diameter(fitting.largest_um, units)
             )
         },
     )

@@ -154,7 +154,10 @@ fn marked(reported: &Reported<'_>, orifice: &OrificeSetting, units: &Units) -> S
         .iter()
         .chain(&orifice.warnings)
         .filter(on_page)
-        .map(|w| wrapped("  ! ", "    ", &super::setting_sentences::warning(w, setting, units)))
+        .map(|w| super::setting_sentences::warning(w, setting, units))
+        .chain(reported.of_sessions(units))
+        .chain(reported.notes.iter().map(|note| data(note)))
+        .map(|says| wrapped("  ! ", "    ", &says))
         .collect();
     if says.is_empty() { says } else { format!("{}{says}", ruled("TO KNOW")) }
 }

@@ -17,6 +17,16 @@ pub fn tame(text: &str) -> String {
     tamed
 }
 
+/// A word for a shell: as it is where nothing in it means anything there, else between single quotes.
+#[must_use]
+pub fn shell_word(text: &str) -> String {
+    let plain = |c: char| c.is_ascii_alphanumeric() || "_./%+:,@=-".contains(c);
+    if !text.is_empty() && text.chars().all(plain) {
+        return text.to_owned();
+    }
+    format!("'{}'", text.replace('\'', r"'\''"))
+}
+
 /// Seconds on a time column as `00:07:30`, the form in which a session file names a time; to the nearest second.
 #[must_use]
 pub fn clock(seconds: f64) -> String {
@@ -47,6 +57,14 @@ mod tests {
     fn what_does_not_show_is_written_out() {
         assert_eq!(tame("dry suit, 5 mm é"), "dry suit, 5 mm é");
         assert_eq!(tame("a\u{1b}[2Jb\n\u{202e}c\u{200b}"), "a\\u{1b}[2Jb\\n\\u{202e}c\\u{200b}");
+    }
+
+    #[test]
+    fn a_word_of_a_command_stays_one_word() {
+        assert_eq!(shell_word("ebbline-rig/flow.toml"), "ebbline-rig/flow.toml");
+        assert_eq!(shell_word("my rig"), "'my rig'");
+        assert_eq!(shell_word("$(x)'"), r"'$(x)'\'''");
+        assert_eq!(shell_word(""), "''");
     }
 
     #[test]

@@ -123,7 +123,7 @@ pub fn warning(warning: &Warning, units: &Units) -> String {
         ),
         Warning::HeldButVents { from_s, to_s } => format!(
             "the loop is said to be held, but {} more went in than the diver used: taken as venting, for as held it \
-             would read 8 % high. Inject less than the uptake",
+             would read high. Inject less than the uptake",
             from_to(*from_s, *to_s)
         ),
         Warning::HeldOrVenting { from_s, to_s } => format!(
@@ -204,6 +204,14 @@ pub fn why_not(why: &WhyNot) -> String {
             no flow: measure the volume, lungs included, and write loop_volume = \"7.5 L ± 0.5 L\", or rest ten \
             minutes more at another injection"
             .into(),
+        WhyNot::LoopVolumeContradicts { stated_l, found_l, apart } => format!(
+            "the loop volume is stated as {} L, and the injections say {} L, {} standard uncertainties apart: one of \
+             them is wrong, or an injection is. Measure the volume again, lungs included, or leave it out of the file; \
+             look at the flow or IP of every injection",
+            fixed(*stated_l, 1),
+            fixed(*found_l, 1),
+            fixed(*apart, 0)
+        ),
         WhyNot::UnmarkedJump { at_s } => format!(
             "what could be used holds a jump of PO2 that no event explains, at {}: write down what was done there as \
              an event, or exclude that stretch",
@@ -392,6 +400,23 @@ const fn rest_item(item: RestItem) -> (&'static str, &'static str) {
         RestItem::WaterTemperature => ("how warm the water was", "water_temperature"),
         RestItem::Suit => ("what suit was worn", "suit"),
     }
+}
+
+/// Resting uptakes that most grown people have, L/min STPD: 2.0 to 4.5 mL/(kg·min) of 60 to 110 kg.
+const USUAL_L_MIN: (f64, f64) = (0.12, 0.50);
+
+/// What stands in the place of the uptake per kilogram where the mass is not known.
+#[must_use]
+pub fn mass_unknown(l_min: f64, units: &Units) -> String {
+    let without = "no mass of the diver was given, so whether the uptake is plausible was not checked: add mass = \"82 kg\"";
+    if (USUAL_L_MIN.0..=USUAL_L_MIN.1).contains(&l_min) {
+        return without.to_owned();
+    }
+    format!(
+        "{without}. {} STPD is outside what most grown people use at rest: look at flows, loop volume and reference \
+         conditions before anything is set by it",
+        units.flow_text(l_min)
+    )
 }
 
 /// What an uptake per kilogram says.

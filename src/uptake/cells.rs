@@ -76,9 +76,10 @@ pub(super) fn read(
     readings: &SessionReadings,
     calibrated_at: Option<CalibratedAt>,
     bins: &Bins,
-    ambient_bar: impl Fn(usize) -> f64,
+    ambient: &Ambient<'_>,
     assumptions: &Assumptions,
 ) -> Result<Cells, WhyNot> {
+    let most_bar = ambient.most_bar(bins);
     let points = calibrated_at.map(|at| calibration_points_bar(&at));
     let mut left_out = Vec::new();
     // Name and bin means of the cells that read.
@@ -97,20 +98,17 @@ pub(super) fn read(
                 (readings, gain, air - gain * in_air)
             }
         };
-        let mut faults = 0_usize;
-        let mut read = 0_usize;
-        for &row in &bins.rows {
-            let shown = column.get(row).copied().unwrap_or(f64::NAN);
-            if shown.is_nan() {
-                continue;
-            }
-            read += 1;
-            faults += usize::from(!is_plausible(offset + gain * shown, ambient_bar(row)));
+        let mut column = bins.in_order(column);
+        if let CellSignal::Volts { .. } = &cell.signal {
+            column.to_mut().iter_mut().for_each(|shown| *shown = offset + gain * *shown);
         }
-        let means = bins.means(|row| {
-            let po2 = offset + gain * column.get(row).copied().unwrap_or(f64::NAN);
-            if is_plausible(po2, ambient_bar(row)) { po2 } else { f64::NAN }
-        });
+        let (means, good) = match &most_bar {
+            MostBar::Same(most_bar) => bins.means_of(&column, |_, po2| po2 > 0.0 && po2 <= *most_bar),
+            MostBar::Each(most_bar) => bins.means_of(&column, |at, po2| po2 > 0.0 && po2 <= most_bar[at]),
+        };
+        let all = good == column.len();
+        let read = if all { good } else { column.iter().filter(|po2| !po2.is_nan()).count() };
+        let faults = read - good;
         let share = if read > 0 { faults as f64 / read as f64 } else { 1.0 };
         if share > assumptions.cell_faults {
             left_out.push(trouble(CellTrouble::Faults(share)));
@@ -131,7 +129,9 @@ pub(super) fn read(
         return Err(WhyNot::NoUsableCell { left_out });
     }
     if sound.len() > 1 {
-        disagreeing(readings, &mut sound, &mut left_out, assumptions.cell_limit.as_bar());
+        // Two cells lie half their distance from the middle: it is their distance that is held to the limit.
+        let limit_bar = assumptions.cell_limit.as_bar() * if sound.len() == 2 { 0.5 } else { 1.0 };
+        disagreeing(readings, &mut sound, &mut left_out, limit_bar);
         if sound.len() < 2 {
             return Err(WhyNot::CellsDisagree { left_out });
         }
@@ -150,8 +150,30 @@ pub(crate) fn calibration_points_bar(at: &CalibratedAt) -> (f64, f64) {
     (OXYGEN_IN_AIR * (at.barometer.as_bar() - vapour), at.oxygen * at.barometer.as_bar())
 }
 
-fn is_plausible(po2_bar: f64, ambient_bar: f64) -> bool {
-    po2_bar > 0.0 && po2_bar <= ambient_bar * (1.0 + ABOVE_AMBIENT)
+/// Where the counterlung is, and so the pressure around it.
+pub(super) struct Ambient<'a> {
+    /// At the surface, bar, and for each metre of water.
+    pub(super) barometer_bar: f64,
+    pub(super) bar_per_m: f64,
+    /// Depth where the column says nothing, metres; and the column.
+    pub(super) depth_m: f64,
+    pub(super) depths_m: Option<&'a [f64]>,
+}
+
+/// The largest oxygen partial pressure that is no fault, bar.
+enum MostBar {
+    Same(f64),
+    /// For each row in order of time.
+    Each(Vec<f64>),
+}
+
+impl Ambient<'_> {
+    fn most_bar(&self, bins: &Bins) -> MostBar {
+        let at = |depth_m: f64| (self.barometer_bar + self.bar_per_m * depth_m) * (1.0 + ABOVE_AMBIENT);
+        let Some(depths) = self.depths_m else { return MostBar::Same(at(self.depth_m)) };
+        let known = |d: &f64| if d.is_finite() { *d } else { self.depth_m };
+        MostBar::Each(bins.in_order(depths).iter().map(|d| at(known(d))).collect())
+    }
 }
 
 /// Leaves out cells that have no reading in too many of the bins in which another has.
@@ -178,51 +200,89 @@ fn drop_out(
 /// Cells that repeated one value exactly while the others moved. A cell alone cannot be told from a steady loop.
 fn frozen(readings: &SessionReadings, bins: &Bins, sound: &[(usize, Vec<f64>)]) -> Vec<(usize, CellTrouble)> {
     let mut found = Vec::new();
+    if sound.len() < 2 {
+        return found;
+    }
+    let times = bins.in_order(&readings.time_s);
     for (index, _) in sound {
-        let (column, digit_bar) = match &readings.cells[*index].signal {
-            CellSignal::Bar(column) => (column, step_noise(column).last_digit),
+        let (column, in_bar) = match &readings.cells[*index].signal {
+            CellSignal::Bar(column) => (column, true),
             // A tenth of a millivolt, the coarsest voltmeter in use, is 2 mbar.
-            CellSignal::Volts { readings: column, .. } => (column, 0.0),
+            CellSignal::Volts { readings: column, .. } => (column, false),
         };
-        let least_bar = FROZEN_MOVES_BAR.max(FROZEN_MOVES_DIGITS * digit_bar);
         let others: Vec<&Vec<f64>> = sound.iter().filter(|(i, _)| i != index).map(|(_, m)| m).collect();
         let mean_at = |bin: usize| others.iter().map(|m| m[bin]).sum::<f64>() / others.len() as f64;
+        // A whole column is looked through for its last digit: only when it is asked for.
+        let mut digits_bar = None;
         let mut worst: Option<(f64, f64)> = None;
-        let mut close = |from: usize, to: usize, count: usize| {
-            let (from_s, to_s) = (readings.time_s[bins.rows[from]], readings.time_s[bins.rows[to]]);
-            if others.is_empty() || count < FROZEN_READINGS || to_s - from_s < FROZEN_S {
-                return;
-            }
-            let moved = (mean_at(bins.bin[to]) - mean_at(bins.bin[from])).abs();
-            if moved > least_bar && worst.is_none_or(|(a, b)| to_s - from_s > b - a) {
-                worst = Some((from_s, to_s));
-            }
-        };
-        let (mut from, mut to, mut count, mut last) = (0, 0, 0, f64::NAN);
-        for (at, &row) in bins.rows.iter().enumerate() {
-            let shown = column.get(row).copied().unwrap_or(f64::NAN);
-            if shown.is_nan() {
-                continue;
-            }
-            // The very same number, bit for bit, is what freezing means.
-            if shown.to_bits() == last.to_bits() {
-                count += 1;
-            } else {
-                if count > 0 {
-                    close(from, to, count);
+        repeats(&bins.in_order(column), &times, bins, |run| {
+            let (from_s, to_s) = (times[run.from.0], times[run.to.0]);
+            let moved = (mean_at(run.to.1) - mean_at(run.from.1)).abs();
+            if moved > FROZEN_MOVES_BAR && worst.is_none_or(|(a, b)| to_s - from_s > b - a) {
+                let least_bar = *digits_bar.get_or_insert_with(|| {
+                    if in_bar { FROZEN_MOVES_DIGITS * step_noise(column).last_digit } else { 0.0 }
+                });
+                if moved > least_bar {
+                    worst = Some((from_s, to_s));
                 }
-                (from, count) = (at, 1);
             }
-            (to, last) = (at, shown);
-        }
-        if count > 0 {
-            close(from, to, count);
-        }
+        });
         if let Some((from_s, to_s)) = worst {
             found.push((*index, CellTrouble::Frozen { from_s, to_s }));
         }
     }
     found
+}
+
+/// A value that was repeated: its first and last reading, each with its bin.
+struct Run {
+    from: (usize, usize),
+    to: (usize, usize),
+    count: usize,
+}
+
+/// Hands over every repetition of one value that is long enough for a frozen cell; missing readings are looked past.
+fn repeats(column: &[f64], times: &[f64], bins: &Bins, mut found: impl FnMut(&Run)) {
+    let mut close = |run: &Run| {
+        if run.count >= FROZEN_READINGS && times[run.to.0] - times[run.from.0] >= FROZEN_S {
+            found(run);
+        }
+    };
+    let mut run = Run { from: (0, 0), to: (0, 0), count: 0 };
+    let mut last = f64::NAN;
+    for (bin, range) in bins.ranges().enumerate() {
+        // What begins and ends within a bin of a few seconds is not long enough.
+        let (from_s, to_s) = bins.ends_s[bin];
+        let mut may_skip = to_s - from_s < FROZEN_S;
+        let mut at = range.start;
+        while at < range.end {
+            let shown = column[at];
+            // The very same number, bit for bit, is what freezing means.
+            if shown.to_bits() == last.to_bits() && !shown.is_nan() {
+                (run.to, run.count) = ((at, bin), run.count + 1);
+            } else if !shown.is_nan() {
+                close(&run);
+                if std::mem::take(&mut may_skip) {
+                    at += last_run(&column[at..range.end]);
+                }
+                (run, last) = (Run { from: (at, bin), to: (at, bin), count: 1 }, column[at]);
+            }
+            at += 1;
+        }
+    }
+    close(&run);
+}
+
+/// Where the repetition that some readings end with begins.
+fn last_run(readings: &[f64]) -> usize {
+    let (mut begin, mut value) = (0, f64::NAN);
+    for (at, shown) in readings.iter().enumerate().rev().filter(|(_, shown)| !shown.is_nan()) {
+        if !value.is_nan() && shown.to_bits() != value.to_bits() {
+            break;
+        }
+        (begin, value) = (at, *shown);
+    }
+    begin
 }
 
 /// Leaves out cells that are off the median, in the mean or in over 5 % of the bins.

@@ -31,20 +31,22 @@ pub(super) fn jumps(time_s: &[f64], po2_bar: &[f64], kept: LoopKept) -> Vec<Prop
     if n < reach + 2 || kept == LoopKept::Topped {
         return Vec::new();
     }
-    let differences: Vec<f64> = (0..=n - reach)
-        .map(|k| median(&po2_bar[k + side + lag..k + reach]) - median(&po2_bar[k..k + side]))
-        .collect();
+    let sides: Vec<f64> = po2_bar.windows(side).map(median_of_few).collect();
+    let differences: Vec<f64> =
+        sides.windows(side + lag + 1).map(|pair| pair[side + lag] - pair[0]).collect();
+    // No place departs from the trend by more than the differences are apart.
+    let lowest = differences.iter().copied().fold(f64::INFINITY, f64::min);
+    let highest = differences.iter().copied().fold(f64::NEG_INFINITY, f64::max);
+    if highest - lowest <= LEAST_BAR && differences.iter().all(|d| d.is_finite()) {
+        return Vec::new();
+    }
     // The trend at each place is the median of the differences around it, of which a jump is a minority; not of all, because
     // a loop that shrinks falls faster and faster, and that is no jump. Noise is the usual departure from the trend.
-    let departures: Vec<f64> = (0..differences.len())
-        .map(|k| {
-            let around = k.saturating_sub(AROUND * reach)..(k + AROUND * reach + 1).min(differences.len());
-            differences[k] - median(&differences[around])
-        })
-        .collect();
+    let trend = medians_around(&differences, AROUND * reach);
+    let departures: Vec<f64> = differences.iter().zip(&trend).map(|(here, trend)| here - trend).collect();
     let sizes: Vec<f64> = departures.iter().map(|d| d.abs()).collect();
     // 1.4826: median departure to standard deviation, normal distribution.
-    let noise = 1.482_6 * median(&sizes);
+    let noise = 1.482_6 * median(sizes.clone());
     let up = LEAST_BAR.max(TIMES_NOISE * noise);
     let least_down = if kept == LoopKept::Sealed { LEAST_BAR } else { LEAST_DOWN_HELD_BAR };
     let down = least_down.max(TIMES_NOISE * noise);
@@ -77,21 +79,72 @@ fn spans(time_s: &[f64]) -> (usize, usize) {
     if intervals.is_empty() {
         return (MOST_SIDE, MOST_LAG);
     }
-    let every_s = median(&intervals);
+    let every_s = median(intervals);
     let bins = |seconds: f64, most: usize| (1..most).find(|n| *n as f64 * every_s >= seconds - 0.5 * every_s);
     (bins(SIDE_S, MOST_SIDE).unwrap_or(MOST_SIDE), bins(LAG_S, MOST_LAG).unwrap_or(MOST_LAG))
 }
 
-fn median(values: &[f64]) -> f64 {
-    let mut sorted = values.to_vec();
+/// Median of the values up to `reach` places to each side of every place.
+fn medians_around(values: &[f64], reach: usize) -> Vec<f64> {
+    let mut sorted: Vec<f64> = Vec::with_capacity(2 * reach + 1);
+    let place = |sorted: &[f64], value: f64| sorted.partition_point(|v| v.total_cmp(&value).is_lt());
+    for &value in values.iter().take(reach) {
+        sorted.insert(place(&sorted, value), value);
+    }
+    (0..values.len())
+        .map(|k| {
+            if let Some(&enters) = values.get(k + reach) {
+                sorted.insert(place(&sorted, enters), enters);
+            }
+            if let Some(&leaves) = k.checked_sub(reach + 1).and_then(|left| values.get(left)) {
+                sorted.remove(place(&sorted, leaves));
+            }
+            middle_of(&sorted)
+        })
+        .collect()
+}
+
+/// Median of at most [`MOST_SIDE`] values.
+fn median_of_few(values: &[f64]) -> f64 {
+    let mut sorted = [0.0; MOST_SIDE];
+    let sorted = &mut sorted[..values.len()];
+    sorted.copy_from_slice(values);
     sorted.sort_unstable_by(f64::total_cmp);
+    middle_of(sorted)
+}
+
+fn middle_of(sorted: &[f64]) -> f64 {
     let middle = sorted.len() / 2;
     if sorted.len().is_multiple_of(2) { 0.5 * (sorted[middle - 1] + sorted[middle]) } else { sorted[middle] }
+}
+
+fn median(mut values: Vec<f64>) -> f64 {
+    let middle = values.len() / 2;
+    let even = values.len().is_multiple_of(2);
+    let (below, upper, _) = values.select_nth_unstable_by(middle, f64::total_cmp);
+    let upper = *upper;
+    // The value before the middle one is the largest of those below it.
+    let lower = below.iter().copied().max_by(f64::total_cmp).filter(|_| even).unwrap_or(upper);
+    if even { 0.5 * (lower + upper) } else { upper }
 }
 
 #[cfg(test)]
 mod tests {
     use super::*;
+
+    #[test]
+    fn medians_that_move_along_are_those_of_every_window_sorted_anew() {
+        let values: Vec<f64> = (0..50).map(|i| f64::from((i * 7919) % 17) - 8.0).collect();
+        for reach in [0, 1, 6, 49, 60] {
+            let moving = medians_around(&values, reach);
+            for k in 0..values.len() {
+                let mut window = values[k.saturating_sub(reach)..(k + reach + 1).min(values.len())].to_vec();
+                assert_eq!(moving[k].to_bits(), median(window.clone()).to_bits(), "reach {reach}, place {k}");
+                window.sort_by(f64::total_cmp);
+                assert_eq!(moving[k].to_bits(), middle_of(&window).to_bits(), "reach {reach}, place {k}");
+            }
+        }
+    }
 
     fn stretch(step_at: usize, step: f64) -> (Vec<f64>, Vec<f64>) {
         let time_s: Vec<f64> = (0..120).map(|i| 5.0 * f64::from(i)).collect();

@@ -207,9 +207,7 @@ fn series(
     cells: &Cells,
 ) -> Model {
     let readings = &session.readings;
-    let column = |column: &Option<Vec<f64>>| {
-        column.as_ref().and_then(|c| bins.filled_means(|row| c.get(row).copied().unwrap_or(f64::NAN)))
-    };
+    let column = |column: &Option<Vec<f64>>| column.as_ref().and_then(|c| bins.filled_means(c));
     let depths = column(&readings.depth_m);
     let temperatures = column(&readings.loop_temperature_k);
     let mut model = Model::empty(given, line.cloned(), bins.first_s, bins.last_s);

@@ -5,7 +5,7 @@
 
 use chrono::{DateTime, FixedOffset};
 
-use super::cells::{self, CellLeftOut};
+use super::cells::{self, Ambient, CellLeftOut};
 use super::given::Given;
 use super::injection::InjectionLine;
 use super::model::Model;
@@ -192,14 +192,15 @@ fn model(
             warnings.push(warning(rows));
         }
     }
-    let (barometer, per_m, depth) = (given.barometer_bar, given.bar_per_m, given.depth_m);
-    let depths = session.readings.depth_m.as_ref();
-    let ambient = |row: usize| {
-        let here = depths.and_then(|d| d.get(row)).copied().filter(|d| d.is_finite());
-        barometer + per_m * here.unwrap_or(depth)
+    let barometer_bar = given.barometer_bar;
+    let ambient = Ambient {
+        barometer_bar,
+        bar_per_m: given.bar_per_m,
+        depth_m: given.depth_m,
+        depths_m: session.readings.depth_m.as_deref(),
     };
-    let cells = match cells::read(&session.readings, session.cells.calibrated_at, &bins, ambient, assumptions)
-    {
+    let calibrated_at = session.cells.calibrated_at;
+    let cells = match cells::read(&session.readings, calibrated_at, &bins, &ambient, assumptions) {
         Ok(cells) => cells,
         Err(why) => {
             if let WhyNot::NoUsableCell { left_out } | WhyNot::CellsDisagree { left_out } = &why {
@@ -214,7 +215,7 @@ fn model(
         warnings.push(Warning::OneCellOnly);
     }
     let highest = cells.po2_bar.iter().copied().filter(|p| p.is_finite()).fold(0.0, f64::max);
-    let calibrated_bar = cells.calibrated_to_bar.unwrap_or(barometer);
+    let calibrated_bar = cells.calibrated_to_bar.unwrap_or(barometer_bar);
     if highest > calibrated_bar {
         warnings.push(Warning::AboveCalibration { po2_bar: highest, calibrated_bar });
     }

@@ -20,6 +20,11 @@ use crate::stats::inverse::{Fieller, fieller};
 pub const COVERAGE_PROBABILITY: f64 = 0.95;
 /// Volumes further apart than this many standard uncertainties disagree, drops and metered oxygen likewise.
 const DISAGREES: f64 = 3.0;
+/// Volumes further apart than this many are not two views of one thing: one of them is wrong, and nobody can say which.
+/// So many, because the volume found from injections that lie near each other scatters more than its uncertainty says.
+const CONTRADICTS: f64 = 10.0;
+/// And only when the stated volume is this many times the one found.
+const TOO_LARGE: f64 = 1.5;
 
 /// What a row of the budget does.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -81,20 +86,20 @@ impl Solved {
 /// Solves a session.
 pub(super) fn solve(model: &Model, assumptions: &Assumptions) -> Result<Solved, WhyNot> {
     enough(model, assumptions)?;
-    let mut work = Work::start(model, assumptions)?;
+    let mut work = Work::start(model, assumptions, None)?;
     work.settle()?;
     work.learn_wander()?;
     work.finish()
 }
 
-/// Solves a session that was changed in thought: what the readings said of the wander stays.
+/// Solves a session that was changed in thought: what the readings said, their slopes and of the wander, stays.
 pub(super) fn solve_again(
     model: &Model,
     assumptions: &Assumptions,
     before: &Solved,
 ) -> Result<Solved, WhyNot> {
     enough(model, assumptions)?;
-    let mut work = Work::start(model, assumptions)?;
+    let mut work = Work::start(model, assumptions, Some(before))?;
     (work.wander, work.wander_dof) = (before.relative_wander, before.wander_dof);
     work.settle()?;
     work.finish()
@@ -164,7 +169,7 @@ impl Work<'_> {
         if interval.0.is_nan() || interval.0 <= 0.0 || !interval.1.is_finite() {
             return Err(WhyNot::NotPositive { came_out: uptake });
         }
-        self.warn(&fit, several);
+        self.warn(&fit, several)?;
         let volume_l = 1.0 / (fit.inverse_n * self.model.kappa(&Shift::default()));
         let wander = (0..self.noise.len())
             .map(|i| self.wander * self.wander_variance(i).sqrt() / self.inverse_n)
@@ -309,7 +314,7 @@ impl Work<'_> {
         Ok((per_line, parts))
     }
 
-    fn warn(&mut self, fit: &Fit, several: bool) {
+    fn warn(&mut self, fit: &Fit, several: bool) -> Result<(), WhyNot> {
         for (i, segment) in self.model.segments.iter().enumerate() {
             if segment.kept != LoopKept::Held {
                 continue;
@@ -330,6 +335,10 @@ impl Work<'_> {
                 let kappa = self.model.kappa(&Shift::default());
                 let litres = |inverse_n: f64| 1.0 / (inverse_n * kappa);
                 let (stated_l, found_l) = (litres(prior.inverse_n), litres(found));
+                // A stated volume that is too large reads high, the dangerous side; one that is too small is only warned of.
+                if apart > CONTRADICTS && found_l > 0.0 && stated_l > TOO_LARGE * found_l {
+                    return Err(WhyNot::LoopVolumeContradicts { stated_l, found_l, apart });
+                }
                 self.warnings.push(Warning::LoopVolumeDisagrees { stated_l, found_l, apart });
             }
         }
@@ -339,6 +348,7 @@ impl Work<'_> {
                 self.warnings.push(Warning::CylinderDisagrees { difference_l_min, apart });
             }
         }
+        Ok(())
     }
 }
 

@@ -9,6 +9,7 @@ use super::model::{Model, Observation};
 use super::plan::NEARLY_PURE;
 use super::segment::{Kind, Segment, Shift};
 use super::slope::{Slope, slope};
+use super::solve::Solved;
 use super::why_not::{Warning, WhyNot};
 use crate::entry::{Assumptions, LoopKept};
 use crate::stats::coverage::welch_satterthwaite;
@@ -56,6 +57,8 @@ pub(super) struct Work<'a> {
     pub(super) kinds: Vec<Kind>,
     pub(super) observations: Vec<Observation>,
     pub(super) noise: Vec<Noise>,
+    /// Slopes of the readings; none for a segment that has none.
+    slopes: Vec<Option<Slope>>,
     pub(super) weights: Vec<f64>,
     /// Relative wander in force and its degrees of freedom.
     pub(super) wander: f64,
@@ -67,7 +70,12 @@ pub(super) struct Work<'a> {
 }
 
 impl<'a> Work<'a> {
-    pub(super) fn start(model: &'a Model, assumptions: &'a Assumptions) -> Result<Self, WhyNot> {
+    /// `before`: the same readings solved, of which more is stated now or to which segments were thought up at the end.
+    pub(super) fn start(
+        model: &'a Model,
+        assumptions: &'a Assumptions,
+        before: Option<&Solved>,
+    ) -> Result<Self, WhyNot> {
         let prior = model.given.volume_l.map(|(litres, u)| {
             let inverse_n = 1.0 / (litres * model.kappa(&Shift::default()));
             let u = u / litres * inverse_n;
@@ -80,6 +88,7 @@ impl<'a> Work<'a> {
             kinds: model.segments.iter().map(|s| Kind::from(s.kept)).collect(),
             observations: Vec::new(),
             noise: Vec::new(),
+            slopes: Vec::new(),
             weights: Vec::new(),
             wander: assumptions.wander,
             // As stated it is taken as known; learned from the segments it is not.
@@ -92,10 +101,14 @@ impl<'a> Work<'a> {
         };
         work.observe();
         work.refuse_pure()?;
-        work.refuse_rising()?;
+        // What was looked at before passed.
+        let known = before.map_or(&[][..], |solved| &solved.noise);
+        work.refuse_rising(known.len())?;
         if prior.is_none() && !work.several_injections() {
             return Err(WhyNot::NoVolumeOneInjection);
         }
+        work.slopes = known.iter().map(|noise| noise.fitted).collect();
+        work.slopes.extend(model.segments.iter().skip(known.len()).map(|segment| own_slope(model, segment)));
         work.measure_noise();
         if work.decide_kinds() {
             work.observe();
@@ -123,8 +136,9 @@ impl<'a> Work<'a> {
         if fraction > NEARLY_PURE { Err(WhyNot::NearlyPureOxygen { fraction }) } else { Ok(()) }
     }
 
-    fn refuse_rising(&self) -> Result<(), WhyNot> {
-        for (segment, observation) in self.model.segments.iter().zip(&self.observations) {
+    /// Refuses a loop in which oxygen rises while none is injected, from a segment on.
+    fn refuse_rising(&self, from: usize) -> Result<(), WhyNot> {
+        for (segment, observation) in self.model.segments.iter().zip(&self.observations).skip(from) {
             if segment.kept == LoopKept::Topped || observation.injected > 0.0 {
                 continue;
             }
@@ -143,9 +157,9 @@ impl<'a> Work<'a> {
     /// Slope noise of every segment in the variable its kind is fitted in.
     fn measure_noise(&mut self) {
         let (model, n0) = (self.model, 1.0 / self.inverse_n);
-        let segments = model.segments.iter().zip(&self.kinds).zip(&self.observations);
+        let segments = model.segments.iter().zip(&self.slopes).zip(&self.observations);
         self.noise = segments
-            .map(|((segment, kind), observation)| {
+            .map(|((segment, &fitted), observation)| {
                 if let Some((slope_u, dof)) = segment.thought_up {
                     let y_u = slope_u * observation.per_slope;
                     return Noise { slope_u, y_u, dof, fitted: None, mark_u: 0.0 };
@@ -163,11 +177,6 @@ impl<'a> Work<'a> {
                     let mark_u = observation.fraction * litres / n0 / segment.minutes();
                     return Noise { slope_u, y_u: slope_u, dof, fitted: None, mark_u };
                 }
-                let of: fn(f64) -> f64 = match kind {
-                    Kind::Sealed => |f| 1.0 / (1.0 - f),
-                    _ => |f| f,
-                };
-                let fitted = slope_of(model, segment, of);
                 let (slope_u, dof) = fitted.map_or((f64::INFINITY, 1.0), |s| (s.u, s.dof));
                 let y_u = slope_u * observation.per_slope;
                 Noise { slope_u, y_u, dof, fitted, mark_u: 0.0 }
@@ -294,6 +303,16 @@ impl<'a> Work<'a> {
         }
         (self.wander, self.wander_dof) = (wander, WANDER_WEIGHT + dof);
         self.settle()
+    }
+}
+
+/// Slope of the readings in the variable that is fitted, which a held loop shares with one that vents.
+fn own_slope(model: &Model, segment: &Segment) -> Option<Slope> {
+    match segment.kept {
+        LoopKept::Topped => None,
+        _ if segment.thought_up.is_some() => None,
+        LoopKept::Sealed => slope_of(model, segment, |f| 1.0 / (1.0 - f)),
+        LoopKept::Held => slope_of(model, segment, |f| f),
     }
 }
 

@@ -103,6 +103,16 @@ pub enum WhyNot {
     },
     /// Neither the loop volume nor a second injection: slopes alone are no flow. Measure the one or do the other.
     NoVolumeOneInjection,
+    /// The stated loop volume is so far above the one found from the injections that one of them is wrong, or an
+    /// injection is: their mean would be nobody's, and high. Measure the volume again, or leave it out.
+    LoopVolumeContradicts {
+        /// Stated, litres.
+        stated_l: f64,
+        /// Found, litres.
+        found_l: f64,
+        /// Difference in standard uncertainties.
+        apart: f64,
+    },
     /// The only stretches left hold a jump that no event explains: mark the event or exclude the stretch.
     UnmarkedJump {
         /// Where, seconds.

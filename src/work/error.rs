@@ -3,12 +3,15 @@
 use std::path::PathBuf;
 
 use super::enter::EnterError;
+use super::enter_session::SessionEnterError;
 use super::png::PngError;
 use crate::bench::BenchError;
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
 use crate::book::{BookError, NoHead};
 use crate::entry::{Id, IdError, SessionNumber};
+use crate::instrument::{OpenError, ProfileError};
 use crate::record::{RecordError, Refusal};
+use crate::rig::RigError;
 use crate::setting::SettingError;
 use crate::uptake::UptakeError;
 
@@ -78,6 +81,27 @@ pub enum WorkError {
         /// What is wrong.
         error: UptakeError,
     },
+    /// Two sessions of one diver at one time.
+    #[error(
+        "{0} and {1} overlap in time, and one diver cannot rest twice at once: correct \"taken\" of one, name only one of \
+         them, or leave one out (session leave-out)"
+    )]
+    Overlap(String, String),
+    /// An intermediate pressure that the bench run says nothing about.
+    #[error(
+        "{session}: an IP of {ip_bar_gauge} bar gauge is beyond what the bench run of {orifice} measured ({:.1} to {:.1} \
+         bar gauge): correct it, measure the orifice there, or give the flow", span_bar_gauge.0, span_bar_gauge.1
+    )]
+    IpOutsideBench {
+        /// The session's number or file.
+        session: String,
+        /// The pressure.
+        ip_bar_gauge: f64,
+        /// The orifice.
+        orifice: Id,
+        /// What was measured.
+        span_bar_gauge: (f64, f64),
+    },
     /// A setting is asked for wrongly.
     #[error(transparent)]
     Setting(SettingError),
@@ -110,6 +134,17 @@ pub enum WorkError {
     /// A diver without a session that counts.
     #[error("{0} has no session in the book that counts: session import FILE.toml, or session enter {0}")]
     NoSessionOf(Id),
+    /// Readings that two sessions hold, of which each says something else.
+    #[error(
+        "{one} and {other} hold the same readings and say different things about them, so they cannot count as two \
+         sessions: name one of them, or leave the other out (session leave-out)"
+    )]
+    SameReadings {
+        /// One session.
+        one: String,
+        /// The other.
+        other: String,
+    },
     /// An orifice that is not in the register.
     #[error(
         "there is no orifice {0} in the book: orifice list shows those there are; a run file has a slash or ends in .toml"
@@ -141,6 +176,9 @@ pub enum WorkError {
     /// An answer or a point that is not taken.
     #[error(transparent)]
     Enter(#[from] EnterError),
+    /// An answer or a row of a session that is not taken.
+    #[error(transparent)]
+    EnterSession(#[from] SessionEnterError),
     /// A text that is no run's number.
     #[error(
         "\"{}\" is no run: a run of the book is named like R0001, and a run file has a slash or ends in .toml",
@@ -216,6 +254,29 @@ pub enum WorkError {
         "too few of the {0} Monte Carlo trials converged for an interval: look at the checks of the run first"
     )]
     NoMonteCarlo(usize),
+    /// A profile that cannot be listened to.
+    #[error(transparent)]
+    Profile(#[from] ProfileError),
+    /// A port that does not open, or a system that does not list its ports.
+    #[error(transparent)]
+    Port(#[from] OpenError),
+    /// A time to listen outside the bounds.
+    #[error("--for takes 0.5 s to 1 h, not {0} s")]
+    ListenFor(f64),
+    /// The simulated bench.
+    #[error(transparent)]
+    Rig(#[from] RigError),
+    /// A step of the rig's script that is none.
+    #[error(
+        "\"{}\" is no step of a script: write pressure and time, with commas between steps, as in \"4 bar 45 s, 5 bar 45 s\"",
+        .0.escape_debug()
+    )]
+    RigScript(String),
+    /// No pseudo-terminals on this system.
+    #[error(
+        "the simulated bench needs pseudo-terminals, which this system does not have: it runs on Linux, macOS and other Unix systems"
+    )]
+    NoPseudoTerminals,
     /// A plot's file name has another ending.
     #[error("{0}: a plot is written as .svg or .png, name the file so")]
     PlotKind(PathBuf),
@@ -242,13 +303,17 @@ impl WorkError {
             | Self::Bench { .. }
             | Self::TooFewSteady { .. }
             | Self::Enter(_)
+            | Self::EnterSession(_)
             | Self::NoRunNumber(_)
             | Self::Uptake { .. }
+            | Self::Overlap(..)
+            | Self::IpOutsideBench { .. }
             | Self::Setting(_)
             | Self::SessionTime(_)
             | Self::Stretch { .. }
             | Self::NoSessionNumber(_)
             | Self::NoSessionOf(_)
+            | Self::SameReadings { .. }
             | Self::NoOrifice(_)
             | Self::NoRunOf(_)
             | Self::OrificeTwice(_)
@@ -265,14 +330,21 @@ impl WorkError {
             | Self::NothingToDraw(_)
             | Self::NoHead(_)
             | Self::NotReplaced { .. }
+            | Self::Profile(_)
+            | Self::ListenFor(_)
+            | Self::RigScript(_)
             | Self::NoDataFolder
             | Self::Trials(_)
             | Self::NoMonteCarlo(_)
             | Self::PlotKind(_) => ExitStatus::Wrong,
             Self::Book(error) => book_status(error),
-            Self::StillHeld { .. } | Self::NoRandomNumbers | Self::Png(_) | Self::Write { .. } => {
-                ExitStatus::Failed
-            }
+            Self::Rig(error) => rig_status(error),
+            Self::Port(_)
+            | Self::NoPseudoTerminals
+            | Self::StillHeld { .. }
+            | Self::NoRandomNumbers
+            | Self::Png(_)
+            | Self::Write { .. } => ExitStatus::Failed,
         }
     }
 }
@@ -280,4 +352,14 @@ impl WorkError {
 /// What is asked of the book is wrong, or the book itself failed.
 const fn book_status(error: &BookError) -> ExitStatus {
     if error.is_of_the_call() { ExitStatus::Wrong } else { ExitStatus::Failed }
+}
+
+/// What is asked of the rig is wrong, or the system failed it.
+const fn rig_status(error: &RigError) -> ExitStatus {
+    match error {
+        RigError::Terminal { .. } | RigError::Link { .. } | RigError::Log { .. } | RigError::Stopped => {
+            ExitStatus::Failed
+        }
+        _ => ExitStatus::Wrong,
+    }
 }

@@ -40,6 +40,35 @@ impl FoundLine {
     pub const fn line(&self) -> &InjectionLine {
         &self.input.line
     }
+
+    /// What speaks against it as the line of a session taken at `taken`; each is a sentence.
+    #[must_use]
+    pub fn doubts(&self, taken: DateTime<FixedOffset>) -> Vec<String> {
+        let orifice = &self.input.id;
+        let mut doubts = Vec::new();
+        match self.input.standing {
+            Standing::Accepted => {}
+            Standing::NeverJudged => doubts.push(format!("{orifice}, which it breathed through, was never judged")),
+            Standing::Failed => doubts.push(format!(
+                "{orifice}, which it breathed through, failed its acceptance: the injection may be another, and so the uptake"
+            )),
+            Standing::Undecided => doubts.push(format!(
+                "{orifice}, which it breathed through, is undecided: the injection may be another, and so the uptake"
+            )),
+        }
+        if let Some(since) = self.input.overdue_since {
+            doubts.push(format!(
+                "{orifice}: the calibration of the bench's instruments fell due on {since}, before the session"
+            ));
+        }
+        if self.run.taken > taken {
+            doubts.push(format!(
+                "{orifice} was measured on {}, after the session: what happened to it in between is not known",
+                self.run.taken.date_naive()
+            ));
+        }
+        doubts
+    }
 }
 
 /// The orifice of a run file, judged by the file's own limits; calibrations that fell due before `on` are overdue.
@@ -56,6 +85,10 @@ pub fn from_file(path: &Path, shelf: Option<&Shelf>, on: NaiveDate) -> Result<Fo
     };
     let (run, mut notes) = loaded;
     let analysis = of_run(&run, path, &mut notes)?;
+    // The file is named, so that nobody takes what is said of it for the session's.
+    for note in &mut notes {
+        note.insert_str(0, &format!("{}: ", path.display()));
+    }
     let standing = by_own_limits(&analysis);
     let judged = match standing {
         Standing::Accepted => "passed by its own limits",
@@ -136,26 +169,7 @@ pub fn from_book_at(book: &Book, orifice: &Id, taken: DateTime<FixedOffset>) -> 
         .or_else(|| rows.iter().find(before))
         .or(rows.last());
     let Some(row) = row else { return Err(WorkError::NoRunOf(orifice.clone())) };
-    let mut found = of_row(book, row, taken.date_naive())?;
-    let number = row.run.number;
-    if row.run.taken > taken {
-        found.notes.push(format!(
-            "{orifice}: no run from before the session, so {number} of {} stands for it: what happened to the orifice in \
-             between is not known",
-            row.run.taken.date_naive()
-        ));
-    }
-    match found.input.standing {
-        Standing::Accepted => {}
-        Standing::NeverJudged => {
-            found.notes.push(format!("{orifice}: {number}, whose line the session uses, was never judged"));
-        }
-        Standing::Failed | Standing::Undecided => found.notes.push(format!(
-            "{orifice}: {number}, whose line the session uses, {}; there is no better run near the session",
-            if found.input.standing == Standing::Failed { "failed its acceptance" } else { "is undecided" }
-        )),
-    }
-    Ok(found)
+    of_row(book, row, taken.date_naive())
 }
 
 fn are(numbers: &[String]) -> String {

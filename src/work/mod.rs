@@ -5,14 +5,17 @@
 pub mod book;
 pub mod demo;
 pub mod enter;
+pub mod enter_session;
 pub mod error;
 pub mod export;
 pub mod fit;
 pub mod history;
+pub mod instruments;
 pub mod lines;
 pub mod output;
 pub mod png;
 pub mod registers;
+pub mod rig;
 pub mod runs;
 pub mod sessions;
 pub mod setting;

@@ -9,10 +9,12 @@ use super::runs::said;
 use super::shelf::{Shelf, ShelfRegisters, stamped};
 use super::uptake::{GatheredSession, work_out};
 use crate::book::{
-    Book, LineSource, SessionQuery, SessionRecord, SessionRow, SessionSource, SessionToImport,
+    Book, LineSource, RowContent, RunState, SessionChange, SessionQuery, SessionRecord, SessionRow,
+    SessionSource, SessionToImport,
 };
 use crate::entry::{Id, LineReference, Run, Session, SessionNumber};
 use crate::record::{read_run_and_files, read_session_and_files};
+use crate::report::session_changes::{Before, Change, Changed};
 use crate::report::session_list::Row;
 use crate::report::session_shown::Shown;
 
@@ -91,7 +93,7 @@ fn read(path: &Path, shelf: &Shelf) -> Result<Read, WorkError> {
             Ok(found) => found,
             Err(refused) => return Err(registers.failure().unwrap_or_else(|| refused.into())),
         };
-        notes.extend(run.notes.iter().map(ToString::to_string));
+        notes.extend(run.notes.iter().map(|note| format!("{file}: {note}")));
         let source = LineSource {
             file_name: file.clone(),
             file: bytes.toml,
@@ -161,6 +163,7 @@ fn listed(row: SessionRow) -> Row {
         readings: row.readings,
         left_out: row.left_out,
         stretches_left_out: row.stretches_left_out,
+        open: row.state == RunState::Open,
     }
 }
 
@@ -171,6 +174,8 @@ pub struct KeptSession {
     pub record: SessionRecord,
     /// The files.
     pub files: Vec<String>,
+    /// What was corrected or struck since, in order.
+    pub changes: Vec<Change>,
 }
 
 impl KeptSession {
@@ -184,6 +189,8 @@ impl KeptSession {
             left_out: &self.record.left_out,
             files: &self.files,
             notes: &[],
+            open: self.record.state == RunState::Open,
+            changes: &self.changes,
         }
     }
 }
@@ -200,7 +207,30 @@ pub fn show(shelf: &Shelf, session: &str) -> Result<KeptSession, WorkError> {
         let line = source.line.map(|line| line.file_name);
         [Some(source.session_file_name), Some(source.readings_name), line].into_iter().flatten().collect()
     });
-    Ok(KeptSession { record, files: files.unwrap_or_default() })
+    let changes = record.changes.iter().map(|change| changed(change, &record)).collect();
+    Ok(KeptSession { record, files: files.unwrap_or_default(), changes })
+}
+
+/// A change for `report`.
+fn changed(change: &SessionChange, record: &SessionRecord) -> Change {
+    match change {
+        SessionChange::Corrected { row, before, at } => {
+            let cells = record.session.readings.cells.len();
+            let before = match before {
+                RowContent::Readings(values) => {
+                    let (at_s, rest) =
+                        values.split_first().map_or((f64::NAN, &[][..]), |(at, rest)| (*at, rest));
+                    Before::Readings { at_s, cells: rest.get(..cells).unwrap_or(rest).to_vec() }
+                }
+                RowContent::Event(event) => Before::Event(*event),
+            };
+            Change { at: *at, what: Changed::Corrected { row: *row, before } }
+        }
+        SessionChange::Struck { row, why, at } => {
+            Change { at: *at, what: Changed::Struck { row: *row, why: why.clone() } }
+        }
+        SessionChange::Restated { at } => Change { at: *at, what: Changed::Restated },
+    }
 }
 
 /// Leaves a stretch of a session out, or the whole session out of the diver's uptake, with a reason.

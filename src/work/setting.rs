@@ -16,16 +16,18 @@ use crate::book::Book;
 use crate::clock;
 use crate::entry::{Diluent, Diver, FirstStage, Id, Purity};
 use crate::gas::Water;
+use crate::plot::{SettingPlot, setting_plot};
 use crate::quantity::{
     AbsolutePressure, GaugePressure, Length, PressureDifference, Share, StpdFlow, Temperature,
     TemperatureDifference, Uncertain, Volume,
 };
 use crate::report::Units;
 use crate::report::session_uptake;
-use crate::report::setting::{OrificeNamed, Reported, favourable};
+use crate::report::setting::{self as words, OrificeNamed, Reported, favourable};
 use crate::report::sheet;
 use crate::setting::{
-    DEFAULT_PURITY, FirstStageKind, RestingUptake, Setting, SettingOptions, Trapped, setting,
+    DEFAULT_CHANCE, DEFAULT_PURITY, DEFAULT_SHORTFALL, FirstStageKind, RestingUptake, Setting,
+    SettingOptions, Trapped, setting,
 };
 use crate::uptake::Uptake;
 
@@ -254,7 +256,9 @@ pub fn make_setting(request: &SettingRequest) -> Result<SettingOutcome, WorkErro
     }
     let sessions = gather(&of, request.book.as_deref(), &mut notes)?;
     let uptake = work_out(&sessions)?;
-    fill_from_diver(&mut options, &uptake, &mut book, request.diver.is_some(), &mut notes)?;
+    let in_the_book = of.iter().any(|of| !names_a_file(of));
+    fill_from_diver(&mut options, &uptake, &mut book, in_the_book, &mut notes)?;
+    loosened(&options, &mut notes);
 
     let resting = uptake.lowest().map(|(_, estimate)| RestingUptake::from(estimate));
     let inputs: Vec<_> = orifices.iter().map(|found| found.input.clone()).collect();
@@ -265,7 +269,7 @@ pub fn make_setting(request: &SettingRequest) -> Result<SettingOutcome, WorkErro
         options,
         orifices,
         diver: uptake.diver.to_string(),
-        sessions: sessions.iter().map(session_words).collect(),
+        sessions: sessions.iter().enumerate().map(|(i, s)| session_words(i, s, &uptake)).collect(),
         uptake,
         uptake_why_not,
         first_stage,
@@ -277,10 +281,11 @@ pub fn make_setting(request: &SettingRequest) -> Result<SettingOutcome, WorkErro
         write_whole(path, sheet::text(&outcome.reported(&named), &request.units).as_bytes())?;
     }
     if let (Some(kind), Some(path)) = (kind, &request.plot) {
-        // WAIT
-        let _ = kind;
-        let _ = write_plot;
-        let _ = path;
+        let named = outcome.named();
+        let why_not = words::why_not(&outcome.reported(&named));
+        let why_not = why_not.map(|why| why.strip_prefix("no setting: ").map_or(why.clone(), str::to_owned));
+        let plot = SettingPlot { units: request.units, why_not, ..SettingPlot::default() };
+        write_plot(&setting_plot(&outcome.setting, &plot), kind, path)?;
     }
     Ok(outcome)
 }
@@ -338,6 +343,23 @@ fn fill_from_diver(
     Ok(())
 }
 
+/// Limits that were set looser than the method's own are said where the number is read.
+fn loosened(options: &SettingOptions, notes: &mut Vec<String>) {
+    if let Some(chance) = options.chance.filter(|chance| *chance > DEFAULT_CHANCE) {
+        notes.push(format!(
+            "the allowed chance of overfeeding was set to {:.1} %, where 2.5 % is usual: both the setting and the IP never \
+             to exceed hold no more than that",
+            100.0 * chance
+        ));
+    }
+    if let Some(shortfall) = options.shortfall.filter(|shortfall| *shortfall < DEFAULT_SHORTFALL) {
+        notes.push(format!(
+            "the least shortfall was set to {:.2} % of the uptake, where 5 % is usual",
+            100.0 * shortfall
+        ));
+    }
+}
+
 fn diver_entry(book: &Book, diver: &Id) -> Result<Option<Diver>, WorkError> {
     Ok(book.entry::<Diver>(diver)?.map(|found| found.entry))
 }
@@ -346,13 +368,17 @@ fn volume_of_sessions(uptake: &Uptake) -> Option<Uncertain<Volume>> {
     let (place, _) = uptake.lowest()?;
     let last = place.sessions.iter().rev().find_map(|session| session.answer.as_ref().ok())?;
     let litres = |l: f64| Volume::from_m3(l * 1e-3);
+    // To a tenth of a litre, which is less than anybody knows.
+    let rounded = |l: f64| libm::round(10.0 * l) / 10.0;
     let volume = last.loop_volume;
-    Some(Uncertain { value: litres(volume.litres), expanded: Some(litres(2.0 * volume.u)) })
+    Some(Uncertain { value: litres(rounded(volume.litres)), expanded: Some(litres(2.0 * volume.u)) })
 }
 
-fn session_words(gathered: &GatheredSession) -> String {
+fn session_words(index: usize, gathered: &GatheredSession, uptake: &Uptake) -> String {
     let session = &gathered.session;
-    format!("{} of {}, {}", gathered.name, session.taken.date_naive(), session.place.name())
+    let worked = uptake.places.iter().flat_map(|place| &place.sessions).find(|worked| worked.index == index);
+    let none = if worked.is_some_and(|worked| worked.answer.is_err()) { " (no number)" } else { "" };
+    format!("{} of {}, {}{none}", gathered.name, session.taken.date_naive(), session.place.name())
 }
 
 fn uptake_why_not(sessions: &[GatheredSession], uptake: &Uptake) -> Option<String> {

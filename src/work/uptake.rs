@@ -9,15 +9,23 @@ use super::sessions::{all_of, kept};
 use super::shelf::Shelf;
 use super::{ExitStatus, WorkError};
 use crate::bench::monte_carlo::{FEWEST_TRIALS, MOST_TRIALS};
-use crate::book::Book;
-use crate::entry::{Event, LineReference, Place, Session, SessionLeftOut, SessionNumber, What};
+use crate::book::{Book, RunState};
+use crate::entry::{
+    CellSignal, Diver, Event, Injection, LineReference, Place, Session, SessionLeftOut, SessionNumber,
+    SessionReadings, What,
+};
 use crate::plot::{SessionPlot, session_plot};
+use crate::quantity::AbsolutePressure;
 use crate::record::read_session;
 use crate::report::Units;
 use crate::report::session_uptake::{Named, Reported};
 use crate::stats::monte_carlo::Plan;
 use crate::uptake::{MonteCarlo, SessionInput, Uptake, uptake, uptake_by_monte_carlo};
 
+/// An IP may lie so far beyond the pressures of the bench run, as a factor of the absolute pressure.
+const BEYOND_BENCH: f64 = 1.1;
+/// Absolute pressures this near the ends of the bench run count as measured, bar: barometers differ.
+const SPAN_TOLERANCE_BAR: f64 = 0.1;
 /// Seed of the Monte Carlo check; stored with its result.
 const SEED: u64 = 101;
 
@@ -122,7 +130,8 @@ pub fn session_uptake(request: &UptakeRequest) -> Result<UptakeOutcome, WorkErro
     if let (Some(kind), Some(path)) = (kind, &request.plot) {
         let mut drawn = Vec::new();
         for (gathered, svg) in drawings(&outcome, &request.units) {
-            let at = if outcome.sessions.len() == 1 { path.clone() } else { beside(path, &gathered.name) };
+            let at =
+                if outcome.sessions.len() == 1 { path.clone() } else { beside(path, &gathered.name, &drawn) };
             drawn.push((at, svg));
         }
         for (at, svg) in &drawn {
@@ -151,14 +160,18 @@ fn drawings<'a>(outcome: &'a UptakeOutcome, units: &Units) -> Vec<(&'a GatheredS
     outcome.sessions.iter().enumerate().filter_map(|(index, gathered)| of(index, gathered)).collect()
 }
 
-/// `plot.svg` of a session named `S0001` or `data/couch-1.toml`: `plot-S0001.svg`, `plot-couch-1.svg`.
-fn beside(path: &Path, name: &str) -> PathBuf {
+/// `plot.svg` of a session named `S0001` or `data/couch-1.toml`: `plot-S0001.svg`, `plot-couch-1.svg`; `plot-couch-1-2.svg`
+/// where another folder's `couch-1.toml` was drawn before.
+fn beside(path: &Path, name: &str, drawn: &[(PathBuf, String)]) -> PathBuf {
     let stem = Path::new(name).file_stem().unwrap_or_default().to_string_lossy();
     let plain: String =
         stem.chars().map(|c| if c.is_alphanumeric() || "-_.".contains(c) { c } else { '-' }).collect();
     let own = path.file_stem().unwrap_or_default().to_string_lossy();
     let ending = path.extension().unwrap_or_default().to_string_lossy();
-    path.with_file_name(format!("{own}-{plain}.{ending}"))
+    let taken = |at: &PathBuf| drawn.iter().any(|(other, _)| other == at);
+    let first = path.with_file_name(format!("{own}-{plain}.{ending}"));
+    let others = (2..).map(|n: u64| path.with_file_name(format!("{own}-{plain}-{n}.{ending}")));
+    std::iter::once(first.clone()).chain(others).find(|at| !taken(at)).unwrap_or(first)
 }
 
 /// Works out the uptake of sessions that were gathered.
@@ -188,8 +201,8 @@ fn wrong(sessions: &[GatheredSession], error: crate::uptake::UptakeError) -> Wor
     })
 }
 
-/// Reads sessions by file, number or diver, each with its line. A session that was left out as a whole counts only when
-/// it is named by its number.
+/// Reads sessions by file, number or diver, each with its line. A session that was left out as a whole, or is still open,
+/// counts only when it is named by its number.
 ///
 /// # Errors
 /// As [`session_uptake`].
@@ -202,7 +215,8 @@ pub fn gather(
     let mut opened: Option<Book> = None;
     for of in of {
         if names_a_file(of) {
-            sessions.push(from_file(Path::new(of), book, notes)?);
+            let gathered = from_file(Path::new(of), book, notes)?;
+            take(&mut sessions, gathered, notes)?;
             continue;
         }
         let opened = match &opened {
@@ -214,9 +228,17 @@ pub fn gather(
             None => {
                 let diver = id_of(of)?;
                 let rows = all_of(opened, &diver)?;
-                let (out, used): (Vec<_>, Vec<_>) = rows.into_iter().partition(|row| row.left_out);
+                let (out, rest): (Vec<_>, Vec<_>) = rows.into_iter().partition(|row| row.left_out);
                 for row in out {
                     notes.push(format!("{} is left out of the diver's uptake", row.number));
+                }
+                let (open, used): (Vec<_>, Vec<_>) =
+                    rest.into_iter().partition(|row| row.state == RunState::Open);
+                for row in open {
+                    notes.push(format!(
+                        "{number} is still open and does not count yet: session resume {number} goes on with it",
+                        number = row.number
+                    ));
                 }
                 if used.is_empty() {
                     return Err(WorkError::NoSessionOf(diver));
@@ -225,14 +247,54 @@ pub fn gather(
             }
         };
         for number in numbers {
-            let gathered = from_book(opened, number, notes)?;
-            // The same session named twice is one observation, not two.
-            if !sessions.iter().any(|other| other.name == gathered.name) {
-                sessions.push(gathered);
+            if sessions.iter().all(|other| other.name != number.to_string()) {
+                let gathered = from_book(opened, number, notes)?;
+                take(&mut sessions, gathered, notes)?;
             }
         }
     }
+    no_overlap(&sessions)?;
     Ok(sessions)
+}
+
+/// Takes a session in, unless it is there. The same readings are one observation, however often they are named; counted
+/// twice they would make the uptake look surer than it is.
+fn take(
+    sessions: &mut Vec<GatheredSession>,
+    gathered: GatheredSession,
+    notes: &mut Vec<String>,
+) -> Result<(), WorkError> {
+    let same = |other: &&GatheredSession| {
+        let (a, b) = (&other.session, &gathered.session);
+        a.taken == b.taken && same_readings(&a.readings, &b.readings)
+    };
+    let Some(twin) = sessions.iter().find(same) else {
+        sessions.push(gathered);
+        return Ok(());
+    };
+    let said = |session: &Session| Session { readings: SessionReadings::default(), ..session.clone() };
+    let line = |of: &GatheredSession| of.line.as_ref().map(|found| found.line().clone());
+    if said(&twin.session) != said(&gathered.session) || line(twin) != line(&gathered) {
+        return Err(WorkError::SameReadings { one: twin.name.clone(), other: gathered.name });
+    }
+    notes.push(format!("{} is the same session as {} and counts once", gathered.name, twin.name));
+    Ok(())
+}
+
+fn shown(signal: &CellSignal) -> &[f64] {
+    match signal {
+        CellSignal::Bar(column) | CellSignal::Volts { readings: column, .. } => column,
+    }
+}
+
+/// Whether what was read is the same to the last bit, whatever was made of it.
+fn same_readings(a: &SessionReadings, b: &SessionReadings) -> bool {
+    let same = |(a, b): (&f64, &f64)| a.to_bits() == b.to_bits() || (a.is_nan() && b.is_nan());
+    let columns = |a: &[f64], b: &[f64]| a.len() == b.len() && a.iter().zip(b).all(same);
+    let cells = || a.cells.iter().zip(&b.cells);
+    columns(&a.time_s, &b.time_s)
+        && a.cells.len() == b.cells.len()
+        && cells().all(|(a, b)| columns(shown(&a.signal), shown(&b.signal)))
 }
 
 /// A session of a file, with its line from the run file it names, or from the book.
@@ -256,7 +318,8 @@ fn from_file(
             Some(lines::from_book_at(&opened, orifice, session.taken)?)
         }
     };
-    note_line(&name, line.as_ref(), notes);
+    let of_file = matches!(session.line, Some(LineReference::RunFile(_)));
+    note_line(&name, of_file, &session, line.as_ref(), notes)?;
     Ok(GatheredSession { name, session, line, left_out: Vec::new() })
 }
 
@@ -267,11 +330,7 @@ fn from_book(
 ) -> Result<GatheredSession, WorkError> {
     let kept = kept(book, number)?;
     let name = number.to_string();
-    let mut session = kept.session;
-    let stretches = kept.left_out.iter().filter_map(|left| left.stretch_s);
-    session
-        .events
-        .extend(stretches.map(|(from_s, until_s)| Event { at_s: from_s, what: What::Exclude { until_s } }));
+    let mut session = with_left_out(kept.session, &kept.left_out);
     let line = match (&session.line, &kept.line_run) {
         (_, Some(run)) => Some(lines::of_kept_run(run, Path::new(&name), session.taken.date_naive())?),
         (Some(LineReference::Orifice(orifice)), None) => {
@@ -279,16 +338,82 @@ fn from_book(
         }
         (Some(LineReference::RunFile(_)) | None, None) => None,
     };
-    note_line(&name, line.as_ref(), notes);
+    if session.mass.is_none() {
+        session.mass = book.entry::<Diver>(&session.diver)?.and_then(|found| found.entry.mass);
+    }
+    note_line(&name, false, &session, line.as_ref(), notes)?;
     Ok(GatheredSession { name, session, line, left_out: kept.left_out })
 }
 
-/// What is to be said of a session's line; several sessions through one line say it once.
-fn note_line(session: &str, line: Option<&FoundLine>, notes: &mut Vec<String>) {
-    for note in line.iter().flat_map(|line| &line.notes) {
-        let said = format!("{session}: {note}");
+/// A session with the stretches excluded that a person left out since.
+pub(super) fn with_left_out(mut session: Session, left_out: &[SessionLeftOut]) -> Session {
+    let stretches = left_out.iter().filter_map(|left| left.stretch_s);
+    session
+        .events
+        .extend(stretches.map(|(from_s, until_s)| Event { at_s: from_s, what: What::Exclude { until_s } }));
+    session
+}
+
+/// What is to be said of a session's line, behind the session's name unless it names a run file itself, and whether it
+/// says anything at the pressures it is asked at.
+pub(super) fn note_line(
+    name: &str,
+    names_file: bool,
+    session: &Session,
+    line: Option<&FoundLine>,
+    notes: &mut Vec<String>,
+) -> Result<(), WorkError> {
+    let Some(line) = line else { return Ok(()) };
+    let of_run =
+        line.notes.iter().map(|note| if names_file { note.clone() } else { format!("{name}: {note}") });
+    for said in of_run.chain(line.doubts(session.taken).into_iter().map(|doubt| format!("{name}: {doubt}"))) {
         if !notes.contains(&said) {
             notes.push(said);
         }
     }
+    let barometer = session.conditions.barometer.value.unwrap_or(AbsolutePressure::STANDARD_ATMOSPHERE);
+    let (low, high) = line.input.span_bar_abs;
+    for event in &session.events {
+        let What::Injection(Injection::Ip(ip)) = event.what else { continue };
+        let p1_bar = ip.value.above(barometer).as_bar();
+        // A tenth beyond the bench is where depths end too; further out nothing says that the line is one.
+        if p1_bar < low / BEYOND_BENCH || p1_bar > high * BEYOND_BENCH {
+            let span_bar_gauge = (low - barometer.as_bar(), high - barometer.as_bar());
+            return Err(WorkError::IpOutsideBench {
+                session: name.to_owned(),
+                ip_bar_gauge: ip.value.as_bar(),
+                orifice: line.input.id.clone(),
+                span_bar_gauge,
+            });
+        }
+        if p1_bar < low - SPAN_TOLERANCE_BAR || p1_bar > high + SPAN_TOLERANCE_BAR {
+            notes.push(format!(
+                "{name}: the IP of {} bar lies outside what the bench run of {} measured: the line is stretched",
+                ip.value.as_bar(),
+                line.input.id
+            ));
+        }
+    }
+    Ok(())
+}
+
+/// One diver cannot rest twice at once: of two sessions that overlap in time one has a wrong date, or both are the same.
+fn no_overlap(sessions: &[GatheredSession]) -> Result<(), WorkError> {
+    let span = |gathered: &GatheredSession| {
+        let times = gathered.session.readings.time_s.iter().copied().filter(|t| t.is_finite());
+        let begun = gathered.session.taken.timestamp() as f64;
+        let (first, last) =
+            times.fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), t| (low.min(t), high.max(t)));
+        (begun + first, begun + last)
+    };
+    for (i, one) in sessions.iter().enumerate() {
+        for other in &sessions[i + 1..] {
+            let (a, b) = (span(one), span(other));
+            // Two divers are refused for being two.
+            if one.session.diver.same_as(&other.session.diver) && a.0 < b.1 && b.0 < a.1 {
+                return Err(WorkError::Overlap(one.name.clone(), other.name.clone()));
+            }
+        }
+    }
+    Ok(())
 }

@@ -10,15 +10,17 @@ use std::path::{Path, PathBuf};
 use std::process::{Child, Command, Output, Stdio};
 use std::rc::Rc;
 
-use ebbline::book::{Book, Entry, Options, RunRecord, Stamp};
-use ebbline::cli::enter::{Beginning, Manner, Question, Talk, converse};
+use ebbline::book::{Book, Entry, Options, RunRecord, SessionRecord, Stamp};
+use ebbline::cli::enter::{Beginning, Manner, Question, SessionBeginning, Talk, converse, converse_session};
 use ebbline::entry::{
     Acceptance, Id, Indication, Instrument, InstrumentPapers, Limits, Measures, Orifice, PointReading,
-    Readings, Rule, Run, RunNumber, Tolerance,
+    Readings, Rule, Run, RunNumber, SessionNumber, Tolerance,
 };
 use ebbline::quantity::{GaugePressure, IndicatedFlow, StpdFlow};
 use ebbline::record::{NoRegisters, Setup, read_setup};
+use ebbline::report::Units;
 use ebbline::work::enter::{Desk, Start};
+use ebbline::work::enter_session::{SessionDesk, SessionStart};
 use ebbline::work::shelf::Shelf;
 
 use super::bench_files::{RUN, folder, write};
@@ -32,6 +34,25 @@ pub(crate) struct Bench {
 pub(crate) struct Talked {
     pub(crate) text: String,
     pub(crate) desk: Option<Desk>,
+}
+
+/// What was said, and the session that was typed.
+pub(crate) struct SessionTalked {
+    pub(crate) text: String,
+    pub(crate) desk: Option<SessionDesk>,
+}
+
+impl SessionTalked {
+    /// What was said, however its lines were broken.
+    pub(crate) fn says(&self, words: &str) -> bool {
+        self.text.split_whitespace().collect::<Vec<_>>().join(" ").contains(words)
+    }
+
+    /// The session.
+    #[track_caller]
+    pub(crate) fn desk(&self) -> &SessionDesk {
+        self.desk.as_ref().unwrap_or_else(|| panic!("no session was typed:\n{}", self.text))
+    }
 }
 
 impl Talked {
@@ -100,7 +121,7 @@ impl Bench {
         read_setup(&file, None, &NoRegisters).unwrap().value
     }
 
-    fn register(&self, entry: Entry) {
+    pub(crate) fn register(&self, entry: Entry) {
         stamped(|stamp| {
             let mut book = Book::open_or_begin(&self.book(), &Options::default(), stamp).unwrap();
             book.add(entry, stamp).unwrap();
@@ -148,14 +169,40 @@ impl Bench {
     }
 
     fn talk(beginning: Beginning, typed: &[&str], manner: &Manner) -> Talked {
-        let screen = Screen::default();
-        let lines = typed.iter().map(|line| format!("{line}\n").into_bytes()).collect();
-        let mut keys = Keys { lines, current: Vec::new(), read: 0, screen: screen.clone() };
+        let (mut keys, screen) = Keys::typing(typed);
         let (mut out, mut aside) = (screen.clone(), screen.clone());
         let held = converse(beginning, &mut Talk::new(&mut keys, &mut out, &mut aside, true), manner);
         let text = String::from_utf8(screen.0.borrow().clone()).unwrap();
         let desk = held.unwrap_or_else(|broken| panic!("{broken:?}\n{text}"));
         Talked { text, desk }
+    }
+
+    /// A new session with somebody there.
+    pub(crate) fn session_asked(&self, diver: &str, typed: &[&str]) -> SessionTalked {
+        let start = SessionStart::new(self.shelf(), diver).unwrap();
+        Self::session_talk(SessionBeginning::New(Box::new(start)), typed)
+    }
+
+    /// A session that goes on, with somebody there.
+    pub(crate) fn session_again(&self, session: &str, typed: &[&str]) -> SessionTalked {
+        let desk = SessionDesk::resume(self.shelf(), session).unwrap();
+        Self::session_talk(SessionBeginning::Again(Box::new(desk)), typed)
+    }
+
+    fn session_talk(beginning: SessionBeginning, typed: &[&str]) -> SessionTalked {
+        let (mut keys, screen) = Keys::typing(typed);
+        let (mut out, mut aside) = (screen.clone(), screen.clone());
+        let mut talk = Talk::new(&mut keys, &mut out, &mut aside, true);
+        let held = converse_session(beginning, &mut talk, &Units::default());
+        let text = String::from_utf8(screen.0.borrow().clone()).unwrap();
+        let desk = held.unwrap_or_else(|broken| panic!("{broken:?}\n{text}"));
+        SessionTalked { text, desk }
+    }
+
+    /// A session as the book holds it.
+    #[track_caller]
+    pub(crate) fn session(&self, number: u32) -> SessionRecord {
+        open(&self.book()).session(SessionNumber::new(number).unwrap()).unwrap()
     }
 
     /// The program with `input` from a pipe.
@@ -230,6 +277,15 @@ struct Keys {
     current: Vec<u8>,
     read: usize,
     screen: Screen,
+}
+
+impl Keys {
+    /// Types these lines onto a screen.
+    fn typing(typed: &[&str]) -> (Self, Screen) {
+        let screen = Screen::default();
+        let lines = typed.iter().map(|line| format!("{line}\n").into_bytes()).collect();
+        (Self { lines, current: Vec::new(), read: 0, screen: screen.clone() }, screen)
+    }
 }
 
 impl Read for Keys {

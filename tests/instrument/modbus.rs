@@ -159,7 +159,10 @@ fn several_devices_share_a_line_and_a_dead_one_does_not_starve_the_others() {
             match one.what {
                 Ok(reading) => {
                     readings[one.member] += 1;
-                    assert_eq!(short(&[one.clone()]), [format!("{}:{}", one.member, one.member + 1)]);
+                    assert_eq!(
+                        short(std::slice::from_ref(&one)),
+                        [format!("{}:{}", one.member, one.member + 1)]
+                    );
                     assert!((reading.si - 1e5 * f64::from(device)).abs() < 1e-6);
                 }
                 Err(fault) => assert_eq!((one.member, fault.kind), (2, FaultKind::Silence)),

@@ -92,7 +92,7 @@ fn a_wrong_unit_that_the_line_says() {
     let port = meter("8N1", 9_600, "512 mL/min\r\n");
     let change = Change::Unit { from: Some("L/min".to_owned()), to: "mL/min".to_owned() };
     // 512 L/min would be a fault; 12 L/min would not, and is told all the same.
-    assert_eq!(only(&trial(&flow(), &port), &port), [change.clone()]);
+    assert_eq!(only(&trial(&flow(), &port), &port), std::slice::from_ref(&change));
     let port = meter("8N1", 9_600, "12 mL/min\r\n");
     let trial = trial(&flow(), &port);
     assert!(trial.does_well());

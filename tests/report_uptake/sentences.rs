@@ -83,9 +83,10 @@ fn warning_case(warning: &Warning) -> Case<Warning> {
             &["0.71", "2 min 10 s", "0.65", "dangerous"],
             Some(W::HeldButVents { from_s: 90.0, to_s: 840.0 }),
         ),
-        W::HeldButVents { .. } => {
-            (&["from 00:01:30 to 00:14:00", "8 %"], Some(W::HeldOrVenting { from_s: 90.0, to_s: 840.0 }))
-        }
+        W::HeldButVents { .. } => (
+            &["from 00:01:30 to 00:14:00", "read high"],
+            Some(W::HeldOrVenting { from_s: 90.0, to_s: 840.0 }),
+        ),
         W::HeldOrVenting { .. } => {
             (&["from 00:01:30 to 00:14:00"], Some(W::UnmarkedJump(jump(Jump::OxygenAdd))))
         }
@@ -155,7 +156,11 @@ fn why_not_case(why: &WhyNot) -> Case<WhyNot> {
         ),
         N::NearlyPureOxygen { .. } => (&["0.96", "0.65", "next time"], Some(N::NoVolumeOneInjection)),
         N::NoVolumeOneInjection => {
-            (&["loop_volume = \"7.5 L ± 0.5 L\"", "another injection"], Some(N::UnmarkedJump { at_s: 450.0 }))
+            let next = N::LoopVolumeContradicts { stated_l: 14.0, found_l: 6.95, apart: 13.2 };
+            (&["loop_volume = \"7.5 L ± 0.5 L\"", "another injection"], Some(next))
+        }
+        N::LoopVolumeContradicts { .. } => {
+            (&["14.0 L", "7.0 L", "13 standard", "again"], Some(N::UnmarkedJump { at_s: 450.0 }))
         }
         N::UnmarkedJump { .. } => (&["00:07:30", "event", "exclude"], Some(N::ContentsUnknown)),
         N::ContentsUnknown => (&["make-up", "mark = true"], Some(N::NotAccounted { at_s: 700.0 })),
@@ -169,7 +174,7 @@ fn why_not_case(why: &WhyNot) -> Case<WhyNot> {
 #[test]
 fn every_reason_for_no_number_has_a_sentence_of_its_own() {
     let first = WhyNot::TooShort { usable_s: 130.0, needed_s: 240.0 };
-    assert_eq!(walk(first, why_not_case, say::why_not), 12);
+    assert_eq!(walk(first, why_not_case, say::why_not), 13);
     assert!(!say::why_not(&WhyNot::NotPositive { came_out: -0.123_45 }).contains("0.12"));
     // Without any cell the list is no empty pair of brackets.
     assert!(say::why_not(&WhyNot::NoUsableCell { left_out: Vec::new() }).contains("none was recorded"));

@@ -86,7 +86,7 @@ CREATE TABLE session (
   first_s   REAL,                                       -- earliest reading, s on the time column
   last_s    REAL,                                       -- latest reading, s on the time column
   cells     INTEGER NOT NULL,                           -- oxygen cells
-  readings  INTEGER NOT NULL,                           -- rows of readings
+  readings  INTEGER,                                    -- rows of readings; none when it was begun without them
   source    BLOB                                        -- SHA-256 of the files of an imported session
 ) STRICT;
 CREATE UNIQUE INDEX session_source ON session (source) WHERE source IS NOT NULL;
@@ -99,6 +99,17 @@ CREATE TABLE of_session (
   kind    INTEGER NOT NULL                              -- kind of the record
 ) STRICT;
 CREATE INDEX of_session_session ON of_session (session, seq);
+CREATE INDEX of_session_kind    ON of_session (session, kind, seq);
+
+-- Sessions that were recorded row by row and are complete, for lists. Personal, as session is.
+CREATE TABLE session_finished (
+  seq      INTEGER PRIMARY KEY REFERENCES record (seq), -- the record that says so
+  session  INTEGER NOT NULL UNIQUE,                     -- number of the session
+  cells    INTEGER NOT NULL,                            -- oxygen cells
+  readings INTEGER NOT NULL,                            -- rows of readings that stand
+  first_s  REAL,                                        -- earliest reading, s on the time column
+  last_s   REAL                                         -- latest reading, s on the time column
+) STRICT;
 
 -- What was left out of sessions, for lists.
 CREATE TABLE session_left_out (
@@ -145,6 +156,8 @@ CREATE TRIGGER session_stays          BEFORE UPDATE ON session
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER of_session_stays       BEFORE UPDATE ON of_session
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_finished_stays BEFORE UPDATE ON session_finished
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER session_left_out_stays BEFORE UPDATE ON session_left_out
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER session_erased_stays   BEFORE UPDATE ON session_erased
@@ -169,6 +182,9 @@ CREATE TRIGGER session_kept    BEFORE DELETE ON session
   WHEN NOT EXISTS (SELECT 1 FROM erased WHERE seq = OLD.seq)
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER of_session_kept BEFORE DELETE ON of_session
+  WHEN NOT EXISTS (SELECT 1 FROM erased WHERE seq = OLD.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_finished_kept BEFORE DELETE ON session_finished
   WHEN NOT EXISTS (SELECT 1 FROM erased WHERE seq = OLD.seq)
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER session_left_out_kept BEFORE DELETE ON session_left_out
@@ -202,6 +218,9 @@ CREATE TRIGGER session_new     BEFORE INSERT ON session
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER of_session_new  BEFORE INSERT ON of_session
   WHEN EXISTS (SELECT 1 FROM of_session WHERE seq = NEW.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER session_finished_new BEFORE INSERT ON session_finished
+  WHEN EXISTS (SELECT 1 FROM session_finished WHERE seq = NEW.seq OR session = NEW.session)
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER session_left_out_new BEFORE INSERT ON session_left_out
   WHEN EXISTS (SELECT 1 FROM session_left_out WHERE seq = NEW.seq)

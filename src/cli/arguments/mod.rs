@@ -4,6 +4,7 @@ mod bench;
 mod book;
 mod keys;
 mod registers;
+mod rig;
 mod session;
 mod setting;
 
@@ -14,10 +15,14 @@ pub use book::{Backup, Book, Check, Export};
 use clap::{Args, Parser, Subcommand};
 pub use registers::{
     Acceptances, Add, Divers, Edit, EditShop, Entries, FirstStages, Forget, Instruments, One, Orifices,
-    ShopVerbs, ShowOrifice, ShowShop,
+    ShopVerbs, ShowOrifice, ShowShop, Try,
 };
+pub use rig::Rig;
 
-pub use session::{ImportSessions, LeaveOutSession, ListSessions, Sessions, ShowSession, UptakeOf};
+pub use session::{
+    EnterSession, ImportSessions, LeaveOutSession, ListSessions, ResumeSession, Sessions, ShowSession,
+    UptakeOf,
+};
 pub use setting::{Setting, Water};
 
 use crate::quantity::Shown;
@@ -31,7 +36,7 @@ use crate::quantity::Shown;
     disable_help_subcommand = true,
     max_term_width = 80,
     after_help = "Exit status: 0 done and favourable; 1 done, and the verdict is fail, undecided, no uptake or no setting; 2 the input or the call \
-                  is wrong; 3 a disk or output file failed.\n\nAn aid to trained people, no life-support monitor. \
+                  is wrong; 3 a port, a disk or an output file failed.\n\nAn aid to trained people, no life-support monitor. \
                   Training, the unit's manual, the regulator maker's limits and local rules come first."
 )]
 pub struct Arguments {
@@ -91,6 +96,8 @@ pub enum Command {
     /// The shop, as it stands on certificates
     #[command(subcommand)]
     Shop(ShopVerbs),
+    /// A simulated bench on pseudo-terminals, speaking as real meters do, with faults on demand
+    Rig(Rig),
     /// The record file: health, chain, copies
     #[command(subcommand)]
     Book(Book),

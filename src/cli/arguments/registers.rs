@@ -7,6 +7,7 @@ use clap::{Args, Subcommand};
 use super::keys::{
     AcceptanceKeys, DiverKeys, FirstStageKeys, Flags, InstrumentKeys, Keys, OrificeKeys, ShopKeys,
 };
+use crate::quantity::{Span, text};
 
 /// Verbs of orifices.
 #[derive(Debug, Subcommand)]
@@ -32,6 +33,10 @@ pub enum Instruments {
     List(Entries),
     /// Shows an instrument
     Show(One),
+    /// Lists the serial ports there are, and which instrument is set to which
+    Ports,
+    /// Listens to an instrument for a few seconds: what comes, what it means, and which settings would do better
+    Try(Try),
 }
 
 /// Verbs of first stages.
@@ -137,6 +142,17 @@ pub struct One {
     /// Earlier revisions too
     #[arg(long)]
     pub all: bool,
+}
+
+/// Options of `instrument try`.
+#[derive(Debug, Args)]
+pub struct Try {
+    /// An instrument of the register, or the file of its profile (a name with a slash, or ending in .toml)
+    #[arg(value_name = "ID|FILE.toml")]
+    pub what: String,
+    /// How long to listen; other settings are tried after that where it does not do well
+    #[arg(long = "for", value_name = "DURATION", default_value = "5 s", allow_hyphen_values = true, value_parser = text::value::<Span>)]
+    pub lasts: Span,
 }
 
 /// Options of `orifice show`.

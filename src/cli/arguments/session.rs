@@ -7,6 +7,10 @@ use clap::{Args, Subcommand};
 /// Verbs of couch and pool sessions.
 #[derive(Debug, Subcommand)]
 pub enum Sessions {
+    /// Types a session, row by row, at a prompt or from a pipe
+    Enter(Box<EnterSession>),
+    /// Goes on with a session that was left open
+    Resume(ResumeSession),
     /// Takes sessions from files into the book
     Import(ImportSessions),
     /// Lists the sessions of the book, the newest first
@@ -17,6 +21,64 @@ pub enum Sessions {
     LeaveOut(LeaveOutSession),
     /// Works out the resting oxygen uptake from one session or many
     Uptake(UptakeOf),
+}
+
+/// Options of `session enter`; what is not given is asked for, or stays unsaid.
+#[derive(Debug, Args)]
+pub struct EnterSession {
+    /// The diver, by code; one that is not in the register yet is created with the code only
+    #[arg(value_name = "DIVER")]
+    pub diver: String,
+    /// Everything but the time, readings and events as in this session file
+    #[arg(long, value_name = "FILE.toml")]
+    pub from: Option<PathBuf>,
+    /// couch or pool
+    #[arg(long, value_name = "PLACE")]
+    pub place: Option<String>,
+    /// held, sealed or topped
+    #[arg(long, value_name = "HOW")]
+    pub r#loop: Option<String>,
+    /// air, or as in "oxygen 18 %" (else the diver's own, else air)
+    #[arg(long, value_name = "GAS")]
+    pub diluent: Option<String>,
+    /// Lungs included, as in "7.5 L ± 1.0 L", or unknown (else the diver's own)
+    #[arg(long, value_name = "VOLUME")]
+    pub loop_volume: Option<String>,
+    /// Mass of the diver, as in "82 kg" (else the diver's own)
+    #[arg(long, value_name = "MASS")]
+    pub mass: Option<String>,
+    /// passed, or the leak as in "0.005 L/min"
+    #[arg(long, value_name = "LEAK")]
+    pub leak_test: Option<String>,
+    /// Barometer, as in "1016 hPa ± 2 hPa"
+    #[arg(long, value_name = "PRESSURE")]
+    pub barometer: Option<String>,
+    /// Depth of the counterlung in a pool, as in "1.2 m ± 0.1 m"
+    #[arg(long, value_name = "DEPTH", allow_hyphen_values = true)]
+    pub depth: Option<String>,
+    /// Temperature of the loop gas, as in "33 °C ± 4 °C"
+    #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
+    pub loop_temperature: Option<String>,
+    /// On the loop before the first reading, as in "10 min"
+    #[arg(long, value_name = "SPAN")]
+    pub time_on_loop: Option<String>,
+    /// ± of the cells' gain (k = 2), as in "2 %"
+    #[arg(long, value_name = "SHARE")]
+    pub gain: Option<String>,
+    /// The orifice of the book whose line turns an IP into a flow, or none
+    #[arg(long, value_name = "ORIFICE")]
+    pub orifice: Option<String>,
+    /// When the first reading is, as in 2026-11-20T18:05:00+11:00 (else now)
+    #[arg(long, value_name = "TIME")]
+    pub taken: Option<String>,
+}
+
+/// Options of `session resume`.
+#[derive(Debug, Args)]
+pub struct ResumeSession {
+    /// A session of the book that is still open
+    #[arg(value_name = "SESSION")]
+    pub session: String,
 }
 
 /// Options of `session import`.

@@ -20,7 +20,7 @@ pub struct Setting {
     #[arg(long, value_name = "ORIFICE|FILE.toml", required = true)]
     pub orifice: Vec<String>,
     /// A diver of the book, with all sessions
-    #[arg(long, value_name = "DIVER", conflicts_with = "session", required_unless_present = "session")]
+    #[arg(long, value_name = "DIVER", conflicts_with = "session")]
     pub diver: Option<String>,
     /// A session file, or a session of the book; repeat for several
     #[arg(long, value_name = "FILE.toml|SESSION")]
@@ -140,9 +140,14 @@ fn loop_volume(text: &str) -> Result<Uncertain<Volume>, QuantityError> {
 
 /// An altitude where the unit is one of length, else a barometer.
 fn place(text: &str) -> Result<PlaceGiven, QuantityError> {
-    match text::value::<Length>(text) {
-        Ok(altitude) => Ok(PlaceGiven::Altitude(altitude)),
-        Err(_) => text::uncertain(text).map(PlaceGiven::Barometer),
+    match (text::value::<Length>(text), text::uncertain(text)) {
+        (Ok(altitude), _) => Ok(PlaceGiven::Altitude(altitude)),
+        (Err(_), Ok(barometer)) => Ok(PlaceGiven::Barometer(barometer)),
+        // With a unit of length it was meant as an altitude.
+        (Err(of_length), Err(_)) if text.trim_end().ends_with('m') || text.trim_end().ends_with("ft") => {
+            Err(of_length)
+        }
+        (Err(_), Err(of_pressure)) => Err(of_pressure),
     }
 }
 

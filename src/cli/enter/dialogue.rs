@@ -16,6 +16,7 @@ use crate::report::enter_words::{self as words, TypedUnits};
 use crate::report::layout::wrapped;
 use crate::report::{Units, bench_fit};
 use crate::work::enter::{Desk, EnterError, Standing, Start, is_passing};
+use crate::work::enter_session::SessionEnterError;
 use crate::work::{ExitStatus, WorkError};
 
 /// A run that is about to be typed.
@@ -67,7 +68,8 @@ impl From<EnterError> for Broken {
 }
 
 /// What an answer led to.
-enum Answer {
+pub(super) enum Answer {
+    /// Something typed.
     Text(String),
     /// The end of the input, or `quit`.
     Left,
@@ -214,7 +216,7 @@ fn bare(text: &str, question: Question) -> &str {
 }
 
 /// The next answer of somebody who sits there.
-fn hear_answer(talk: &mut Talk<'_>) -> Result<Answer, Broken> {
+pub(super) fn hear_answer(talk: &mut Talk<'_>) -> Result<Answer, Broken> {
     loop {
         match talk.hear()?.map(Heard::text) {
             None => {
@@ -230,20 +232,20 @@ fn hear_answer(talk: &mut Talk<'_>) -> Result<Answer, Broken> {
 }
 
 /// Says why an answer is not taken; what is not the answer's fault ends the dialogue.
-fn not_taken(error: WorkError, talk: &mut Talk<'_>) -> Result<(), Broken> {
+pub(super) fn not_taken(error: WorkError, talk: &mut Talk<'_>) -> Result<(), Broken> {
     if error.status() != ExitStatus::Wrong {
         return Err(Broken::Work(error));
     }
     Ok(talk.say(&wrapped("  ", "  ", &with_causes(&error)))?)
 }
 
-fn at_line(talk: &Talk<'_>, says: String, kept: String) -> EnterError {
+pub(super) fn at_line(talk: &Talk<'_>, says: String, kept: String) -> EnterError {
     EnterError::AtLine { line: talk.line(), says, kept }
 }
 
 /// Whether the dialogue goes on.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
-enum Step {
+pub(super) enum Step {
     On,
     Left,
 }
@@ -533,7 +535,7 @@ enum FlowHeard {
 }
 
 /// Why a line was not done.
-enum Refused {
+pub(super) enum Refused {
     Line(String),
     Work(WorkError),
     Talk(io::Error),
@@ -557,6 +559,12 @@ impl From<io::Error> for Refused {
 impl From<WorkError> for Refused {
     fn from(error: WorkError) -> Self {
         Self::Work(error)
+    }
+}
+
+impl From<SessionEnterError> for Refused {
+    fn from(error: SessionEnterError) -> Self {
+        Self::Work(error.into())
     }
 }
 

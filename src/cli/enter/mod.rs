@@ -1,4 +1,4 @@
-//! `bench enter` and `bench resume`: a run typed at a prompt, or from a pipe.
+//! `bench enter` and `bench resume`: a run typed at a prompt, or from a pipe; a session likewise, in `session`.
 //!
 //! With a terminal questions and answers alternate on it; from a pipe nothing is asked, and each point is acknowledged
 //! on stdout as soon as it is in the book. With `--json` stdout holds the document alone and the talk goes to stderr.
@@ -7,6 +7,8 @@
 mod dialogue;
 mod line;
 mod talk;
+mod session_dialogue;
+pub(super) mod session;
 
 use std::io::{self, IsTerminal as _, Write};
 
@@ -17,7 +19,9 @@ use crate::work::enter::{Desk, EnterError, Start};
 use crate::work::{ExitStatus, WorkError};
 
 pub use crate::report::enter_questions::Question;
+pub use crate::report::session_enter_questions::SessionQuestion;
 pub use dialogue::{Beginning, Broken, Manner, converse};
+pub use session_dialogue::{SessionBeginning, converse_session};
 pub use talk::Talk;
 
 pub(super) fn enter(arguments: &arguments::Enter, global: &Global) -> Result<ExitStatus, Ended> {

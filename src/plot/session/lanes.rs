@@ -118,28 +118,31 @@ fn in_rows(
         };
         let weight = if told == Told::Numbered { Weight::Bold } else { Weight::Regular };
         let (at, wide) = (x.clamped(mark.at_s), width(&text, size, weight));
-        // The sign, then the text to its right, or to its left at the end of the panel.
+        // A number stands in the place of the sign; else the sign, then the text to its right, or to its left at the end of
+        // the panel.
         let begin = at + 1.3 * r + gap;
-        let (from, to, text) = if begin + wide <= right {
+        let (from, to, text) = if told == Told::Numbered {
+            (at - 0.5 * wide, at + 0.5 * wide, (text, at, Anchor::Middle))
+        } else if begin + wide <= right {
             (at - 1.3 * r, begin + wide, (text, begin, Anchor::Start))
         } else {
             let end = at - 1.3 * r - gap;
             (end - wide, at + 1.3 * r, (text, end, Anchor::End))
         };
-        if from < left - 1.3 * r {
+        if from < left - body {
             return None;
         }
         let free = |row: usize| {
             items.iter().all(|(other, other_from, other_to)| {
-                let apart = from >= other_to + gap || to + gap <= *other_from;
+                let apart = from >= other_to + 0.5 * gap || to + 0.5 * gap <= *other_from;
                 match other.row.cmp(&row) {
                     std::cmp::Ordering::Equal => apart,
                     // An upright passes through what stands above it at the same moment, but through no text.
                     std::cmp::Ordering::Less => {
-                        at + 0.5 * r < *other_from || at > other_to + 0.5 * r || (at - other.x).abs() < 0.1
+                        at + 0.25 * r < *other_from || at > other_to + 0.25 * r || (at - other.x).abs() < 0.1
                     }
                     std::cmp::Ordering::Greater => {
-                        other.x + 0.5 * r < from || other.x > to + 0.5 * r || (at - other.x).abs() < 0.1
+                        other.x + 0.25 * r < from || other.x > to + 0.25 * r || (at - other.x).abs() < 0.1
                     }
                 }
             })
@@ -219,9 +222,11 @@ pub(super) fn draw(svg: &mut Svg, seen: &Seen<'_>, layout: &Layout) {
     for item in &layout.events.items {
         let Some(mark) = seen.marks.get(item.index) else { continue };
         let y = layout.event_y(item.row);
-        draw_event(svg, mark.happened, (item.x, y), r, layout.transparent);
-        let Some((text, x, anchor)) = &item.text else { continue };
         let numbered = layout.events.told == Told::Numbered;
+        if !numbered {
+            draw_event(svg, mark.happened, (item.x, y), r, layout.transparent);
+        }
+        let Some((text, x, anchor)) = &item.text else { continue };
         svg.text(&Text {
             x: *x,
             y: y + 0.36 * size,

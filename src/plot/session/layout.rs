@@ -123,7 +123,7 @@ impl Layout {
         let below = if beside { 0.0 } else { margin.y + 0.7 * body };
         let bottom = h - edge - below - label_room(body) - 1.35 * body;
         let strip_top = bottom - strip_height;
-        let lane_bottom = if has_strip { strip_top - 2.1 * body } else { bottom };
+        let lane_bottom = if has_strip { strip_top - 2.2 * body } else { bottom };
         let main_bottom = lane_bottom - lanes::events_height(&events, body);
         let main = Frame { left, top: main_top, right, bottom: main_bottom.max(main_top + body) };
         let events_lane = Frame { top: main.bottom, bottom: lane_bottom.max(main.bottom), ..main };
@@ -210,13 +210,13 @@ impl Layout {
         let (body, left) = (self.body, edge(self.body));
         let (right, lowest) = (self.main.right, self.strip.map_or(self.events_lane.bottom, |s| s.bottom));
         svg.group("plot-axis-titles", &[]);
-        let y = self.segments_lane.top - 0.75 * body;
+        let y = self.segments_lane.top - 0.85 * body;
         title(svg, &words.po2_axis, (left, y), Anchor::Start, body, right - left);
         let y = lowest + label_room(body) + body;
         let middle = 0.5 * (self.main.left + right);
         title(svg, &words.time_axis, (middle, y), Anchor::Middle, body, right - left);
         if let Some(strip) = self.strip {
-            let y = strip.top - 0.75 * body;
+            let y = strip.top - 0.85 * body;
             let share = if self.depth_side.is_some() { 0.55 } else { 1.0 };
             title(svg, &words.flow_axis, (left, y), Anchor::Start, body, share * (right - left));
             if self.depth_side.is_some() {

@@ -23,11 +23,12 @@ struct Fullness {
 }
 
 /// From all that there is to say to the least.
-const FULLNESS: [Fullness; 5] = [
+const FULLNESS: [Fullness; 6] = [
     Fullness { notes: Some(0), lines: 4, keys: 26 },
     Fullness { notes: Some(1), lines: 4, keys: 26 },
-    Fullness { notes: Some(1), lines: 2, keys: 12 },
-    Fullness { notes: None, lines: 2, keys: 6 },
+    Fullness { notes: Some(1), lines: 2, keys: 26 },
+    Fullness { notes: None, lines: 2, keys: 16 },
+    Fullness { notes: None, lines: 1, keys: 6 },
     Fullness { notes: None, lines: 1, keys: 3 },
 ];
 
@@ -80,7 +81,7 @@ fn column(
     c.paragraph(&words.who, c.muted("plot-who"), fullness.lines);
     for passed in &words.passed {
         c.space(0.4);
-        c.paragraph(passed, brick, fullness.lines);
+        c.led("Caution:", Style { weight: Weight::Bold, ..brick }, passed, brick, fullness.lines);
     }
     c.space(0.9);
     for (sign, text) in legend {
@@ -96,7 +97,7 @@ fn column(
         c.paragraph(&words.notes[which], Style { size, ..c.muted("plot-notes") }, 20);
     }
     if c.y <= room {
-        c.to_foot(first, room);
+        c.move_to_foot(first, room);
     }
     c
 }
@@ -115,7 +116,7 @@ fn rows(words: &Words, legend: &[(Sign, String)], body: f64, width: f64, fullnes
     let style = answer_style(words, &c, 1.15 * body);
     c.led(&words.answer, style, &detail, c.plain("plot-why"), fullness.lines);
     for passed in &words.passed {
-        c.paragraph(passed, brick, 1);
+        c.led("Caution:", Style { weight: Weight::Bold, ..brick }, passed, brick, 1);
     }
     c.space(0.35);
     c.rows(legend);
@@ -168,7 +169,13 @@ fn legend(
         entries.push((Sign::Cell(cell.index), text.clone()));
     }
     if !seen.fits.is_empty() {
-        entries.push((Sign::Fit, "segment with its fitted slope".to_owned()));
+        let topped = |fit: &super::seen::Fit| fit.segment.kind == crate::uptake::Kind::Topped;
+        let text = if seen.fits.iter().all(topped) {
+            "segment, from its first level to its last"
+        } else {
+            "segment with its fitted slope"
+        };
+        entries.push((Sign::Fit, text.to_owned()));
     }
     for reason in Reason::ALL {
         if seen.stretches.iter().any(|s| s.reason == reason) {

@@ -3,6 +3,7 @@
 //! Comes in: what is drawn and where. Goes out: marks inside the panel's frame; what would leave it is left out by
 //! arithmetic, so that no clipping path is needed.
 
+use super::lanes::Told;
 use super::layout::Layout;
 use super::seen::Seen;
 use super::signs::{
@@ -10,6 +11,7 @@ use super::signs::{
 };
 use super::trace::{Thinning, strokes};
 
+use super::super::axes::tick_size;
 use super::super::frame::Frame;
 use super::super::ink::{BRICK, INK};
 use super::super::number::coordinate;
@@ -56,7 +58,9 @@ fn draw_uprights(svg: &mut Svg, seen: &Seen<'_>, layout: &Layout) {
     let many = layout.events.items.len() > MANY;
     for item in &layout.events.items {
         let Some(mark) = seen.marks.get(item.index) else { continue };
-        let foot = layout.event_y(item.row);
+        // Down to the sign, or onto the number that stands in its place.
+        let over = if layout.events.told == Told::Numbered { 0.62 * tick_size(layout.body) } else { 0.0 };
+        let foot = layout.event_y(item.row) - over;
         let mut path = Path::default();
         path.stroke((item.x, layout.main.top), (item.x, foot));
         let width = coordinate(if many { 0.06 } else { 0.09 } * layout.body);
@@ -208,6 +212,9 @@ pub(super) fn fit_places(fit: &super::seen::Fit, layout: &Layout) -> Vec<(f64, f
 }
 
 fn draw_jumps(svg: &mut Svg, seen: &Seen<'_>, layout: &Layout) {
+    if seen.jumps.is_empty() {
+        return;
+    }
     let body = layout.body;
     let width = coordinate(0.12 * body);
     let dashes = format!("{} {}", coordinate(0.2 * body), coordinate(0.2 * body));

@@ -36,7 +36,7 @@ pub(super) fn strokes(places: impl Iterator<Item = (f64, f64)>, thinning: &Thinn
                 strokes.push(std::mem::take(&mut stroke));
             }
         }
-        let index = libm::floor((x - thinning.left) / wide) as i64;
+        let index = libm::floor((x - thinning.left) / wide).min(columns - 1.0) as i64;
         if column.index != Some(index) {
             column.empty_into(&mut stroke);
             column.index = Some(index);

@@ -222,11 +222,11 @@ fn event(mark: &Mark, units: &Units, brief: bool) -> String {
             }
             (None, _) => "injection".to_owned(),
         },
-        What::OxygenAdd(amount) => format!("{}{}", if brief { "O2" } else { "oxygen added" }, litres(amount)),
+        What::OxygenAdd(amount) => gas(if brief { "O2" } else { "oxygen" }, "added", litres(amount), brief),
         What::DiluentAdd(amount) => {
-            format!("{}{}", if brief { "dil." } else { "diluent added" }, litres(amount))
+            gas(if brief { "dil." } else { "diluent" }, "added", litres(amount), brief)
         }
-        What::Vent(amount) => format!("{}{}", if brief { "vent" } else { "vented" }, litres(amount)),
+        What::Vent(amount) => gas("vent", "", litres(amount), brief),
         What::MakeUp { kept, mark } if brief => match kept {
             Some(kept) => kept.name().to_owned(),
             None => (if mark { "mark" } else { "made up" }).to_owned(),
@@ -234,6 +234,15 @@ fn event(mark: &Mark, units: &Units, brief: bool) -> String {
         What::MakeUp { kept, mark } => made_up(kept, mark),
         What::Stop => "stop".to_owned(),
         What::Exclude { .. } => String::new(),
+    }
+}
+
+/// What went in or out, with its amount where it is known.
+fn gas(what: &str, verb: &str, amount: String, brief: bool) -> String {
+    if amount.is_empty() && !brief && !verb.is_empty() {
+        format!("{what} {verb}")
+    } else {
+        format!("{what}{amount}")
     }
 }
 

@@ -4,7 +4,6 @@ use super::super::around::{Alone, Reader, above_zero};
 use super::super::document::{Field, Table};
 use super::super::error::{RecordError, Refusal};
 use super::super::registers::words;
-use super::columns::Columns;
 use super::spread::{given, to_k2};
 use crate::entry::{Cylinder, Feeds, Rest, SessionConditions};
 use crate::gas::Water;
@@ -19,8 +18,12 @@ pub(super) const WATERS: [(&str, Water); 2] = [("fresh", Water::Fresh), ("sea", 
 /// The words for what a cylinder feeds, in files.
 pub(super) const FEEDS: [(&str, Feeds); 2] = [("all", Feeds::All), ("adds", Feeds::Adds)];
 
-/// `[conditions]`.
-pub(super) fn conditions(whole: &Table<'_>, columns: &Columns) -> Result<SessionConditions, RecordError> {
+/// `[conditions]`; whether depth and loop temperature have columns.
+pub(super) fn conditions(
+    whole: &Table<'_>,
+    depth_column: bool,
+    temperature_column: bool,
+) -> Result<SessionConditions, RecordError> {
     let Some(table) = whole.table("conditions")? else { return Ok(SessionConditions::default()) };
     table.only(&[
         "barometer",
@@ -39,10 +42,9 @@ pub(super) fn conditions(whole: &Table<'_>, columns: &Columns) -> Result<Session
     }
     Ok(SessionConditions {
         barometer,
-        depth: reader.influence::<Length>("depth", column(columns.depth.is_some()))?,
+        depth: reader.influence::<Length>("depth", column(depth_column))?,
         water: table.field("water").map_or(Ok(Water::Fresh), |field| field.word(&WATERS))?,
-        loop_temperature: reader
-            .influence::<Temperature>("loop_temperature", column(columns.loop_temperature.is_some()))?,
+        loop_temperature: reader.influence::<Temperature>("loop_temperature", column(temperature_column))?,
         time_on_loop: some_span(&table, "time_on_loop")?,
         scrubber_warm: table.field("scrubber_warm").map(|field| field.flag()).transpose()?,
     })

@@ -15,6 +15,7 @@ mod events;
 mod around;
 mod assumptions;
 mod write;
+mod setup;
 
 use std::path::Path;
 
@@ -33,6 +34,7 @@ use crate::gas::Species;
 pub use events::event_from;
 pub use moment::{When, elapsed_or_time};
 pub use refusal::SessionRefusal;
+pub use setup::{SessionSetup, read_session_setup, session_setup_from};
 pub use write::write_session;
 
 const KEYS: [&str; 21] = [
@@ -150,7 +152,7 @@ fn session(file: &Table<'_>, name: &str, files: Files<'_>) -> Result<Session, Re
     let line = line(file)?;
     let example = "a table [columns] with time = { column = \"t\", unit = \"s\" } and cells = [ … ]";
     let columns = columns::Columns::read(&file.required("columns", example)?.table("columns")?)?;
-    let conditions = around::conditions(file, &columns)?;
+    let conditions = around::conditions(file, columns.depth.is_some(), columns.loop_temperature.is_some())?;
     let papers = cells::papers(file, &columns.cells)?;
     let rest = around::rest(file)?;
     let assumptions = assumptions::assumptions(file)?;

@@ -134,7 +134,7 @@ pub const fn is_passing(error: &WorkError) -> bool {
 }
 
 /// A text as it may stand in a sentence: what hides made visible, and cut.
-fn short(text: &str) -> String {
+pub(super) fn short(text: &str) -> String {
     const LONGEST: usize = 60;
     match text.char_indices().nth(LONGEST) {
         Some((end, _)) => format!("{}…", text[..end].escape_debug()),
