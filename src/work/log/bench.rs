@@ -14,12 +14,15 @@ use super::view::{BenchState, bench_view};
 use crate::book::{Book, Holder, Logged};
 use crate::clock::{self, Ticks};
 use crate::entry::{Instrument, LoggingBegun, Measures, Run, RunNumber};
-use crate::instrument::{Opener, Streams, What, listen};
+use crate::instrument::{Heard, Opener, Streams, What, listen};
 use crate::logger::{BenchLogger, BenchOptions, Refusal};
 use crate::quantity::Span;
 use crate::report::Units;
+use crate::report::bench_live::BenchView;
 use crate::report::enter_questions::Question;
+use crate::report::live_parts::Hold;
 use crate::work::WorkError;
+use crate::work::instruments::said;
 use crate::work::enter::{Desk, Ready, Start};
 use crate::work::runs::number_of;
 use crate::work::shelf::{Shelf, stamped};
@@ -157,8 +160,8 @@ pub fn log(
     drop(book);
     let Ready { run, notes, .. } = start.ready()?;
     notes.iter().for_each(|note| face.say(note));
-    let driver = Driver::new(shelf, instruments, wires, request.how, None)?;
-    driver.run(Beginning::New(Box::new(run)), face, stop)
+    let driver = Driver::new(shelf, instruments, wires, request.how, run, None)?;
+    driver.run(None, face, stop)
 }
 
 /// Goes on with a logged run.
@@ -197,14 +200,8 @@ pub fn resume(
         crate::entry::Readings::Points(points) => points.len(),
         crate::entry::Readings::Series(_) => 0,
     };
-    let driver = Driver::new(shelf, instruments, wires, how, Some((now_s, before)))?;
-    driver.run(Beginning::Again(number), face, stop)
-}
-
-/// What a driver begins with.
-enum Beginning {
-    New(Box<Run>),
-    Again(RunNumber),
+    let driver = Driver::new(shelf, instruments, wires, how, there.run, Some((now_s, before)))?;
+    driver.run(Some(number), face, stop)
 }
 
 /// A run that is in the book.
@@ -223,6 +220,10 @@ struct Driver<'a> {
     holder: Holder,
     began_s: Option<f64>,
     started_s: f64,
+    /// The run as asked for, or as it stood when it was resumed.
+    asked: Box<Run>,
+    /// The last fault or loss of each instrument, in words.
+    troubles: Vec<Option<String>>,
 }
 
 impl<'a> Driver<'a> {
@@ -231,6 +232,7 @@ impl<'a> Driver<'a> {
         instruments: Vec<Instrument>,
         wires: &Wires,
         how: HowLong,
+        asked: Run,
         again: Option<(f64, usize)>,
     ) -> Result<Self, WorkError> {
         let started_s = wires.ticks.now_s();
@@ -242,6 +244,7 @@ impl<'a> Driver<'a> {
             ..BenchOptions::default()
         };
         let logger = BenchLogger::new(&instruments, options)?;
+        let instruments_count = instruments.len();
         let streams = listen(&instruments, &wires.opener, &wires.ticks)?;
         Ok(Self {
             shelf,
@@ -253,33 +256,27 @@ impl<'a> Driver<'a> {
             holder: holder()?,
             began_s,
             started_s,
+            troubles: vec![None; instruments_count],
+            asked: Box::new(asked),
         })
     }
 
     fn run(
         mut self,
-        beginning: Beginning,
+        again: Option<RunNumber>,
         face: &mut dyn BenchFace,
         stop: &dyn Fn() -> bool,
     ) -> Result<BenchEnded, WorkError> {
-        let mut waiting = None;
-        let mut there = match beginning {
-            Beginning::New(run) => {
-                waiting = Some(run);
-                None
-            }
-            Beginning::Again(number) => Some(self.go_on(number)?),
-        };
+        let mut there = again.map(|number| self.go_on(number)).transpose()?;
         let mut shown_s = f64::NEG_INFINITY;
         let why = loop {
             let new_points = self.hear();
             let now_s = self.ticks.now_s();
             self.logger.tick(now_s);
             if there.is_none()
-                && let Some(first_s) = self.first_reading_s()
-                && let Some(run) = waiting.take()
+                && let Some(first_s) = self.began_s
             {
-                there = Some(self.begin(*run, first_s, face)?);
+                there = Some(self.begin(first_s, face)?);
             }
             if let Some(InBook { desk, ledger }) = &mut there {
                 self.logger.hand_over(now_s, ledger)?;
@@ -309,26 +306,30 @@ impl<'a> Driver<'a> {
     /// Takes what was heard; whether a point was taken of it.
     fn hear(&mut self) -> bool {
         let mut new_points = false;
-        if let Some(heard) = self.streams.wait(TURN_S) {
-            new_points |= self.logger.hear(&heard).is_some();
-            self.note_origin(&heard);
-            let rest: Vec<_> = self.streams.waiting().collect();
-            for heard in &rest {
+        if let Some(first) = self.streams.wait(TURN_S) {
+            let rest: Vec<Heard> = self.streams.waiting().collect();
+            for heard in std::iter::once(&first).chain(&rest) {
                 new_points |= self.logger.hear(heard).is_some();
-                self.note_origin(heard);
+                self.note(heard);
             }
         }
         new_points
     }
 
-    fn note_origin(&mut self, heard: &crate::instrument::Heard) {
-        if self.began_s.is_none() && matches!(heard.what, What::Reading(_)) {
-            self.began_s = Some(heard.at_s);
+    /// Notes when the first reading came, and what was wrong last.
+    fn note(&mut self, heard: &Heard) {
+        let says = match &heard.what {
+            What::Reading(_) => {
+                self.began_s.get_or_insert(heard.at_s);
+                return;
+            }
+            What::Connected => return,
+            What::Fault(fault) => said(fault.kind).says(),
+            What::Lost(lost) => lost.to_string(),
+        };
+        if let Some(trouble) = self.troubles.get_mut(heard.instrument) {
+            *trouble = Some(says);
         }
-    }
-
-    const fn first_reading_s(&self) -> Option<f64> {
-        self.began_s
     }
 
     fn tie(&self, began_s: f64) -> Tie {
@@ -336,8 +337,8 @@ impl<'a> Driver<'a> {
     }
 
     /// Begins the run in the book; its time is that of its first reading.
-    fn begin(&mut self, run: Run, first_s: f64, face: &mut dyn BenchFace) -> Result<InBook, WorkError> {
-        let run = Run { taken: self.ticks.time_of_day(first_s), ..run };
+    fn begin(&mut self, first_s: f64, face: &mut dyn BenchFace) -> Result<InBook, WorkError> {
+        let run = Run { taken: self.ticks.time_of_day(first_s), ..(*self.asked).clone() };
         let mut notes = Vec::new();
         let mut book = self.shelf.to_write(&mut notes)?;
         let begun = LoggingBegun { at_s: 0.0, instruments: self.instruments.clone() };
@@ -364,17 +365,22 @@ impl<'a> Driver<'a> {
         Ok(InBook { desk, ledger: RunLedger::new(book, number, self.tie(began_s)) })
     }
 
-    fn view(&self, now_s: f64, there: Option<&InBook>) -> crate::report::bench_live::BenchView {
+    fn view(&self, now_s: f64, there: Option<&InBook>) -> BenchView {
         bench_view(&BenchState {
             now_s,
             instruments: &self.instruments,
             live: &self.logger.live(now_s),
             counters: &self.streams.counters(),
+            troubles: &self.troubles,
             by_itself: self.logger.takes_by_itself(),
+            asked: &self.asked,
             desk: there.map(|there| &there.desk),
             kept: there.map(|there| there.ledger.kept()),
             units: self.how.units,
-            held_by: None,
+            hold: Hold::Ours,
+            wanted: self.how.points,
+            elapsed_s: now_s - self.began_s.unwrap_or(now_s),
+            left_s: self.how.lasts.map(|lasts| (lasts.as_s() - (now_s - self.started_s)).max(0.0)),
         })
     }
 

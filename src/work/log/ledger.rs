@@ -9,7 +9,7 @@ use chrono::{DateTime, FixedOffset};
 use super::words::{alarm_note, trouble_note};
 use crate::book::{Book, BookError, Holder, Logged, RunBatch, SessionBatch};
 use crate::entry::{
-    CellSignal, Event, Id, Instrument, LiveNote, LivePoint, LiveReadings, Measures, RunNumber,
+    CellSignal, Event, Id, Instrument, LivePoint, LiveReadings, Measures, RunNumber,
     SessionNumber, SessionReadings,
 };
 use crate::instrument::Reading;
