@@ -139,11 +139,7 @@ pub(super) fn renew(
     Ok(())
 }
 
-fn lease(
-    connection: &Connection,
-    what: Logged,
-    now: DateTime<FixedOffset>,
-) -> Result<Option<Lease>, Inside> {
+fn lease(connection: &Connection, what: Logged, now: DateTime<FixedOffset>) -> Result<Option<Lease>, Inside> {
     let (kind, number) = what.key();
     let sql = "SELECT holder, process, beat_ms FROM lease WHERE what = ? AND number = ?";
     let mut statement = connection.prepare_cached(sql)?;

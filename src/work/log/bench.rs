@@ -6,10 +6,9 @@
 //! the process, stays open and is resumed.
 
 use std::sync::Arc;
-use std::time::Duration;
 
 use super::face::{BenchFace, BenchWish};
-use super::ledger::{RunLedger, Tie, holder, seconds_after};
+use super::ledger::{Kept, RunLedger, Tie, holder, seconds_after};
 use super::view::{BenchState, bench_view};
 use crate::book::{Book, Holder, Logged};
 use crate::clock::{self, Ticks};
@@ -22,8 +21,8 @@ use crate::report::bench_live::BenchView;
 use crate::report::enter_questions::Question;
 use crate::report::live_parts::Hold;
 use crate::work::WorkError;
-use crate::work::instruments::said;
 use crate::work::enter::{Desk, Ready, Start};
+use crate::work::instruments::said;
 use crate::work::runs::number_of;
 use crate::work::shelf::{Shelf, stamped};
 
@@ -451,32 +450,18 @@ impl<'a> Driver<'a> {
     }
 
     /// Stops listening, keeps what was still on its way, and ends or leaves the run.
-    fn end(
-        self,
-        there: Option<InBook>,
-        why: Why,
-        face: &mut dyn BenchFace,
-    ) -> Result<BenchEnded, WorkError> {
+    fn end(self, there: Option<InBook>, why: Why, face: &mut dyn BenchFace) -> Result<BenchEnded, WorkError> {
         let Self { ticks, streams, mut logger, .. } = self;
         let rest = streams.stop();
         let Some(InBook { mut desk, mut ledger }) = there else { return Ok(BenchEnded { desk: None, why }) };
         for heard in &rest {
             let _ = logger.hear(heard);
         }
-        logger.hand_over_all(ticks.now_s(), &mut ledger)?;
-        // A disk that is full for a moment may have room again.
-        for _ in 0..LAST_TRIES {
-            if ledger.kept().since_s.is_none() {
-                break;
-            }
-            ticks.sleep(LAST_PAUSE.as_secs_f64());
+        keep_the_rest(&*ticks, || {
             logger.hand_over_all(ticks.now_s(), &mut ledger)?;
-        }
-        let lost = ledger.kept().clone();
+            Ok(ledger.kept().clone())
+        })?;
         ledger.let_go()?;
-        if let (Some(why), things) = (lost.why, lost.waiting) {
-            return Err(WorkError::NotSaved { things, why });
-        }
         desk.read_again()?;
         if why == Why::Finished {
             desk.finish(false)?;
@@ -486,9 +471,32 @@ impl<'a> Driver<'a> {
     }
 }
 
-/// How often the last readings are tried again where the book refuses them, and how long between two tries.
+/// How often the last readings are tried again where the book refuses them, and seconds between two tries: a disk that is
+/// full for a moment may have room again.
 const LAST_TRIES: u32 = 10;
-const LAST_PAUSE: Duration = Duration::from_millis(500);
+const LAST_PAUSE_S: f64 = 0.5;
+
+/// Hands over the last readings until they are in the book.
+///
+/// # Errors
+/// [`WorkError::NotSaved`] when the book refuses them to the end.
+pub(super) fn keep_the_rest(
+    ticks: &dyn Ticks,
+    mut hand_over: impl FnMut() -> Result<Kept, WorkError>,
+) -> Result<(), WorkError> {
+    let mut kept = hand_over()?;
+    for _ in 0..LAST_TRIES {
+        if kept.since_s.is_none() {
+            return Ok(());
+        }
+        ticks.sleep(LAST_PAUSE_S);
+        kept = hand_over()?;
+    }
+    match kept.why {
+        None => Ok(()),
+        Some(why) => Err(WorkError::NotSaved { things: kept.waiting, why }),
+    }
+}
 
 fn refused(refusal: &Refusal) -> String {
     format!("no point was taken: {refusal}")

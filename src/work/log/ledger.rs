@@ -9,8 +9,8 @@ use chrono::{DateTime, FixedOffset};
 use super::words::{alarm_note, trouble_note};
 use crate::book::{Book, BookError, Holder, Logged, RunBatch, SessionBatch};
 use crate::entry::{
-    CellSignal, Event, Id, Instrument, LivePoint, LiveReadings, Measures, RunNumber,
-    SessionNumber, SessionReadings,
+    CellSignal, Event, Id, Instrument, LivePoint, LiveReadings, Measures, RunNumber, SessionNumber,
+    SessionReadings,
 };
 use crate::instrument::Reading;
 use crate::logger::{AlarmChange, Block, Ledger, Row, SessionLedger, Taken, TroubleAt};
