@@ -11,9 +11,9 @@ use super::face::{BenchFace, BenchWish};
 use super::ledger::{Kept, RunLedger, Tie, holder, seconds_after};
 use super::view::{BenchState, bench_view};
 use crate::book::{Book, Holder, Logged};
-use crate::clock::{self, Ticks};
+use crate::clock::{self, Monotonic, Ticks};
 use crate::entry::{Instrument, LoggingBegun, Measures, Run, RunNumber};
-use crate::instrument::{Heard, Opener, Streams, What, listen};
+use crate::instrument::{Heard, Opener, Streams, SystemPorts, What, listen};
 use crate::logger::{BenchLogger, BenchOptions, Refusal};
 use crate::quantity::Span;
 use crate::report::Units;
@@ -40,6 +40,14 @@ pub struct Wires {
     pub opener: Arc<dyn Opener>,
     /// Tells the time.
     pub ticks: Arc<dyn Ticks>,
+}
+
+impl Wires {
+    /// The ports and the clock of this machine.
+    #[must_use]
+    pub fn of_the_system() -> Self {
+        Self { opener: Arc::new(SystemPorts), ticks: Arc::new(Monotonic::start()) }
+    }
 }
 
 /// What is asked of `bench log`. Texts are as typed; none takes what the registers leave no doubt about.
@@ -537,6 +545,14 @@ pub fn watch(
 
 fn face_says_watching(face: &mut dyn BenchFace) {
     face.say("another process holds the instruments and takes the points: here they are only shown");
+}
+
+/// Whether a run was logged, not typed.
+///
+/// # Errors
+/// A run that is not there, a book that cannot be read.
+pub fn run_was_logged(shelf: &Shelf, run: &str) -> Result<bool, WorkError> {
+    Ok(shelf.to_read()?.logging_begun(number_of(run)?)?.is_some())
 }
 
 /// Whether another process logs a run now.
