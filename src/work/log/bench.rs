@@ -8,9 +8,9 @@
 use std::sync::Arc;
 
 use super::face::{BenchFace, BenchWish};
-use super::ledger::{Kept, RunLedger, Tie, holder, seconds_after};
+use super::ledger::{Kept, RunLedger, Tie, is_alive, holder, seconds_after};
 use super::view::{BenchState, bench_view};
-use crate::book::{Book, Holder, Logged};
+use crate::book::{Book, Holder, Lease, Logged};
 use crate::clock::{self, Monotonic, Ticks};
 use crate::entry::{Instrument, LoggingBegun, Measures, Run, RunNumber};
 use crate::instrument::{Heard, Opener, Streams, SystemPorts, What, listen};
@@ -340,7 +340,7 @@ impl<'a> Driver<'a> {
     }
 
     fn tie(&self, began_s: f64) -> Tie {
-        Tie { began_s, instruments: self.instruments.clone(), holder: self.holder }
+        Tie { began_s, instruments: self.instruments.clone(), holder: self.holder.clone() }
     }
 
     /// Begins the run in the book; its time is that of its first reading.
@@ -349,7 +349,7 @@ impl<'a> Driver<'a> {
         let mut notes = Vec::new();
         let mut book = self.shelf.to_write(&mut notes)?;
         let begun = LoggingBegun { at_s: 0.0, instruments: self.instruments.clone() };
-        let holder = self.holder;
+        let holder = self.holder.clone();
         let recorded = stamped(|stamp| book.begin_logged_run(&run, &begun, &holder, stamp))??;
         notes.iter().for_each(|note| face.say(note));
         if recorded.orifice_created {
@@ -360,9 +360,10 @@ impl<'a> Driver<'a> {
 
     fn go_on(&mut self, number: RunNumber) -> Result<InBook, WorkError> {
         let mut book = self.shelf.to_change()?;
+        self.holder.displaces = gone(book.lease(Logged::Run(number), clock::now())?);
         let began_s = self.began_s.unwrap_or(self.started_s);
         let begun = LoggingBegun { at_s: self.started_s - began_s, instruments: self.instruments.clone() };
-        let holder = self.holder;
+        let holder = self.holder.clone();
         stamped(|stamp| book.resume_logged_run(number, &begun, &holder, stamp))??;
         self.in_book(book, number, began_s)
     }
@@ -534,7 +535,7 @@ pub fn watch(
                 false
             }
         });
-        let held = lease.is_some_and(|lease| lease.holds());
+        let held = lease.as_ref().is_some_and(is_alive);
         if left || stop() || !held || !watched.is_open() {
             let why = if watched.is_open() { Why::LeftOpen } else { Why::Finished };
             return Ok(BenchEnded { desk: Some(watched.into_desk()), why });
@@ -555,6 +556,11 @@ pub fn run_was_logged(shelf: &Shelf, run: &str) -> Result<bool, WorkError> {
     Ok(shelf.to_read()?.logging_begun(number_of(run)?)?.is_some())
 }
 
+/// The holder of a lease whose process is known to be gone.
+pub(super) fn gone(lease: Option<Lease>) -> Option<[u8; 16]> {
+    lease.filter(|lease| !is_alive(lease)).map(|lease| lease.id)
+}
+
 /// Whether another process logs a run now.
 ///
 /// # Errors
@@ -562,5 +568,5 @@ pub fn run_was_logged(shelf: &Shelf, run: &str) -> Result<bool, WorkError> {
 pub fn is_held(shelf: &Shelf, run: &str) -> Result<bool, WorkError> {
     let number = number_of(run)?;
     let lease = shelf.to_read()?.lease(Logged::Run(number), clock::now())?;
-    Ok(lease.is_some_and(|lease| lease.holds()))
+    Ok(lease.is_some_and(|lease| is_alive(&lease)))
 }

@@ -10,9 +10,9 @@ use std::sync::Arc;
 use super::bench::{Why, Wires};
 use super::face::{SessionFace, SessionWish};
 use super::instruments::choose;
-use super::ledger::{SessionBookLedger, Tie, holder, seconds_after};
+use super::ledger::{SessionBookLedger, Tie, is_alive, holder, seconds_after};
 use super::session_view::{SessionState, session_view};
-use crate::book::{Book, BookError, Holder};
+use crate::book::{Book, BookError, Holder, Logged};
 use crate::clock::{self, Ticks};
 use crate::entry::{
     CellReadings, CellSignal, Event, Injection, Instrument, LoggingBegun, LoopKept, Measures, Run, Session,
@@ -155,8 +155,8 @@ pub fn resume_session(
 /// A session that is not there, a book that cannot be read.
 pub fn is_session_held(shelf: &Shelf, session: &str) -> Result<bool, WorkError> {
     let number = number_of(session)?;
-    let lease = shelf.to_read()?.lease(crate::book::Logged::Session(number), clock::now())?;
-    Ok(lease.is_some_and(|lease| lease.holds()))
+    let lease = shelf.to_read()?.lease(Logged::Session(number), clock::now())?;
+    Ok(lease.is_some_and(|lease| is_alive(&lease)))
 }
 
 /// Whether a session was logged, not typed.
@@ -382,7 +382,7 @@ impl<'a> Driver<'a> {
     }
 
     fn tie(&self, began_s: f64) -> Tie {
-        Tie { began_s, instruments: self.plan.instruments.clone(), holder: self.holder }
+        Tie { began_s, instruments: self.plan.instruments.clone(), holder: self.holder.clone() }
     }
 
     /// Begins the session in the book; its time is that of its first reading.
@@ -391,7 +391,7 @@ impl<'a> Driver<'a> {
         let mut notes = Vec::new();
         let mut book = self.shelf.to_write(&mut notes)?;
         let begun = LoggingBegun { at_s: 0.0, instruments: self.plan.instruments.clone() };
-        let (holder, line_run) = (self.holder, self.plan.line_run.as_ref());
+        let (holder, line_run) = (self.holder.clone(), self.plan.line_run.as_ref());
         let recorded =
             stamped(|stamp| book.begin_logged_session(&session, line_run, &begun, &holder, stamp))??;
         notes.iter().for_each(|note| face.say(note));
@@ -403,10 +403,11 @@ impl<'a> Driver<'a> {
 
     fn go_on(&mut self, number: SessionNumber) -> Result<InBook, WorkError> {
         let mut book = self.shelf.to_change()?;
+        self.holder.displaces = super::bench::gone(book.lease(Logged::Session(number), clock::now())?);
         let began_s = self.began_s.unwrap_or(self.started_s);
         let begun =
             LoggingBegun { at_s: self.started_s - began_s, instruments: self.plan.instruments.clone() };
-        let holder = self.holder;
+        let holder = self.holder.clone();
         stamped(|stamp| book.resume_logged_session(number, &begun, &holder, stamp))??;
         Ok(self.in_book(book, number, began_s))
     }
