@@ -197,6 +197,17 @@ impl BenchLogger {
         Some(self.take(&held, By::Itself))
     }
 
+    /// Whether points are taken by themselves.
+    #[must_use]
+    pub const fn takes_by_itself(&self) -> bool {
+        self.options.by_itself
+    }
+
+    /// Takes points by itself from now on, or at a wish only.
+    pub const fn take_by_itself(&mut self, by_itself: bool) {
+        self.options.by_itself = by_itself;
+    }
+
     /// Time passed: says what has become stale.
     pub fn tick(&mut self, now_s: f64) {
         for instrument in 0..self.channels.len() {
