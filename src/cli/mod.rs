@@ -11,6 +11,7 @@ mod demo;
 pub mod enter;
 mod instrument;
 mod interrupt;
+pub mod live;
 mod manual;
 mod registers;
 mod rig;

@@ -95,7 +95,8 @@ pub(super) struct Last {
 #[derive(Debug)]
 pub struct Ready {
     pub(super) shelf: Shelf,
-    pub(super) run: Run,
+    /// The run, without points.
+    pub run: Run,
     /// What was said on the way.
     pub notes: Vec<String>,
     /// Unit of the pressure column of the run file, if one was taken.
