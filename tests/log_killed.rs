@@ -112,9 +112,8 @@ fn study(rig: u32, kills: u32) -> (u32, usize) {
 /// What was sent from the first reading that was kept until a second before the kill is there, and nothing else.
 fn nothing_is_missing(kept: &[(f64, f64)], sent: &[(f64, f64)], killed_s: f64, of: &str) {
     let Some((first_s, _)) = kept.first() else { return };
-    let expected = sent.iter().filter(|(sent_s, _)| {
-        *sent_s > first_s + 0.01 && *sent_s < killed_s - MAY_BE_MISSING_S
-    });
+    let expected =
+        sent.iter().filter(|(sent_s, _)| *sent_s > first_s + 0.01 && *sent_s < killed_s - MAY_BE_MISSING_S);
     let near = |a: &(f64, f64), b: &(f64, f64)| {
         (a.1 - b.1).abs() < 1e-9 * a.1.abs().max(1.0) && (a.0 - b.0).abs() < ON_THE_WAY_S
     };
@@ -131,9 +130,7 @@ fn nothing_older_than_a_second_is_lost_at_whatever_moment_the_logger_is_killed()
     // More of them by EBBLINE_KILLS, on several rigs at once.
     let kills: u32 = std::env::var("EBBLINE_KILLS").map_or(8, |kills| kills.parse().unwrap());
     let rigs = (kills / 4).clamp(1, MOST_RIGS);
-    let studies: Vec<_> = (0..rigs)
-        .map(|rig| std::thread::spawn(move || study(rig, kills / rigs)))
-        .collect();
+    let studies: Vec<_> = (0..rigs).map(|rig| std::thread::spawn(move || study(rig, kills / rigs))).collect();
     let (mut with_readings, mut points) = (0, 0);
     for one in studies {
         let (of_one, points_of_one) = one.join().unwrap();

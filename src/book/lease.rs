@@ -144,7 +144,14 @@ pub(super) fn renew(
     let (kind, number) = what.key();
     let sql = "INSERT OR REPLACE INTO lease (what, number, holder, host, process, beat_ms) VALUES (?, ?, ?, ?, ?, ?)";
     let mut statement = connection.prepare_cached(sql)?;
-    statement.execute(params![kind, number, holder.id, holder.host, holder.process, now.timestamp_millis()])?;
+    statement.execute(params![
+        kind,
+        number,
+        holder.id,
+        holder.host,
+        holder.process,
+        now.timestamp_millis()
+    ])?;
     Ok(())
 }
 

@@ -4,19 +4,20 @@
 //! second is printed; with `--json` only the document at the end. Ctrl-C and a wish of the system to end leave the run
 //! open, with everything that was heard in the book.
 
+use std::io;
 use std::path::Path;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 
 use super::arguments::{BenchLog, EnterSession, Global, LogLength, Resume, ResumeSession, SessionLog};
-use super::live::{self, BenchLines, BenchScreen, SessionLines, SessionScreen};
+use super::live::{BenchLines, BenchScreen, Look, SessionLines, SessionScreen, has_screen};
 use super::{Ended, enter, interrupt, note, shelf, units};
 use crate::report::bench_live::BenchView;
 use crate::report::session_live::SessionView;
 use crate::work::ExitStatus;
 use crate::work::log::{
-    self, BenchEnded, BenchFace, BenchLogRequest, BenchWish, HowLong, SessionEnded, SessionFace,
-    SessionHow, SessionLogRequest, SessionWish, Why, Wires,
+    self, BenchEnded, BenchFace, BenchLogRequest, BenchWish, HowLong, SessionEnded, SessionFace, SessionHow,
+    SessionLogRequest, SessionWish, Why, Wires,
 };
 
 pub(super) fn bench(arguments: &BenchLog, global: &Global) -> Result<ExitStatus, Ended> {
@@ -107,7 +108,7 @@ pub(super) fn resume_session(arguments: &ResumeSession, global: &Global) -> Resu
 
 fn how(length: &LogLength, global: &Global) -> HowLong {
     HowLong {
-        by_itself: length.by_itself || !live::is_a_screen(),
+        by_itself: length.by_itself || !has_screen(),
         lasts: length.lasts,
         points: length.points,
         units: units(global),
@@ -124,11 +125,14 @@ fn before_bench<T>(
     if global.json {
         return Ok(run(&mut Quiet)?);
     }
-    if by_itself || !live::is_a_screen() {
-        let mut lines = BenchLines::new(Arc::clone(stop));
-        return Ok(run(&mut lines)?);
+    if by_itself || !has_screen() {
+        let mut stdout = io::stdout();
+        let mut lines = BenchLines::new(&mut stdout, Arc::clone(stop));
+        let ended = run(&mut lines)?;
+        return heard(lines.closed()).map(|()| ended);
     }
-    let mut screen = BenchScreen::open(live::manner(global)).map_err(Ended::Stdout)?;
+    let look = Look::of_environment(global.no_color);
+    let mut screen = BenchScreen::open(look, Arc::clone(stop)).map_err(Ended::Stdout)?;
     let ended = run(&mut screen);
     // The terminal is as it was before anything else is said.
     drop(screen);
@@ -143,19 +147,33 @@ fn before_session<T>(
     if global.json {
         return Ok(run(&mut Quiet)?);
     }
-    if !live::is_a_screen() {
-        let mut lines = SessionLines::new(Arc::clone(stop));
-        return Ok(run(&mut lines)?);
+    if !has_screen() {
+        let mut stdout = io::stdout();
+        let mut lines = SessionLines::new(&mut stdout, Arc::clone(stop));
+        let ended = run(&mut lines)?;
+        return heard(lines.closed()).map(|()| ended);
     }
-    let mut screen = SessionScreen::open(live::manner(global)).map_err(Ended::Stdout)?;
+    let look = Look::of_environment(global.no_color);
+    let mut screen = SessionScreen::open(look, Arc::clone(stop)).map_err(Ended::Stdout)?;
     let ended = run(&mut screen);
     drop(screen);
     Ok(ended?)
 }
 
+/// A reader of stdout that went away ends quietly, as everywhere.
+fn heard(closed: Option<io::ErrorKind>) -> Result<(), Ended> {
+    match closed {
+        None => Ok(()),
+        Some(io::ErrorKind::BrokenPipe) => Err(Ended::ClosedStdout(ExitStatus::Done)),
+        Some(kind) => Err(Ended::Stdout(kind.into())),
+    }
+}
+
 fn end_bench(ended: &BenchEnded, global: &Global) -> Result<ExitStatus, Ended> {
     if ended.why == Why::NoLineYet {
-        note("ebbline: its time or its points are reached, but no line can be made of it yet: the run stays open");
+        note(
+            "ebbline: its time or its points are reached, but no line can be made of it yet: the run stays open",
+        );
     }
     match &ended.desk {
         Some(desk) => enter::end(desk, true, global),

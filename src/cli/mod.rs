@@ -11,7 +11,7 @@ mod demo;
 pub mod enter;
 mod instrument;
 mod interrupt;
-mod live;
+pub mod live;
 mod log;
 mod manual;
 mod registers;

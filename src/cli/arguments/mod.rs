@@ -22,8 +22,8 @@ pub use registers::{
 pub use rig::Rig;
 
 pub use session::{
-    EnterSession, ImportSessions, LeaveOutSession, ListSessions, ResumeSession, SessionLog, Sessions, ShowSession,
-    UptakeOf,
+    EnterSession, ImportSessions, LeaveOutSession, ListSessions, ResumeSession, SessionLog, Sessions,
+    ShowSession, UptakeOf,
 };
 pub use setting::{Setting, Water};
 

@@ -93,7 +93,11 @@ pub(in crate::cli) fn end(desk: &SessionDesk, asks: bool, global: &Global) -> Re
 }
 
 /// The document, or what became of a session that was left.
-pub(in crate::cli) fn left(desk: Option<&SessionDesk>, asks: bool, global: &Global) -> Result<ExitStatus, Ended> {
+pub(in crate::cli) fn left(
+    desk: Option<&SessionDesk>,
+    asks: bool,
+    global: &Global,
+) -> Result<ExitStatus, Ended> {
     let number = desk.and_then(SessionDesk::number);
     if number.is_none() && !asks {
         return Err(SessionEnterError::NothingTyped.into());

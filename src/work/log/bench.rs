@@ -8,7 +8,7 @@
 use std::sync::Arc;
 
 use super::face::{BenchFace, BenchWish};
-use super::ledger::{Kept, RunLedger, Tie, is_alive, holder, seconds_after};
+use super::ledger::{Kept, RunLedger, Tie, holder, is_alive, seconds_after};
 use super::view::{BenchState, bench_view};
 use crate::book::{Book, Holder, Lease, Logged};
 use crate::clock::{self, Monotonic, Ticks};

@@ -41,6 +41,13 @@ pub trait BenchFace {
 pub enum SessionWish {
     /// This happened now.
     Event(What),
+    /// Readings that do not count, in seconds on the time column.
+    Exclude {
+        /// First second dropped.
+        from_s: f64,
+        /// Last second dropped.
+        until_s: f64,
+    },
     /// The session is over.
     Finish,
     /// Leave the session open, to go on later.

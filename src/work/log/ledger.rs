@@ -288,9 +288,7 @@ pub(super) fn is_alive(lease: &Lease) -> bool {
 fn process_is_there(process: u32) -> bool {
     let process = i32::try_from(process).ok().and_then(rustix::process::Pid::from_raw);
     // Only that there is none is an answer; that it may not be asked means that it is there.
-    process.is_none_or(|process| {
-        rustix::process::test_kill_process(process) != Err(rustix::io::Errno::SRCH)
-    })
+    process.is_none_or(|process| rustix::process::test_kill_process(process) != Err(rustix::io::Errno::SRCH))
 }
 
 #[cfg(not(unix))]

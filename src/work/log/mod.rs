@@ -14,7 +14,9 @@ mod view;
 mod watch;
 mod words;
 
-pub use bench::{BenchEnded, BenchLogRequest, HowLong, Why, Wires, is_held, log, resume, run_was_logged, watch};
+pub use bench::{
+    BenchEnded, BenchLogRequest, HowLong, Why, Wires, is_held, log, resume, run_was_logged, watch,
+};
 pub use face::{BenchFace, BenchWish, SessionFace, SessionWish};
 pub use instruments::names_an_instrument;
 pub use ledger::{Kept, RunLedger, SessionBookLedger, Tie};

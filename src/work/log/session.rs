@@ -10,7 +10,7 @@ use std::sync::Arc;
 use super::bench::{Why, Wires};
 use super::face::{SessionFace, SessionWish};
 use super::instruments::choose;
-use super::ledger::{SessionBookLedger, Tie, is_alive, holder, seconds_after};
+use super::ledger::{SessionBookLedger, Tie, holder, is_alive, seconds_after};
 use super::session_view::{SessionState, session_view};
 use crate::book::{Book, BookError, Holder, Logged};
 use crate::clock::{self, Ticks};
@@ -455,6 +455,15 @@ impl<'a> Driver<'a> {
                         continue;
                     }
                     match self.logger.mark(now_s, what) {
+                        Ok(event) => {
+                            self.logger.hand_over_all(now_s, ledger)?;
+                            self.events.push(event);
+                        }
+                        Err(refused) => face.say(&refused.to_string()),
+                    }
+                }
+                (SessionWish::Exclude { from_s, until_s }, Some(InBook { ledger, .. })) => {
+                    match self.logger.mark_at(from_s, now_s, What::Exclude { until_s }) {
                         Ok(event) => {
                             self.logger.hand_over_all(now_s, ledger)?;
                             self.events.push(event);
