@@ -15,7 +15,8 @@ use crate::bench::{Analysis, METHOD_REVISION, Questions, Verdict, analyse};
 use crate::book::{Book, Change, Origin, RunQuery, RunRow, RunState, SourceFiles, ToImport};
 use crate::clock;
 use crate::entry::{
-    Acceptance, Build, Decision, LiveNoteKind, Orifice, Readings, Run, RunNumber, StoredFigures, StoredPart, StoredVerdict,
+    Acceptance, Build, Decision, LiveNoteKind, Orifice, Readings, Run, RunNumber, StoredFigures, StoredPart,
+    StoredVerdict,
 };
 use crate::gas::Species;
 use crate::record::read_run_and_files;

@@ -233,11 +233,9 @@ fn heard(notes: &[LiveNote]) -> Vec<String> {
             }
         }
     }
-    said.extend(
-        counts.into_iter().map(|((name, kind), (times, says))| {
-            format!("{name}{} {times} times while logging ({says})", kind.name())
-        }),
-    );
+    said.extend(counts.into_iter().map(|((name, kind), (times, says))| {
+        format!("{name}{} {times} times while logging ({says})", kind.name())
+    }));
     said
 }
 

@@ -7,6 +7,8 @@
 
 use std::sync::Arc;
 
+use chrono::{DateTime, FixedOffset};
+
 use super::face::{BenchFace, BenchWish};
 use super::ledger::{Kept, RunLedger, Tie, holder, is_alive, seconds_after};
 use super::view::{BenchState, bench_view};
@@ -30,6 +32,8 @@ use super::instruments::{Chosen, choose, condition_instrument};
 
 /// How often what is due is looked for, seconds.
 const TURN_S: f64 = 0.05;
+/// Least time between the last reading before and the first after a run was taken up again, seconds.
+const LEAST_GAP_S: f64 = 0.001;
 /// How often the face is shown the run, seconds.
 const SHOW_S: f64 = 0.25;
 
@@ -201,13 +205,13 @@ pub fn resume(
         .chain(points.iter().map(|point| point.span_s.1))
         .fold(0.0, f64::max);
     drop(book);
-    // A system clock that was set back must not put new readings before old ones.
-    let now_s = seconds_after(there.run.taken, clock::now()).max(last_s + 1.0);
+    let taken = there.run.taken;
     let before = match &there.run.readings {
         crate::entry::Readings::Points(points) => points.len(),
         crate::entry::Readings::Series(_) => 0,
     };
-    let driver = Driver::new(shelf, instruments, wires, how, there.run, Some((now_s, before)))?;
+    let driver =
+        Driver::new(shelf, instruments, wires, how, there.run, Some(Again { taken, last_s, before }))?;
     driver.run(Some(number), face, stop)
 }
 
@@ -215,6 +219,23 @@ pub fn resume(
 struct InBook {
     desk: Desk,
     ledger: RunLedger,
+}
+
+/// A run or session that goes on.
+pub(super) struct Again {
+    /// Its time.
+    pub(super) taken: DateTime<FixedOffset>,
+    /// The last second it has.
+    pub(super) last_s: f64,
+    /// Points it has.
+    pub(super) before: usize,
+}
+
+impl Again {
+    /// The second of the clock at its time. A system clock that was set back must not put new readings before old ones.
+    pub(super) fn began_s(&self, ticks: &dyn Ticks, started_s: f64) -> f64 {
+        started_s - seconds_after(self.taken, ticks.time_of_day(started_s)).max(self.last_s + LEAST_GAP_S)
+    }
 }
 
 struct Driver<'a> {
@@ -240,14 +261,14 @@ impl<'a> Driver<'a> {
         wires: &Wires,
         how: HowLong,
         asked: Run,
-        again: Option<(f64, usize)>,
+        again: Option<Again>,
     ) -> Result<Self, WorkError> {
         let started_s = wires.ticks.now_s();
-        let began_s = again.map(|(after_s, _)| started_s - after_s);
+        let began_s = again.as_ref().map(|again| again.began_s(&*wires.ticks, started_s));
         let options = BenchOptions {
             by_itself: how.by_itself,
             began_s,
-            points_before: again.map_or(0, |(_, before)| before),
+            points_before: again.map_or(0, |again| again.before),
             ..BenchOptions::default()
         };
         let logger = BenchLogger::new(&instruments, options)?;

@@ -7,10 +7,10 @@
 use std::path::Path;
 use std::sync::Arc;
 
-use super::bench::{Why, Wires};
+use super::bench::{Again, Why, Wires};
 use super::face::{SessionFace, SessionWish};
 use super::instruments::choose;
-use super::ledger::{SessionBookLedger, Tie, holder, is_alive, seconds_after};
+use super::ledger::{SessionBookLedger, Tie, holder, is_alive};
 use super::session_view::{SessionState, session_view};
 use crate::book::{Book, BookError, Holder, Logged};
 use crate::clock::{self, Ticks};
@@ -144,9 +144,9 @@ pub fn resume_session(
     };
     let scales = there.session.readings.cells.iter().map(scale).collect();
     let last_s = there.session.readings.time_s.iter().copied().fold(0.0, f64::max);
-    let now_s = seconds_after(there.session.taken, clock::now()).max(last_s + 1.0);
+    let again = Again { taken: there.session.taken, last_s, before: 0 };
     let plan = Plan { session: there.session, line_run: there.line_run, instruments, scales, how };
-    Driver::new(shelf, plan, wires, Some(now_s))?.run(Some(number), face, stop)
+    Driver::new(shelf, plan, wires, Some(again))?.run(Some(number), face, stop)
 }
 
 /// Whether another process logs a session now.
@@ -272,14 +272,9 @@ struct Driver<'a> {
 }
 
 impl<'a> Driver<'a> {
-    fn new(
-        shelf: &'a Shelf,
-        plan: Plan,
-        wires: &Wires,
-        again_after_s: Option<f64>,
-    ) -> Result<Self, WorkError> {
+    fn new(shelf: &'a Shelf, plan: Plan, wires: &Wires, again: Option<Again>) -> Result<Self, WorkError> {
         let started_s = wires.ticks.now_s();
-        let began_s = again_after_s.map(|after_s| started_s - after_s);
+        let began_s = again.map(|again| again.began_s(&*wires.ticks, started_s));
         let session = &plan.session;
         let usual = SessionOptions::of(session.place);
         let options = SessionOptions {
