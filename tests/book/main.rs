@@ -5,6 +5,8 @@
 #[path = "../loop_simulator/bare.rs"]
 mod bare;
 mod book_support;
+#[path = "../common/studies.rs"]
+mod studies;
 
 mod book_copies;
 mod book_crash;

@@ -4,6 +4,8 @@
 //! full study. A study of fewer cases is held to them with room, so that what holds with all of them does not fail because
 //! few were drawn; a mistake that a study is there to find stands far outside that room.
 
+#![allow(dead_code, reason = "not every program of tests uses all of this")]
+
 /// Whether all cases are drawn.
 pub(crate) fn full() -> bool {
     std::env::var("EBBLINE_STUDIES").is_ok_and(|wanted| wanted == "full")

@@ -12,7 +12,7 @@ use std::collections::BTreeMap;
 
 use crate::loop_simulator::{Dice, Extra, Feed, Kind, Scene, scene_through, truth};
 use crate::simulator::{self, Hole, NOMINAL_IP_BAR, Papers, Random, Trial};
-use crate::studies::{cases, room};
+use crate::studies::{cases, full, room};
 use ebbline::entry::{Id, Purity};
 use ebbline::gas::Species;
 use ebbline::quantity::{PressureDifference, Temperature, TemperatureDifference, Uncertain};
@@ -302,7 +302,8 @@ fn on_another_day_overfeed_is_no_oftener_than_stated_and_the_rest_is_little() {
         let too_little_known = why == "ShortfallTooLarge" && *least_u > 0.07;
         assert!(too_little_known || why == "NothingLowEnough", "not to be expected: {right:?}");
     }
-    assert!(no_other_day.overfed > 2 * most_by_chance(no_other_day.set, CHANCE), "{no_other_day:?}");
+    let far = if full() { 2 } else { 1 };
+    assert!(no_other_day.overfed > far * most_by_chance(no_other_day.set, CHANCE), "{no_other_day:?}");
 }
 
 #[test]

@@ -9,7 +9,6 @@
 
 use crate::setting_support::*;
 use crate::simulator::Random;
-use crate::studies::{cases, room};
 use ebbline::entry::Purity;
 use ebbline::quantity::{GaugePressure, Temperature, Uncertain};
 use ebbline::setting::{OrificeInput, RestingUptake, SettingOptions, setting};
@@ -21,13 +20,8 @@ const DAY: f64 = 0.05;
 const SESSION: f64 = 0.035;
 /// Degrees of freedom of the stated spread between days.
 const DAY_DOF: f64 = 8.0;
-/// Cases a full study draws.
+/// Cases a study draws; fewer would not tell what is forgotten from chance.
 const CASES: usize = 1_500;
-
-/// Cases to draw.
-fn drawn() -> usize {
-    cases(CASES / 3, CASES)
-}
 
 /// Where IP and water are among what is possible.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -160,7 +154,7 @@ struct Outcome {
 fn study(upward: Upward, gauge_expanded: f64, forgotten: Forgotten) -> Outcome {
     let mut random = Random::new(417);
     let mut shortfalls = Vec::new();
-    for _ in 0..drawn() {
+    for _ in 0..CASES {
         let case = Case::draw(&mut random, upward, gauge_expanded, forgotten);
         let set = setting(std::slice::from_ref(&case.orifice), Some(&case.uptake), &case.options)
             .expect("a good call");
@@ -186,7 +180,7 @@ fn sampling(outcome: &Outcome) -> f64 {
 #[test]
 fn on_another_day_overfeed_is_no_oftener_than_stated_and_the_rest_is_little() {
     let outcome = study(Upward::Within, 0.5, Forgotten::Nothing);
-    assert!(outcome.set * 4 > drawn() * 3, "too many refusals: {outcome:?}");
+    assert!(outcome.set * 4 > CASES * 3, "too many refusals: {outcome:?}");
     assert!(outcome.overfed <= 0.025 + sampling(&outcome), "{outcome:?}");
     assert!(outcome.median_shortfall < 0.22, "{outcome:?}");
 }
@@ -197,7 +191,7 @@ fn at_the_upward_bounds_the_stated_chance_is_the_real_one() {
     for gauge in [0.5, 1.0] {
         let outcome = study(Upward::AtBounds, gauge, Forgotten::Nothing);
         assert!(outcome.overfed <= 0.025 + sampling(&outcome), "{outcome:?}");
-        assert!(outcome.overfed >= 0.0125 - room(0.0125, outcome.set), "{outcome:?}");
+        assert!(outcome.overfed >= 0.0125, "{outcome:?}");
     }
 }
 
