@@ -1,0 +1,9 @@
+//! Instruments and the rig: what is heard as it comes.
+//!
+//! One program for all of them, because linking the crate once a file takes longer than most files run.
+
+mod instrument;
+mod rig;
+mod rig_faults;
+mod rig_modbus;
+mod rig_terminal;
