@@ -144,12 +144,12 @@ pub fn title(view: &BenchView) -> String {
     parts.join(" · ")
 }
 
-/// Its number, its points and how long it lasts.
+/// Its number and how long it lasts.
 #[must_use]
 pub fn whereabouts(view: &BenchView) -> String {
     let run = view.run.map_or_else(|| "a new run".to_owned(), |run| format!("run {run}"));
     let left = view.left_s.map(|left| format!(", {} left", span(left))).unwrap_or_default();
-    format!("{run} · {} · {}{left}", points_words(view.points.len()), clock(view.elapsed_s))
+    format!("{run} · {}{left}", clock(view.elapsed_s))
 }
 
 fn points_words(points: usize) -> String {
@@ -240,6 +240,12 @@ pub fn point_remark(point: &PointSeen) -> String {
 /// The run in one line, for a pipe.
 #[must_use]
 pub fn bench_line(view: &BenchView) -> String {
+    bench_parts(view).join("; ")
+}
+
+/// The parts of that line.
+#[must_use]
+pub fn bench_parts(view: &BenchView) -> Vec<String> {
     let units = &view.units;
     let run = view.run.map(|run| format!(" {run}")).unwrap_or_default();
     let dial = |dial: &Dial| {
@@ -261,7 +267,7 @@ pub fn bench_line(view: &BenchView) -> String {
         parts.push(view.saved.words("reading"));
     }
     parts.extend(view.hold.words());
-    parts.join("; ")
+    parts
 }
 
 /// A point that has been taken, in one line for a pipe.
