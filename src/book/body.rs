@@ -5,7 +5,6 @@
 
 use std::borrow::Cow;
 
-use chrono::{DateTime, FixedOffset};
 use super::canonical::{self, Bytes, Canonical, Reader, Unreadable, Writer, session_header};
 use super::registers::Entry;
 use super::runs::{Origin, SourceFiles};
@@ -14,6 +13,7 @@ use crate::entry::{
     Decision, Diver, Event, FirstStage, Instrument, LeftOut, LiveNote, LivePoint, LiveReadings, LoggingBegun,
     Orifice, PointReading, Readings, Run, RunNumber, Session, SessionLeftOut, SessionNumber, Shop,
 };
+use chrono::{DateTime, FixedOffset};
 
 /// First byte of every payload: the form of the bytes that follow it.
 ///
@@ -493,9 +493,7 @@ pub(super) fn read(kind: u16, bytes: &[u8]) -> Result<Record<'static>, Unreadabl
         Kind::LiveReadings => {
             Body::LiveReadings { run: Canonical::read(from)?, readings: Cow::Owned(Canonical::read(from)?) }
         }
-        Kind::PointTaken => {
-            Body::PointTaken { run: Canonical::read(from)?, point: Canonical::read(from)? }
-        }
+        Kind::PointTaken => Body::PointTaken { run: Canonical::read(from)?, point: Canonical::read(from)? },
         Kind::LiveNote => {
             Body::LiveNote { run: Canonical::read(from)?, note: Cow::Owned(Canonical::read(from)?) }
         }

@@ -6,8 +6,8 @@ use chrono::{DateTime, FixedOffset};
 use rusqlite::ErrorCode;
 
 use super::canonical::Unreadable;
-use super::registers::Register;
 use super::lease::Logged;
+use super::registers::Register;
 use crate::entry::{RunNumber, SessionNumber};
 
 /// Why the book could not do what was asked.
@@ -152,7 +152,9 @@ pub enum BookError {
     #[error("a run that is entered has points, not a time series")]
     NotPoints,
     /// A run or session that another process logs.
-    #[error("{what} is being logged by another process (number {process}), which holds its instruments: stop that one first, or watch")]
+    #[error(
+        "{what} is being logged by another process (number {process}), which holds its instruments: stop that one first, or watch"
+    )]
     Held {
         /// What.
         what: Logged,
@@ -160,7 +162,9 @@ pub enum BookError {
         process: u32,
     },
     /// The lease of a run or session lapsed while it was logged.
-    #[error("{what} was not heard of for too long and could have been taken up by another process: resume it")]
+    #[error(
+        "{what} was not heard of for too long and could have been taken up by another process: resume it"
+    )]
     LeaseLost {
         /// What.
         what: Logged,
@@ -170,6 +174,12 @@ pub enum BookError {
     NotLogged {
         /// The run.
         run: RunNumber,
+    },
+    /// A session without instruments.
+    #[error("session {session} was not logged from instruments, so that it goes on at the keyboard")]
+    SessionNotLogged {
+        /// The session.
+        session: SessionNumber,
     },
     /// A session that was never recorded.
     #[error("there is no session {session} in {}", path.display())]
@@ -339,6 +349,7 @@ impl BookError {
             | Self::Held { .. }
             | Self::LeaseLost { .. }
             | Self::NotLogged { .. }
+            | Self::SessionNotLogged { .. }
             | Self::AlreadyLeftOut { .. }
             | Self::Complete { .. }
             | Self::Incomplete { .. }

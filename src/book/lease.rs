@@ -45,19 +45,27 @@ impl std::fmt::Display for Logged {
 }
 
 /// A process that logs.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[derive(Debug, Clone, PartialEq, Eq)]
 pub struct Holder {
     /// Sixteen bytes that it drew for itself.
     pub id: [u8; 16],
-    /// Its number in its system, for people.
+    /// The machine it runs on.
+    pub host: String,
+    /// Its number there.
     pub process: u32,
+    /// A holder that is known to be gone, whose lease this one may take before it lapses.
+    pub displaces: Option<[u8; 16]>,
 }
 
 /// A lease as another process sees it.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[derive(Debug, Clone, PartialEq, Eq)]
 pub struct Lease {
-    /// Who holds it.
-    pub holder: Holder,
+    /// The sixteen bytes of who holds it.
+    pub id: [u8; 16],
+    /// The machine its holder runs on.
+    pub host: String,
+    /// Its holder's number there.
+    pub process: u32,
     /// Milliseconds since its holder was heard of; below nought when the clock was set back.
     pub age_ms: i64,
 }
@@ -125,32 +133,36 @@ pub(super) fn renew(
     take: bool,
 ) -> Result<(), Inside> {
     match lease(connection, what, now)? {
-        Some(lease) if lease.holder.id == holder.id => {}
+        Some(lease) if lease.id == holder.id => {}
+        Some(lease) if take && holder.displaces == Some(lease.id) => {}
         Some(lease) if lease.holds() || !take => {
-            return Err(BookError::Held { what, process: lease.holder.process }.into());
+            return Err(BookError::Held { what, process: lease.process }.into());
         }
         None if !take => return Err(BookError::LeaseLost { what }.into()),
         _ => {}
     }
     let (kind, number) = what.key();
-    let sql = "INSERT OR REPLACE INTO lease (what, number, holder, process, beat_ms) VALUES (?, ?, ?, ?, ?)";
+    let sql = "INSERT OR REPLACE INTO lease (what, number, holder, host, process, beat_ms) VALUES (?, ?, ?, ?, ?, ?)";
     let mut statement = connection.prepare_cached(sql)?;
-    statement.execute(params![kind, number, holder.id, holder.process, now.timestamp_millis()])?;
+    statement.execute(params![
+        kind,
+        number,
+        holder.id,
+        holder.host,
+        holder.process,
+        now.timestamp_millis()
+    ])?;
     Ok(())
 }
 
-fn lease(
-    connection: &Connection,
-    what: Logged,
-    now: DateTime<FixedOffset>,
-) -> Result<Option<Lease>, Inside> {
+fn lease(connection: &Connection, what: Logged, now: DateTime<FixedOffset>) -> Result<Option<Lease>, Inside> {
     let (kind, number) = what.key();
-    let sql = "SELECT holder, process, beat_ms FROM lease WHERE what = ? AND number = ?";
+    let sql = "SELECT holder, host, process, beat_ms FROM lease WHERE what = ? AND number = ?";
     let mut statement = connection.prepare_cached(sql)?;
     let found = statement.query_row(params![kind, number], |row| {
-        let holder = Holder { id: row.get(0)?, process: row.get(1)? };
-        let beat_ms: i64 = row.get(2)?;
-        Ok(Lease { holder, age_ms: now.timestamp_millis().saturating_sub(beat_ms) })
+        let (id, host, process): ([u8; 16], String, u32) = (row.get(0)?, row.get(1)?, row.get(2)?);
+        let beat_ms: i64 = row.get(3)?;
+        Ok(Lease { id, host, process, age_ms: now.timestamp_millis().saturating_sub(beat_ms) })
     });
     Ok(found.optional()?)
 }

@@ -19,8 +19,8 @@ use super::runs::{self, Origin, Recorded};
 use super::session_rows;
 use super::sessions::{self, SessionRecorded};
 use crate::entry::{
-    Event, LiveNote, LivePoint, LiveReadings, LoggingBegun, Readings, Run, RunNumber, Session,
-    SessionNumber, SessionReadings,
+    Event, LiveNote, LivePoint, LiveReadings, LoggingBegun, Readings, Run, RunNumber, Session, SessionNumber,
+    SessionReadings,
 };
 
 /// What a logger of a run hands over at once.
@@ -257,7 +257,8 @@ impl Book {
         self.read(|connection| {
             let mut new = Vec::new();
             for seq in of_run(connection, run, Kind::LiveReadings, seen.0)? {
-                if let Some(Body::LiveReadings { readings, .. }) = record_at(connection, seq)?.map(|r| r.body) {
+                if let Some(Body::LiveReadings { readings, .. }) = record_at(connection, seq)?.map(|r| r.body)
+                {
                     new.push(readings.into_owned());
                 }
                 seen.0 = seq;
@@ -369,5 +370,9 @@ fn refuse_complete(connection: &Connection, run: RunNumber) -> Result<(), Inside
     let sql = "SELECT 1 FROM run WHERE number = ?1 AND origin <> 1 \
                AND NOT EXISTS (SELECT 1 FROM of_run WHERE run = ?1 AND kind = ?2)";
     let open = params![run.get(), Kind::RunFinished.number()];
-    if connection.prepare_cached(sql)?.exists(open)? { Ok(()) } else { Err(BookError::Complete { run }.into()) }
+    if connection.prepare_cached(sql)?.exists(open)? {
+        Ok(())
+    } else {
+        Err(BookError::Complete { run }.into())
+    }
 }

@@ -30,6 +30,8 @@ pub struct SessionOptions {
     pub water: Water,
     /// When alarms are raised and cleared.
     pub limits: AlarmLimits,
+    /// The second of the clock of the first row of a session that goes on; none for a new one.
+    pub began_s: Option<f64>,
 }
 
 impl SessionOptions {
@@ -41,6 +43,7 @@ impl SessionOptions {
             barometer: AbsolutePressure::STANDARD_ATMOSPHERE,
             water: Water::Fresh,
             limits: AlarmLimits::of(place),
+            began_s: None,
         }
     }
 }
@@ -226,7 +229,7 @@ impl SessionLogger {
             cells,
             rising: Rising::default(),
             started_s: None,
-            origin_s: None,
+            origin_s: options.began_s,
             rows: 0,
             next_row_s: f64::INFINITY,
             stopped_s: None,
@@ -262,8 +265,14 @@ impl SessionLogger {
             self.next_row_s = self.next_row_s.min(at_s + self.options.every_s);
         }
         if let (What::Reading(reading), false, Some(cell)) = (&heard.what, other_kind, cell) {
-            if self.origin_s.is_none() {
-                (self.origin_s, self.next_row_s) = (Some(at_s), at_s);
+            match self.origin_s {
+                None => (self.origin_s, self.next_row_s) = (Some(at_s), at_s),
+                // A session that goes on has its next row where the rows before would have put it.
+                Some(origin_s) if self.next_row_s.is_infinite() => {
+                    let every_s = self.options.every_s;
+                    self.next_row_s = origin_s + libm::ceil((at_s - origin_s) / every_s) * every_s;
+                }
+                Some(_) => {}
             }
             self.cell_read(cell, at_s, before, reading);
         }

@@ -128,6 +128,15 @@ pub enum WorkError {
         /// Those there are.
         there: String,
     },
+    /// Cells that show volts, and no calibration.
+    #[error(
+        "a cell that shows mV needs its calibration: name a session file whose [cells] has air, oxygen and calibrated_at \
+         (--from FILE.toml)"
+    )]
+    NoCellCalibration,
+    /// A text that is no injection.
+    #[error("\"{}\" is no injection: write a flow as in \"0.31 L/min\", an IP as in \"9.4 bar\", or off", .0.escape_debug())]
+    NoInjection(String),
     /// Nothing was heard of any instrument.
     #[error(
         "no reading came within {for_s:.0} s, so that nothing was recorded: check cables and power, and try each instrument \
@@ -376,6 +385,8 @@ impl WorkError {
             | Self::Profile(_)
             | Self::ListenFor(_)
             | Self::LogSetup(_)
+            | Self::NoCellCalibration
+            | Self::NoInjection(_)
             | Self::SessionLogSetup(_)
             | Self::WhichInstrument { .. }
             | Self::NoSuchInstrument { .. }

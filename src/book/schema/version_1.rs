@@ -150,7 +150,8 @@ CREATE TABLE lease (
   what    INTEGER NOT NULL CHECK (what IN (1, 2)),      -- 1 run, 2 session
   number  INTEGER NOT NULL,                             -- its number
   holder  BLOB    NOT NULL CHECK (length(holder) = 16), -- drawn by the process that logs it
-  process INTEGER NOT NULL,                             -- that process's number in its system
+  host    TEXT    NOT NULL,                             -- name of the machine it runs on
+  process INTEGER NOT NULL,                             -- its number there
   beat_ms INTEGER NOT NULL,                             -- when it was last heard of, ms since 1970-01-01T00:00:00Z
   PRIMARY KEY (what, number)
 ) STRICT, WITHOUT ROWID;

@@ -6,15 +6,14 @@
 //! the process, stays open and is resumed.
 
 use std::sync::Arc;
-use std::time::Duration;
 
 use super::face::{BenchFace, BenchWish};
-use super::ledger::{RunLedger, Tie, holder, seconds_after};
+use super::ledger::{Kept, RunLedger, Tie, holder, is_alive, seconds_after};
 use super::view::{BenchState, bench_view};
-use crate::book::{Book, Holder, Logged};
-use crate::clock::{self, Ticks};
+use crate::book::{Book, Holder, Lease, Logged};
+use crate::clock::{self, Monotonic, Ticks};
 use crate::entry::{Instrument, LoggingBegun, Measures, Run, RunNumber};
-use crate::instrument::{Heard, Opener, Streams, What, listen};
+use crate::instrument::{Heard, Opener, Streams, SystemPorts, What, listen};
 use crate::logger::{BenchLogger, BenchOptions, Refusal};
 use crate::quantity::Span;
 use crate::report::Units;
@@ -22,8 +21,8 @@ use crate::report::bench_live::BenchView;
 use crate::report::enter_questions::Question;
 use crate::report::live_parts::Hold;
 use crate::work::WorkError;
-use crate::work::instruments::said;
 use crate::work::enter::{Desk, Ready, Start};
+use crate::work::instruments::said;
 use crate::work::runs::number_of;
 use crate::work::shelf::{Shelf, stamped};
 
@@ -41,6 +40,14 @@ pub struct Wires {
     pub opener: Arc<dyn Opener>,
     /// Tells the time.
     pub ticks: Arc<dyn Ticks>,
+}
+
+impl Wires {
+    /// The ports and the clock of this machine.
+    #[must_use]
+    pub fn of_the_system() -> Self {
+        Self { opener: Arc::new(SystemPorts), ticks: Arc::new(Monotonic::start()) }
+    }
 }
 
 /// What is asked of `bench log`. Texts are as typed; none takes what the registers leave no doubt about.
@@ -333,7 +340,7 @@ impl<'a> Driver<'a> {
     }
 
     fn tie(&self, began_s: f64) -> Tie {
-        Tie { began_s, instruments: self.instruments.clone(), holder: self.holder }
+        Tie { began_s, instruments: self.instruments.clone(), holder: self.holder.clone() }
     }
 
     /// Begins the run in the book; its time is that of its first reading.
@@ -342,7 +349,7 @@ impl<'a> Driver<'a> {
         let mut notes = Vec::new();
         let mut book = self.shelf.to_write(&mut notes)?;
         let begun = LoggingBegun { at_s: 0.0, instruments: self.instruments.clone() };
-        let holder = self.holder;
+        let holder = self.holder.clone();
         let recorded = stamped(|stamp| book.begin_logged_run(&run, &begun, &holder, stamp))??;
         notes.iter().for_each(|note| face.say(note));
         if recorded.orifice_created {
@@ -353,9 +360,10 @@ impl<'a> Driver<'a> {
 
     fn go_on(&mut self, number: RunNumber) -> Result<InBook, WorkError> {
         let mut book = self.shelf.to_change()?;
+        self.holder.displaces = gone(book.lease(Logged::Run(number), clock::now())?);
         let began_s = self.began_s.unwrap_or(self.started_s);
         let begun = LoggingBegun { at_s: self.started_s - began_s, instruments: self.instruments.clone() };
-        let holder = self.holder;
+        let holder = self.holder.clone();
         stamped(|stamp| book.resume_logged_run(number, &begun, &holder, stamp))??;
         self.in_book(book, number, began_s)
     }
@@ -451,32 +459,18 @@ impl<'a> Driver<'a> {
     }
 
     /// Stops listening, keeps what was still on its way, and ends or leaves the run.
-    fn end(
-        self,
-        there: Option<InBook>,
-        why: Why,
-        face: &mut dyn BenchFace,
-    ) -> Result<BenchEnded, WorkError> {
+    fn end(self, there: Option<InBook>, why: Why, face: &mut dyn BenchFace) -> Result<BenchEnded, WorkError> {
         let Self { ticks, streams, mut logger, .. } = self;
         let rest = streams.stop();
         let Some(InBook { mut desk, mut ledger }) = there else { return Ok(BenchEnded { desk: None, why }) };
         for heard in &rest {
             let _ = logger.hear(heard);
         }
-        logger.hand_over_all(ticks.now_s(), &mut ledger)?;
-        // A disk that is full for a moment may have room again.
-        for _ in 0..LAST_TRIES {
-            if ledger.kept().since_s.is_none() {
-                break;
-            }
-            ticks.sleep(LAST_PAUSE.as_secs_f64());
+        keep_the_rest(&*ticks, || {
             logger.hand_over_all(ticks.now_s(), &mut ledger)?;
-        }
-        let lost = ledger.kept().clone();
+            Ok(ledger.kept().clone())
+        })?;
         ledger.let_go()?;
-        if let (Some(why), things) = (lost.why, lost.waiting) {
-            return Err(WorkError::NotSaved { things, why });
-        }
         desk.read_again()?;
         if why == Why::Finished {
             desk.finish(false)?;
@@ -486,9 +480,32 @@ impl<'a> Driver<'a> {
     }
 }
 
-/// How often the last readings are tried again where the book refuses them, and how long between two tries.
+/// How often the last readings are tried again where the book refuses them, and seconds between two tries: a disk that is
+/// full for a moment may have room again.
 const LAST_TRIES: u32 = 10;
-const LAST_PAUSE: Duration = Duration::from_millis(500);
+const LAST_PAUSE_S: f64 = 0.5;
+
+/// Hands over the last readings until they are in the book.
+///
+/// # Errors
+/// [`WorkError::NotSaved`] when the book refuses them to the end.
+pub(super) fn keep_the_rest(
+    ticks: &dyn Ticks,
+    mut hand_over: impl FnMut() -> Result<Kept, WorkError>,
+) -> Result<(), WorkError> {
+    let mut kept = hand_over()?;
+    for _ in 0..LAST_TRIES {
+        if kept.since_s.is_none() {
+            return Ok(());
+        }
+        ticks.sleep(LAST_PAUSE_S);
+        kept = hand_over()?;
+    }
+    match kept.why {
+        None => Ok(()),
+        Some(why) => Err(WorkError::NotSaved { things: kept.waiting, why }),
+    }
+}
 
 fn refused(refusal: &Refusal) -> String {
     format!("no point was taken: {refusal}")
@@ -518,7 +535,7 @@ pub fn watch(
                 false
             }
         });
-        let held = lease.is_some_and(|lease| lease.holds());
+        let held = lease.as_ref().is_some_and(is_alive);
         if left || stop() || !held || !watched.is_open() {
             let why = if watched.is_open() { Why::LeftOpen } else { Why::Finished };
             return Ok(BenchEnded { desk: Some(watched.into_desk()), why });
@@ -531,6 +548,19 @@ fn face_says_watching(face: &mut dyn BenchFace) {
     face.say("another process holds the instruments and takes the points: here they are only shown");
 }
 
+/// Whether a run was logged, not typed.
+///
+/// # Errors
+/// A run that is not there, a book that cannot be read.
+pub fn run_was_logged(shelf: &Shelf, run: &str) -> Result<bool, WorkError> {
+    Ok(shelf.to_read()?.logging_begun(number_of(run)?)?.is_some())
+}
+
+/// The holder of a lease whose process is known to be gone.
+pub(super) fn gone(lease: Option<Lease>) -> Option<[u8; 16]> {
+    lease.filter(|lease| !is_alive(lease)).map(|lease| lease.id)
+}
+
 /// Whether another process logs a run now.
 ///
 /// # Errors
@@ -538,5 +568,5 @@ fn face_says_watching(face: &mut dyn BenchFace) {
 pub fn is_held(shelf: &Shelf, run: &str) -> Result<bool, WorkError> {
     let number = number_of(run)?;
     let lease = shelf.to_read()?.lease(Logged::Run(number), clock::now())?;
-    Ok(lease.is_some_and(|lease| lease.holds()))
+    Ok(lease.is_some_and(|lease| is_alive(&lease)))
 }

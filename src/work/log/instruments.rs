@@ -3,9 +3,10 @@
 //! A name that is given must be in the register, measure what is asked and have a port. Without a name the only
 //! instrument of its kind that has a port is taken; where there are several, nothing is guessed.
 
-use crate::book::Book;
+use crate::book::{Book, BookError};
 use crate::entry::{Id, Instrument, Measures};
 use crate::work::WorkError;
+use crate::work::shelf::Shelf;
 
 /// An instrument, and whether it was taken without being named.
 #[derive(Debug, Clone, PartialEq)]
@@ -64,6 +65,19 @@ pub(super) fn condition_instrument(
             }
             _ => Ok(None),
         },
+    }
+}
+
+/// Whether a text is the name of an instrument in the register; where there is no book there is none.
+///
+/// # Errors
+/// A book that cannot be read.
+pub fn names_an_instrument(shelf: &Shelf, text: Option<&str>) -> Result<bool, WorkError> {
+    let Some(id) = text.and_then(|text| Id::new(text.trim()).ok()) else { return Ok(false) };
+    match shelf.to_read() {
+        Ok(book) => Ok(book.entry::<Instrument>(&id)?.is_some()),
+        Err(WorkError::Book(BookError::NoBook { .. })) => Ok(false),
+        Err(error) => Err(error),
     }
 }
 

@@ -7,10 +7,10 @@
 use chrono::{DateTime, FixedOffset};
 
 use super::words::{alarm_note, trouble_note};
-use crate::book::{Book, BookError, Holder, Logged, RunBatch, SessionBatch};
+use crate::book::{Book, BookError, Holder, Lease, Logged, RunBatch, SessionBatch};
 use crate::entry::{
-    CellSignal, Event, Id, Instrument, LivePoint, LiveReadings, Measures, RunNumber,
-    SessionNumber, SessionReadings,
+    CellSignal, Event, Id, Instrument, LivePoint, LiveReadings, Measures, RunNumber, SessionNumber,
+    SessionReadings,
 };
 use crate::instrument::Reading;
 use crate::logger::{AlarmChange, Block, Ledger, Row, SessionLedger, Taken, TroubleAt};
@@ -264,7 +264,36 @@ pub(super) fn clear(readings: &mut SessionReadings) {
 pub(super) fn holder() -> Result<Holder, WorkError> {
     let mut id = [0_u8; 16];
     getrandom::fill(&mut id).map_err(|_| WorkError::NoRandomNumbers)?;
-    Ok(Holder { id, process: std::process::id() })
+    Ok(Holder { id, host: host(), process: std::process::id(), displaces: None })
+}
+
+/// The name of this machine; empty where the system has none.
+#[cfg(unix)]
+fn host() -> String {
+    rustix::system::uname().nodename().to_string_lossy().into_owned()
+}
+
+#[cfg(not(unix))]
+fn host() -> String {
+    std::env::var("COMPUTERNAME").unwrap_or_default()
+}
+
+/// Whether somebody logs under this lease, as far as can be known: it has not lapsed, and its process, where it is one of
+/// this machine, is still there.
+pub(super) fn is_alive(lease: &Lease) -> bool {
+    lease.holds() && (lease.host.is_empty() || lease.host != host() || process_is_there(lease.process))
+}
+
+#[cfg(unix)]
+fn process_is_there(process: u32) -> bool {
+    let process = i32::try_from(process).ok().and_then(rustix::process::Pid::from_raw);
+    // Only that there is none is an answer; that it may not be asked means that it is there.
+    process.is_none_or(|process| rustix::process::test_kill_process(process) != Err(rustix::io::Errno::SRCH))
+}
+
+#[cfg(not(unix))]
+const fn process_is_there(_: u32) -> bool {
+    true
 }
 
 /// Seconds from the time of a run or session to a moment.

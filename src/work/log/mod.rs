@@ -8,10 +8,18 @@ mod bench;
 mod face;
 mod instruments;
 mod ledger;
+mod session;
+mod session_view;
 mod view;
 mod watch;
 mod words;
 
-pub use bench::{BenchEnded, BenchLogRequest, HowLong, Why, Wires, is_held, log, resume, watch};
+pub use bench::{
+    BenchEnded, BenchLogRequest, HowLong, Why, Wires, is_held, log, resume, run_was_logged, watch,
+};
 pub use face::{BenchFace, BenchWish, SessionFace, SessionWish};
+pub use instruments::names_an_instrument;
 pub use ledger::{Kept, RunLedger, SessionBookLedger, Tie};
+pub use session::{
+    SessionEnded, SessionHow, SessionLogRequest, is_session_held, log_session, resume_session, was_logged,
+};

@@ -253,10 +253,7 @@ fn as_shown(analysis: &Analysis, run: &Run) -> Option<(f64, f64)> {
 fn line(analysis: &Analysis, run: &Run) -> Option<LineSeen> {
     let (ratio, offset_bar) = as_shown(analysis, run)?;
     let (alpha, beta) = (analysis.line.random.intercept, analysis.line.random.slope);
-    Some(LineSeen {
-        intercept_l_min: ratio * (alpha + beta * offset_bar),
-        slope_l_min_bar: ratio * beta,
-    })
+    Some(LineSeen { intercept_l_min: ratio * (alpha + beta * offset_bar), slope_l_min_bar: ratio * beta })
 }
 
 fn limits(analysis: &Analysis, run: &Run) -> Option<(f64, f64, f64)> {

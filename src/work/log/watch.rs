@@ -77,7 +77,7 @@ impl Watched {
     pub(super) fn view(&self, units: Units, lease: Option<&Lease>) -> BenchView {
         let now_s = seconds_after(self.desk.run().taken, clock::now());
         let counters = vec![Counters::default(); self.instruments.len()];
-        let by = lease.map_or_else(|| "nobody".to_owned(), |l| format!("process {}", l.holder.process));
+        let by = lease.map_or_else(|| "nobody".to_owned(), |l| format!("process {}", l.process));
         bench_view(&BenchState {
             now_s,
             instruments: &self.instruments,

@@ -57,10 +57,14 @@ pub(super) fn alarm_words(alarm: &Alarm, instruments: &[Instrument]) -> String {
     let name = |number: usize| instruments.get(number).map_or("an instrument", |one| one.id.as_str());
     match alarm.kind {
         AlarmKind::Po2Low { limit_bar } => {
-            format!("PO2 low: {worst:.2} bar, below the floor of {limit_bar:.2} bar: add oxygen or come off the loop")
+            format!(
+                "PO2 low: {worst:.2} bar, below the floor of {limit_bar:.2} bar: add oxygen or come off the loop"
+            )
         }
         AlarmKind::Po2High { limit_bar } => {
-            format!("PO2 high: {worst:.2} bar, above the ceiling of {limit_bar:.2} bar: flush with diluent or come off the loop")
+            format!(
+                "PO2 high: {worst:.2} bar, above the ceiling of {limit_bar:.2} bar: flush with diluent or come off the loop"
+            )
         }
         AlarmKind::TooDeep { limit_m } => {
             format!("too deep: {worst:.1} m, and a session goes no deeper than {limit_m:.0} m")
@@ -71,13 +75,18 @@ pub(super) fn alarm_words(alarm: &Alarm, instruments: &[Instrument]) -> String {
             format!("{} is silent: its last reading is {worst:.0} s old", name(instrument))
         }
         AlarmKind::Frozen { instrument } => {
-            format!("{} is frozen: the very same value for {worst:.0} s while the others move", name(instrument))
+            format!(
+                "{} is frozen: the very same value for {worst:.0} s while the others move",
+                name(instrument)
+            )
         }
         AlarmKind::Disagrees { instrument } => {
             format!("{} is {worst:.2} bar off the other cells: trust neither", name(instrument))
         }
         AlarmKind::RisesUnfed => {
-            format!("PO2 rises by {worst:.3} bar/min with nothing injected: a leak of oxygen into the loop, or a cell")
+            format!(
+                "PO2 rises by {worst:.3} bar/min with nothing injected: a leak of oxygen into the loop, or a cell"
+            )
         }
     }
 }
