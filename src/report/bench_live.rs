@@ -177,6 +177,13 @@ pub fn held_words(sign: &Sign) -> String {
     format!("{} s of {} s", fixed(sign.held_s.min(sign.least_s), 0), fixed(sign.least_s, 0))
 }
 
+/// The same where it says something that the sign does not.
+#[must_use]
+pub fn held_besides(sign: &Sign) -> Option<String> {
+    Some(held_words(sign))
+        .filter(|held| !sign.steady && sign.held_s > 0.0 && !sign.says.contains(held.as_str()))
+}
+
 /// How far the run has come: points rising and falling, how many are wanted, what comes next.
 #[must_use]
 pub fn progress_words(view: &BenchView) -> String {
@@ -256,7 +263,7 @@ pub fn bench_parts(view: &BenchView) -> Vec<String> {
         format!("{}{}{state}", dial.value_words(units), meant.trim_end())
     };
     let sign = &view.sign;
-    let waits = if sign.steady { String::new() } else { format!(", {}", held_words(sign)) };
+    let waits = held_besides(sign).map(|held| format!(", {held}")).unwrap_or_default();
     let mut parts = vec![
         format!("{}{run}  {}", clock(view.elapsed_s), dial(&view.pressure)),
         dial(&view.flow),

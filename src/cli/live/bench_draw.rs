@@ -47,7 +47,7 @@ pub(super) fn draw(
     match stage.page {
         Page::Main => main(pen, rest, view),
         Page::All(from) => draw_lines(pen, inset(rest, 1), &everything(view, look, area.width), from),
-        Page::Help => draw_lines(pen, inset(rest, 1), &help(area.width), 0),
+        Page::Help(from) => draw_lines(pen, inset(rest, 1), &help(area.width), from),
     }
 }
 
@@ -169,8 +169,9 @@ fn sign(pen: &mut Pen<'_>, row: Rect, view: &BenchView) {
         }
         return;
     }
-    let held = words::held_words(&view.sign);
-    row = pen.right(row, &held, Style::new());
+    if let Some(held) = words::held_besides(&view.sign) {
+        row = pen.right(row, &held, Style::new());
+    }
     let gauge = Rect { x: row.right().saturating_sub(20), width: 20.min(row.width), ..row };
     let share = view.sign.held_s / view.sign.least_s;
     let long = width(&pen.look.text(&says)) + 22 > usize::from(row.width);

@@ -52,7 +52,7 @@ pub(super) fn draw(
     match stage.page {
         Page::Main => main(pen, rest, view),
         Page::All(from) => draw_lines(pen, inset(rest, 1), &everything(view, area.width), from),
-        Page::Help => draw_lines(pen, inset(rest, 1), &help(area.width), 0),
+        Page::Help(from) => draw_lines(pen, inset(rest, 1), &help(area.width), from),
     }
 }
 
@@ -221,7 +221,8 @@ fn curve(pen: &mut Pen<'_>, area: Rect, view: &SessionView) {
     let label_x = |s: f64| clock(s.max(0.0));
     let label_y = |bar: f64| DialKind::Po2.number(bar, None, &view.units);
     let Some(plane) = Plane::new(area, x.padded(0.0, 0.5), y.padded(0.05, 0.01)) else {
-        pen.text(area, "no PO2 yet", pen.look.faint());
+        let says = if view.curve.is_empty() { "no PO2 yet" } else { "" };
+        pen.text(area, says, pen.look.faint());
         return;
     };
     plane.axes(pen, (&label_x, "h:min:s"), (&label_y, "bar"));
