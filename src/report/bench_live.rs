@@ -144,12 +144,12 @@ pub fn title(view: &BenchView) -> String {
     parts.join(" · ")
 }
 
-/// Its number, its points and how long it lasts.
+/// Its number and how long it lasts.
 #[must_use]
 pub fn whereabouts(view: &BenchView) -> String {
     let run = view.run.map_or_else(|| "a new run".to_owned(), |run| format!("run {run}"));
     let left = view.left_s.map(|left| format!(", {} left", span(left))).unwrap_or_default();
-    format!("{run} · {} · {}{left}", points_words(view.points.len()), clock(view.elapsed_s))
+    format!("{run} · {}{left}", clock(view.elapsed_s))
 }
 
 fn points_words(points: usize) -> String {
@@ -175,6 +175,13 @@ pub fn sign_words(view: &BenchView) -> String {
 #[must_use]
 pub fn held_words(sign: &Sign) -> String {
     format!("{} s of {} s", fixed(sign.held_s.min(sign.least_s), 0), fixed(sign.least_s, 0))
+}
+
+/// The same where it says something that the sign does not.
+#[must_use]
+pub fn held_besides(sign: &Sign) -> Option<String> {
+    Some(held_words(sign))
+        .filter(|held| !sign.steady && sign.held_s > 0.0 && !sign.says.contains(held.as_str()))
 }
 
 /// How far the run has come: points rising and falling, how many are wanted, what comes next.
@@ -240,6 +247,12 @@ pub fn point_remark(point: &PointSeen) -> String {
 /// The run in one line, for a pipe.
 #[must_use]
 pub fn bench_line(view: &BenchView) -> String {
+    bench_parts(view).join("; ")
+}
+
+/// The parts of that line.
+#[must_use]
+pub fn bench_parts(view: &BenchView) -> Vec<String> {
     let units = &view.units;
     let run = view.run.map(|run| format!(" {run}")).unwrap_or_default();
     let dial = |dial: &Dial| {
@@ -250,7 +263,7 @@ pub fn bench_line(view: &BenchView) -> String {
         format!("{}{}{state}", dial.value_words(units), meant.trim_end())
     };
     let sign = &view.sign;
-    let waits = if sign.steady { String::new() } else { format!(", {}", held_words(sign)) };
+    let waits = held_besides(sign).map(|held| format!(", {held}")).unwrap_or_default();
     let mut parts = vec![
         format!("{}{run}  {}", clock(view.elapsed_s), dial(&view.pressure)),
         dial(&view.flow),
@@ -261,7 +274,7 @@ pub fn bench_line(view: &BenchView) -> String {
         parts.push(view.saved.words("reading"));
     }
     parts.extend(view.hold.words());
-    parts.join("; ")
+    parts
 }
 
 /// A point that has been taken, in one line for a pipe.

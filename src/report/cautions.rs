@@ -62,7 +62,7 @@ pub const SESSION_LIVE: &str =
 
 /// With every alarm of a session that is raised.
 pub const SESSION_ALARM: &str =
-    "this is no life-support alarm: look at the diver and at the diver's own PO2 display";
+    "no life-support alarm: look at the diver, and at the diver's own PO2 display";
 
 /// Beside an uptake.
 pub const UPTAKE: [&str; 4] = [

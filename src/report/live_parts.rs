@@ -133,7 +133,7 @@ impl Dial {
             Some(number) => {
                 format!("last {number} {}, {} ago", self.kind.symbol(units), span(age_s))
             }
-            None => "no reading".to_owned(),
+            None => format!("no reading for {}", span(age_s)),
         };
         match &self.state {
             DialState::Waiting => "NO READING YET".to_owned(),

@@ -4,7 +4,7 @@
 //! pipe. None of it is a life-support alarm, and every form of it says so.
 
 use super::layout::counted;
-use super::live_parts::{Dial, DialKind, Hold, Saved};
+use super::live_parts::{Dial, DialKind, DialState, Hold, Saved};
 use super::number::fixed;
 use super::typed::{clock, span, tame};
 use super::{Units, session_shown};
@@ -113,13 +113,19 @@ pub fn title(view: &SessionView) -> String {
     format!("{} · {} · loop {}", tame(&view.diver), view.place.name(), view.kept.name())
 }
 
-/// Its number, its rows and how long it lasts.
+/// Its number and how long it lasts.
 #[must_use]
 pub fn whereabouts(view: &SessionView) -> String {
     let session = view.session.map_or_else(|| "a new session".to_owned(), |s| format!("session {s}"));
-    let left = view.left_s.map(|left| format!(", {} left", span(left))).unwrap_or_default();
+    format!("{session} · {}", elapsed(view))
+}
+
+/// What is saved, how many rows there are, and how long it still lasts.
+#[must_use]
+pub fn saved_words(view: &SessionView) -> String {
     let rows = counted(u64::try_from(view.rows).unwrap_or(u64::MAX), "row");
-    format!("{session} · {rows} · {}{left}", elapsed(view))
+    let left = view.left_s.map(|left| format!(" · {} left", span(left))).unwrap_or_default();
+    format!("{} · {rows}{left}", view.saved.words("row"))
 }
 
 fn elapsed(view: &SessionView) -> String {
@@ -136,6 +142,9 @@ pub fn po2_number(view: &SessionView) -> Option<String> {
 #[must_use]
 pub fn trend_words(view: &SessionView) -> String {
     match (view.po2_bar, view.po2_rate_bar_min) {
+        (None, _) if view.cells.iter().all(|cell| cell.dial.state == DialState::Waiting) => {
+            "no cell was read yet".to_owned()
+        }
         (None, _) => "NO CELL CAN BE USED".to_owned(),
         (Some(_), None) => "trend not known yet".to_owned(),
         (Some(po2), Some(rate)) => {
@@ -198,12 +207,12 @@ pub fn alarm_words(alarm: &AlarmSeen, units: &Units) -> String {
     let since = span(alarm.for_s);
     match &alarm.what {
         Wrong::Po2Low { limit_bar } => format!(
-            "PO2 BELOW THE FLOOR {}: {} at the lowest, for {since}; fresh gas now",
+            "PO2 BELOW THE FLOOR {}: lowest {}, for {since}; fresh gas now",
             bar(*limit_bar),
             bar(alarm.worst)
         ),
         Wrong::Po2High { limit_bar } => format!(
-            "PO2 ABOVE THE CEILING {}: {} at the highest, for {since}; no more oxygen",
+            "PO2 ABOVE THE CEILING {}: highest {}, for {since}; no more oxygen",
             bar(*limit_bar),
             bar(alarm.worst)
         ),
@@ -211,7 +220,7 @@ pub fn alarm_words(alarm: &AlarmSeen, units: &Units) -> String {
             format!("TOO DEEP: {}, no deeper than {}, for {since}", metres(alarm.worst), metres(*limit_m))
         }
         Wrong::NoPo2 => {
-            format!("NO PO2: no cell can be used, for {since}; off the loop, or watch another display")
+            format!("NO PO2: no cell can be used, for {since}; off the loop, or another display")
         }
         Wrong::Missing(name) => format!("{} MISSING: nothing was heard of it for {since}", tame(name)),
         Wrong::Stale(name) => {
@@ -230,9 +239,33 @@ pub fn alarm_words(alarm: &AlarmSeen, units: &Units) -> String {
     }
 }
 
+/// What an alarm is about in a few words, where there is no room for its sentence.
+#[must_use]
+pub fn alarm_name(alarm: &AlarmSeen) -> String {
+    match &alarm.what {
+        Wrong::Po2Low { .. } => "PO2 BELOW THE FLOOR".to_owned(),
+        Wrong::Po2High { .. } => "PO2 ABOVE THE CEILING".to_owned(),
+        Wrong::TooDeep { .. } => "TOO DEEP".to_owned(),
+        Wrong::NoPo2 => "NO PO2".to_owned(),
+        Wrong::Missing(name) => format!("{} MISSING", tame(name)),
+        Wrong::Stale(name) => format!("{} STALE", tame(name)),
+        Wrong::Frozen(name) => format!("{} FROZEN", tame(name)),
+        Wrong::Disagrees(name) => format!("{} OFF THE OTHERS", tame(name)),
+        Wrong::RisesUnfed => "PO2 RISES UNFED".to_owned(),
+    }
+}
+
 /// The session in one line, for a pipe.
 #[must_use]
 pub fn session_line(view: &SessionView) -> String {
+    let mut parts = session_parts(view);
+    parts.extend(view.alarms.iter().map(|alarm| format!("ALARM {}", alarm_words(alarm, &view.units))));
+    parts.join("; ")
+}
+
+/// The parts of that line but the alarms.
+#[must_use]
+pub fn session_parts(view: &SessionView) -> Vec<String> {
     let units = &view.units;
     let session = view.session.map(|session| format!(" {session}")).unwrap_or_default();
     let po2 = po2_number(view).map_or_else(|| "--".to_owned(), |number| format!("{number} bar"));
@@ -248,10 +281,9 @@ pub fn session_line(view: &SessionView) -> String {
         parts.push(format!("{} {state}", dial.kind.name()));
     }
     parts.push(injection_words(view));
-    parts.extend(view.alarms.iter().map(|alarm| format!("ALARM {}", alarm_words(alarm, units))));
     if view.saved != Saved::All {
         parts.push(view.saved.words("row"));
     }
     parts.extend(view.hold.words());
-    parts.join("; ")
+    parts
 }

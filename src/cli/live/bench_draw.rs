@@ -13,11 +13,13 @@ use super::stage::{Page, Stage, draw_lines};
 use super::{level, parts};
 use crate::entry::Sweep;
 use crate::report::bench_live::{self as words, BenchView, CheckSeen, Holds, PointSeen};
-use crate::report::live_parts::{Dial, Saved};
+use crate::report::live_parts::Dial;
 use crate::report::typed::tame;
 
 /// From this size on the numerals have six rows.
 const LARGE: (u16, u16) = (120, 34);
+/// Rows that the instruments take at most.
+const MOST_INSTRUMENTS: usize = 3;
 /// Rows that points and plot have at least.
 const LEAST_BODY: u16 = 5;
 
@@ -38,45 +40,49 @@ pub(super) fn draw(
         return small(pen, area, view, stage);
     }
     let mut rest = area;
-    head(pen, take(&mut rest, 1), view);
-    let rule = take(&mut rest, 1);
-    pen.rule(rule);
-    parts::key_bar(pen, take_below(&mut rest, 1), &KEYS);
-    status(pen, take_below(&mut rest, 1), view);
-    let says = parts::bottom(pen, stage, trouble(view).as_deref(), &mut rest);
+    head(pen, take(&mut rest, 2), view);
+    parts::key_bar(pen, &mut rest, &KEYS);
+    let aside = status(pen, take_below(&mut rest, 1), view);
+    parts::bottom(pen, stage, trouble(view).or(aside).as_deref(), &mut rest);
     match stage.page {
-        Page::Main => main(pen, rest, view, says),
+        Page::Main => main(pen, rest, view),
         Page::All(from) => draw_lines(pen, inset(rest, 1), &everything(view, look, area.width), from),
-        Page::Help => draw_lines(pen, inset(rest, 1), &help(area.width), 0),
+        Page::Help(from) => draw_lines(pen, inset(rest, 1), &help(area.width), from),
     }
 }
 
-fn head(pen: &mut Pen<'_>, row: Rect, view: &BenchView) {
-    let row = inset(row, 1);
-    let left = pen.right(row, &words::whereabouts(view), Style::new());
-    pen.text(left, &words::title(view), pen.look.strong());
+/// What the run is and where it stands: side by side above a rule, or below one another where that is too long.
+fn head(pen: &mut Pen<'_>, area: Rect, view: &BenchView) {
+    let (title, whereabouts) = (words::title(view), words::whereabouts(view));
+    let mut rest = area;
+    let first = inset(take(&mut rest, 1), 1);
+    if width(&pen.look.text(&title)) + 2 + width(&whereabouts) > usize::from(first.width) {
+        pen.text(first, &title, pen.look.strong());
+        pen.right(inset(rest, 1), &whereabouts, Style::new());
+        return;
+    }
+    let left = pen.right(first, &whereabouts, Style::new());
+    pen.text(left, &title, pen.look.strong());
+    pen.rule(rest);
 }
 
-fn status(pen: &mut Pen<'_>, row: Rect, view: &BenchView) {
+/// What is saved and who takes points; goes out: what is not saved, where that is too long for the row.
+fn status(pen: &mut Pen<'_>, row: Rect, view: &BenchView) -> Option<String> {
     let row = inset(row, 1);
     let left = pen.right(row, parts::MORE, pen.look.faint());
-    let style = if view.saved == Saved::All { Style::new() } else { pen.look.warning() };
-    let mut says = view.saved.words("reading");
-    says.push_str(" · ");
-    says.push_str(&view.hold.words().unwrap_or_else(|| words::by_itself_words(view).to_owned()));
-    pen.text(left, &says, style);
+    let hold = view.hold.words().unwrap_or_else(|| words::by_itself_words(view).to_owned());
+    parts::status(pen, left, &view.saved, &view.saved.words("reading"), &hold)
 }
 
-/// The screen at a size where everything has its place; `said` rows are taken already.
-fn main(pen: &mut Pen<'_>, area: Rect, view: &BenchView, said: u16) {
+/// The screen at a size where everything has its place.
+fn main(pen: &mut Pen<'_>, area: Rect, view: &BenchView) {
     let mut rest = area;
     let whole = pen.buffer.area;
-    let size = if whole.width >= LARGE.0 && whole.height >= LARGE.1 { Size::Six } else { Size::Three };
-    dials(pen, take(&mut rest, size.rows() + 2), view);
+    let size = size(whole, view);
+    dials(pen, take(&mut rest, size.rows() + 2), view, size);
     let columns = usize::from(area.width.saturating_sub(2));
     let instruments = joined(&instruments(view), columns);
-    let most = if whole.height > 24 { 3 } else { 2_u16.saturating_sub(said.saturating_sub(1)).max(1) };
-    for line in instruments.iter().take(usize::from(most)) {
+    for line in instruments.iter().take(MOST_INSTRUMENTS) {
         let row = take(&mut rest, 1);
         pen.text(inset(row, 1), line, pen.look.faint());
     }
@@ -91,7 +97,7 @@ fn main(pen: &mut Pen<'_>, area: Rect, view: &BenchView, said: u16) {
     let below = take_below(&mut rest, below);
     sayings_in(pen, inset(below, 1), &says);
 
-    let wide = (rest.width * 11 / 20).max(rest.width.saturating_sub(60));
+    let wide = (rest.width / 2).max(rest.width.saturating_sub(60));
     let left = Rect { width: wide, ..rest };
     bench_plot::draw(pen, inset(left, 1), view);
     let right = Rect { x: rest.x + wide, width: rest.width - wide, ..rest };
@@ -99,28 +105,43 @@ fn main(pen: &mut Pen<'_>, area: Rect, view: &BenchView, said: u16) {
     points(pen, inset(right, 1), view);
 }
 
-fn dials(pen: &mut Pen<'_>, area: Rect, view: &BenchView) {
+/// The size at which both dials fit.
+fn size(whole: Rect, view: &BenchView) -> Size {
+    let columns = (whole.width / 2).saturating_sub(3);
+    let large = [&view.pressure, &view.flow]
+        .into_iter()
+        .all(|dial| numerals::fits(columns, &number(dial, view), dial.kind.symbol(&view.units), Size::Six));
+    if large && whole.width >= LARGE.0 && whole.height >= LARGE.1 { Size::Six } else { Size::Three }
+}
+
+/// The number on a dial; dashes where it is not of now.
+fn number(dial: &Dial, view: &BenchView) -> String {
+    let number = dial.number(&view.units).unwrap_or_else(|| "0.00".to_owned());
+    if dial.is_alive() { number } else { parts::dashes(&number) }
+}
+
+fn dials(pen: &mut Pen<'_>, area: Rect, view: &BenchView, size: Size) {
     let half = area.width / 2;
     let left = Rect { width: half, ..area };
     let right = Rect { x: area.x + half, width: area.width - half, ..area };
     pen.bar(right);
-    dial(pen, inset(left, 1), &view.pressure, view);
-    dial(pen, Rect { x: right.x + 2, width: right.width.saturating_sub(3), ..right }, &view.flow, view);
+    dial(pen, inset(left, 1), (&view.pressure, size), view);
+    dial(
+        pen,
+        Rect { x: right.x + 2, width: right.width.saturating_sub(3), ..right },
+        (&view.flow, size),
+        view,
+    );
 }
 
-fn dial(pen: &mut Pen<'_>, area: Rect, dial: &Dial, view: &BenchView) {
+fn dial(pen: &mut Pen<'_>, area: Rect, (dial, size): (&Dial, Size), view: &BenchView) {
     let mut rest = area;
     let head = take(&mut rest, 1);
     let name = dial.kind.name();
     pen.text(head, &format!("{} {}", name, tame(&dial.meant)), pen.look.faint());
     let state = take_below(&mut rest, 1);
-    let number = dial.number(&view.units).unwrap_or_else(|| "-.--".to_owned());
-    let symbol = dial.kind.symbol(&view.units);
-    if dial.is_alive() {
-        numerals::draw(pen, rest, &number, symbol, Style::new());
-    } else {
-        numerals::draw(pen, rest, &parts::dashes(&number), symbol, pen.look.faint());
-    }
+    let style = if dial.is_alive() { Style::new() } else { pen.look.faint() };
+    numerals::draw(pen, rest, &number(dial, view), dial.kind.symbol(&view.units), (size, style));
     parts::state(pen, state, dial, &view.units);
 }
 
@@ -141,12 +162,16 @@ fn sign(pen: &mut Pen<'_>, row: Rect, view: &BenchView) {
     let mut row = inset(row, 1);
     let says = words::sign_words(view);
     if view.sign.steady {
-        let style = if view.taken_here { pen.look.strong() } else { pen.look.ready() };
-        pen.text(row, &format!(" {says} "), style);
+        if view.taken_here {
+            pen.text(row, &says, pen.look.strong());
+        } else {
+            pen.text(row, &format!(" {says} "), pen.look.ready());
+        }
         return;
     }
-    let held = words::held_words(&view.sign);
-    row = pen.right(row, &held, Style::new());
+    if let Some(held) = words::held_besides(&view.sign) {
+        row = pen.right(row, &held, Style::new());
+    }
     let gauge = Rect { x: row.right().saturating_sub(20), width: 20.min(row.width), ..row };
     let share = view.sign.held_s / view.sign.least_s;
     let long = width(&pen.look.text(&says)) + 22 > usize::from(row.width);
@@ -161,13 +186,15 @@ fn sign(pen: &mut Pen<'_>, row: Rect, view: &BenchView) {
 fn progress(pen: &mut Pen<'_>, row: Rect, view: &BenchView) {
     let row = inset(row, 1);
     let mut left = pen.right(row, &words::next_words(view), pen.look.accent());
-    if let Some(wanted) = view.sweep.wanted.filter(|wanted| *wanted > 0) {
+    let says = words::progress_words(view);
+    let room = usize::from(left.width).saturating_sub(width(&says));
+    if let Some(wanted) = view.sweep.wanted.filter(|wanted| *wanted > 0 && room > 12) {
         let gauge = Rect { width: 12.min(left.width), ..left };
         pen.gauge(gauge, view.points.len() as f64 / wanted as f64, pen.look.accent());
         left =
             Rect { x: left.x + gauge.width + 1, width: left.width.saturating_sub(gauge.width + 1), ..left };
     }
-    pen.text(left, &words::progress_words(view), Style::new());
+    pen.text(left, &says, Style::new());
 }
 
 /// A line of what the points say, and the finding it stands for.
@@ -179,14 +206,17 @@ struct Saying {
 /// What the points say, what matters most first: the running line, checks that do not hold, those that are open.
 fn sayings(view: &BenchView, columns: usize) -> Vec<Saying> {
     let mut all = Vec::new();
-    for says in &view.says {
-        all.extend(wrap(&tame(says), columns).into_iter().map(|text| Saying { mark: None, text }));
-    }
-    for holds in [Holds::No, Holds::Open] {
-        for check in view.checks.iter().filter(|check| check.holds == holds) {
-            all.extend(check_lines(check, columns));
-        }
-    }
+    let plain = |says: &String| {
+        wrap(&tame(says), columns).into_iter().map(|text| Saying { mark: None, text }).collect::<Vec<_>>()
+    };
+    let checks = |holds: Holds| {
+        let these = view.checks.iter().filter(move |check| check.holds == holds);
+        these.flat_map(|check| check_lines(check, columns))
+    };
+    all.extend(view.says.iter().take(1).flat_map(plain));
+    all.extend(checks(Holds::No));
+    all.extend(view.says.iter().skip(1).flat_map(plain));
+    all.extend(checks(Holds::Open));
     let hold = view.checks.iter().filter(|check| check.holds == Holds::Yes).count();
     if hold > 0 {
         let text = match hold {
@@ -240,7 +270,7 @@ fn points(pen: &mut Pen<'_>, area: Rect, view: &BenchView) {
     let mut rest = area;
     let head = take(&mut rest, 1);
     let (p, q) = (view.units.pressure_symbol(), view.units.flow_symbol());
-    pen.text(head, &format!("{:>3} {p:>8} {q:>8}    off the line", "no"), pen.look.faint());
+    pen.text(head, &format!("{:>3} {p:>7} {q:>7}   off the line", "no"), pen.look.faint());
     let room = usize::from(rest.height);
     let more = view.points.len().saturating_sub(room);
     for (place, (row, point)) in rows(rest).zip(view.points.iter().rev()).enumerate() {
@@ -251,7 +281,7 @@ fn points(pen: &mut Pen<'_>, area: Rect, view: &BenchView) {
         }
         let (pressure, flow) = words::point_numbers(view, point);
         let mark = mark(point, pen.look);
-        let text = format!("{:>3} {pressure:>8} {flow:>8} {mark} ", point.number);
+        let text = format!("{:>3} {pressure:>7} {flow:>7} {mark} ", point.number);
         let columns = usize::from(row.width).saturating_sub(width(&text));
         let style = match (&point.left_out, point.apart) {
             (Some(_), _) => pen.look.faint(),
@@ -337,14 +367,12 @@ fn help(columns: u16) -> Vec<String> {
 fn small(pen: &mut Pen<'_>, area: Rect, view: &BenchView, stage: &Stage<Asked>) {
     let mut rest = area;
     parts::too_small(pen, take(&mut rest, 1), area);
-    parts::key_bar(pen, take_below(&mut rest, 1), &KEYS);
+    parts::key_bar(pen, &mut rest, &KEYS);
     parts::bottom(pen, stage, trouble(view).as_deref(), &mut rest);
-    let text = words::bench_line(view);
-    let mut lines = Vec::new();
-    for part in text.split("; ") {
-        lines.extend(wrap(part, usize::from(area.width.saturating_sub(2))));
-    }
-    lines.extend(view.points.iter().rev().map(|point| words::point_line(view, point)));
+    let columns = usize::from(area.width.saturating_sub(2));
+    let points = view.points.iter().rev().map(|point| words::point_line(view, point));
+    let parts = words::bench_parts(view).into_iter().chain(points);
+    let lines: Vec<String> = parts.flat_map(|part| wrap(&part, columns)).collect();
     let lines: Vec<(String, Style)> = lines.into_iter().map(|line| (line, Style::new())).collect();
     pen.lines(inset(rest, 1), &lines);
 }

@@ -3,7 +3,7 @@
 use ratatui::layout::Rect;
 use ratatui::style::Style;
 
-use super::pen::Pen;
+use super::pen::{Pen, width};
 
 /// How large.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -73,7 +73,7 @@ pub(super) fn large(number: &str, size: Size, ascii: bool) -> Option<Vec<String>
         };
         for (row, cells) in rows.iter_mut().zip(cells) {
             if place > 0 {
-                row.push_str(if size == Size::Six { "  " } else { " " });
+                row.push(' ');
             }
             row.push_str(&cells);
         }
@@ -101,17 +101,21 @@ fn whole_blocks(row: &str, ascii: bool) -> String {
     row.bytes().map(|dot| if dot == b'#' { full } else { "  " }).collect()
 }
 
-/// Draws a number with what stands to the right of its last row, as large as fits: where even three rows are too wide it
-/// is written in one.
-pub(super) fn draw(pen: &mut Pen<'_>, area: Rect, number: &str, beside: &str, style: Style) {
-    let ascii = pen.look.is_ascii();
-    let room = usize::from(area.width).saturating_sub(super::pen::width(beside) + 1);
-    let fits = |size: Size| {
-        let rows = large(number, size, ascii)?;
-        let wide = rows.first().map_or(0, |row| row.chars().count());
-        (area.height >= size.rows() && wide <= room).then_some((size, rows, wide))
-    };
-    let Some((size, rows, wide)) = fits(Size::Six).or_else(|| fits(Size::Three)) else {
+/// A number in large numerals with what stands beside it, if both fit into so many columns.
+fn fitting(columns: u16, number: &str, beside: &str, size: Size, ascii: bool) -> Option<Vec<String>> {
+    let room = usize::from(columns).saturating_sub(width(beside) + 1);
+    large(number, size, ascii).filter(|rows| rows.iter().all(|row| width(row) <= room))
+}
+
+/// Whether a number with its unit fits into so many columns at a size.
+pub(super) fn fits(columns: u16, number: &str, beside: &str, size: Size) -> bool {
+    fitting(columns, number, beside, size, true).is_some()
+}
+
+/// Draws a number with what stands to the right of its last row; where that is too wide it is written in one row.
+pub(super) fn draw(pen: &mut Pen<'_>, area: Rect, number: &str, beside: &str, (size, style): (Size, Style)) {
+    let rows = fitting(area.width, number, beside, size, pen.look.is_ascii());
+    let Some(rows) = rows.filter(|_| area.height >= size.rows()) else {
         let middle = Rect { y: area.y + area.height / 2, height: 1, ..area };
         pen.text(middle, &format!("{number} {beside}"), style);
         return;
@@ -119,7 +123,8 @@ pub(super) fn draw(pen: &mut Pen<'_>, area: Rect, number: &str, beside: &str, st
     for (row, y) in rows.iter().zip(area.y..) {
         pen.text(Rect { y, height: 1, ..area }, row, style);
     }
-    let wide = u16::try_from(wide + 1).unwrap_or(area.width);
+    let wide = rows.first().map_or(0, |row| width(row) + 1);
+    let wide = u16::try_from(wide).unwrap_or(area.width).min(area.width);
     let last = Rect {
         x: area.x + wide,
         y: area.y + size.rows() - 1,

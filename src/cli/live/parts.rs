@@ -4,10 +4,10 @@ use ratatui::layout::Rect;
 use ratatui::style::Style;
 
 use super::level;
-use super::pen::{Pen, inset, take_below, width, wrap};
+use super::pen::{self, Pen, inset, take_below, width, wrap};
 use super::stage::Stage;
 use crate::report::Units;
-use crate::report::live_parts::{Dial, DialState};
+use crate::report::live_parts::{Dial, DialState, Saved};
 use crate::report::typed::tame;
 
 /// The least size at which everything has its place.
@@ -29,39 +29,61 @@ pub(super) fn too_small(pen: &mut Pen<'_>, row: Rect, area: Rect) {
     pen.text(inset(row, 1), &text, pen.look.ready());
 }
 
-/// The keys with what they do.
-pub(super) fn key_bar(pen: &mut Pen<'_>, row: Rect, keys: &[(&str, &str)]) {
-    let mut row = inset(row, 1);
+/// The keys with what they do, at the bottom of an area, which gets shorter by as many rows as they need.
+pub(super) fn key_bar(pen: &mut Pen<'_>, rest: &mut Rect, keys: &[(&str, &str)]) {
+    let columns = usize::from(rest.width.saturating_sub(1));
+    let mut rows: Vec<Vec<(usize, &str, &str)>> = vec![Vec::new()];
+    let mut at = 0;
     for (key, does) in keys {
-        let columns = u16::try_from(width(key) + 1 + width(does) + 2).unwrap_or(u16::MAX);
-        pen.text(row, key, pen.look.strong());
-        let after = u16::try_from(width(key) + 1).unwrap_or(u16::MAX).min(row.width);
-        pen.text(Rect { x: row.x + after, width: row.width - after, ..row }, does, pen.look.accent());
-        let step = columns.min(row.width);
-        row = Rect { x: row.x + step, width: row.width - step, ..row };
+        let wide = width(key) + 1 + width(does);
+        if at > 0 && at + wide > columns {
+            rows.push(Vec::new());
+            at = 0;
+        }
+        if let Some(row) = rows.last_mut() {
+            row.push((at, key, does));
+        }
+        at += wide + 2;
+    }
+    let area = take_below(rest, u16::try_from(rows.len()).unwrap_or(1));
+    for (row, keys) in pen::rows(area).zip(rows) {
+        for (at, key, does) in keys {
+            let part = |at: usize| {
+                let at = u16::try_from(at + 1).unwrap_or(u16::MAX).min(row.width);
+                Rect { x: row.x + at, width: row.width - at, ..row }
+            };
+            pen.text(part(at), key, pen.look.strong());
+            pen.text(part(at + width(key) + 1), does, pen.look.accent());
+        }
     }
 }
 
-/// The sentence and the question at the bottom, taken from below; goes out: how many rows.
+/// The sentence and the question at the bottom, taken from below.
 pub(super) fn bottom<A: Clone>(
     pen: &mut Pen<'_>,
     stage: &Stage<A>,
     else_says: Option<&str>,
     rest: &mut Rect,
-) -> u16 {
+) {
     let columns = usize::from(rest.width.saturating_sub(2));
-    let mut lines = stage.bottom(columns, else_says);
-    if lines.is_empty() {
-        lines.push(String::new());
-    }
+    let lines = stage.bottom(columns, else_says);
     // The last lines hold what is typed.
     let skip = lines.len().saturating_sub(MOST_SAID);
     let lines: Vec<(String, Style)> =
         lines.into_iter().skip(skip).map(|line| (line, pen.look.strong())).collect();
-    let height = u16::try_from(lines.len()).unwrap_or(1);
+    let height = u16::try_from(lines.len()).unwrap_or(0);
     let area = take_below(rest, height);
     pen.lines(inset(area, 1), &lines);
-    height
+}
+
+/// What is saved, and more where there is room; goes out: what is not saved, where it is too long for the row.
+pub(super) fn status(pen: &mut Pen<'_>, row: Rect, saved: &Saved, says: &str, more: &str) -> Option<String> {
+    let style = if *saved == Saved::All { Style::new() } else { pen.look.warning() };
+    let room = usize::from(row.width);
+    let both = format!("{says} · {more}");
+    let whole = if more.is_empty() || width(&pen.look.text(&both)) > room { says } else { both.as_str() };
+    pen.text(row, whole, style);
+    (width(&pen.look.text(whole)) > room).then(|| whole.to_owned())
 }
 
 /// The level line and the words beside it; for a value that is not of now its words alone, reversed.
@@ -87,10 +109,15 @@ pub(super) fn dashes(number: &str) -> String {
     number.trim_start_matches('-').chars().map(|c| if c == '.' { '.' } else { '-' }).collect()
 }
 
-/// A small dial in words: what it is, its value or what is the matter, its instrument.
+/// A small dial in words: what it is, its value or what is the matter, its faults.
 pub(super) fn small_dial(dial: &Dial, units: &Units) -> String {
     let value = if dial.is_alive() { dial.value_words(units) } else { dial.state_words(units) };
-    format!("{} {value} {}", dial.kind.name(), dial.source_words())
+    let faults = match dial.faults {
+        0 => String::new(),
+        1 => ", 1 fault".to_owned(),
+        n => format!(", {n} faults"),
+    };
+    format!("{} {value}{faults}", dial.kind.name())
 }
 
 /// A dial in words, with everything that is known of it.

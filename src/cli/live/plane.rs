@@ -37,11 +37,21 @@ impl Span {
         (self.low..=self.high).contains(&value)
     }
 
+    /// Where a value lies between its ends, 0 to 1.
+    fn share(&self, value: f64) -> f64 {
+        (value - self.low) / (self.high - self.low)
+    }
+
     /// With a share of itself added at both ends, and at least so much.
     pub(super) fn padded(self, share: f64, least: f64) -> Self {
         let more = ((self.high - self.low) * share).max(least);
         Self { low: self.low - more, high: self.high + more }
     }
+}
+
+/// The cell that a place between the ends of an axis falls into.
+fn cell(share: f64, cells: u16) -> Option<u16> {
+    (0.0..=1.0).contains(&share).then(|| ((share * f64::from(cells)) as u16).min(cells - 1))
 }
 
 /// A line from one place to another, in a colour.
@@ -114,6 +124,18 @@ impl Plane {
         });
     }
 
+    /// A word at the right end of the row that a value of the vertical axis falls into.
+    pub(super) fn word(&self, pen: &mut Pen<'_>, value: f64, word: &str) {
+        if let Some(row) = self.row(value) {
+            let row = Rect { y: self.inner.y + row, height: 1, ..self.inner };
+            pen.right(
+                Rect { width: row.width.saturating_sub(1), ..row },
+                &format!(" {word} "),
+                pen.look.faint(),
+            );
+        }
+    }
+
     fn canvas(
         &self,
         pen: &mut Pen<'_>,
@@ -141,14 +163,14 @@ impl Plane {
 
     /// A sign at a place; nothing where that lies outside.
     pub(super) fn glyph(&self, pen: &mut Pen<'_>, at: (f64, f64), glyph: &str, style: ratatui::style::Style) {
-        let cell = |share: f64, cells: u16| -> Option<u16> {
-            (0.0..=1.0).contains(&share).then(|| ((share * f64::from(cells)) as u16).min(cells - 1))
-        };
-        let share = |value: f64, span: Span| (value - span.low) / (span.high - span.low);
-        let column = cell(share(at.0, self.x), self.inner.width);
-        let row = cell(1.0 - share(at.1, self.y), self.inner.height);
-        if let Some((column, row)) = column.zip(row) {
+        let column = cell(self.x.share(at.0), self.inner.width);
+        if let Some((column, row)) = column.zip(self.row(at.1)) {
             pen.glyph(self.inner.x + column, self.inner.y + row, glyph, style);
         }
+    }
+
+    /// The row of cells that a value of the vertical axis falls into.
+    fn row(&self, value: f64) -> Option<u16> {
+        cell(1.0 - self.y.share(value), self.inner.height)
     }
 }

@@ -13,7 +13,7 @@ use super::stage::{Page, Stage, draw_lines};
 use super::{level, parts};
 use crate::entry::What;
 use crate::report::cautions::{SESSION_ALARM, SESSION_LIVE};
-use crate::report::live_parts::{DialKind, Saved};
+use crate::report::live_parts::{Dial, DialKind, DialState};
 use crate::report::session_live::{self as words, AlarmSeen, SessionView};
 use crate::report::typed::{clock, tame};
 
@@ -46,13 +46,13 @@ pub(super) fn draw(
     pen.text(left, &words::title(view), look.strong());
     pen.text(inset(take(&mut rest, 1), 1), SESSION_LIVE, look.strong());
     alarms(pen, &mut rest, view, MOST_ALARMS);
-    parts::key_bar(pen, take_below(&mut rest, 1), &KEYS);
-    status(pen, take_below(&mut rest, 1), view);
-    parts::bottom(pen, stage, trouble(view).as_deref(), &mut rest);
+    parts::key_bar(pen, &mut rest, &KEYS);
+    let aside = status(pen, take_below(&mut rest, 1), view);
+    parts::bottom(pen, stage, trouble(view).or(aside).as_deref(), &mut rest);
     match stage.page {
         Page::Main => main(pen, rest, view),
         Page::All(from) => draw_lines(pen, inset(rest, 1), &everything(view, area.width), from),
-        Page::Help => draw_lines(pen, inset(rest, 1), &help(area.width), 0),
+        Page::Help(from) => draw_lines(pen, inset(rest, 1), &help(area.width), from),
     }
 }
 
@@ -60,15 +60,11 @@ fn trouble(view: &SessionView) -> Option<String> {
     parts::trouble(view.cells.iter().map(|cell| &cell.dial).chain(&view.around))
 }
 
-fn status(pen: &mut Pen<'_>, row: Rect, view: &SessionView) {
+fn status(pen: &mut Pen<'_>, row: Rect, view: &SessionView) -> Option<String> {
     let row = inset(row, 1);
     let left = pen.right(row, parts::MORE, pen.look.faint());
-    let style = if view.saved == Saved::All { Style::new() } else { pen.look.warning() };
-    let mut says = view.saved.words("row");
-    if let Some(watched) = view.hold.words() {
-        says.push_str(&format!(" · {watched}"));
-    }
-    pen.text(left, &says, style);
+    let hold = view.hold.words().unwrap_or_default();
+    parts::status(pen, left, &view.saved, &words::saved_words(view), &hold)
 }
 
 /// The alarms across the whole width, a rule where there is none.
@@ -80,18 +76,22 @@ fn alarms(pen: &mut Pen<'_>, rest: &mut Rect, view: &SessionView, most: u16) {
     }
     let columns = usize::from(rest.width.saturating_sub(2));
     let mut lines: Vec<String> = Vec::new();
+    let says = wrap(SESSION_ALARM, columns);
     for (place, alarm) in view.alarms.iter().enumerate() {
         let these = alarm_lines(alarm, view, columns);
-        let left = view.alarms.len() - place;
-        // One row stays for what is said below, and one to say that there are more.
-        let room = usize::from(most).saturating_sub(lines.len() + 1 + usize::from(left > 1));
-        if place > 0 && these.len() > room {
-            lines.push(format!("{left} MORE ALARMS: Tab"));
+        // Whatever has no room for its sentence is named all the same.
+        let named = |from: usize| {
+            let names: Vec<String> = view.alarms.iter().skip(from).map(words::alarm_name).collect();
+            wrap(&format!("ALARM {}", names.join(", ")), columns)
+        };
+        let after = if place + 1 < view.alarms.len() { named(place + 1).len() } else { 0 };
+        if place > 0 && lines.len() + these.len() + after + says.len() > usize::from(most) {
+            lines.extend(named(place));
             break;
         }
         lines.extend(these);
     }
-    lines.extend(wrap(SESSION_ALARM, columns).into_iter().take(1));
+    lines.extend(says);
     let style = pen.look.alarm();
     for line in lines {
         let row = take(rest, 1);
@@ -139,10 +139,9 @@ fn po2(pen: &mut Pen<'_>, area: Rect, view: &SessionView, size: Size) {
     let head = format!("PO2, median of {used} of {} cells", view.cells.len());
     pen.text(take(&mut rest, 1), &head, pen.look.faint());
     let state = take_below(&mut rest, 1);
-    let rest = Rect { height: rest.height.min(size.rows()), ..rest };
     match words::po2_number(view) {
-        Some(number) => numerals::draw(pen, rest, &number, "bar", Style::new()),
-        None => numerals::draw(pen, rest, "-.--", "bar", pen.look.faint()),
+        Some(number) => numerals::draw(pen, rest, &number, "bar", (size, Style::new())),
+        None => numerals::draw(pen, rest, "-.--", "bar", (size, pen.look.faint())),
     }
     match words::trend_tilt(view) {
         Some(tilt) => {
@@ -151,7 +150,11 @@ fn po2(pen: &mut Pen<'_>, area: Rect, view: &SessionView, size: Size) {
             let words_at = Rect { x: state.x + after, width: state.width - after, ..state };
             pen.text(words_at, &words::trend_words(view), Style::new());
         }
-        None => pen.text(state, &words::trend_words(view), pen.look.alarm()),
+        None => {
+            let waits = view.cells.iter().all(|cell| cell.dial.state == DialState::Waiting);
+            let style = if waits { pen.look.strong() } else { pen.look.alarm() };
+            pen.text(state, &words::trend_words(view), style);
+        }
     }
 }
 
@@ -171,21 +174,37 @@ fn cells(pen: &mut Pen<'_>, area: Rect, view: &SessionView) {
         let style = match (alive, cell.off) {
             (true, false) => Style::new(),
             (true, true) => pen.look.warning(),
+            (false, _) if cell.dial.state == DialState::Waiting => pen.look.strong(),
             (false, _) => pen.look.alarm(),
         };
         let says = words::cell_words(cell, &view.units);
-        if alive && usize::from(at.width) > width(&says) + 12 {
-            let rate = cell.dial.per_s.map(|per_s| format!("{per_s:.1}/s"));
-            let faults = (cell.dial.faults > 0).then(|| format!("{} faults", cell.dial.faults));
-            let source: Vec<String> = rate.into_iter().chain(faults).collect();
-            at = pen.right(at, &source.join(", "), pen.look.faint());
+        let (rate, faults) = source(&cell.dial);
+        let room = usize::from(at.width).saturating_sub(width(&says) + 2);
+        let both = if rate.is_empty() || faults.is_empty() {
+            format!("{rate}{faults}")
+        } else {
+            format!("{rate}, {faults}")
+        };
+        if let Some(source) = [both, faults].into_iter().find(|source| width(source) <= room) {
+            at = pen.right(at, &source, pen.look.faint());
         }
         pen.text(at, &says, style);
         // With six rows of numerals there is room between the cells.
-        if usize::from(rest.height) > 2 * view.cells.len() {
+        if usize::from(area.height) > 2 * view.cells.len() {
             take(&mut rest, 1);
         }
     }
+}
+
+/// Readings a second and faults of a cell.
+fn source(dial: &Dial) -> (String, String) {
+    let rate = dial.per_s.filter(|_| dial.is_alive()).map(|per_s| format!("{per_s:.1}/s"));
+    let faults = match dial.faults {
+        0 => String::new(),
+        1 => "1 fault".to_owned(),
+        n => format!("{n} faults"),
+    };
+    (rate.unwrap_or_default(), faults)
 }
 
 fn curve(pen: &mut Pen<'_>, area: Rect, view: &SessionView) {
@@ -202,7 +221,8 @@ fn curve(pen: &mut Pen<'_>, area: Rect, view: &SessionView) {
     let label_x = |s: f64| clock(s.max(0.0));
     let label_y = |bar: f64| DialKind::Po2.number(bar, None, &view.units);
     let Some(plane) = Plane::new(area, x.padded(0.0, 0.5), y.padded(0.05, 0.01)) else {
-        pen.text(area, "no PO2 yet", pen.look.faint());
+        let says = if view.curve.is_empty() { "no PO2 yet" } else { "" };
+        pen.text(area, says, pen.look.faint());
         return;
     };
     plane.axes(pen, (&label_x, "h:min:s"), (&label_y, "bar"));
@@ -217,6 +237,8 @@ fn curve(pen: &mut Pen<'_>, area: Rect, view: &SessionView) {
             .map(|(a, b)| (*a, *b, Color::Cyan)),
     );
     plane.lines(pen, &strokes);
+    plane.word(pen, floor, "floor");
+    plane.word(pen, ceiling, "ceiling");
     for event in &view.events {
         plane.glyph(pen, (event.at_s, ceiling), letter(&event.what), pen.look.strong());
     }
@@ -310,7 +332,7 @@ fn help(columns: u16) -> Vec<String> {
 /// Where there is no room for the screen: the alarms first, then that it is too small, then the session in lines.
 fn small(pen: &mut Pen<'_>, area: Rect, view: &SessionView, stage: &Stage<Asked>) {
     let mut rest = area;
-    parts::key_bar(pen, take_below(&mut rest, 1), &KEYS);
+    parts::key_bar(pen, &mut rest, &KEYS);
     let most = (area.height / 2).max(2);
     if !view.alarms.is_empty() {
         alarms(pen, &mut rest, view, most);
@@ -319,9 +341,7 @@ fn small(pen: &mut Pen<'_>, area: Rect, view: &SessionView, stage: &Stage<Asked>
     parts::bottom(pen, stage, trouble(view).as_deref(), &mut rest);
     let columns = usize::from(area.width.saturating_sub(2));
     let mut lines = wrap(SESSION_LIVE, columns);
-    for part in words::session_line(view).split("; ").filter(|part| !part.starts_with("ALARM")) {
-        lines.extend(wrap(part, columns));
-    }
+    lines.extend(words::session_parts(view).iter().flat_map(|part| wrap(part, columns)));
     let lines: Vec<(String, Style)> = lines.into_iter().map(|line| (line, Style::new())).collect();
     pen.lines(inset(rest, 1), &lines);
 }

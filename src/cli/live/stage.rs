@@ -16,8 +16,8 @@ pub(super) enum Page {
     Main,
     /// Everything in lines, from this one on.
     All(usize),
-    /// The keys.
-    Help,
+    /// The keys, from this line on.
+    Help(usize),
 }
 
 /// A question at the bottom line.
@@ -100,7 +100,10 @@ impl<A: Clone> Stage<A> {
         }
         if let Some(question) = &mut self.question {
             match key.code {
-                KeyCode::Esc => self.question = None,
+                KeyCode::Esc => {
+                    self.question = None;
+                    self.said = None;
+                }
                 KeyCode::Char(c) if question.one_key => {
                     question.typed.push(c);
                     return self.answered();
@@ -118,24 +121,22 @@ impl<A: Clone> Stage<A> {
             return Did::Used;
         }
         match (self.page, key.code) {
-            (Page::Help, _) => self.page = Page::Main,
             (Page::Main, KeyCode::Tab) => self.page = Page::All(0),
-            (Page::All(_), KeyCode::Tab | KeyCode::Esc) => self.page = Page::Main,
-            (Page::All(from), KeyCode::Down) => self.page = Page::All(from.saturating_add(1)),
-            (Page::All(from), KeyCode::Up) => self.page = Page::All(from.saturating_sub(1)),
-            (Page::All(from), KeyCode::PageDown) => self.page = Page::All(from.saturating_add(10)),
-            (Page::All(from), KeyCode::PageUp) => self.page = Page::All(from.saturating_sub(10)),
-            (Page::All(_), KeyCode::Home) => self.page = Page::All(0),
-            (_, KeyCode::Char('?')) => self.page = Page::Help,
-            (_, KeyCode::Char(c)) => return Did::Free(c),
-            _ => {}
+            (Page::Main | Page::All(_), KeyCode::Char('?')) => self.page = Page::Help(0),
+            (Page::Main | Page::All(_), KeyCode::Char(c)) => return Did::Free(c),
+            (Page::Main, _) => {}
+            (Page::All(from) | Page::Help(from), code) => match moved(from, code) {
+                Some(from) if matches!(self.page, Page::All(_)) => self.page = Page::All(from),
+                Some(from) => self.page = Page::Help(from),
+                None => self.page = Page::Main,
+            },
         }
         Did::Used
     }
 
-    /// Keeps the page of everything within so many lines.
+    /// Keeps a page of lines within so many.
     pub(super) fn hold_within(&mut self, lines: usize) {
-        if let Page::All(from) = &mut self.page {
+        if let Page::All(from) | Page::Help(from) = &mut self.page {
             *from = (*from).min(lines.saturating_sub(1));
         }
     }
@@ -160,6 +161,18 @@ impl<A: Clone> Stage<A> {
             }
         }
         lines
+    }
+}
+
+/// The line from which on a page stands after a key; none when the key does not move in it.
+const fn moved(from: usize, code: KeyCode) -> Option<usize> {
+    match code {
+        KeyCode::Down => Some(from.saturating_add(1)),
+        KeyCode::Up => Some(from.saturating_sub(1)),
+        KeyCode::PageDown => Some(from.saturating_add(10)),
+        KeyCode::PageUp => Some(from.saturating_sub(10)),
+        KeyCode::Home => Some(0),
+        _ => None,
     }
 }
 
