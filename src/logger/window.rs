@@ -16,6 +16,8 @@ const KEPT_DURATIONS: f64 = 6.0;
 const KEPT_READINGS: f64 = 4.0;
 /// ... and never for longer than this, in seconds.
 const MOST_KEPT_S: f64 = 900.0;
+/// The pressure now is the mean over the least duration divided by this, which is the search's own window.
+pub(super) const NOW_DURATIONS: f64 = 4.0;
 /// A reading stamped earlier than the last by more than this many seconds is of a clock that was set; by less, of another
 /// port's thread.
 const OUT_OF_ORDER_S: f64 = 1.0;
@@ -148,8 +150,8 @@ impl Window {
             return Seen { sign, frozen: None, level: None };
         };
         let found = steady_points(rows, options);
-        // What ends further back than this is over: a quarter of the least duration is the search's own window.
-        let now_from_s = last_s - (least_s / 4.0).max(2.0 * interval_s(rows));
+        // What ends further back than this is over.
+        let now_from_s = last_s - (least_s / NOW_DURATIONS).max(2.0 * interval_s(rows));
         let frozen = found.remarks.iter().rev().find_map(|remark| match remark {
             Remark::Frozen(stretch) if stretch.to_s >= now_from_s => {
                 Some((role_of(stretch.channel), stretch.from_s))
@@ -201,7 +203,7 @@ impl Window {
     }
 
     fn moves(&self, rows: &SeriesReadings) -> NotSteady {
-        let over_s = self.options.least_duration_s / 4.0;
+        let over_s = self.options.least_duration_s / NOW_DURATIONS;
         NotSteady::PressureMoves { rate_pa_s: rate(&rows.time_s, &rows.pressure_pa, over_s).unwrap_or(0.0) }
     }
 
@@ -226,10 +228,10 @@ impl Window {
         }
     }
 
-    /// Mean pressure of the last quarter of the least duration, Pa gauge; none without readings in it.
+    /// Mean pressure of the last part of the least duration, Pa gauge; none without readings in it.
     pub(super) fn pressure_now_pa(&self) -> Option<f64> {
         let rows = &self.rows;
-        let from_s = rows.time_s.last()? - self.options.least_duration_s / 4.0;
+        let from_s = rows.time_s.last()? - self.options.least_duration_s / NOW_DURATIONS;
         let first = rows.time_s.partition_point(|t| *t < from_s);
         let late = rows.pressure_pa.get(first..)?.iter().copied().filter(|p| p.is_finite());
         let (sum, count) = late.fold((0.0, 0_usize), |(sum, n), p| (sum + p, n + 1));
