@@ -167,8 +167,7 @@ impl Logged {
                     continue;
                 }
                 // Coarse numbers come again: one that was lost on its way must not be taken for a later one alike.
-                let in_time =
-                    |said_s: f64| !same_clock || (-1e-6..1.0).contains(&(stamped.at_s - said_s));
+                let in_time = |said_s: f64| !same_clock || (-1e-6..1.0).contains(&(stamped.at_s - said_s));
                 let found = meant.iter().skip(next).position(|one| same(one.1) && in_time(one.0));
                 let id = self.instruments[number].id.as_str();
                 let found = found.unwrap_or_else(|| {
@@ -313,12 +312,8 @@ fn every_fault_of_the_rig_is_survived_counted_and_never_a_reading() {
             // In a hold, over a step, once, and for longer than a point takes.
             // A plug that is out for one message is out for good; a second will do.
             let once = if fault == Fault::Unplugged { Lasts::For(1.0) } else { Lasts::Once };
-            let times = [
-                (8.0, Lasts::For(3.0)),
-                (30.0, Lasts::For(9.0)),
-                (55.0, once),
-                (80.0, Lasts::For(25.0)),
-            ];
+            let times =
+                [(8.0, Lasts::For(3.0)), (30.0, Lasts::For(9.0)), (55.0, once), (80.0, Lasts::For(25.0))];
             for (from_s, lasts) in times {
                 settings.faults.push((id(device), Planned { from_s, lasts, fault: fault.clone() }));
             }
