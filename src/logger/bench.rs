@@ -4,15 +4,16 @@ use super::channel::{Channel, ChannelLive};
 use super::ledger::{Block, By, Ledger, Stamped, Taken, Trouble, TroubleAt};
 use super::outbox::Outbox;
 use super::sign::{NotSteady, Refusal, Role, Steady};
-use super::window::{Held, Seen, Window};
+use super::window::{Held, NOW_DURATIONS, Seen, Window};
 use crate::entry::{Instrument, PointReading, Sweep};
 use crate::instrument::{Heard, What};
 use crate::series::SteadyOptions;
 
 /// Looks in the least duration of a steady span.
 const LOOKS: f64 = 10.0;
-/// The part of the least duration after which a level that is held counts for the direction of the sweep.
-const LEVEL_DURATIONS: f64 = 0.5;
+/// A level that is held for as long as this part of the least duration counts for the direction of the sweep. Its ends are
+/// cut off by then, and in an imported series any level counts.
+const LEVEL_DURATIONS: f64 = 1.0 / NOW_DURATIONS;
 
 /// How points are taken.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -112,8 +113,8 @@ pub struct BenchLogger {
     seen: Option<Seen>,
     origin_s: Option<f64>,
     points: Vec<Taken>,
-    /// Whether the pressure has left the level of the last point.
-    moved: bool,
+    /// Since when the pressure has left the level of the last point; none while it is there.
+    left_s: Option<f64>,
     /// Last second of the readings that went into a point.
     used_to_s: f64,
     /// The level held last, Pa, and the direction in which it was reached.
@@ -157,7 +158,7 @@ impl BenchLogger {
             seen: None,
             origin_s: options.began_s,
             points: Vec::new(),
-            moved: true,
+            left_s: Some(f64::NEG_INFINITY),
             used_to_s: f64::NEG_INFINITY,
             level_pa: None,
             sweep: None,
@@ -191,7 +192,7 @@ impl BenchLogger {
         self.next_look_s = at_s + self.options.steady.least_duration_s / LOOKS;
         self.look(at_s);
         let held = self.held(at_s).ok()?;
-        if !self.options.by_itself || !self.moved || held.steady.from_s <= self.used_to_s {
+        if !self.options.by_itself || !self.is_new(&held) {
             return None;
         }
         Some(self.take(&held, By::Itself))
@@ -206,6 +207,21 @@ impl BenchLogger {
     /// Takes points by itself from now on, or at a wish only.
     pub const fn take_by_itself(&mut self, by_itself: bool) {
         self.options.by_itself = by_itself;
+    }
+
+    /// Whether a span is of another level than the last point, or of the same one reached again. Just after a step the end
+    /// of the old level still counts as steady, and is neither.
+    fn is_new(&self, held: &Held) -> bool {
+        let from_s = held.steady.from_s;
+        let again = self.left_s.is_some_and(|left_s| from_s > left_s);
+        from_s > self.used_to_s && (again || self.is_away(held.steady.pressure.mean))
+    }
+
+    /// Whether a pressure is not that of the last point.
+    fn is_away(&self, pressure_pa: f64) -> bool {
+        self.points.last().is_none_or(|last| {
+            (pressure_pa - last.reading.pressure.shown_pa()).abs() > self.options.new_level_pa
+        })
     }
 
     /// Time passed: says what has become stale.
@@ -255,7 +271,7 @@ impl BenchLogger {
             channels: channels.collect(),
             sign,
             steady_s: (steady_s, least_s),
-            taken_here: !self.moved,
+            taken_here: self.left_s.is_none(),
             pressure_rate_pa_s,
             flow_rate_l_min_s,
             sweep: self.sweep,
@@ -319,6 +335,8 @@ impl BenchLogger {
         self.seen = None;
         self.next_look_s = f64::NEG_INFINITY;
         self.used_to_s = f64::NEG_INFINITY;
+        // The old clock's second of a step says nothing by the new one.
+        self.left_s = self.left_s.map(|_| f64::NEG_INFINITY);
     }
 
     /// Seconds between readings of the slower of flow and pressure.
@@ -334,15 +352,22 @@ impl BenchLogger {
             let mut troubles = Vec::new();
             if let Some(channel) = self.channels.get_mut(instrument) {
                 let role = channel.role;
-                let beside = seen.frozen.filter(|(frozen, _)| *frozen == role).map(|(_, since_s)| since_s);
+                // The window remembers a stretch for a while after it is over.
+                let lasts = |since_s: f64| channel.repeats.since_s() <= since_s;
+                let beside = seen.frozen.filter(|(frozen, since_s)| *frozen == role && lasts(*since_s));
+                let beside = beside.map(|(_, since_s)| since_s);
                 channel.frozen_beside_s = beside.or(channel.frozen_beside_s);
                 channel.say_frozen(&mut troubles);
             }
             self.record(instrument, now_s, troubles);
         }
         let now_pa = self.window.pressure_now_pa();
-        if let (Some(now_pa), Some(last)) = (now_pa, self.points.last()) {
-            self.moved |= (now_pa - last.reading.pressure.shown_pa()).abs() > self.options.new_level_pa;
+        if let Some(now_pa) = now_pa
+            && self.left_s.is_none()
+            && self.is_away(now_pa)
+        {
+            // Some of the readings of which it is the mean were away.
+            self.left_s = Some(now_s - self.options.steady.least_duration_s / NOW_DURATIONS);
         }
         // Where the pressure stood when the first words came is where the first level was reached from.
         self.level_pa = self.level_pa.or(now_pa);
@@ -411,7 +436,7 @@ impl BenchLogger {
             to_s: held.steady.to_s,
             by,
         };
-        self.moved = false;
+        self.left_s = None;
         self.used_to_s = held.steady.to_s;
         self.seal();
         self.outbox.push_urgent(Entry::Point(taken));

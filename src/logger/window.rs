@@ -2,7 +2,8 @@
 //!
 //! Takes readings as they come and asks [`crate::series::steady_points`] about the rows it holds: the search that finds
 //! the points of an imported series, with its options, its spikes, gaps and settling. The rows are bounded in time and one
-//! looks once in a tenth of the least duration, so the cost of a reading does not grow with the run.
+//! looks once in a tenth of the least duration, so the cost of a reading does not grow with the run. Of an instrument that
+//! says more than twenty numbers a second a row holds the mean over a twentieth.
 //! Left out: anything that is known of the instruments from their papers.
 
 use super::sign::{NotSteady, Role, Steady};
@@ -16,6 +17,11 @@ const KEPT_DURATIONS: f64 = 6.0;
 const KEPT_READINGS: f64 = 4.0;
 /// ... and never for longer than this, in seconds.
 const MOST_KEPT_S: f64 = 900.0;
+/// Shortest time from one row of a channel to its next, seconds: no meter and no transducer of this trade settles faster
+/// (common practice, no source), and what is looked at stays small however fast an instrument speaks.
+const FINEST_S: f64 = 0.05;
+/// The pressure now is the mean over the least duration divided by this, which is the search's own window.
+pub(super) const NOW_DURATIONS: f64 = 4.0;
 /// A reading stamped earlier than the last by more than this many seconds is of a clock that was set; by less, of another
 /// port's thread.
 const OUT_OF_ORDER_S: f64 = 1.0;
@@ -33,6 +39,9 @@ impl Slow {
             // Its own times never run back while its clock does not.
             *self = Self::default();
         }
+        if self.time_s.last().is_some_and(|last_s| at_s < last_s + FINEST_S) {
+            return;
+        }
         self.time_s.push(at_s);
         self.values.push(value);
         let old = self.time_s.partition_point(|t| *t < at_s - keep_s);
@@ -45,6 +54,36 @@ impl Slow {
 
     fn over(&self, span: &Steady, nearest_s: f64) -> Option<f64> {
         join::over_time(&self.time_s, &self.values, span.from_s, span.to_s, nearest_s).map(|at| at.value)
+    }
+}
+
+/// The readings of a channel that its newest row is the mean of.
+#[derive(Debug, Clone, Copy, Default)]
+struct Newest {
+    from_s: f64,
+    sum: f64,
+    count: u32,
+    last: f64,
+    last_s: f64,
+}
+
+impl Newest {
+    fn of(at_s: f64, value: f64) -> Self {
+        Self { from_s: at_s, sum: value, count: 1, last: value, last_s: at_s }
+    }
+
+    /// Takes a reading of the same row; none when it begins a new one.
+    fn with(&self, at_s: f64, value: f64) -> Option<Self> {
+        let same_row = self.count > 0 && at_s >= self.last_s && at_s < self.from_s + FINEST_S;
+        // Readings that were held back on their way come all at one second: only the newest of them is of that second.
+        let at_once = at_s <= self.last_s;
+        let (sum, count) =
+            if at_once { (self.sum - self.last, self.count) } else { (self.sum, self.count + 1) };
+        same_row.then_some(Self { sum: sum + value, count, last: value, last_s: at_s, ..*self })
+    }
+
+    fn mean(&self) -> f64 {
+        self.sum / f64::from(self.count.max(1))
     }
 }
 
@@ -71,6 +110,8 @@ pub(super) struct Seen {
 pub(super) struct Window {
     options: SteadyOptions,
     rows: SeriesReadings,
+    newest_pressure: Newest,
+    newest_flow: Newest,
     temperature: Slow,
     barometer: Slow,
 }
@@ -78,7 +119,15 @@ pub(super) struct Window {
 impl Window {
     pub(super) fn new(options: SteadyOptions) -> Self {
         let (temperature, barometer) = (Slow::default(), Slow::default());
-        Self { options, rows: SeriesReadings::default(), temperature, barometer }
+        let (newest_pressure, newest_flow) = (Newest::default(), Newest::default());
+        Self {
+            options,
+            rows: SeriesReadings::default(),
+            newest_pressure,
+            newest_flow,
+            temperature,
+            barometer,
+        }
     }
 
     /// Takes a reading: Pa gauge, L/min as shown, K or Pa. `interval_s` is that of the slower of flow and pressure.
@@ -104,15 +153,21 @@ impl Window {
             *rows = SeriesReadings::default();
             place = 0;
         }
-        // Readings that were held back on their way come all at one second: only the newest of them is of that second.
-        let at_once = (0..place).rev().take_while(|row| rows.time_s.get(*row).is_some_and(|t| *t >= at_s));
-        let column = if role == Role::Flow { &mut rows.flow_l_min } else { &mut rows.pressure_pa };
-        for row in at_once {
-            if let Some(older) = column.get_mut(row).filter(|older| older.is_finite()) {
-                *older = value;
-                return;
+        let (column, newest) = match role {
+            Role::Flow => (&mut rows.flow_l_min, &mut self.newest_flow),
+            _ => (&mut rows.pressure_pa, &mut self.newest_pressure),
+        };
+        if let Some(with) = newest.with(at_s, value) {
+            *newest = with;
+            let since = |row: &usize| rows.time_s.get(*row).is_some_and(|t| *t >= with.from_s);
+            for row in (0..place).rev().take_while(since) {
+                if let Some(mean) = column.get_mut(row).filter(|mean| mean.is_finite()) {
+                    *mean = with.mean();
+                    return;
+                }
             }
         }
+        *newest = Newest::of(at_s, value);
         rows.time_s.insert(place, at_s);
         rows.pressure_pa.insert(place, pressure);
         rows.flow_l_min.insert(place, flow);
@@ -148,8 +203,8 @@ impl Window {
             return Seen { sign, frozen: None, level: None };
         };
         let found = steady_points(rows, options);
-        // What ends further back than this is over: a quarter of the least duration is the search's own window.
-        let now_from_s = last_s - (least_s / 4.0).max(2.0 * interval_s(rows));
+        // What ends further back than this is over.
+        let now_from_s = last_s - (least_s / NOW_DURATIONS).max(2.0 * interval_s(rows));
         let frozen = found.remarks.iter().rev().find_map(|remark| match remark {
             Remark::Frozen(stretch) if stretch.to_s >= now_from_s => {
                 Some((role_of(stretch.channel), stretch.from_s))
@@ -201,7 +256,7 @@ impl Window {
     }
 
     fn moves(&self, rows: &SeriesReadings) -> NotSteady {
-        let over_s = self.options.least_duration_s / 4.0;
+        let over_s = self.options.least_duration_s / NOW_DURATIONS;
         NotSteady::PressureMoves { rate_pa_s: rate(&rows.time_s, &rows.pressure_pa, over_s).unwrap_or(0.0) }
     }
 
@@ -226,10 +281,10 @@ impl Window {
         }
     }
 
-    /// Mean pressure of the last quarter of the least duration, Pa gauge; none without readings in it.
+    /// Mean pressure of the last part of the least duration, Pa gauge; none without readings in it.
     pub(super) fn pressure_now_pa(&self) -> Option<f64> {
         let rows = &self.rows;
-        let from_s = rows.time_s.last()? - self.options.least_duration_s / 4.0;
+        let from_s = rows.time_s.last()? - self.options.least_duration_s / NOW_DURATIONS;
         let first = rows.time_s.partition_point(|t| *t < from_s);
         let late = rows.pressure_pa.get(first..)?.iter().copied().filter(|p| p.is_finite());
         let (sum, count) = late.fold((0.0, 0_usize), |(sum, n), p| (sum + p, n + 1));

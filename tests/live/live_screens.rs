@@ -2,19 +2,17 @@
 
 #![allow(clippy::unwrap_used)] // a screen that cannot be drawn is a failure
 
-mod live_views;
-
 use std::fs;
 use std::path::Path;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
 
+use crate::live_views::*;
 use ebbline::cli::live::{BenchLines, BenchScene, SessionLines, SessionScene};
 use ebbline::entry::{Injection, LoopKept, What};
 use ebbline::report::cautions::SESSION_LIVE;
 use ebbline::report::live_parts::DialState;
 use ebbline::work::log::{BenchFace as _, BenchWish, SessionFace as _, SessionWish};
-use live_views::*;
 use ratatui::crossterm::event::{Event, KeyCode, KeyEvent, KeyModifiers};
 use ratatui::style::{Color, Modifier};
 

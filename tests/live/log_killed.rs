@@ -1,17 +1,13 @@
 //! The logger is killed at any moment: what was sent more than a second before is in the book, every point that was told
 //! is there, the book holds, and the run goes on where it stopped. What was sent is known from the rig's own log.
-
 #![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
-
-#[path = "logged/mod.rs"]
-mod logged;
 
 use std::io::Read as _;
 use std::process::Child;
 use std::time::Duration;
 
+use crate::logged::{Bench, now_s};
 use ebbline::entry::RunNumber;
-use logged::{Bench, now_s};
 
 /// What may be missing of the last seconds before a kill.
 const MAY_BE_MISSING_S: f64 = 1.0;

@@ -1,6 +1,5 @@
 //! A bench run logged from readings that are made up: when a point is taken and when it is refused, and what is handed over.
 #![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
-
 use ebbline::entry::{
     Amount, Id, Instrument, InstrumentPapers, Measures, Papers, Protocol, Sweep, Transducer,
 };
@@ -424,4 +423,77 @@ fn a_reading_costs_the_same_however_long_the_run() {
     };
     let (short, long) = (size(120.0), size(1_200.0));
     assert!(long < short + short / 3, "{short} and {long} bytes");
+}
+
+#[test]
+fn an_instrument_that_says_thousands_of_numbers_a_second_is_averaged_and_costs_no_more() {
+    let mut bench = Bench::new(&pair(), BenchOptions::default());
+    let mut taken = Vec::new();
+    let mut sizes = Vec::new();
+    let mut sums: Vec<(f64, f64)> = Vec::new();
+    // Two thousand a second of each for two minutes, all of them with noise.
+    for step in 0..240_000_u32 {
+        bench.at_s = f64::from(step) / 2e3;
+        let bar = 6.0 + 0.02 * bench.random.normal();
+        let flow = 0.35 * (1.0 + 0.01 * bench.random.normal());
+        sums.push((bench.at_s, flow));
+        taken.extend(bench.say(1, reading(Kind::Pressure, "bar", bar)));
+        taken.extend(bench.say(0, reading(Kind::Flow, "L/min", flow)));
+        bench.logger.hand_over(bench.at_s, &mut bench.ledger).unwrap();
+        if step == 150_000 || step == 239_999 {
+            bench.logger.hand_over_all(bench.at_s, &mut bench.ledger).unwrap();
+            sizes.push(format!("{:?}", bench.logger).len());
+        }
+    }
+    assert_eq!(taken.len(), 1, "{taken:?}");
+    let point = taken[0];
+    // What was read over the span, every reading of it; its ends are known to a twentieth of a second.
+    let flows = values(&sums, &point);
+    let mean = flows.iter().sum::<f64>() / flows.len() as f64;
+    let scatter = 0.35 * 0.01 / (flows.len() as f64).sqrt();
+    assert!(
+        (point.reading.flow.as_l_min() - mean).abs() < scatter,
+        "{} and {mean}",
+        point.reading.flow.as_l_min()
+    );
+    let stated = point.reading.flow_scatter.unwrap().as_l_min();
+    assert!((0.7..1.4).contains(&(stated / scatter)), "{stated} and {scatter}");
+    // Twenty rows a second for a minute and a quarter, and not two thousand.
+    assert!(sizes.iter().all(|size| *size < 500_000), "{sizes:?} bytes");
+    let kept: usize = bench.ledger.blocks.iter().map(|block| block.readings.len()).sum();
+    assert_eq!(kept, 480_000);
+}
+
+#[test]
+fn a_clock_that_jumps_and_stays_loses_nothing() {
+    for by_s in [-3_600.0, -0.5, 40.0, 3_600.0] {
+        let mut bench = Bench::new(&pair(), BenchOptions::default());
+        assert_eq!(bench.holds(20.0, 6.0).len(), 1);
+        // In the middle of a hold, and for good.
+        bench.holds(5.0, 6.5);
+        bench.at_s += by_s;
+        assert_eq!(bench.holds(25.0, 6.5).len(), 1, "{by_s}");
+        assert_eq!(bench.holds(25.0, 7.0).len(), 1, "{by_s}");
+        bench.logger.hand_over_all(bench.at_s, &mut bench.ledger).unwrap();
+        for (instrument, said) in [(0, &bench.flow), (1, &bench.pressure)] {
+            let blocks = bench.ledger.blocks.iter().filter(|block| block.instrument == instrument);
+            let all: Vec<(f64, f64)> = blocks
+                .flat_map(|block| &block.readings)
+                .map(|stamped| (stamped.at_s, stamped.reading.shown))
+                .collect();
+            assert_eq!(&all, said, "{by_s}");
+        }
+        let back: Vec<f64> = bench
+            .ledger
+            .faults
+            .iter()
+            .filter_map(|one| if let Trouble::TimeRanBack { by_s } = one.what { Some(by_s) } else { None })
+            .collect();
+        // Said once, of the instrument that shows it first: what the clock went back, less the tenth of a second since then.
+        let expected = if by_s < 0.0 { vec![-by_s - 0.1] } else { Vec::new() };
+        assert_eq!(back.len(), expected.len(), "{by_s}: {back:?}");
+        assert!(back.iter().zip(&expected).all(|(a, b)| (a - b).abs() < 1e-6), "{by_s}: {back:?}");
+        let numbers: Vec<usize> = bench.ledger.points.iter().map(|point| point.number).collect();
+        assert_eq!(numbers, [1, 2, 3], "{by_s}");
+    }
 }

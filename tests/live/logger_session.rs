@@ -1,8 +1,6 @@
 //! A session logged from readings that are made up, and from the simulated loop: rows, events, every alarm and its end.
 #![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
-
-mod logger_rig;
-
+use crate::logger_rig::Heeded;
 use ebbline::entry::{CalibratedAt, Id, Injection, Instrument, Measures, Place, What as Happened};
 use ebbline::instrument::{Heard, Lost, Reading, What};
 use ebbline::logger::{
@@ -13,7 +11,6 @@ use ebbline::quantity::unit::lookup;
 use ebbline::quantity::{AbsolutePressure, Kind, Temperature};
 use ebbline::rig::Feed;
 use ebbline::stats::monte_carlo::Random;
-use logger_rig::Heeded;
 
 fn instrument(id: &str, measures: Measures) -> Instrument {
     Instrument {

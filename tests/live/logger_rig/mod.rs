@@ -1,4 +1,5 @@
 //! The simulated bench listened to as real instruments are: ports, workers and a logger on one virtual clock.
+#![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
 
 #![allow(dead_code, reason = "each test binary uses a part")]
 
@@ -14,6 +15,8 @@ use ebbline::rig::{JumpingTime, Rig, Settings, SharedRig, Time, Transport, Virtu
 
 /// Longest wait of one port, seconds, so that the ports are served in turn on the one clock.
 const TURN_S: f64 = 0.02;
+/// Shortest, that of a real port: two ports that each wait for a rounding error would never move the clock.
+const LEAST_S: f64 = 0.001;
 
 pub(crate) fn id(name: &str) -> Id {
     Id::new(name).unwrap()
@@ -76,7 +79,7 @@ impl Write for End {
 
 impl Line for End {
     fn wait_at_most(&mut self, longest_s: f64) -> io::Result<()> {
-        self.0.set_timeout(Duration::from_secs_f64(longest_s.min(TURN_S)));
+        self.0.set_timeout(Duration::from_secs_f64(longest_s.clamp(LEAST_S, TURN_S)));
         Ok(())
     }
 }

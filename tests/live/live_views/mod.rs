@@ -1,4 +1,5 @@
 //! Invented views for the live screens, and the screens as text.
+#![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
 
 use ebbline::cli::live::{BenchScene, Glyphs, Look, SessionScene};
 use ebbline::entry::{Event, Injection, LoopKept, Place, Purpose, RunNumber, SessionNumber, Sweep, What};
