@@ -231,8 +231,10 @@ mod tests {
     fn help_and_the_page_of_everything_come_and_go() {
         let mut stage: Stage<()> = Stage::new();
         press(&mut stage, KeyCode::Char('?'));
-        assert_eq!(stage.page, Page::Help);
+        press(&mut stage, KeyCode::Down);
+        assert_eq!(stage.page, Page::Help(1));
         assert_eq!(press(&mut stage, KeyCode::Char('f')), Did::Used);
+        assert_eq!(stage.page, Page::Main);
         press(&mut stage, KeyCode::Tab);
         press(&mut stage, KeyCode::PageDown);
         press(&mut stage, KeyCode::Up);
