@@ -47,6 +47,7 @@ pub(super) fn session_view(state: &SessionState<'_>) -> SessionView {
     let cells = cells.zip(&live.po2_bar).map(|(channel, po2_bar)| {
         let volts = channel.last.filter(|reading| reading.kind() == Some(Kind::Voltage));
         let of_voltage = volts.map(|reading| reading.si * 1e3);
+        // The last value stays, with its age, when the cell is silent.
         let value = if of_voltage.is_some() { *po2_bar } else { dial(channel).value };
         // What the last digit of a voltage counts is none of its PO2.
         let resolution = if of_voltage.is_some() { None } else { dial(channel).resolution };

@@ -216,7 +216,9 @@ fn points(desk: Option<&Desk>, analysis: Option<&Analysis>) -> Vec<PointSeen> {
         let number = index + 1;
         let worked = analysis.and_then(|analysis| analysis.points.iter().find(|p| p.index == number));
         let why_not = worked.and_then(|point| point.why_not.as_ref());
-        let left_out = desk.left_out().iter().find(|out| out.point == number).map(|out| out.why.clone());
+        let left_out = desk.left_out().iter().find(|out| out.point == number);
+        // That it is out is said where it is shown.
+        let left_out = left_out.map(|out| out.why.strip_prefix("struck: ").unwrap_or(&out.why).to_owned());
         PointSeen {
             number,
             pressure_bar: reading.pressure.shown_pa() / 1e5,
