@@ -72,7 +72,11 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
 /// What was logged, if the system has what it takes.
 fn logged_text(logged: Option<&DemoLogged>) -> String {
     let Some(logged) = logged else {
-        return wrapped("\n", "  ", "No run was logged: this system has no pseudo-terminals for a simulated bench.");
+        return wrapped(
+            "\n",
+            "  ",
+            "No run was logged: this system has no pseudo-terminals for a simulated bench.",
+        );
     };
     let run = logged.run.map_or_else(|| "no run".to_owned(), |run| run.to_string());
     let about = format!(

@@ -136,3 +136,40 @@ fn nothing_older_than_a_second_is_lost_at_whatever_moment_the_logger_is_killed()
     assert!(with_readings >= kills / 2, "only {with_readings} of {kills} kills came after a reading");
     assert!(points >= 1, "no point was taken between any two kills: they come too early");
 }
+
+#[test]
+fn a_killed_session_has_every_row_but_those_of_the_last_second() {
+    // The rig's couch ebbs by itself; what is checked is that rows come without a gap up to a second before each kill.
+    let kills: u32 = std::env::var("EBBLINE_KILLS").map_or(3, |kills| kills.parse::<u32>().unwrap() / 8);
+    let bench = Bench::new("session-killed", &["--seed", "91"]);
+    let session = ebbline::entry::SessionNumber::new(1).unwrap();
+    let (mut state, mut rows_before) = (33, 0);
+    for kill in 0..kills {
+        let begun = bench.book().exists() && bench.program(&["session", "show", "S0001"]).status.success();
+        let child = if begun {
+            bench.child(&["session", "resume", "S0001"])
+        } else {
+            bench.child(&["session", "log", "D-7", "--injection", "0.31 L/min", "--barometer", "1016 hPa"])
+        };
+        let (killed_s, said) = killed(child, lives_s(1, &mut state) + 1.5);
+        bench.holds();
+        let book = bench.open();
+        let Ok(record) = book.session(session) else { continue };
+        let readings = &record.session.readings;
+        let taken_s = record.session.taken.timestamp_millis() as f64 / 1e3;
+        let new = &readings.time_s[rows_before..];
+        for pair in new.windows(2) {
+            assert!((pair[1] - pair[0] - 1.0).abs() < 1e-6, "kill {kill}: rows at {pair:?} s");
+        }
+        let newest_s = taken_s + new.last().copied().unwrap_or(f64::NEG_INFINITY);
+        // A row a second, half a second until it is committed, and what may be missing.
+        let due_s = killed_s - 1.0 - MAY_BE_MISSING_S;
+        assert!(
+            newest_s >= due_s || new.is_empty(),
+            "kill {kill}: newest row at {newest_s}, killed at {killed_s}: {said}"
+        );
+        assert_eq!(record.session.events.len(), 1, "the injection, once");
+        rows_before = readings.time_s.len();
+    }
+    assert!(rows_before >= kills as usize, "only {rows_before} rows in {kills} lives");
+}

@@ -6,6 +6,8 @@ mod instrument;
 mod live_screens;
 mod live_views;
 mod log_killed;
+mod log_real;
+mod log_watched;
 mod logged;
 mod logger_bench;
 mod logger_rig;

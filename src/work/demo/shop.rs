@@ -104,7 +104,10 @@ pub(super) fn may_be_written(folder: &Path) -> Result<(), WorkError> {
 ///
 /// # Errors
 /// When the folder cannot be written; another error would be a defect of the program.
-pub(super) fn keep(folder: &Path, units: Units) -> Result<(DemoShop, DemoDiver, Option<DemoLogged>), WorkError> {
+pub(super) fn keep(
+    folder: &Path,
+    units: Units,
+) -> Result<(DemoShop, DemoDiver, Option<DemoLogged>), WorkError> {
     let (book, files) = (book_in(folder), folder.join("shop"));
     let scratch = folder.join(format!(".book.db.{}.part", std::process::id()));
     remove(&scratch);

@@ -1,6 +1,5 @@
 //! The program as a technician has it: a simulated bench on pseudo-terminals in one process, the logger in another.
 #![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
-
 #![allow(dead_code, reason = "each test file uses its own part")]
 
 use std::path::{Path, PathBuf};

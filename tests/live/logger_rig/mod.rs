@@ -1,6 +1,5 @@
 //! The simulated bench listened to as real instruments are: ports, workers and a logger on one virtual clock.
 #![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
-
 #![allow(dead_code, reason = "each test binary uses a part")]
 
 use std::io::{self, Read, Write};
