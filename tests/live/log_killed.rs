@@ -149,7 +149,17 @@ fn a_killed_session_has_every_row_but_those_of_the_last_second() {
         let child = if begun {
             bench.child(&["session", "resume", "S0001"])
         } else {
-            bench.child(&["session", "log", "D-7", "--injection", "0.31 L/min", "--barometer", "1016 hPa"])
+            bench.child(&[
+                "session",
+                "log",
+                "D-7",
+                "--from",
+                "rig/couch/session.toml",
+                "--injection",
+                "0.31 L/min",
+                "--barometer",
+                "1016 hPa",
+            ])
         };
         let (killed_s, said) = killed(child, lives_s(1, &mut state) + 1.5);
         bench.holds();

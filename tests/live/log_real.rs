@@ -22,7 +22,7 @@ use ebbline::work::runs::load;
 use ebbline::work::shelf::Shelf;
 
 /// How many times as fast as the machine's the clock goes.
-const TIMES: f64 = 8.0;
+const TIMES: f64 = 10.0;
 
 fn folder(name: &str) -> PathBuf {
     let folder = Path::new(env!("CARGO_TARGET_TMPDIR")).join(format!("real-{name}"));
@@ -56,7 +56,7 @@ impl BenchFace for Nobody {
 fn logged(seed: u64) -> (f64, f64, f64) {
     let folder = folder(&seed.to_string());
     let mut settings = Settings::standard(seed).unwrap();
-    settings.bench.script = Script::of_bar(&[5.0, 7.0, 9.0, 11.0, 13.0, 10.0, 8.0, 6.0], 17.0);
+    settings.bench.script = Script::of_bar(&[5.0, 7.0, 9.0, 11.0, 13.0, 10.0, 8.0, 6.0], 30.0);
     let hole = settings.bench.hole;
     let ticks: Arc<dyn Ticks> = Arc::new(Hastened::start(TIMES));
     let rig = Rig::new(settings).unwrap();

@@ -1,7 +1,7 @@
 //! One run of the demonstration that is logged: from the simulated bench over pseudo-terminals, as from real meters.
 //!
-//! Rig and logger go by one clock that is faster than the machine's, so that a run of a minute and a half takes some ten
-//! seconds; everything else is what `bench log` does. What is logged depends on when bytes arrive, so this run is not the same
+//! Rig and logger go by one clock that is faster than the machine's, so that a run of three minutes takes a quarter of a
+//! minute; everything else is what `bench log` does. What is logged depends on when bytes arrive, so this run is not the same
 //! twice, and says so. Left out where the system has no pseudo-terminals.
 
 use std::path::Path;
@@ -21,12 +21,12 @@ use crate::work::log::{BenchFace, BenchLogRequest, BenchWish, HowLong, Wires, lo
 use crate::work::shelf::{Shelf, stamped};
 
 /// How many times as fast as the machine's the clock goes.
-const TIMES: f64 = 8.0;
+const TIMES: f64 = 12.0;
 /// Levels that are set, bar gauge, and for how long each is held.
 const LEVELS_BAR: [f64; 6] = [5.0, 8.0, 11.0, 12.5, 9.5, 6.5];
-const HELD_S: f64 = 16.0;
+const HELD_S: f64 = 28.0;
 /// When it is given up, seconds of the hastened clock: a machine that does much else can miss a level.
-const LONGEST_S: f64 = 200.0;
+const LONGEST_S: f64 = 400.0;
 /// Seed of the rig.
 const SEED: u64 = 2_026;
 
