@@ -97,7 +97,7 @@ fn main() {
             most < 50.0,
         );
         println!(
-            "  {} points and {} rows taken; longest look at what came {:.1} ms; {} bytes found no room at first",
+            "  {} points and {} rows taken; longest look at what came {:.1} ms; at most {} bytes waited for room on a port",
             figures.points, figures.rows, figures.longest_turn_ms, figures.held_back
         );
         missed

@@ -52,7 +52,7 @@ pub(crate) fn write(load: Load) {
         std::thread::sleep(EVERY);
     }
     let sent: u64 = ports.iter().map(|port| port.messages).sum();
-    let held_back: u64 = ports.iter().map(|port| port.held_back).sum();
+    let held_back = ports.iter().map(|port| port.held_back).max().unwrap_or(0);
     println!("{sent} {held_back} {}", super::chain::cpu_s());
 }
 
@@ -67,6 +67,7 @@ struct Port {
     input: Vec<u8>,
     messages: u64,
     bytes: u64,
+    /// Most bytes that ever waited for room.
     held_back: u64,
 }
 
@@ -151,7 +152,7 @@ impl Port {
             match self.master.write(&self.pending) {
                 Ok(written) => drop(self.pending.drain(..written)),
                 Err(_) => {
-                    self.held_back += self.pending.len() as u64;
+                    self.held_back = self.held_back.max(self.pending.len() as u64);
                     return;
                 }
             }
