@@ -39,11 +39,14 @@ pub(crate) fn write(load: Load) {
         std::thread::sleep(EVERY);
     }
     let began = Instant::now();
+    let mut longest = Duration::ZERO;
     while told.load(Ordering::SeqCst) < 2 {
+        let round = Instant::now();
         for port in &mut ports {
             port.attend(began.elapsed().as_secs_f64());
         }
         std::thread::sleep(EVERY);
+        longest = longest.max(round.elapsed());
     }
     // What is begun is ended, and nothing more asked for is answered.
     let ended = Instant::now();
@@ -53,7 +56,7 @@ pub(crate) fn write(load: Load) {
     }
     let sent: u64 = ports.iter().map(|port| port.messages).sum();
     let held_back = ports.iter().map(|port| port.held_back).max().unwrap_or(0);
-    println!("{sent} {held_back} {}", super::chain::cpu_s());
+    println!("{sent} {held_back} {} {}", super::chain::cpu_s(), longest.as_secs_f64() * 1e3);
 }
 
 struct Port {
