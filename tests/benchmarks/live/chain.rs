@@ -39,6 +39,8 @@ pub(crate) struct Figures {
     pub(crate) arrival_ms: [f64; 3],
     pub(crate) longest_turn_ms: f64,
     pub(crate) held_back: u64,
+    /// How long the machine kept the writer from its rounds of a millisecond.
+    pub(crate) longest_round_ms: f64,
 }
 
 /// What a screen would look at.
@@ -121,7 +123,7 @@ where
         }
     }
     let (lasted_s, spent_s, last_mb) = (clock.now_s() - began_s, cpu_s() - began_cpu_s, memory_mb());
-    let (sent, held_back, writer_cpu_s) = writer.stop();
+    let (sent, held_back, writer_cpu_s, longest_round_ms) = writer.stop();
     // What is on its way arrives; a question that is not answered any more is no fault.
     let faults = chain.faults;
     for _ in 0..15 {
@@ -149,6 +151,7 @@ where
         arrival_ms: [0.5, 0.99, 1.0].map(|share| chain.arrival_ms(share)),
         longest_turn_ms: chain.longest_turn_s * 1e3,
         held_back,
+        longest_round_ms,
     }
 }
 
@@ -260,13 +263,19 @@ impl Writer {
         self.stdin.write_all(b"go\n").unwrap();
     }
 
-    /// Goes out: what it sent, how many bytes found no room, its own seconds of the processor.
-    fn stop(&mut self) -> (u64, u64, f64) {
+    /// Goes out: what it sent, how many bytes waited for room, its own seconds of the processor, and the longest of its
+    /// rounds of a millisecond, in milliseconds.
+    fn stop(&mut self) -> (u64, u64, f64, f64) {
         self.stdin.write_all(b"stop\n").unwrap();
         let said = self.line();
         let mut words = said.split(' ');
         let mut number = || words.next().unwrap();
-        (number().parse().unwrap(), number().parse().unwrap(), number().parse().unwrap())
+        (
+            number().parse().unwrap(),
+            number().parse().unwrap(),
+            number().parse().unwrap(),
+            number().parse().unwrap(),
+        )
     }
 }
 

@@ -39,11 +39,14 @@ pub(crate) fn write(load: Load) {
         std::thread::sleep(EVERY);
     }
     let began = Instant::now();
+    let mut longest = Duration::ZERO;
     while told.load(Ordering::SeqCst) < 2 {
+        let round = Instant::now();
         for port in &mut ports {
             port.attend(began.elapsed().as_secs_f64());
         }
         std::thread::sleep(EVERY);
+        longest = longest.max(round.elapsed());
     }
     // What is begun is ended, and nothing more asked for is answered.
     let ended = Instant::now();
@@ -52,8 +55,8 @@ pub(crate) fn write(load: Load) {
         std::thread::sleep(EVERY);
     }
     let sent: u64 = ports.iter().map(|port| port.messages).sum();
-    let held_back: u64 = ports.iter().map(|port| port.held_back).sum();
-    println!("{sent} {held_back} {}", super::chain::cpu_s());
+    let held_back = ports.iter().map(|port| port.held_back).max().unwrap_or(0);
+    println!("{sent} {held_back} {} {}", super::chain::cpu_s(), longest.as_secs_f64() * 1e3);
 }
 
 struct Port {
@@ -67,6 +70,7 @@ struct Port {
     input: Vec<u8>,
     messages: u64,
     bytes: u64,
+    /// Most bytes that ever waited for room.
     held_back: u64,
 }
 
@@ -151,7 +155,7 @@ impl Port {
             match self.master.write(&self.pending) {
                 Ok(written) => drop(self.pending.drain(..written)),
                 Err(_) => {
-                    self.held_back += self.pending.len() as u64;
+                    self.held_back = self.held_back.max(self.pending.len() as u64);
                     return;
                 }
             }
