@@ -29,7 +29,8 @@ fn the_book_of_the_invented_shop_shows_an_orifice_that_clogs_before_it_fails() {
     let desk = Desk::new("demo");
     let left: Value = serde_json::from_str(&desk.done(&["demo", "--into", "out", "--json"])).unwrap();
     let shop = &left["shop"];
-    assert_eq!(shop["orifices"], 13);
+    // The one that is logged from the simulated bench among them, where there are pseudo-terminals.
+    assert_eq!(shop["orifices"], if cfg!(unix) { 14 } else { 13 });
     let book = shop["book"].as_str().unwrap();
     let said = |arguments: &[&str]| -> Value {
         let said = desk.call_on(book, &[arguments, &["--json"]].concat());
@@ -50,7 +51,11 @@ fn the_book_of_the_invented_shop_shows_an_orifice_that_clogs_before_it_fails() {
         let significant = history["trend"]["significant"] == json!(true);
         assert_eq!(significant, id == clogging, "{id}: {}", history["trend"]);
         let last = history["runs"][0]["verdict"].as_str().unwrap();
-        assert!(last == "pass" || history["runs"].as_array().unwrap().len() == 1, "{id}: {last}");
+        // What is logged is not the same twice: with so few points it may stay undecided.
+        assert!(
+            id == "demo-live" || last == "pass" || history["runs"].as_array().unwrap().len() == 1,
+            "{id}: {last}"
+        );
     }
     let history = said(&["orifice", "show", clogging, "--all"]);
     let runs = history["runs"].as_array().unwrap();

@@ -574,7 +574,8 @@ fn face_says_watching(face: &mut dyn BenchFace) {
 /// # Errors
 /// A run that is not there, a book that cannot be read.
 pub fn run_was_logged(shelf: &Shelf, run: &str) -> Result<bool, WorkError> {
-    Ok(shelf.to_read()?.logging_begun(number_of(run)?)?.is_some())
+    let number = number_of(run)?;
+    Ok(shelf.to_read()?.logging_begun(number)?.is_some())
 }
 
 /// The holder of a lease whose process is known to be gone.

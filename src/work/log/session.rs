@@ -164,7 +164,8 @@ pub fn is_session_held(shelf: &Shelf, session: &str) -> Result<bool, WorkError> 
 /// # Errors
 /// A session that is not there, a book that cannot be read.
 pub fn was_logged(shelf: &Shelf, session: &str) -> Result<bool, WorkError> {
-    Ok(shelf.to_read()?.session_logging_begun(number_of(session)?)?.is_some())
+    let number = number_of(session)?;
+    Ok(shelf.to_read()?.session_logging_begun(number)?.is_some())
 }
 
 /// The cells that are named, or all that have a port.
