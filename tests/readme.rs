@@ -136,7 +136,7 @@ fn every_screen_is_what_the_program_prints() {
 fn the_profile_it_shows_can_be_registered() {
     let (folder, _) = written();
     let book = folder.join("profile.db");
-    let _ = std::fs::remove_file(&book);
+    let _ = fs::remove_file(&book);
     let mut program = Command::new(env!("CARGO_BIN_EXE_ebbline"));
     let added = program.args(["instrument", "add", "fm-01.toml"]).current_dir(&folder);
     let added = added.env("EBBLINE_BOOK", &book).output().unwrap();

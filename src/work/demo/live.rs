@@ -108,12 +108,8 @@ fn over(ports: &Path, clock: &Arc<Hastened>, shelf: &Shelf, units: Units) -> Res
     let says = match desk.line() {
         Some((analysis, low)) => {
             let said = running(&desk.fitted(analysis, low.as_ref()), None, None, &units);
-            said.split("; crossing")
-                .next()
-                .unwrap_or_default()
-                .split_whitespace()
-                .collect::<Vec<_>>()
-                .join(" ")
+            let said = said.split_whitespace().collect::<Vec<_>>().join(" ");
+            said.split("; crossing").next().unwrap_or_default().to_owned()
         }
         None => "too few levels were held on this machine for a line; the run stays open".to_owned(),
     };
