@@ -58,5 +58,6 @@ pub mod record;
 pub mod book;
 pub mod instrument;
 pub mod rig;
+pub mod certificate;
 pub mod work;
 pub mod cli;

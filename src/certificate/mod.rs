@@ -1,0 +1,5 @@
+//! The certificate: content as plain data ⇄ its forms on paper, and what is inside a form read back.
+//!
+//! [`paper`] sets any document in pages and knows nothing of calibrations.
+
+pub mod paper;
