@@ -2,4 +2,8 @@
 //!
 //! [`paper`] sets any document in pages and knows nothing of calibrations.
 
+pub mod complete;
+pub mod content;
 pub mod paper;
+pub mod rounding;
+pub mod stated;
