@@ -7,7 +7,7 @@
 
 use chrono::NaiveDate;
 
-use super::content::{Calibration, Content, Equipment, Figure, Unit};
+use super::content::{Calibration, Content, Equipment, Figure, Unit, is_country};
 use crate::record::hidden_character;
 
 /// One thing that forbids issuing.
@@ -180,10 +180,12 @@ fn stated(content: &Content, found: &mut Found) {
     for (i, statement) in issue.shop.statements.iter().enumerate() {
         found.required(&format!("statement {} of the shop", i + 1), statement, "take it away or write it");
     }
-    if let Some(country) = &issue.country
-        && !(country.len() == 2 && country.bytes().all(|b| b.is_ascii_uppercase()))
-    {
-        found.push("country of the shop", Fault::Country(country.chars().take(20).collect()));
+    if issue.country.is_empty() {
+        let advice =
+            "let the last line of the shop's address be its two capital letters of ISO 3166-1, as NO";
+        found.push("country of the shop", Fault::Missing(advice));
+    } else if !is_country(&issue.country) {
+        found.push("country of the shop", Fault::Country(issue.country.chars().take(20).collect()));
     }
     let advice = "name one of the shop's signatories with --by";
     found.required("signatory", &issue.signatory.name, advice);

@@ -2,8 +2,10 @@
 //!
 //! [`paper`] sets any document in pages and knows nothing of calibrations.
 
+pub mod compare;
 pub mod complete;
 pub mod content;
+pub mod dcc;
 pub mod paper;
 pub mod rounding;
 pub mod stated;

@@ -44,8 +44,6 @@ pub struct Stated {
     pub issue: Issue,
     /// Method revision it was made with.
     pub method: u32,
-    /// Version of the program it was made with.
-    pub program: String,
     /// The run of the results.
     pub results: StatedRun,
     /// The run as found.
@@ -71,7 +69,7 @@ struct File {
     method: u32,
     number: String,
     issued: String,
-    country: Option<String>,
+    country: String,
     place: Option<String>,
     received: Option<String>,
     condition: Option<String>,
@@ -171,7 +169,7 @@ pub fn written(issue: &Issue, results: &Measured<'_>, as_found: Option<&Measured
     let shop = &issue.shop;
     let file = File {
         record: RECORD.to_owned(),
-        program: env!("CARGO_PKG_VERSION").to_owned(),
+        program: issue.program.clone(),
         method: METHOD_REVISION,
         number: issue.number.clone(),
         issued: issue.issued.to_rfc3339(),
@@ -273,11 +271,11 @@ pub fn read(bytes: &[u8]) -> Result<Stated, StatedError> {
     let build = build.ok_or_else(|| impossible("item build", &file.item.build))?;
     Ok(Stated {
         method: file.method,
-        program: file.program,
         results: run(file.results)?,
         as_found: file.as_found.map(run).transpose()?,
         issue: Issue {
             number: file.number,
+            program: file.program,
             issued,
             signatory: Signatory { name: file.signatory.name, role: file.signatory.role },
             shop: Shop {

@@ -11,14 +11,16 @@ use crate::entry::{Orifice, Run, Shop, Signatory};
 pub struct Issue {
     /// Its number, unlike any other of the shop.
     pub number: String,
+    /// Version of the program that issues it: [`super::VERSION`], unless an older certificate is made again.
+    pub program: String,
     /// When it is issued, with the offset of the shop.
     pub issued: DateTime<FixedOffset>,
     /// Who authorises it.
     pub signatory: Signatory,
     /// The shop with its letterhead.
     pub shop: Shop,
-    /// Country of the shop, two capital letters of ISO 3166-1.
-    pub country: Option<String>,
+    /// Country of the shop, two capital letters of ISO 3166-1; [`super::country_of`] finds it in an address.
+    pub country: String,
     /// The customer.
     pub customer: Customer,
     /// The orifice as it stands in the register.
@@ -80,7 +82,7 @@ pub struct Measured<'a> {
     pub analysis: &'a Analysis,
     /// The run before that it was compared with, where there was one.
     pub before: Option<&'a Accepted>,
-    /// The files it is read from; written anew from the run where there are none.
+    /// The files it is read from, which must name no entry of a register; written anew from the run where there are none.
     pub files: Option<&'a RunFiles>,
 }
 

@@ -7,6 +7,7 @@
 //! Left out on purpose: an interval until the next calibration unless it was asked for, and any claim of accreditation.
 
 mod calibration;
+mod country;
 mod figure;
 mod issue;
 mod leaves;
@@ -20,14 +21,16 @@ use chrono::NaiveDate;
 pub use calibration::{
     Budget, BudgetRow, Calibration, CheckRow, Choke, Comparison, Conformity, Hole, LineFigures, PointRow, Row,
 };
+pub use country::{country_of, is_country};
 pub use figure::{
     Dsi, Figure, K_DECIMALS, NoUncertainty, Reference, Uncertainty, Unit, decimals_of_figures, probability,
 };
 pub use issue::{Amendment, Customer, Issue, Measured, RunFiles};
 pub use leaves::{Printed, printed};
+pub(super) use of::STATED;
 pub use of::of;
 pub use surroundings::{Condition, Equipment};
-pub use words::{PROGRAM, Statement, StatementKind};
+pub use words::{PROGRAM, Statement, StatementKind, VERSION};
 
 /// What a certificate says, whole.
 #[derive(Debug, Clone, PartialEq)]

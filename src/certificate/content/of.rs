@@ -28,7 +28,7 @@ pub fn of(issue: &Issue, results: &Measured<'_>, as_found: Option<&Measured<'_>>
         title: words::TITLE,
         performed: (first, last),
         place: issue.place.clone().unwrap_or_else(|| "at the address of the shop".to_owned()),
-        method: words::method(),
+        method: words::method(&issue.program),
         changed_by_work: as_found.and_then(|found| rows::changed_by_work(found, results)),
         statements: words::statements(issue, run, judged),
         cautions,

@@ -10,6 +10,8 @@ use crate::report::number::{figures, fixed};
 
 /// Name of the program, as it stands on a certificate.
 pub const PROGRAM: &str = "Ebbline";
+/// Version of the program.
+pub const VERSION: &str = env!("CARGO_PKG_VERSION");
 
 pub(super) const TITLE: &str = "Calibration certificate";
 
@@ -242,12 +244,12 @@ pub(super) const fn title(purpose: Purpose, with_as_found: bool) -> &'static str
     }
 }
 
-pub(super) fn method() -> super::Method {
+pub(super) fn method(program: &str) -> super::Method {
     super::Method {
         name: METHOD,
         says: METHOD_SAYS,
         norms: NORMS,
         revision: METHOD_REVISION,
-        program: env!("CARGO_PKG_VERSION").to_owned(),
+        program: program.to_owned(),
     }
 }
