@@ -5,6 +5,7 @@
 #[path = "../common/runs.rs"]
 #[allow(dead_code, reason = "shared by several tests")]
 mod runs;
+mod check;
 mod contents;
 mod support;
 mod xml;
