@@ -92,7 +92,8 @@ pub(super) fn refused(text: &str) -> Vec<Fault> {
     faults
 }
 
-fn fault(c: char) -> Option<Fault> {
+/// What is wrong with a character wherever it stands.
+pub(super) fn fault(c: char) -> Option<Fault> {
     let code = u32::from(c);
     if c.is_control() || matches!(code, 0x2028 | 0x2029) {
         Some(Fault::Control(c))
@@ -118,7 +119,7 @@ fn fault(c: char) -> Option<Fault> {
 }
 
 /// Marks that stand on the letter before them (Unicode's blocks of combining marks).
-fn is_mark(c: char) -> bool {
+pub(super) fn is_mark(c: char) -> bool {
     matches!(
         u32::from(c),
         0x300..=0x36F | 0x483..=0x489 | 0x1AB0..=0x1AFF | 0x1DC0..=0x1DFF | 0x20D0..=0x20FF | 0xFE20..=0xFE2F

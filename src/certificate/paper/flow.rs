@@ -401,7 +401,6 @@ impl<'a> Flow<'a> {
             let wide = box_width.min(LOGO.1 * proportion);
             picture_height = wide / proportion;
             beside = width - wide - 18.0;
-            // A name long enough to matter comes first in the order of reading.
             let ink = Ink::Picture { picture, width: wide, height: picture_height };
             let node = self.tree.add(Tree::ROOT, Role::Figure(of.alt.clone()));
             picture_item = Some(Item { x: width - wide, y: 0.0, node: Some(node), ink });
@@ -450,7 +449,7 @@ impl<'a> Flow<'a> {
         let mut strips = self.line_strips(&text.into(), FINE, QUIET, 30.0, self.sheet.text_width(), node);
         if let Some(first) = strips.first_mut() {
             let stroke = Ink::Fill { width: 22.0, height: 0.8, colour: SAND };
-            first.items.push(Item { x: 0.0, y: FINE.lines / 2.0, node: None, ink: stroke });
+            first.items.push(Item { x: 0.0, y: FINE.lines / 2.0 - 0.6, node: None, ink: stroke });
         }
         self.push_all(strips);
     }

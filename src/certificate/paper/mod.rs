@@ -5,7 +5,7 @@
 //! extractable as text, reads in order for those who do not see it, and means the same in black and white.
 //!
 //! The way: [`check`] finds problems and reads pictures, [`flow`] turns blocks into strips, [`pages`] lays strips on pages,
-//! [`paint`] paints them.
+//! [`paint`] paints them. [`plain`] makes text of the same model.
 //!
 //! Left out: writing from right to left, hyphenation, footnotes, a second validator of PDF/A.
 
@@ -23,12 +23,14 @@ mod table;
 mod flow;
 mod pages;
 mod paint;
+mod plain;
 
 pub use characters::Fault;
 pub use model::{
     Align, Attachment, Block, Column, Document, Emphasis, Figure, Letterhead, Level, Logo, Notice, Pair,
     Paper, Relationship, Row, Run, Sentence, Signature, Standing, Table, Text, Verdict,
 };
+pub use plain::text;
 pub use problem::{PictureFault, Problem};
 
 /// Sets a document in pages and packs it as PDF/A-3A.

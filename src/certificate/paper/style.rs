@@ -13,9 +13,9 @@ pub(super) const INK: Colour = Colour(0x1D, 0x2A, 0x33);
 /// Small print and what stands back; 6.1 : 1 on white.
 pub(super) const QUIET: Colour = Colour(0x55, 0x60, 0x67);
 /// Hairlines.
-pub(super) const SAND: Colour = Colour(0xCB, 0xBB, 0x93);
+pub(super) const SAND: Colour = Colour(0xD8, 0xCD, 0xB0);
 /// Ground of rows that stand out; pale enough to vanish in a bad copy without loss.
-pub(super) const PALE: Colour = Colour(0xF5, 0xF0, 0xE3);
+pub(super) const PALE: Colour = Colour(0xF6, 0xF2, 0xE7);
 /// The bar of a caution.
 pub(super) const BRICK: Colour = Colour(0xB4, 0x44, 0x2C);
 

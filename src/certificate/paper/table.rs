@@ -16,6 +16,8 @@ const GAP: (f32, f32) = (9.0, 34.0);
 const LONG_WORD: f32 = 9.0;
 /// Space above and below the text of a row.
 const ROW: (f32, f32) = (2.3, 2.6);
+/// The ground of a row reaches this far beyond its text on both sides.
+const BLEED: f32 = 3.0;
 const HEAVY: f32 = 0.8;
 const HAIR: f32 = 0.4;
 
@@ -285,8 +287,9 @@ impl Setter<'_> {
         let mut strips = row(&cells, space);
         if described.emphasis == Emphasis::Strong {
             for strip in &mut strips {
-                let ground = Ink::Fill { width: self.width(), height: strip.height, colour: PALE };
-                strip.items.insert(0, Item { x: 0.0, y: 0.0, node: None, ink: ground });
+                let ground =
+                    Ink::Fill { width: self.width() + 2.0 * BLEED, height: strip.height, colour: PALE };
+                strip.items.insert(0, Item { x: -BLEED, y: 0.0, node: None, ink: ground });
             }
         }
         if number + 1 < self.table.rows.len()
