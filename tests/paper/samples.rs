@@ -4,12 +4,12 @@ use chrono::{DateTime, FixedOffset};
 use ebbline::certificate::paper::*;
 
 /// When every sample was made.
-pub fn moment() -> DateTime<FixedOffset> {
+pub(crate) fn moment() -> DateTime<FixedOffset> {
     DateTime::parse_from_rfc3339("2026-11-28T16:40:00+01:00").unwrap()
 }
 
 /// A document with nothing in it.
-pub fn bare(blocks: Vec<Block>) -> Document {
+pub(crate) fn bare(blocks: Vec<Block>) -> Document {
     Document {
         paper: Paper::A4,
         language: "en".to_owned(),
@@ -27,19 +27,19 @@ pub fn bare(blocks: Vec<Block>) -> Document {
 }
 
 /// A golden drawing of the room `plot`.
-pub fn plot(name: &str) -> String {
+pub(crate) fn plot(name: &str) -> String {
     std::fs::read_to_string(format!("{}/fixtures/golden/{name}.svg", env!("CARGO_MANIFEST_DIR"))).unwrap()
 }
 
-pub fn pair(key: &str, value: &str) -> Pair {
+pub(crate) fn pair(key: &str, value: &str) -> Pair {
     Pair { key: key.to_owned(), value: value.into() }
 }
 
-pub const LOGO_SVG: &str = "<svg xmlns=\"http://www.w3.org/2000/svg\" viewBox=\"0 0 300 90\"><rect width=\"90\" \
+pub(crate) const LOGO_SVG: &str = "<svg xmlns=\"http://www.w3.org/2000/svg\" viewBox=\"0 0 340 90\"><rect width=\"90\" \
     height=\"90\" rx=\"8\" fill=\"#0B6E7A\"/><path d=\"M14 40h62M14 52h40\" stroke=\"#fff\" stroke-width=\"6\"/><text x=\"104\" \
     y=\"58\" font-family=\"DejaVu Sans\" font-size=\"34\" fill=\"#1D2A33\">Sump&amp;Sons</text></svg>";
 
-pub fn letterhead() -> Letterhead {
+pub(crate) fn letterhead() -> Letterhead {
     Letterhead {
         name: "Sump & Sons, Diving Workshop".to_owned(),
         address: vec![
@@ -51,7 +51,7 @@ pub fn letterhead() -> Letterhead {
 }
 
 /// Points of a run.
-pub fn points(count: usize) -> Table {
+pub(crate) fn points(count: usize) -> Table {
     let mut rows = Vec::new();
     for i in 0..count {
         let pressure = 6.0 + 0.5 * i as f64;
@@ -87,7 +87,7 @@ pub fn points(count: usize) -> Table {
 }
 
 /// What a certificate is like, five pages on A4.
-pub fn certificate() -> Document {
+pub(crate) fn certificate() -> Document {
     let flow_at_ip = Table {
         caption: Some(Text::plain("Flow by the line, oxygen, STPD.")),
         columns: vec![
@@ -154,12 +154,12 @@ pub fn certificate() -> Document {
         },
         Block::Sentence(Sentence {
             statement: Text::plain("At 9.5 bar the orifice passes ")
-                .and_bold("0.4589 ± 0.0058 L/min")
-                .and(" of oxygen (STPD, k = 2.02, 95 %)."),
+                .and_bold("0.4589\u{A0}±\u{A0}0.0058\u{A0}L/min")
+                .and(" of oxygen (STPD, k\u{A0}=\u{A0}2.02, 95\u{A0}%)."),
             verdict: Some(Verdict {
                 standing: Standing::Holds,
                 words: Text::bold("Within limits")
-                    .and(", 0.440 to 0.480 L/min, by the guarded rule; probability of conformity 97.3 %."),
+                    .and(", 0.440 to 0.480 L/min, by the guarded rule; probability of conformity 97.3\u{A0}%."),
             }),
         }),
         Block::Figure(Figure {
@@ -266,7 +266,65 @@ pub fn certificate() -> Document {
     document
 }
 
+/// Names of many peoples, one of them without end.
+pub(crate) fn names() -> Document {
+    let names = [
+        "Ødegård, Þórunn & Łęcka-Ñandú",
+        "Γεώργιος Παπαδόπουλος τοῦ Ἀθανασίου",
+        "Юрій Ґалаґан, Ђорђе Њњ",
+        "Nguye\u{302}\u{303}n Thi\u{323} Hoa\u{300}",
+        "Nguyễn Thị Hoà",
+        "Ǻrsěnëč «Šđž»",
+        "µm, Ω, ≤ 10⁻⁹ · 25 °C ± 0.3 K → ∞",
+        "fi ffl difficult AVAV To. Ta",
+    ];
+    let long = "Ab\u{308}c\u{327}".repeat(2_500);
+    let mut blocks = vec![
+        Block::Heading(Level::One, names[1].to_owned()),
+        Block::Heading(Level::Two, format!("Heading {}", "long and longer ".repeat(20).trim_end())),
+        Block::Pairs { pairs: names.iter().map(|name| pair(name, name)).collect(), two_columns: true },
+        Block::Pairs { pairs: vec![pair("Name", &long), pair(&long[..200], "x")], two_columns: false },
+        Block::Table(Table {
+            caption: Some(Text::plain("A cell longer than a page beside short ones.")),
+            columns: vec![
+                Column::new("name", Align::Left),
+                Column::numbers("n", "1"),
+                Column::new("says", Align::Right),
+            ],
+            rows: vec![
+                Row::new([long.as_str(), "1.5", "short"]).with(Emphasis::Strong),
+                Row::new([
+                    names[2],
+                    "12.25",
+                    "not one but several words that wrap in their column and go on and on",
+                ]),
+            ],
+            row_heads: true,
+        }),
+        Block::Notice(Notice {
+            label: "Caution".to_owned(),
+            paragraphs: vec![names[0].into(), long[..4_000].into()],
+        }),
+        Block::Signatures(
+            names
+                .iter()
+                .map(|n| Signature { role: "By".to_owned(), name: Some((*n).to_owned()), details: vec![] })
+                .collect(),
+        ),
+    ];
+    blocks.extend(names.iter().map(|name| Block::Paragraph(Text::plain(*name).and(" and ").and_bold(*name))));
+    Document {
+        letterhead: Some(Letterhead {
+            name: format!("{} {}", names[0], "and Partners".repeat(30)),
+            address: names.iter().map(|n| (*n).to_owned()).collect(),
+            logo: Some(Logo { bytes: LOGO_SVG.as_bytes().to_vec(), alt: "sign".to_owned() }),
+        }),
+        author: Some(names[2].to_owned()),
+        ..bare(blocks)
+    }
+}
+
 /// The same on other paper.
-pub fn on(paper: Paper) -> Document {
+pub(crate) fn on(paper: Paper) -> Document {
     Document { paper, ..certificate() }
 }

@@ -5,7 +5,8 @@
 //! extractable as text, reads in order for those who do not see it, and means the same in black and white.
 //!
 //! The way: [`check`] finds problems and reads pictures, [`flow`] turns blocks into strips, [`pages`] lays strips on pages,
-//! [`paint`] paints them. [`plain`] makes text of the same model.
+//! [`paint`] paints them. [`plain`] makes text of the same model,
+//! [`read`] finds again what is inside a PDF.
 //!
 //! Left out: writing from right to left, hyphenation, footnotes, a second validator of PDF/A.
 
@@ -24,6 +25,7 @@ mod flow;
 mod pages;
 mod paint;
 mod plain;
+pub mod read;
 
 pub use characters::Fault;
 pub use model::{
