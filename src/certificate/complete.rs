@@ -2,12 +2,12 @@
 //!
 //! Comes in: a [`Content`]. Goes out: a [`Problem`] for each thing that is missing, impossible or hidden, naming the field
 //! and what to do; nothing is printed while there is one. A run that failed or is undecided is no problem: a certificate says
-//! so. Left out: what a font lacks, which shows when pages are set, and whether the files inside give the same results, which
-//! [`super::issue`] tries.
+//! so. Left out: whether the files inside give the same results, which [`super::issue`](mod@super::issue) tries.
 
 use chrono::NaiveDate;
 
 use super::content::{Calibration, Content, Equipment, Figure, Unit, is_country};
+use super::paper;
 use crate::record::hidden_character;
 
 /// One thing that forbids issuing.
@@ -29,6 +29,9 @@ pub enum Fault {
     /// A character that is not seen.
     #[error("holds the hidden character U+{code:04X}: type the text again without it", code = u32::from(*.0))]
     Hidden(char),
+    /// A character that cannot be printed.
+    #[error("{0}")]
+    Character(paper::Fault),
     /// White space at an end, or a break where one line is wanted.
     #[error("begins or ends with white space: take it away")]
     Untidy,
@@ -135,18 +138,27 @@ impl Found {
 
     /// A text on one line.
     fn line(&mut self, field: &str, text: &str) {
-        if let Some(hidden) = unprintable(text) {
-            self.push(field, Fault::Hidden(hidden));
-        } else if text.trim() != text {
+        if self.printable(field, text) && text.trim() != text {
             self.push(field, Fault::Untidy);
         }
     }
 
     /// A text that is there, with whatever space around it.
     fn paragraph(&mut self, field: &str, text: &str) {
-        if let Some(hidden) = unprintable(text) {
-            self.push(field, Fault::Hidden(hidden));
-        }
+        self.printable(field, text);
+    }
+
+    /// Names the first character that cannot stand in both forms; whether there was none.
+    fn printable(&mut self, field: &str, text: &str) -> bool {
+        let fault = match unprintable(text) {
+            Some(hidden) => Some(Fault::Hidden(hidden)),
+            // The bundled font has all of ASCII.
+            None if text.is_ascii() => None,
+            None => paper::faults(text).into_iter().next().map(Fault::Character),
+        };
+        let none = fault.is_none();
+        self.0.extend(fault.map(|fault| Problem { field: field.to_owned(), fault }));
+        none
     }
 
     fn optional(&mut self, field: &str, text: Option<&String>) {

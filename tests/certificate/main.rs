@@ -7,5 +7,6 @@
 mod runs;
 mod check;
 mod contents;
+mod pages;
 mod support;
 mod xml;

@@ -104,6 +104,8 @@ pub enum What {
     AttachmentMissing,
     /// A file is attached to the PDF that its XML does not hold.
     AttachmentUnknown,
+    /// The PDF was written on to after it was made.
+    WrittenOn,
     /// The pages are not those of this content.
     Pages,
 }
@@ -171,6 +173,7 @@ impl fmt::Display for Difference {
             }
             What::AttachmentMissing => write!(f, "{words}: is inside the XML and not attached to the PDF"),
             What::AttachmentUnknown => write!(f, "{words}: is attached to the PDF and not inside its XML"),
+            What::WrittenOn => write!(f, "the PDF was written on to after it was issued"),
             What::Pages => write!(f, "the pages are not those that come of this content"),
         }
     }
