@@ -310,6 +310,38 @@ fn a_logo_that_cannot_be_read_is_refused() {
 }
 
 #[test]
+fn a_running_head_fills_its_line_and_no_more() {
+    let with = |paper, letters| Document { running_head: "N".repeat(letters), paper, ..bare(Vec::new()) };
+    for (paper, fits, does_not) in [(Paper::A4, 45, 90), (Paper::A5, 30, 60)] {
+        set(&with(paper, fits));
+        let words = refused(&with(paper, does_not));
+        assert!(
+            words.len() == 1 && words[0].starts_with("the running head is longer than a line"),
+            "{words:?}"
+        );
+    }
+}
+
+#[test]
+fn a_drawing_that_pdf_a_forbids_is_told() {
+    let clips: String = (0..40)
+        .map(|i| format!("<clipPath id=\"c{i}\"><rect width=\"{}\" height=\"9\"/></clipPath>", 99 - i))
+        .collect();
+    let groups: String = (0..40).map(|i| format!("<g clip-path=\"url(#c{i})\">")).collect();
+    let ends = "</g>".repeat(40);
+    let deep = format!(
+        "<svg xmlns=\"http://www.w3.org/2000/svg\" width=\"99\" height=\"9\">{clips}{groups}<rect width=\"5\" height=\"5\"/>{ends}</svg>"
+    );
+    let words = refused(&with_logo(deep.into_bytes()));
+    assert!(words.iter().any(|w| w.contains("groups inside one another")), "{words:?}");
+    let turning = "<svg xmlns=\"http://www.w3.org/2000/svg\" width=\"99\" height=\"9\"><linearGradient id=\"g\" x2=\"0.1\" \
+        spreadMethod=\"repeat\"><stop stop-color=\"red\"/><stop offset=\"1\" stop-color=\"blue\"/></linearGradient><rect width=\"99\" \
+        height=\"9\" fill=\"url(#g)\"/></svg>";
+    let words = refused(&with_logo(turning.into()));
+    assert!(words.is_empty() || words[0].contains("which PDF/A does not allow"), "{words:?}");
+}
+
+#[test]
 fn the_accent_is_a_colour_and_nothing_else() {
     for accent in ["#0B6E7A", "#ffffff", "#000000"] {
         set(&Document { accent: Some(accent.to_owned()), ..certificate() });

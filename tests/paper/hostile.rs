@@ -40,7 +40,7 @@ fn stream(dictionary: &str, data: &[u8]) -> Vec<u8> {
 }
 
 fn deflated(bytes: impl Iterator<Item = Vec<u8>>) -> Vec<u8> {
-    let mut encoder = ZlibEncoder::new(Vec::new(), Compression::best());
+    let mut encoder = ZlibEncoder::new(Vec::new(), Compression::fast());
     bytes.for_each(|bytes| encoder.write_all(&bytes).unwrap());
     encoder.finish().unwrap()
 }
@@ -170,8 +170,8 @@ fn bombs_do_not_go_off() {
     assert_eq!(read(&small).unwrap().pages[0].len(), MOST_STREAM_BYTES);
     let large = file("4 0 R", stream("/Filter/FlateDecode", &bomb(17)));
     assert_eq!(read(&large), Err(ReadError::Bomb { what: "content of a page", most_mb: 16 }));
-    // Packed twice, some gigabytes.
-    let twice = deflated(std::iter::once(bomb(2_000)));
+    // Packed twice: small by itself, and only the second time it grows.
+    let twice = deflated(std::iter::once(bomb(17)));
     let twice = file("4 0 R", stream("/Filter[/FlateDecode/FlateDecode]", &twice));
     assert!(matches!(read(&twice), Err(ReadError::Bomb { .. })));
     // The same stream again and again.
@@ -181,7 +181,7 @@ fn bombs_do_not_go_off() {
     assert!(matches!(read(&plain), Err(ReadError::Bomb { .. })));
     // Much to read that unpacks to nothing.
     let empty_blocks =
-        [vec![0x78, 0x9C], [0, 0, 0, 0xFF, 0xFF].repeat(2_000_000), vec![1, 0, 0, 0xFF, 0xFF, 0, 0, 0, 1]]
+        [vec![0x78, 0x9C], [0, 0, 0, 0xFF, 0xFF].repeat(400_000), vec![1, 0, 0, 0xFF, 0xFF, 0, 0, 0, 1]]
             .concat();
     let nothing =
         file(&format!("[{}]", "4 0 R ".repeat(1_000)), stream("/Filter/FlateDecode", &empty_blocks));

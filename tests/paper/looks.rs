@@ -82,7 +82,7 @@ fn every_text_is_found_again_by_another_program() {
         let found = letters(&found);
         let mut wanted = texts(&document.blocks);
         wanted.extend([document.running_head.clone(), document.end.clone()]);
-        for letterhead in &document.letterhead {
+        if let Some(letterhead) = &document.letterhead {
             wanted.push(letterhead.name.clone());
             wanted.extend(letterhead.address.clone());
         }
@@ -153,7 +153,7 @@ fn reading_aloud_follows_the_blocks() {
     let path = written("certificate", &certificate());
     let Some(said) = ask("pdfinfo", &["-struct-text"], &path, &[]) else { return };
     let at = |what: &str| said.find(what).unwrap_or_else(|| panic!("{what} in {said}"));
-    assert!(at("H1 \"Calibration certificate\"") < at("Figure"));
+    assert!(at("H1 \"Calibration certificate\"") < said.rfind("Figure").unwrap());
     assert!(at("H2 \"The line\"") < at("THead"));
     for kind in ["H3 \"Equipment\"", "TH (block)", "TD (block)", "Caption", "LBody", "L (block)"] {
         let kind = kind.trim_end_matches(" (block)");
@@ -234,7 +234,10 @@ fn every_page_says_its_number_and_every_table_its_head() {
     for (i, words) in pages.iter().enumerate() {
         let all: Vec<&str> = words.iter().map(|(.., word)| word.as_str()).collect();
         let all = all.join(" ");
-        assert!(all.starts_with(&format!("EB-2026-0017 page {} of {}", i + 1, pages.len())), "{all:.80}");
+        let mut head: Vec<_> = words.iter().filter(|(_, _, _, bottom, _)| *bottom < 60.0).collect();
+        head.sort_by(|a, b| a.0.total_cmp(&b.0));
+        let head: Vec<&str> = head.iter().map(|(.., word)| word.as_str()).collect();
+        assert_eq!(head.join(" "), format!("EB-2026-0017 page {} of {}", i + 1, pages.len()));
         assert!(all.contains("residual"), "page {}: {all:.200}", i + 1);
         assert_eq!(all.contains("end of certificate"), i + 1 == pages.len());
     }

@@ -283,7 +283,7 @@ pub(crate) fn names() -> Document {
         Block::Heading(Level::One, names[1].to_owned()),
         Block::Heading(Level::Two, format!("Heading {}", "long and longer ".repeat(20).trim_end())),
         Block::Pairs { pairs: names.iter().map(|name| pair(name, name)).collect(), two_columns: true },
-        Block::Pairs { pairs: vec![pair("Name", &long), pair(&long[..200], "x")], two_columns: false },
+        Block::Pairs { pairs: vec![pair("Name", &long), pair(&long[..210], "x")], two_columns: false },
         Block::Table(Table {
             caption: Some(Text::plain("A cell longer than a page beside short ones.")),
             columns: vec![
@@ -303,7 +303,7 @@ pub(crate) fn names() -> Document {
         }),
         Block::Notice(Notice {
             label: "Caution".to_owned(),
-            paragraphs: vec![names[0].into(), long[..4_000].into()],
+            paragraphs: vec![names[0].into(), long[..4_200].into()],
         }),
         Block::Signatures(
             names

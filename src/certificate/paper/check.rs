@@ -7,10 +7,13 @@ use super::faces::Faces;
 use super::model::{Attachment, Block, Document, Figure, Table, Text};
 use super::picture::{Picture, Pictures};
 use super::problem::Problem;
-use super::style::Colour;
+use super::style::{Colour, FINE, Sheet};
 
 /// Longest name of an attachment, in characters; file systems take 255 bytes.
 const LONGEST_NAME: usize = 120;
+
+/// The longest that stands right of the running head.
+const LONGEST_LABEL: &str = "page 9999 of 9999";
 
 /// What the check found beside problems.
 pub(super) struct Checked {
@@ -94,6 +97,13 @@ impl Check<'_> {
         self.text("the author", document.author.as_deref().unwrap_or_default(), false);
         self.filled("the producer", &document.producer, false);
         self.filled("the running head", &document.running_head, false);
+        let sheet = Sheet::of(document.paper);
+        let room = sheet.text_width() - 20.0 - self.faces.width(LONGEST_LABEL, false) * FINE.letters;
+        let needed = self.faces.width(&document.running_head, false) * FINE.letters;
+        if needed > room {
+            let percent = ((1.0 - room / needed) * 100.0).ceil();
+            self.problems.push(Problem::RunningHead(percent as u32));
+        }
         self.filled("the marked end", &document.end, false);
         let accent = document.accent.as_deref().unwrap_or(Document::DEFAULT_ACCENT);
         colour(accent).unwrap_or_else(|| {

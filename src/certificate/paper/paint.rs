@@ -7,7 +7,7 @@
 use krilla::Document as Pdf;
 use krilla::SerializeSettings;
 use krilla::color::rgb;
-use krilla::configure::{Archival, ConfigurationBuilder};
+use krilla::configure::{Archival, ConfigurationBuilder, ValidationError};
 use krilla::destination::XyzDestination;
 use krilla::embed::{AssociationKind, EmbeddedFile, MimeType};
 use krilla::error::KrillaError;
@@ -133,11 +133,18 @@ impl Painter<'_> {
             }
         }
         pdf.finish().map_err(|refused| match refused {
-            KrillaError::Validation(all) => {
-                all.into_iter().map(|(one, _)| Problem::Conformance(format!("{one:?}"))).collect()
-            }
+            KrillaError::Validation(all) => all.into_iter().map(|(one, _)| problem(&one)).collect(),
             other => vec![Problem::Conformance(other.to_string())],
         })
+    }
+}
+
+/// What pictures bring in is for whoever made them; the rest is set by this program.
+fn problem(refused: &ValidationError) -> Problem {
+    match refused {
+        ValidationError::TooHighQNestingLevel => Problem::InPictures("groups inside one another, too deep"),
+        ValidationError::ContainsPostScript(_) => Problem::InPictures("a colour that repeats or turns"),
+        other => Problem::Conformance(format!("{other:?}")),
     }
 }
 
@@ -150,22 +157,12 @@ fn running_head(
     right: &str,
 ) -> Option<()> {
     let width = sheet.text_width();
-    let line = |text: &str, room: f32| broken(faces, &Text::plain(text), room / FINE.letters).into_iter();
-    let page = line(right, width).next()?;
+    let line = |text: &str| broken(faces, &Text::plain(text), f32::INFINITY).pop();
+    let page = line(right)?;
     let page_width = page.width * FINE.letters;
-    let mut number = line(left, width - page_width - 20.0);
     surface.start_tagged(ContentTag::Artifact(Artifact::with_kind(ArtifactType::Header)));
     let brush = Brush { faces, left: sheet.side, top: 0.0, page: 0 };
-    let first = number.next()?;
-    // What is left of a number too long for the line stands in the lines above it, as far as the sheet goes.
-    let rest: Vec<Line> = number.collect();
-    let lines = std::iter::once(first).chain(rest);
-    let lines: Vec<Line> = lines.take(3).collect();
-    let count = lines.len();
-    for (i, line) in lines.iter().enumerate() {
-        let y = sheet.head - FINE.lines * (count - 1 - i) as f32;
-        brush.letters(surface, 0.0, y, line, FINE.letters, QUIET);
-    }
+    brush.letters(surface, 0.0, sheet.head, &line(left)?, FINE.letters, QUIET);
     brush.letters(surface, width - page_width, sheet.head, &page, FINE.letters, QUIET);
     brush.fill(surface, Rect::from_xywh(sheet.side, sheet.head + 5.0, width, 0.5)?, SAND);
     surface.end_tagged();

@@ -81,6 +81,14 @@ pub enum Problem {
     /// Two attachments of one name.
     #[error("two attachments are named {0}: give them different names")]
     AttachmentTwice(String),
+    /// A running head longer than its line.
+    #[error("the running head is longer than a line beside the page's number: shorten it by about {0} %")]
+    RunningHead(u32),
+    /// A drawing with something that PDF/A forbids.
+    #[error(
+        "the logo or a figure holds {0}, which PDF/A does not allow: draw it more simply, or save a logo as PNG"
+    )]
+    InPictures(&'static str),
     /// The writer of the PDF refused what was set; a fault of this program.
     #[error("the PDF does not conform to PDF/A-3A, which is a fault of this program: {0}")]
     Conformance(String),

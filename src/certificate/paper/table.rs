@@ -14,6 +14,8 @@ use super::tree::{NodeId, Role, Tree};
 const GAP: (f32, f32) = (9.0, 34.0);
 /// A word wider than this many ems breaks inside rather than widen its column.
 const LONG_WORD: f32 = 9.0;
+/// Share of the width that one column may ask for where not all get what they ask.
+const MOST_ASKED: f32 = 0.7;
 /// Space above and below the text of a row.
 const ROW: (f32, f32) = (2.3, 2.6);
 /// The ground of a row reaches this far beyond its text on both sides.
@@ -171,14 +173,19 @@ fn widths(faces: &Faces, table: &Table, size: Size, room: f32) -> Result<Vec<Pla
     if least > room + 5e-4 {
         return Err(least);
     }
-    let share = if natural > least { ((room - least) / (natural - least)).clamp(0.0, 1.0) } else { 1.0 };
+    // A column with a text without end asks for no more than most of the width, so that the others get some of it.
+    let asked = |m: &Measured| m.natural.min(room * MOST_ASKED).max(m.least);
+    let all_asked: f32 = measured.iter().map(asked).sum::<f32>() + gaps * GAP.0;
+    let share = if all_asked > least { ((room - least) / (all_asked - least)).clamp(0.0, 1.0) } else { 1.0 };
+    let fits = natural <= room;
     let slack = if gaps > 0.0 { ((room - natural) / gaps).clamp(0.0, GAP.1 - GAP.0) } else { 0.0 };
     let mut x = 0.0;
     Ok(measured
         .into_iter()
         .zip(&table.columns)
         .map(|(measured, column)| {
-            let width = measured.least + (measured.natural - measured.least) * share;
+            let asked = if fits { measured.natural } else { asked(&measured) };
+            let width = measured.least + (asked - measured.least) * share;
             let placed = Placed { x, width, measured, align: column.align };
             x += width + GAP.0 + slack;
             placed

@@ -13,7 +13,7 @@ const MOST_OBJECTS: usize = 500_000;
 /// Parts of objects and of tables that are read in all; each takes some hundred bytes while it is held.
 const MOST_PARTS: usize = 1_000_000;
 /// Bytes that are passed over in all, so that one place read again and again takes no hours.
-const MOST_READING: usize = 4 * MOST_BYTES;
+const MOST_READING: usize = 2 * MOST_BYTES;
 /// How often a file may have been written on to.
 const MOST_REVISIONS: usize = 64;
 /// References that lead to references.
