@@ -1,12 +1,18 @@
 //! A certificate that was changed does not hold, whatever was changed; one that was not, does.
 
+use std::path::Path;
+
 use base64::Engine;
 use base64::engine::general_purpose::STANDARD;
+use ebbline::bench::{Questions, analyse};
 use ebbline::certificate::compare::{CompareError, Outcome, What, compare};
-use ebbline::certificate::content::{Content, VERSION};
+use ebbline::certificate::content::{self, Content, Issue, Measured, VERSION};
 use ebbline::certificate::dcc;
+use ebbline::entry::{Readings, Run};
+use ebbline::record::read_run;
+use ebbline::series::{SteadyOptions, steady_points};
 
-use crate::support::{every_content, good_content};
+use crate::support::{RUN, every_content, good_content, issue};
 
 fn xml_of(content: &Content) -> String {
     String::from_utf8(dcc::write(content)).unwrap()
@@ -67,6 +73,43 @@ fn every_certificate_holds_as_it_was_issued() {
         assert!(compared.findings.numbers > 300, "{name}: {}", compared.findings.numbers);
         assert_eq!(compared.findings.files, content.files.len(), "{name}");
         assert_eq!(compared.findings.number, content.issue.number);
+    }
+}
+
+/// A series in which every pressure of a run is held for a minute and a half, two readings a second.
+fn series() -> Run {
+    let mut csv = String::from("t,ip,flow\n");
+    for (step, bar) in [4.0, 6.0, 8.0, 10.0, 12.0, 13.0, 11.0, 9.0, 7.0, 5.0].into_iter().enumerate() {
+        for i in 0..180_u32 {
+            let wobble = f64::from(i % 7) - 3.0;
+            let (p, q) = (bar + 0.0005 * wobble, 0.0466 * (bar + 0.95) * (1.0 + 0.0002 * wobble));
+            csv.push_str(&format!("{:.1},{p:.4},{q:.5}\n", 90.0 * step as f64 + 0.5 * f64::from(i)));
+        }
+    }
+    let time = "[columns]\ntime = { column = \"t\", unit = \"s\" }";
+    let toml = RUN
+        .replace("readings = \"run.csv\"", "readings = \"run.csv\"\nrows = \"series\"")
+        .replace("[columns]", time)
+        .replace("sweep = { column = \"sweep\" }\n", "");
+    crate::runs::run(&toml, &csv)
+}
+
+#[test]
+fn runs_of_every_kind_of_meter_and_a_series_are_made_again_from_their_files() {
+    let fixture = |name: &str| {
+        let path = Path::new(env!("CARGO_MANIFEST_DIR")).join(format!("fixtures/runs/{name}.toml"));
+        read_run(&path).unwrap().value
+    };
+    let runs = [fixture("points"), fixture("float"), fixture("timed"), series()];
+    for (name, run) in ["points", "float", "timed", "series"].into_iter().zip(runs) {
+        let points = match &run.readings {
+            Readings::Points(points) => points.clone(),
+            Readings::Series(series) => steady_points(series, &SteadyOptions::default()).points,
+        };
+        let analysis = analyse(&run, &points, &Questions::default()).unwrap();
+        let measured = Measured { name: "R0099", run: &run, analysis: &analysis, before: None, files: None };
+        let xml = xml_of(&content::of(&issue(), &measured, None));
+        assert_eq!(differences(&xml), [] as [&str; 0], "{name}");
     }
 }
 
@@ -276,10 +319,9 @@ fn another_method_is_not_judged_and_another_version_only_by_its_figures() {
         compare(with_file(&xml, &content, "certificate.toml", other.as_bytes()).as_bytes()).unwrap().findings;
     assert_eq!(found.outcome, Outcome::NotChecked { method: 999, program: VERSION.into() });
     // A whole certificate of another version, with another wording.
-    let mut issue = content.issue.clone();
-    issue.program = "0.0.9".into();
+    let older = Issue { program: "0.0.9".into(), ..content.issue.clone() };
     let taken = crate::support::good();
-    let older = xml_of(&ebbline::certificate::content::of(&issue, &taken.measured(), None));
+    let older = xml_of(&content::of(&older, &taken.measured(), None));
     let older = replaced(&older, "Guarded acceptance", "Acceptance with a guard band");
     let found = compare(older.as_bytes()).unwrap().findings;
     assert_eq!((found.outcome, found.wordings), (Outcome::Holds, 1));

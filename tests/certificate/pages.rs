@@ -88,7 +88,7 @@ fn another_certificates_xml_does_not_hold_on_these_pages() {
 fn pages_with_another_number_do_not_hold() {
     let content = good_content();
     let mut printed = content.clone();
-    printed.results.headline = printed.results.headline.replace("10 bar", "11 bar");
+    printed.results.headline = printed.results.headline.replace("10.0 bar", "11.0 bar");
     assert_ne!(printed.results.headline, content.results.headline);
     let document = pages::document(&printed, Paper::A4, &dcc::write(&content));
     assert_eq!(whats(&paper::render(&document).unwrap()), [What::Pages]);

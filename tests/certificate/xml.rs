@@ -2,8 +2,11 @@
 
 use std::path::PathBuf;
 
+use ebbline::certificate::compare::compare;
 use ebbline::certificate::content::printed;
 use ebbline::certificate::dcc::{self, DccError, Leaf};
+
+use proptest::prelude::*;
 
 use crate::support::{every_content, good_content};
 
@@ -86,8 +89,27 @@ fn what_is_no_certificate_is_refused_in_a_sentence() {
     assert_eq!(dcc::read(b"\xff\xfe<").unwrap_err(), DccError::NotUtf8);
     let deep = format!("{root} xmlns:dcc=\"x\">{}", "<a>".repeat(100));
     assert_eq!(read(&deep), DccError::TooDeep);
-    let many = format!("{root} xmlns:dcc=\"x\">{}", "<a/>".repeat(400_001));
+    let many = format!("{root} xmlns:dcc=\"x\">{}", "<a/>".repeat(50_001));
     assert_eq!(read(&many), DccError::TooMany);
+    let entries = format!(
+        "{root} xmlns:dcc=\"x\"><si:valueXMLList>{}</si:valueXMLList></dcc:digitalCalibrationCertificate>",
+        "1 ".repeat(400_000)
+    );
+    assert_eq!(read(&entries), DccError::TooManyLeaves);
+    // Each leaf below a long name would be given it: a short document must not become a long one.
+    let name = "n".repeat(100_000);
+    let long = format!("{root} xmlns:dcc=\"x\"><{name}>{}</{name}>", "<a/>".repeat(100));
+    assert!(matches!(read(&long), DccError::Broken { .. }));
+    let nested = format!(
+        "{root} xmlns:dcc=\"x\">{}{}",
+        format!("<{}>", "n".repeat(80)).repeat(23),
+        "<a/>".repeat(49_000)
+    );
+    assert_eq!(read(&nested), DccError::TooDeep);
+    let files =
+        "<dcc:file><dcc:fileName>a</dcc:fileName><dcc:dataBase64></dcc:dataBase64></dcc:file>".repeat(40);
+    let files = format!("{root} xmlns:dcc=\"x\">{files}</dcc:digitalCalibrationCertificate>");
+    assert_eq!(read(&files), DccError::TooManyFiles);
     assert_eq!(dcc::read(&vec![b' '; dcc::LONGEST_XML + 1]).unwrap_err(), DccError::TooLong);
     let twice = with("ebbline_results.budget.1.share", "ebbline_results.budget.1.u");
     assert!(matches!(read(&twice), DccError::Twice(_)));
@@ -103,4 +125,25 @@ fn cdata_and_character_references_are_read_as_what_they_stand_for() {
     let same = good.replacen("Tern Club (invented)", "<![CDATA[Tern Club]]> &#40;invented&#x29;", 1);
     assert_ne!(good, same);
     assert_eq!(dcc::read(good.as_bytes()).unwrap(), dcc::read(same.as_bytes()).unwrap());
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig::with_cases(100))]
+    #[test]
+    fn damaged_bytes_are_refused_or_found_out_and_never_more(
+        at in 0.0_f64..1.0, byte in any::<u8>(), cut in 0.0_f64..1.0, doubled in any::<bool>(),
+    ) {
+        let mut bytes = dcc::write(&good_content());
+        let place = |share: f64| (share * (bytes.len() - 1) as f64) as usize;
+        let (at, cut) = (place(at), place(cut));
+        let same = bytes[at] == byte;
+        bytes[at] = byte;
+        if doubled {
+            let more = bytes[cut.min(at)..cut.max(at)].to_vec();
+            bytes.splice(at..at, more);
+        }
+        // Whether it holds is another test's; this one is that there is an answer.
+        let answer = compare(&bytes);
+        prop_assert!(!same || doubled || answer.is_ok());
+    }
 }

@@ -52,10 +52,10 @@ pub enum AgainError {
 /// # Errors
 /// Every [`AgainError`].
 pub fn made_again(stated: &Stated, files: &[ReceivedFile]) -> Result<Content, AgainError> {
-    for (i, file) in files.iter().enumerate() {
-        if files.iter().skip(i + 1).any(|other| other.name == file.name) {
-            return Err(AgainError::Twice(short(&file.name)));
-        }
+    // There are at most a few dozen, which is held on reading.
+    let twice = files.iter().enumerate().find(|(i, file)| files.iter().take(*i).any(|f| f.name == file.name));
+    if let Some((_, file)) = twice {
+        return Err(AgainError::Twice(short(&file.name)));
     }
     let results = Taken::of(&stated.results, files)?;
     let as_found = stated.as_found.as_ref().map(|run| Taken::of(run, files)).transpose()?;

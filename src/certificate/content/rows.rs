@@ -86,9 +86,10 @@ fn flow_figure(path: String, name: impl Into<String>, flow: &FlowAt) -> Figure {
 }
 
 fn row(path: &str, gas: Species, at: &FlowAtIp) -> Row {
+    let ip = Figure::stated(format!("{path}/ip"), "intermediate pressure", at.ip.as_bar(), Unit::Bar);
     Row {
-        ip: Figure::stated(format!("{path}/ip"), "intermediate pressure", at.ip.as_bar(), Unit::Bar)
-            .at(Reference::GaugeAtStandardAmbient),
+        // To a tenth at least, as in the table of flows.
+        ip: Figure { decimals: ip.decimals.max(1), ..ip }.at(Reference::GaugeAtStandardAmbient),
         flow: flow_figure(format!("{path}/flow"), format!("flow of {}", gas.name()), &at.flow),
         as_oxygen: at
             .as_oxygen

@@ -178,7 +178,7 @@ pub(super) fn conditions(path: &str, run: &Run, analysis: &Analysis) -> Vec<Cond
     more(
         "back_pressure",
         "pressure downstream of the orifice over the barometer",
-        stated,
+        if back.value.is_some() { stated } else { "not stated: taken as nought" },
         Some(back.value.map_or(0.0, |d| d.as_pa()) / 100.0),
         back.expanded.map(|d| d.as_pa() / 100.0),
         Unit::HectoPascal,

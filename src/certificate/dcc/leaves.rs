@@ -36,6 +36,7 @@ pub fn expected(document: &Element) -> Vec<Expected> {
     let mut all = Vec::new();
     walk(document, document.name.to_owned(), &[], &mut |path, words, leaf| {
         all.push(Expected { path, words, leaf });
+        true
     });
     all
 }
@@ -43,20 +44,29 @@ pub fn expected(document: &Element) -> Vec<Expected> {
 /// The leaves of a document that was read.
 ///
 /// # Errors
-/// Two leaves at one path, which only two elements of one place can make.
+/// Two leaves at one path, which only two elements of one place can make; more leaves than a certificate has.
 pub fn printed(document: &Parsed) -> Result<BTreeMap<String, PrintedLeaf>, DccError> {
     let mut all = BTreeMap::new();
-    let mut twice = None;
-    walk(document, document.name.clone(), &[], &mut |path, words, text| {
+    let (mut twice, mut bytes) = (None, 0);
+    let whole = walk(document, document.name.clone(), &[], &mut |path, words, text| {
+        bytes += path.len() + words.len();
+        let held = all.len() < MOST_LEAVES && bytes < MOST_BYTES;
         if all.insert(path.clone(), PrintedLeaf { text, words }).is_some() {
             twice.get_or_insert(path);
         }
+        held && twice.is_none()
     });
     match twice {
         Some(path) => Err(DccError::Twice(path.chars().take(100).collect())),
+        None if !whole => Err(DccError::TooManyLeaves),
         None => Ok(all),
     }
 }
+
+/// Leaves of a document that was read: a run of 5 000 points has some 80 000, and a certificate two runs.
+const MOST_LEAVES: usize = 300_000;
+/// Bytes of all their places and names.
+const MOST_BYTES: usize = 128 << 20;
 
 /// What both kinds of document are to a walk.
 trait Node: Sized {
@@ -74,17 +84,32 @@ trait Node: Sized {
 /// Longest name that is taken over into words.
 const LONGEST_NAME: usize = 80;
 
-fn walk<N: Node>(node: &N, path: String, words: &[String], out: &mut impl FnMut(String, String, N::Leaf)) {
+/// Names that a place in words is made of at most; ours have four.
+const MOST_NAMES: usize = 6;
+
+/// Hands out every leaf below a node, as long as `out` asks for more; whether it did to the end.
+fn walk<N: Node>(
+    node: &N,
+    path: String,
+    words: &[String],
+    out: &mut impl FnMut(String, String, N::Leaf) -> bool,
+) -> bool {
     let mut words = words.to_vec();
-    words.extend(named(node));
+    if words.len() < MOST_NAMES {
+        words.extend(named(node));
+    }
     for (name, leaf) in node.attributes() {
-        out(format!("{path}@{name}"), said(&words, &format!("attribute {name}"), None), leaf);
+        if !out(format!("{path}@{name}"), said(&words, &format!("attribute {name}"), None), leaf) {
+            return false;
+        }
     }
     let (leaves, is_list) = node.leaves();
     for (i, leaf) in leaves.into_iter().enumerate() {
         let (path, entry) =
             if is_list { (format!("{path}/{}", i + 1), Some(i + 1)) } else { (path.clone(), None) };
-        out(path, said(&words, node.name(), entry), leaf);
+        if !out(path, said(&words, node.name(), entry), leaf) {
+            return false;
+        }
     }
     let mut seen: BTreeMap<&str, usize> = BTreeMap::new();
     for child in node.children() {
@@ -95,13 +120,17 @@ fn walk<N: Node>(node: &N, path: String, words: &[String], out: &mut impl FnMut(
             None if *nth == 1 => format!("{path}/{}", child.name()),
             None => format!("{path}/{}[{nth}]", child.name()),
         };
-        walk(child, below, &words, out);
+        if !walk(child, below, &words, out) {
+            return false;
+        }
     }
+    true
 }
 
 /// The place a node says it has.
 fn place<N: Node>(node: &N) -> Option<&str> {
-    node.attribute("refType")?.split(' ').find_map(|term| term.strip_prefix(super::PLACE))
+    let mut terms = node.attribute("refType")?.split(' ');
+    terms.find_map(|term| term.strip_prefix(super::PLACE)).filter(|place| place.len() <= LONGEST_NAME)
 }
 
 /// The name a node gives itself: the content of its `dcc:name`.

@@ -1,6 +1,7 @@
 //! Bytes from anywhere to what is printed in them and the files they carry.
 //!
-//! Held to [`LONGEST_XML`], [`DEEPEST`] and [`MOST_ELEMENTS`], so memory stays within a few times the document. A document
+//! Held to [`LONGEST_XML`] and to so many elements, levels, leaves and files, so memory stays within a few times the document: a
+//! short document must not grow by the places and names that each of its leaves is given. A document
 //! type is refused, and with it every entity of a document's own: nothing is expanded, nothing fetched. A processing
 //! instruction is refused too, since it may ask a reader to show something else. Comments are passed over.
 
@@ -17,11 +18,15 @@ use super::leaves::{PrintedLeaf, printed};
 /// Longest XML that is read, in bytes.
 pub const LONGEST_XML: usize = 64 << 20;
 /// Elements inside one another; a certificate of ours has 17.
-const DEEPEST: usize = 64;
-/// Elements of a document; a certificate of ours has some thousand.
-const MOST_ELEMENTS: usize = 400_000;
+const DEEPEST: usize = 24;
+/// Elements of a document; a certificate of ours has some thousand, and two for each point.
+const MOST_ELEMENTS: usize = 50_000;
 /// Attributes of an element.
 const MOST_ATTRIBUTES: usize = 32;
+/// Longest name of an element or attribute, in bytes.
+const LONGEST_NAME: usize = 80;
+/// Files inside; a certificate of ours has five at most.
+const MOST_FILES: usize = 32;
 /// The root.
 const ROOT: &str = "dcc:digitalCalibrationCertificate";
 
@@ -63,6 +68,12 @@ pub enum DccError {
     /// Too many elements.
     #[error("the XML has more than {MOST_ELEMENTS} elements: it is not read")]
     TooMany,
+    /// Too many leaves, or too long places.
+    #[error("the XML has more entries than a certificate can have: it is not read")]
+    TooManyLeaves,
+    /// Too many files.
+    #[error("the XML has more than {MOST_FILES} files inside: it is not read")]
+    TooManyFiles,
     /// Another root.
     #[error("the XML is no digital calibration certificate: its root is {0:?}")]
     OtherRoot(String),
@@ -125,6 +136,9 @@ fn collect(element: &Parsed, files: &mut Vec<ReceivedFile>) -> Result<(), DccErr
         let name = name.map(|child| child.text.clone()).unwrap_or_default();
         let bytes = decoded(&data.text);
         let bytes = bytes.ok_or_else(|| DccError::NotBase64(name.chars().take(60).collect()))?;
+        if files.len() >= MOST_FILES {
+            return Err(DccError::TooManyFiles);
+        }
         files.push(ReceivedFile { name, bytes });
     }
     element.children.iter().try_for_each(|child| collect(child, files))
@@ -237,11 +251,17 @@ impl Build {
 
 fn element(start: &BytesStart<'_>, at: u64) -> Result<Parsed, DccError> {
     let broken = |why: String| DccError::Broken { at, why: why.chars().take(120).collect() };
+    if start.name().as_ref().len() > LONGEST_NAME {
+        return Err(broken(format!("a name of more than {LONGEST_NAME} bytes")));
+    }
     let mut attributes = Vec::new();
     for attribute in start.attributes() {
         let attribute = attribute.map_err(|error| broken(error.to_string()))?;
         if attributes.len() >= MOST_ATTRIBUTES {
             return Err(broken(format!("more than {MOST_ATTRIBUTES} attributes")));
+        }
+        if attribute.key.as_ref().len() > LONGEST_NAME {
+            return Err(broken(format!("a name of more than {LONGEST_NAME} bytes")));
         }
         let value = attribute
             .normalized_value(quick_xml::XmlVersion::Implicit1_0)

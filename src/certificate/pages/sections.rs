@@ -105,10 +105,14 @@ fn flows(of: &Calibration) -> Block {
         }
         PaperRow::new(cells)
     };
-    let nominal = row(&of.nominal).with(Emphasis::Strong);
-    let rows = std::iter::once(nominal).chain(of.table.iter().map(row)).collect();
+    // The nominal pressure stands out in its place, or comes first where it has none.
+    let is_nominal = |one: &Row| one.ip.printed() == of.nominal.ip.printed();
+    let first = (!of.table.iter().any(is_nominal)).then(|| row(&of.nominal).with(Emphasis::Strong));
+    let others =
+        of.table.iter().map(|one| if is_nominal(one) { row(one).with(Emphasis::Strong) } else { row(one) });
+    let rows = first.into_iter().chain(others).collect();
     let caption = format!(
-        "Gauge pressure; {}; 95 %. The first row is the nominal pressure.",
+        "Gauge pressure; {}; 95 %. The nominal pressure stands out.",
         Reference::StpdAtStandardAmbient.says()
     );
     table(Some(&caption), columns, rows, true)
