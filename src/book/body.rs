@@ -5,14 +5,15 @@
 
 use std::borrow::Cow;
 
-use super::certificates::CertificateFiles;
 use super::canonical::{self, Bytes, Canonical, Reader, Unreadable, Writer, session_header};
+use super::certificates::CertificateFiles;
 use super::registers::Entry;
 use super::runs::{Origin, SourceFiles};
 use super::sessions::{Extent, FileRole};
 use crate::entry::{
-    Certificate, Decision, Diver, Event, FirstStage, Instrument, LeftOut, LiveNote, LivePoint, LiveReadings, LoggingBegun,
-    Orifice, PointReading, Readings, Run, RunNumber, Session, SessionLeftOut, SessionNumber, Shop,
+    Certificate, Decision, Diver, Event, FirstStage, Instrument, LeftOut, LiveNote, LivePoint, LiveReadings,
+    LoggingBegun, Orifice, PointReading, Readings, Run, RunNumber, Session, SessionLeftOut, SessionNumber,
+    Shop,
 };
 use chrono::{DateTime, FixedOffset};
 

@@ -68,7 +68,10 @@ pub(super) fn rows(seq: u64, record: &Record<'_>) -> Vec<Row> {
                 ("run", number(draft.results.run.get())),
                 ("as_found", draft.as_found.as_ref().map_or(Value::Null, |found| number(found.run.get()))),
                 ("orifice", text(draft.results.header.orifice.as_str())),
-                ("amends", amends.map_or(Value::Null, |amends| text(&super::registers::key_of(&amends.number)))),
+                (
+                    "amends",
+                    amends.map_or(Value::Null, |amends| text(&super::registers::key_of(&amends.number))),
+                ),
                 ("replaces", amends.map_or(Value::Null, |amends| Value::Integer(i64::from(amends.replaces)))),
                 ("issued", text(&draft.issued.to_rfc3339())),
             ];

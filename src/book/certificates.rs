@@ -215,7 +215,8 @@ fn next_number(connection: &Connection, draft: &CertificateDraft) -> Result<(Str
     let mut counter: u32 = connection.prepare_cached(sql)?.query_row([within], |row| row.get(0))?;
     loop {
         let next = counter.checked_add(1);
-        counter = next.ok_or_else(|| Inside::Damaged("its certificates are numbered beyond all counting".into()))?;
+        counter =
+            next.ok_or_else(|| Inside::Damaged("its certificates are numbered beyond all counting".into()))?;
         let number = pattern.number(year, counter);
         // One of an earlier pattern may be called so.
         if find(connection, &number)?.is_none() {
@@ -242,11 +243,9 @@ fn given_at(connection: &Connection, seq: u64) -> Result<GivenCertificate, Insid
     let wrong = || Inside::Damaged(format!("record {seq} holds no certificate"));
     let row = listed(rows.next()?.ok_or_else(wrong)?)?;
     match record_at(connection, seq)?.map(|record| record.body) {
-        Some(Body::Certificate(certificate)) => Ok(GivenCertificate {
-            certificate: *certificate,
-            files: row.files,
-            amended_by: row.amended_by,
-        }),
+        Some(Body::Certificate(certificate)) => {
+            Ok(GivenCertificate { certificate: *certificate, files: row.files, amended_by: row.amended_by })
+        }
         _ => Err(wrong()),
     }
 }

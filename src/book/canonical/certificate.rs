@@ -2,9 +2,7 @@
 
 use super::{Canonical, Reader, Unreadable, Writer, canonical_choice, canonical_struct, header};
 use crate::book::certificates::CertificateFiles;
-use crate::entry::{
-    Certificate, CertificateAmends, CertificateDraft, CertificateTexts, CertifiedRun, Sheet,
-};
+use crate::entry::{Certificate, CertificateAmends, CertificateDraft, CertificateTexts, CertifiedRun, Sheet};
 
 canonical_choice!(Sheet, "paper" { A4 = 1, Letter = 2 });
 canonical_struct!(CertificateTexts {
