@@ -4,8 +4,8 @@
 //! same for the same document on every machine, or every [`Problem`] that forbids it, all at once. What is on paper is
 //! extractable as text, reads in order for those who do not see it, and means the same in black and white.
 //!
-//! The way: [`check`] finds problems and reads pictures, [`flow`] turns blocks into strips, [`pages`] lays strips on pages,
-//! [`paint`] paints them. [`plain`] makes text of the same model,
+//! The way: `check` finds problems and reads pictures, `flow` turns blocks into strips, `pages` lays strips on pages,
+//! `paint` paints them. `plain` makes text of the same model,
 //! [`read`] finds again what is inside a PDF.
 //!
 //! Left out: writing from right to left, hyphenation, footnotes, a second validator of PDF/A.
