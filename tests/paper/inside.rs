@@ -80,7 +80,7 @@ fn a_changed_page_is_told_from_the_others() {
 fn the_file_says_which_part_and_level_of_pdf_a_it_claims() {
     let bytes = set(&certificate());
     let has = |what: &str| bytes.windows(what.len()).any(|window| window == what.as_bytes());
-    // ISO 19005-3, 6.6.4; its output intent, 6.2.3; marked content, 6.7.2; language, 6.7.4; dates as given.
+    // ISO 19005-3 (clauses from memory): 6.6.4; output intent, 6.2.3; marked content, 6.7.2; language, 6.7.4. Dates as given.
     for what in [
         "<pdfaid:part>3</pdfaid:part>",
         "<pdfaid:conformance>A</pdfaid:conformance>",
