@@ -139,7 +139,8 @@ fn days(content: &Content) -> String {
 
 fn headline(of: &Calibration) -> Block {
     Block::Sentence(Sentence {
-        statement: of.headline.as_str().into(),
+        // A number stays with its uncertainty and its unit.
+        statement: of.headline.replace(" ± ", "\u{A0}±\u{A0}").replace(" L/min", "\u{A0}L/min").into(),
         verdict: of.conformity.as_ref().map(|conformity| PaperVerdict {
             standing: match conformity.verdict {
                 Verdict::Pass => Standing::Holds,
