@@ -33,6 +33,9 @@ fn written(name: &str, document: &Document) -> PathBuf {
     let folder = PathBuf::from(env!("CARGO_TARGET_TMPDIR")).join("paper");
     fs::create_dir_all(&folder).unwrap();
     let path = folder.join(format!("{name}.pdf"));
-    fs::write(&path, set(document)).unwrap();
+    // Tests run side by side: another one may be reading the file of that name.
+    let whole = folder.join(format!("{name}-{:?}", std::thread::current().id()));
+    fs::write(&whole, set(document)).unwrap();
+    fs::rename(&whole, &path).unwrap();
     path
 }

@@ -47,7 +47,7 @@ pub enum Fault {
         taken: NaiveDate,
     },
     /// Two days in the wrong order.
-    #[error("{first} comes after {second}: correct one of them")]
+    #[error("{first} does not come before {second}, as it should: correct one of them")]
     Order {
         /// The one that should be earlier.
         first: NaiveDate,
@@ -241,6 +241,12 @@ fn stated(content: &Content, found: &mut Found) {
         if amends.replaces == issue.number {
             found.push("replaced certificate", Fault::AmendsItself);
         }
+    }
+    if let Some(found_at) =
+        content.as_found.as_ref().map(|c| c.taken).filter(|at| *at >= content.results.taken)
+    {
+        let (first, second) = (found_at.date_naive(), content.results.taken.date_naive());
+        found.push("run as found", Fault::Order { first, second });
     }
     let (first, last) = content.performed;
     let issued = issue.issued.date_naive();

@@ -326,4 +326,37 @@ fn another_method_is_not_judged_and_another_version_only_by_its_figures() {
     let found = compare(older.as_bytes()).unwrap().findings;
     assert_eq!((found.outcome, found.wordings), (Outcome::Holds, 1));
     assert!(!differences(&with_leaf(&older, "results.nominal.flow", "si:value", "0.4823")).is_empty());
+    // Not even in a sentence.
+    let headline = replaced(&older, "the orifice passes 0.4764", "the orifice passes 0.4864");
+    assert_eq!(differences(&headline).len(), 1);
+}
+
+/// Issued by an earlier version: kept, so that what was once signed is seen to hold. Changes only with `EBBLINE_BLESS=1`.
+#[test]
+fn a_certificate_issued_earlier_still_holds() {
+    let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("fixtures/certificates/method_1.xml");
+    if std::env::var_os("EBBLINE_BLESS").is_some() {
+        let older = Issue { program: "0.0.9".into(), ..issue() };
+        let taken = crate::support::good();
+        std::fs::create_dir_all(path.parent().unwrap()).unwrap();
+        std::fs::write(&path, dcc::write(&content::of(&older, &taken.measured(), None))).unwrap();
+    }
+    let xml = std::fs::read_to_string(&path).unwrap();
+    assert_eq!(differences(&xml), [] as [&str; 0]);
+    assert!(!differences(&with_leaf(&xml, "results.nominal.flow", "si:value", "0.4823")).is_empty());
+}
+
+#[test]
+fn findings_are_said_in_sentences() {
+    let xml = xml_of(&good_content());
+    let said = compare(xml.as_bytes()).unwrap().findings.says();
+    assert_eq!(said.len(), 1);
+    assert!(said[0].starts_with("certificate IOW-2026-0007 holds: "), "{}", said[0]);
+    assert!(said[0].contains("does not make it genuine"), "{}", said[0]);
+    let changed = with_leaf(&xml, "results.nominal.flow", "si:value", "0.4823");
+    let said = compare(changed.as_bytes()).unwrap().findings.says();
+    assert_eq!(
+        said,
+        ["certificate IOW-2026-0007 does not hold: one thing is not what comes of the readings inside"]
+    );
 }

@@ -129,6 +129,16 @@ fn a_run_of_another_orifice_and_days_out_of_order_are_problems() {
 }
 
 #[test]
+fn a_run_as_found_comes_before_the_one_as_left() {
+    let (early, late) = (good(), Taken::new("R0099", &RUN.replace("T09:40", "T15:40"), &readings(0.9)));
+    let mut cleaned = issue();
+    cleaned.work_done = Some("cleaned".into());
+    assert_eq!(problems(&content::of(&cleaned, &late.measured(), Some(&early.measured()))), []);
+    let found = problems(&content::of(&cleaned, &early.measured(), Some(&late.measured())));
+    assert!(matches!(found[..], [ref one] if one.field == "run as found"), "{found:?}");
+}
+
+#[test]
 fn an_item_may_be_stated_to_bear_no_serial_number() {
     let mut without = issue();
     without.item.serial = None;

@@ -35,6 +35,9 @@ fn every_kind_of_certificate_is_issued_and_holds_in_both_forms() {
 #[test]
 fn letter_paper_holds_too() {
     let made = issue(&good_content(), Paper::Letter).unwrap();
+    let folder = PathBuf::from(env!("CARGO_TARGET_TMPDIR")).join("certificates");
+    std::fs::create_dir_all(&folder).unwrap();
+    std::fs::write(folder.join("letter.pdf"), &made.pdf).unwrap();
     assert_eq!(check(&made.pdf, "x.pdf").unwrap().findings.pages, Pages::Same);
     assert_ne!(made.pdf, issued(&good_content()).pdf);
 }

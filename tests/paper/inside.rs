@@ -77,6 +77,25 @@ fn a_changed_page_is_told_from_the_others() {
 }
 
 #[test]
+fn the_file_says_which_part_and_level_of_pdf_a_it_claims() {
+    let bytes = set(&certificate());
+    let has = |what: &str| bytes.windows(what.len()).any(|window| window == what.as_bytes());
+    // ISO 19005-3 (clauses from memory): 6.6.4; output intent, 6.2.3; marked content, 6.7.2; language, 6.7.4. Dates as given.
+    for what in [
+        "<pdfaid:part>3</pdfaid:part>",
+        "<pdfaid:conformance>A</pdfaid:conformance>",
+        "/GTS_PDFA1",
+        "/Marked true",
+        "/Lang(en)",
+        "/AFRelationship/Source",
+        "/CreationDate(D:20261128164000+01'00)",
+        "<xmp:CreateDate>2026-11-28T16:40:00+01:00</xmp:CreateDate>",
+    ] {
+        assert!(has(what), "{what}");
+    }
+}
+
+#[test]
 fn a_page_without_text_has_its_frame() {
     let contents = read(&set(&bare(Vec::new()))).unwrap();
     assert_eq!(contents.pages.len(), 1);

@@ -174,8 +174,11 @@ fn the_same_document_is_the_same_bytes() {
     assert!(set(&other) != set(&certificate()));
 }
 
-/// Words of a page with the boxes they stand in: left, top, right, bottom, word.
-fn boxes(name: &str, document: &Document) -> Option<Vec<Vec<(f32, f32, f32, f32, String)>>> {
+/// A word with the box it stands in: left, top, right, bottom, word.
+type Word = (f32, f32, f32, f32, String);
+
+/// The words of each page.
+fn boxes(name: &str, document: &Document) -> Option<Vec<Vec<Word>>> {
     let path = written(name, document);
     let said = ask("pdftotext", &["-bbox"], &path, &["-"])?;
     let number = |line: &str, key: &str| -> f32 {
@@ -257,8 +260,9 @@ fn no_heading_ends_a_page_and_no_line_stands_alone() {
         for words in &pages {
             let mut lines: Vec<f32> = words.iter().map(|(_, _, _, bottom, _)| *bottom).collect();
             lines.dedup_by(|a, b| (*a - *b).abs() < 1.0);
-            let at =
-                |what: &str| words.iter().filter(|(.., word)| word == what).map(|(_, _, _, b, _)| *b).last();
+            let at = |what: &str| {
+                words.iter().filter(|(.., word)| word == what).map(|(_, _, _, b, _)| *b).next_back()
+            };
             if let Some(heading) = at("Heading") {
                 let below = lines.iter().filter(|b| **b > heading + 2.0).count();
                 assert!(below >= 2, "{count} pairs: {below} lines under the heading");

@@ -60,7 +60,7 @@ pub(crate) fn points(count: usize) -> Table {
             if i % 7 < 4 { "rising" } else { "falling" }.to_owned(),
             format!("{pressure:.2}"),
             format!("{:.4} ± 0.0021", 0.04831 * pressure),
-            format!("{:+.1}", (i as f64 * 0.7).sin() * 2.0).replace('-', "−"),
+            format!("{:+.1}", (i % 9) as f64 * 0.5 - 2.0).replace('-', "−"),
             if i == 4 { "left out: the meter was still warming up when it was read" } else { "" }.to_owned(),
         ]);
         rows.push(match i {

@@ -12,11 +12,8 @@ pub(crate) fn ask(program: &str, before: &[&str], file: &Path, after: &[&str]) -
         Err(e) if e.kind() == std::io::ErrorKind::NotFound => {
             assert!(std::env::var_os("EBBLINE_PDF_TOOLS").is_none(), "{program} is not installed");
             // Past the capture of the test harness, which would swallow it.
-            writeln!(
-                std::io::stderr(),
-                "NOT RUN: {program} is not installed (packages poppler-utils and qpdf)"
-            )
-            .unwrap();
+            let said = format!("NOT RUN: {program} is not installed (packages poppler-utils and qpdf)\n");
+            std::io::stderr().write_all(said.as_bytes()).unwrap();
             return None;
         }
         Err(e) => panic!("{program}: {e}"),

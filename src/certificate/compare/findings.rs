@@ -125,6 +125,47 @@ impl Findings {
         }
     }
 
+    /// What was found in sentences, the outcome first, without the differences one by one.
+    #[must_use]
+    pub fn says(&self) -> Vec<String> {
+        let number = tame(&self.number);
+        let mut all = vec![match &self.outcome {
+            Outcome::Holds => format!(
+                "certificate {number} holds: {} numbers, {} texts and {} files are what comes of the readings inside. It is \
+                 consistent with itself, which does not make it genuine: only the book that gave out its number can say so",
+                self.numbers, self.texts, self.files
+            ),
+            Outcome::DoesNotHold => {
+                let count = self.differences.len() + self.more;
+                let what = if count == 1 { "one thing is" } else { "things are" };
+                let count = if count == 1 { String::new() } else { format!("{count} ") };
+                format!(
+                    "certificate {number} does not hold: {count}{what} not what comes of the readings inside"
+                )
+            }
+            Outcome::NotChecked { method, program } => format!(
+                "certificate {number} was not checked: it was made by method {method} of version {}, which is not available here",
+                tame(program)
+            ),
+        }];
+        if self.wordings > 0 {
+            all.push(format!(
+                "{} sentences are worded otherwise by another version of the program; their numbers are the same",
+                self.wordings
+            ));
+        }
+        match self.pages {
+            Pages::None => {}
+            Pages::Same => all.push("the pages are those of the same content, to the byte".to_owned()),
+            Pages::Differ => all.push("the pages are not those of the same content".to_owned()),
+            Pages::OtherProgram => all.push(
+                "the pages were set by another version of the program and not compared: go by the numbers in the XML"
+                    .to_owned(),
+            ),
+        }
+        all
+    }
+
     /// Takes a difference; the certificate does not hold then.
     pub fn differ(&mut self, difference: Difference) {
         self.outcome = Outcome::DoesNotHold;

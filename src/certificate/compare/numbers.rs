@@ -53,6 +53,14 @@ fn plain(text: &str) -> Option<(f64, i32)> {
     Some((text.parse().ok()?, i32::try_from(part.len()).ok()?))
 }
 
+/// The numbers in a sentence, in their order, as they stand.
+#[must_use]
+pub(super) fn in_text(text: &str) -> Vec<&str> {
+    let part = |c: char| c.is_numeric() || matches!(c, '.' | ',' | '-' | '−');
+    let words = text.split(|c: char| !part(c)).map(|word| word.trim_end_matches(['.', ',', '-', '−']));
+    words.filter(|word| word.chars().any(char::is_numeric)).collect()
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -74,11 +82,18 @@ mod tests {
     }
 
     #[test]
+    fn numbers_of_a_sentence_are_found_whatever_its_words() {
+        let said = "At 10.0 bar it passes 0.4764 ± 0.0040 L/min (95 %, k = 1.96), −0.5 % less.";
+        assert_eq!(in_text(said), ["10.0", "0.4764", "0.0040", "95", "1.96", "−0.5"]);
+        assert_eq!(in_text("no number - none."), [] as [&str; 0]);
+    }
+
+    #[test]
     fn an_uncertainty_holds_from_95_per_cent_to_itself_rounded_up() {
-        for good in ["0.0044", "0.0045", "0.005", "0.00441", "0.00442", "0.0042"] {
+        for good in ["0.0044", "0.0045", "0.005", "0.00441", "0.0042"] {
             assert!(expanded_holds(good, 0.004_41), "{good}");
         }
-        for bad in ["0.0041", "0.0046", "0.004", "0.01", "0.00443", "0", "0.0088", "inf"] {
+        for bad in ["0.0041", "0.0046", "0.004", "0.01", "0.00442", "0", "0.0088", "inf"] {
             assert!(!expanded_holds(bad, 0.004_41), "{bad}");
         }
         assert!(expanded_holds("120", 119.0) && !expanded_holds("110", 119.0));

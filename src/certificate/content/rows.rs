@@ -29,6 +29,8 @@ const STEP_BAR: f64 = 0.5;
 const WIDE_SPAN_BAR: f64 = 12.0;
 /// Most rows of the table, for a bench of absurd reach.
 const MOST_ROWS: u32 = 200;
+/// Height of the drawing, so that it stays on the first page of either paper.
+const PLOT_HEIGHT: u32 = 600;
 /// Significant figures of a covariance: enough to propagate it without loss.
 const COVARIANCE_FIGURES: i32 = 6;
 
@@ -61,7 +63,11 @@ pub(super) fn calibration(path: &'static str, title: &'static str, measured: &Me
         equipment: surroundings::equipment(path, run),
         conditions: surroundings::conditions(path, run, analysis),
         warnings: analysis.warnings.iter().map(|w| warning_sentences::sentence(w, &units)).collect(),
-        plot: run_plot(run, analysis, &RunPlot { transparent: true, ..RunPlot::default() }),
+        plot: run_plot(
+            run,
+            analysis,
+            &RunPlot { transparent: true, height: PLOT_HEIGHT, ..RunPlot::default() },
+        ),
         plot_says: format!(
             "Flow of {} against absolute pressure: {used} of {} points, the fitted line with its 95 % band, and the \
              residuals; flow at {} bar IP {}.",

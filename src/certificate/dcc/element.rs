@@ -148,6 +148,19 @@ impl Element {
         Self::of(name, texts.into_iter().map(|text| prose(text.as_ref())).collect())
     }
 
+    /// `dcc:content` elements in an element, facts first and then sentences.
+    pub(super) fn facts_and_sentences(
+        name: &'static str,
+        facts: impl IntoIterator<Item = impl AsRef<str>>,
+        sentences: impl IntoIterator<Item = impl AsRef<str>>,
+    ) -> Self {
+        let (mut all, more) = (Self::facts(name, facts), Self::sentences(name, sentences));
+        if let (Body::Elements(children), Body::Elements(more)) = (&mut all.body, more.body) {
+            children.extend(more);
+        }
+        all
+    }
+
     /// `dcc:name`.
     pub(super) fn name(text: impl AsRef<str>) -> Self {
         Self::facts("dcc:name", [text])

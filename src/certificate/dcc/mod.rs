@@ -2,7 +2,7 @@
 //!
 //! Comes in: a [`Content`]. Goes out: the bytes of the XML, the same for the same content. And back: bytes from anywhere to
 //! what is printed in them ([`read`]), held to a size, a depth and a number of elements, without document type, entities and
-//! processing instructions, so that nothing is fetched, expanded or run. Both sides are laid out as [`leaves`] by the same
+//! processing instructions, so that nothing is fetched, expanded or run. Both sides are laid out as leaves by the same
 //! paths, which is what [`super::compare`] works on. The run files, the readings and what is stated are inside.
 //!
 //! Left out: signatures of the schema's own (`ds:Signature`), other languages than English for our sentences, and validation

@@ -5,7 +5,7 @@ use super::element::{Element, Leaf};
 use super::quantity::{column, intercept_and_slope, quantity, quantity_with};
 use crate::bench::Verdict;
 use crate::certificate::content::{
-    Calibration, Comparison, Conformity, Content, Equipment, Figure, File, NoUncertainty, Row, Unit,
+    Calibration, Comparison, Conformity, Content, Equipment, Figure, File, NoUncertainty, PointRow, Row, Unit,
 };
 
 pub(super) fn measurement_results(content: &Content) -> Element {
@@ -147,7 +147,7 @@ fn results(content: &Content, of: &Calibration) -> Vec<Element> {
         result("Flow at the nominal intermediate pressure", &[&of.headline], nominal(of)),
         result("Line", &[&of.line.says], line(of)),
         result("Hole", &[of.hole.choke.says], hole(of)),
-        result("Points", &points_says(of), points(of)),
+        result("Points", &[] as &[&str], points(of)),
         result("Flow against intermediate pressure", &[] as &[&str], table(&of.table)),
         result("Budget of the flow at the nominal intermediate pressure", &[] as &[&str], budget(of)),
         result("Checks", &[] as &[&str], checks(of)),
@@ -204,14 +204,14 @@ fn verdict(name: &str, of: &Conformity) -> Element {
         "dcc:metaData",
         vec![
             Element::name(name),
-            Element::facts(
+            Element::facts_and_sentences(
                 "dcc:description",
                 [
                     format!("Verdict: {}.", of.word),
                     format!("Rule: {}.", of.rule),
                     format!("Probability of conformity: {}.", of.probability),
-                    of.says.clone(),
                 ],
+                [&of.says],
             ),
             Element::fact(
                 "dcc:conformity",
@@ -247,17 +247,19 @@ fn hole(of: &Calibration) -> Vec<Element> {
     all
 }
 
-/// What no number says of the points: sweep, and why one is not used.
-fn points_says(of: &Calibration) -> Vec<String> {
-    of.points
-        .iter()
-        .filter(|point| point.sweep.is_some() || point.why_not.is_some())
+/// What no number says of the points: sweep, and whether and why one is not used.
+fn points_says(of: &Calibration) -> Option<Element> {
+    let said = of.points.iter().filter(|point| point.sweep.is_some() || point.why_not.is_some());
+    let facts: Vec<String> = said
         .map(|point| {
-            let sweep = point.sweep.map(|sweep| format!(" {sweep}")).unwrap_or_default();
-            let why = point.why_not.as_ref().map(|why| format!("; not used, {why}")).unwrap_or_default();
-            format!("Point {}:{sweep}{why}", point.number)
+            let not_used = point.why_not.is_some().then_some("not used");
+            let words: Vec<&str> = point.sweep.into_iter().chain(not_used).collect();
+            format!("Point {}: {}", point.number, words.join(", "))
         })
-        .collect()
+        .collect();
+    let why = |point: &PointRow| point.why_not.as_ref().map(|why| format!("Point {} is {why}", point.number));
+    let sentences = of.points.iter().filter_map(why);
+    (!facts.is_empty()).then(|| Element::facts_and_sentences("dcc:text", facts, sentences))
 }
 
 fn points(of: &Calibration) -> Vec<Element> {
@@ -267,7 +269,9 @@ fn points(of: &Calibration) -> Vec<Element> {
     let mut columns = column("absolute pressure before the orifice", &pressures);
     columns.extend(column("flow", &flows));
     columns.extend(column("residual from the line", &residuals));
-    vec![Element::of("dcc:list", columns)]
+    let mut data = vec![Element::of("dcc:list", columns)];
+    data.extend(points_says(of));
+    data
 }
 
 fn table(rows: &[Row]) -> Vec<Element> {
@@ -298,8 +302,8 @@ fn budget(of: &Calibration) -> Vec<Element> {
 fn checks(of: &Calibration) -> Vec<Element> {
     let mut all = Vec::new();
     for check in &of.checks {
-        let text = format!("{}: {}", check.word, check.says);
-        all.push(Element::facts("dcc:text", [format!("{} — {text}", check.name)]));
+        let fact = format!("{}: {}", check.name, check.word);
+        all.push(Element::facts_and_sentences("dcc:text", [fact], [&check.says]));
         all.extend(check.value.iter().chain(&check.limits).map(quantity));
     }
     all

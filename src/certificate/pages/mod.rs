@@ -118,14 +118,17 @@ fn first_page(content: &Content) -> Vec<Block> {
             .map(|said| Block::Paragraph(said.text.as_str().into())),
     );
     blocks.push(headline(of));
+    if let Some(found) = &content.as_found {
+        let verdict = found.conformity.as_ref().map(|c| format!(" Verdict: {}.", c.word)).unwrap_or_default();
+        let work = content.changed_by_work.as_ref().map(|work| format!(" {}", work.says)).unwrap_or_default();
+        let text = Text::bold(format!("{}: ", found.title));
+        blocks.push(Block::Paragraph(text.and(format!("{}{verdict}{work}", found.headline))));
+    }
     blocks.push(drawing(of));
-    blocks.extend(
-        content
-            .statements
-            .iter()
-            .filter(|said| matches!(said.kind, StatementKind::Scope | StatementKind::Copying))
-            .map(|said| Block::FinePrint(said.text.as_str().into())),
-    );
+    let always = content.statements.iter();
+    let always = always.filter(|said| matches!(said.kind, StatementKind::Scope | StatementKind::Copying));
+    let always: Vec<&str> = always.map(|said| said.text.as_str()).collect();
+    blocks.push(Block::FinePrint(always.join(" ").into()));
     blocks
 }
 
@@ -136,7 +139,8 @@ fn days(content: &Content) -> String {
 
 fn headline(of: &Calibration) -> Block {
     Block::Sentence(Sentence {
-        statement: of.headline.as_str().into(),
+        // A number stays with its uncertainty and its unit.
+        statement: of.headline.replace(" ± ", "\u{A0}±\u{A0}").replace(" L/min", "\u{A0}L/min").into(),
         verdict: of.conformity.as_ref().map(|conformity| PaperVerdict {
             standing: match conformity.verdict {
                 Verdict::Pass => Standing::Holds,

@@ -14,7 +14,9 @@ use crate::report::number::fixed;
 /// Everything of one run, in order.
 pub(super) fn calibration(of: &Calibration, level: Level) -> Vec<Block> {
     let heading = |text: &str| Block::Heading(level, text.to_owned());
-    let mut blocks = vec![heading(of.title), run(of)];
+    // The run as found stands under a heading of its own already.
+    let title = if level == Level::Two { of.title } else { "The run" };
+    let mut blocks = vec![heading(title), run(of)];
     blocks.extend(of.conformity.iter().map(conformity));
     blocks.push(heading("Flow against intermediate pressure"));
     blocks.push(flows(of));
@@ -218,17 +220,22 @@ fn checks(of: &Calibration) -> Block {
         Column::new("in words", Align::Left),
     ];
     let rows = of.checks.iter().map(|check| {
-        let limits: Vec<String> = check.limits.iter().map(Figure::text).collect();
+        let limits: Vec<String> = check.limits.iter().map(held_together).collect();
         let row = PaperRow::new([
             check.name.to_owned(),
             check.word.to_owned(),
-            or_dash(check.value.as_ref().map(Figure::text)),
+            or_dash(check.value.as_ref().map(held_together)),
             if limits.is_empty() { "–".to_owned() } else { limits.join(" to ") },
             check.says.clone(),
         ]);
         if check.verdict == CheckVerdict::Fail { row.with(Emphasis::Strong) } else { row }
     });
     table(None, columns, rows.collect(), true)
+}
+
+/// A figure whose number and unit stay on one line.
+fn held_together(figure: &Figure) -> String {
+    figure.text().replace(' ', "\u{A0}")
 }
 
 /// A comparison as a table.

@@ -4,11 +4,19 @@
 //! same for the same document on every machine, or every [`Problem`] that forbids it, all at once. What is on paper is
 //! extractable as text, reads in order for those who do not see it, and means the same in black and white.
 //!
-//! The way: [`check`] finds problems and reads pictures, [`flow`] turns blocks into strips, [`pages`] lays strips on pages,
-//! [`paint`] paints them. [`plain`] makes text of the same model,
-//! [`read`] finds again what is inside a PDF.
+//! The way: `check` finds problems and reads pictures, `flow` turns blocks into strips, `pages` lays strips on pages,
+//! `paint` paints them. `plain` makes text of the same model, [`read`] finds again what is inside a PDF.
 //!
-//! Left out: writing from right to left, hyphenation, footnotes, a second validator of PDF/A.
+//! Texts are set in DejaVu Sans Condensed, drawings in DejaVu Sans, both bundled. A space may become a line break; write a
+//! no-break space (U+00A0) between a number and its unit. Lines of running text hold at most some 90 characters.
+//!
+//! Conformance to PDF/A-3A (ISO 19005-3, level A) is checked by the writer alone, krilla, which refuses what it knows to be
+//! against the standard; the free validator is in none of the registries this project draws on. What no program checks is
+//! kept here by hand: every text and figure is tagged in reading order, head and ornament are artifacts, no colour carries
+//! meaning.
+//!
+//! Left out: writing from right to left, hyphenation, footnotes, PDF/UA as a claim, colour profiles of logos (taken as
+//! sRGB).
 
 mod model;
 mod characters;

@@ -1,8 +1,7 @@
 //! Pages painted: the bytes of the PDF.
 //!
-//! Comes in: pages of strips. Goes out: PDF/A-3A (ISO 19005-3) on PDF 1.7. Conformance is checked by the writer alone
-//! (krilla), which refuses what it knows to be against the standard; no second validator was at hand. What stands on every
-//! page is an artifact; the same document gives the same bytes, since nothing here asks for the time or for chance.
+//! Comes in: pages of strips. Goes out: PDF/A-3A (ISO 19005-3) on PDF 1.7. What stands on every page is an artifact; the
+//! same document gives the same bytes, since nothing here asks for the time or for chance.
 
 use krilla::Document as Pdf;
 use krilla::SerializeSettings;

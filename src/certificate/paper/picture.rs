@@ -4,6 +4,7 @@
 //! the bytes is read. Letters that would vanish without a word (a family that is not bundled) are counted: the letters
 //! the XML holds against the letters that were laid out.
 
+use std::collections::HashSet;
 use std::sync::Arc;
 
 use krilla::image::{BitsPerComponent, CustomImage, Image, ImageColorspace};
@@ -19,6 +20,10 @@ const MOST_PIXELS: u64 = 25_000_000;
 const LONGEST_SIDE: u32 = 1_300;
 /// Most bytes of a drawing; those of a plot are a hundredth of it.
 const MOST_SVG_BYTES: usize = 8 << 20;
+
+/// Most elements of a drawing, and most of them that repeat others: together some fifty million at the worst.
+const MOST_ELEMENTS: usize = 100_000;
+const MOST_USES: usize = 500;
 
 /// A picture that can be set.
 #[derive(Clone)]
@@ -82,6 +87,9 @@ impl Pictures {
                 return Err(PictureFault::Pixels(what));
             }
         }
+        if !stays_small(&xml) {
+            return Err(damaged("it repeats itself without end".to_owned()));
+        }
         let options = self.options.get_or_insert_with(options);
         let tree = Tree::from_xmltree(&xml, options).map_err(|e| damaged(e.to_string()))?;
         if !tree.filters().is_empty() {
@@ -90,6 +98,24 @@ impl Pictures {
         letters_are_all_there(&xml, &tree)?;
         Ok(Picture::Drawing(Arc::new(tree)))
     }
+}
+
+/// Whether a drawing unfolds to a bounded number of elements: those it holds, and what its `use` elements repeat, which
+/// may not repeat anything in turn.
+fn stays_small(xml: &roxmltree::Document<'_>) -> bool {
+    let is_use = |node: &roxmltree::Node<'_, '_>| node.tag_name().name() == "use";
+    let elements = xml.descendants().filter(roxmltree::Node::is_element).count();
+    let uses: Vec<_> = xml.descendants().filter(is_use).collect();
+    let repeated: HashSet<&str> = uses
+        .iter()
+        .flat_map(|node| node.attributes())
+        .filter(|attribute| attribute.name() == "href")
+        .filter_map(|attribute| attribute.value().strip_prefix('#'))
+        .collect();
+    let nested = uses
+        .iter()
+        .any(|node| node.ancestors().any(|n| n.attribute("id").is_some_and(|id| repeated.contains(id))));
+    elements <= MOST_ELEMENTS && uses.len() <= MOST_USES && !nested
 }
 
 /// The bundled fonts and nothing of the machine.
