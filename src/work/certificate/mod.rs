@@ -19,6 +19,7 @@ pub use error::CertificateError;
 pub(super) use issue::issue_at;
 pub use issue::{IssueRequest, issue, look};
 pub use list::list;
+pub(super) use list::listed;
 pub use show::show;
 
 pub(super) use amend::amend_at;
