@@ -59,5 +59,6 @@ pub mod book;
 pub mod instrument;
 pub mod rig;
 pub mod logger;
+pub mod certificate;
 pub mod work;
 pub mod cli;

@@ -502,7 +502,8 @@ impl Answers<'_> {
 }
 
 /// The flow of another gas through the same hole.
-fn of_gas(flow: &FlowAt, from: Species, to: Species) -> FlowAt {
+#[must_use]
+pub fn of_gas(flow: &FlowAt, from: Species, to: Species) -> FlowAt {
     let ratio = gas_ratio(from, to, flow.p1_bar, flow.flow_l_min);
     let mut parts: Vec<(Part, f64, f64)> =
         flow.parts.iter().map(|(p, u, dof)| (*p, u * ratio.value, *dof)).collect();

@@ -294,6 +294,28 @@ pub enum BookError {
         /// The name asked for.
         id: String,
     },
+    /// A certificate whose number was never given out.
+    #[error("there is no certificate {number} in {}: certificate list shows those there are", path.display())]
+    NoSuchCertificate {
+        /// The book.
+        path: PathBuf,
+        /// The number asked for.
+        number: String,
+    },
+    /// A shop's pattern that makes no numbers.
+    #[error("the shop's number_pattern {pattern:?} makes no certificate numbers: set it anew (shop edit)")]
+    NoNumbers {
+        /// The pattern.
+        pattern: String,
+    },
+    /// A second certificate that amends the same one.
+    #[error("certificate {number} is amended by {by} already: amend that one")]
+    AmendedAlready {
+        /// The certificate.
+        number: String,
+        /// The one that amends it.
+        by: String,
+    },
     /// A file where the copy would go.
     #[error("{} is there already: name another file, or say that it may be replaced (a book in use never is)", path.display())]
     CopyThere {
@@ -368,6 +390,9 @@ impl BookError {
             | Self::NoReason { .. }
             | Self::Taken { .. }
             | Self::Unknown { .. }
+            | Self::NoSuchCertificate { .. }
+            | Self::NoNumbers { .. }
+            | Self::AmendedAlready { .. }
             | Self::CopyThere { .. } => true,
         }
     }

@@ -44,7 +44,7 @@ pub fn value_and_u(value: f64, u: f64) -> (String, String) {
     if !(u.is_finite() && u > 0.0) {
         return (figures(value, 4), String::new());
     }
-    let (rounded, decimals) = rounded_u(u);
+    let (rounded, decimals) = rounded_uncertainty(u);
     (fixed(value, decimals), fixed(rounded, decimals))
 }
 
@@ -54,7 +54,7 @@ pub fn u_alone(u: f64) -> String {
     if !(u.is_finite() && u > 0.0) {
         return figures(u, 2);
     }
-    let (rounded, decimals) = rounded_u(u);
+    let (rounded, decimals) = rounded_uncertainty(u);
     fixed(rounded, decimals)
 }
 
@@ -132,8 +132,10 @@ pub fn probability(p: f64) -> String {
     }
 }
 
-/// Two significant figures, rounded up when more than 5 % would be lost, and the decimals that takes.
-fn rounded_u(u: f64) -> (f64, i32) {
+/// An uncertainty above nought to two significant figures, rounded up when more than 5 % would be lost, and the decimals
+/// that takes; fewer than none where it ends before the point.
+#[must_use]
+pub fn rounded_uncertainty(u: f64) -> (f64, i32) {
     let decimals = 1 - exponent_of(significant(u, 2));
     let unit = libm::pow(10.0, f64::from(-decimals));
     let nearest = (u / unit).round() * unit;

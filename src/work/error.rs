@@ -2,6 +2,7 @@
 
 use std::path::PathBuf;
 
+use super::certificate::CertificateError;
 use super::enter::EnterError;
 use super::enter_session::SessionEnterError;
 use super::png::PngError;
@@ -222,6 +223,9 @@ pub enum WorkError {
     /// A sheet's file name has another ending.
     #[error("{0}: the sheet is written as .txt, name the file so")]
     SheetKind(PathBuf),
+    /// Certificates.
+    #[error(transparent)]
+    Certificate(#[from] CertificateError),
     /// The book.
     #[error(transparent)]
     Book(#[from] BookError),
@@ -395,6 +399,7 @@ impl WorkError {
             | Self::Trials(_)
             | Self::NoMonteCarlo(_)
             | Self::PlotKind(_) => ExitStatus::Wrong,
+            Self::Certificate(error) => error.status(),
             Self::Book(error) => book_status(error),
             Self::Rig(error) => rig_status(error),
             Self::Port(_)

@@ -10,6 +10,7 @@
 //! Left out: salts and links (a backup keeps them), sessions and divers unless they were asked for, readings of a point
 //! as they were before a correction but for pressure and flow.
 
+mod certificates;
 mod decisions;
 mod folder;
 mod live_files;
@@ -70,6 +71,7 @@ fn fill(folder: &mut Folder, book: &Book, to: &Path, with_divers: bool) -> Resul
         left_out: Vec::new(),
         entries: Vec::new(),
         judgements: 0,
+        certificates: 0,
         with_divers,
         blocks: false,
         session_blocks: false,
@@ -85,6 +87,7 @@ fn fill(folder: &mut Folder, book: &Book, to: &Path, with_divers: bool) -> Resul
     }
     folder.write("entries.toml", toml_text(&Listed { entry: listed }).as_bytes())?;
     runs(folder, book, &mut exported)?;
+    exported.certificates = certificates::write(folder, book)?;
     let info = book.info()?;
     if with_divers {
         sessions::sessions(folder, book, &mut exported)?;
