@@ -153,7 +153,8 @@ pub enum BookError {
     NotPoints,
     /// A run or session that another process logs.
     #[error(
-        "{what} is being logged by another process (number {process}), which holds its instruments: stop that one first, or watch"
+        "{what} is being logged by another process (number {process}), which holds its instruments: stop that one first{}",
+        or_watch(*what)
     )]
     Held {
         /// What.
@@ -330,6 +331,14 @@ pub enum BookError {
         /// What was found.
         what: String,
     },
+}
+
+/// That a run can be watched meanwhile; a session cannot yet.
+const fn or_watch(what: Logged) -> &'static str {
+    match what {
+        Logged::Run(_) => ", or watch it (bench resume)",
+        Logged::Session(_) => "",
+    }
 }
 
 /// What a file is that is no book.

@@ -117,6 +117,15 @@ pub enum WorkError {
         /// Those there are.
         there: String,
     },
+    /// No register to look an instrument up in.
+    #[error(
+        "there is no book at {}, and so no instrument in its register: ebbline instrument add FILE.toml registers one, and \
+         ebbline rig simulates a bench to try", book.display()
+    )]
+    NoInstruments {
+        /// Where the book would be.
+        book: PathBuf,
+    },
     /// An instrument that cannot be logged from.
     #[error("{id} {why}: name an instrument that measures {measures} (there: {there})")]
     NoSuchInstrument {
@@ -390,6 +399,7 @@ impl WorkError {
             | Self::ListenFor(_)
             | Self::LogSetup(_)
             | Self::NoCellCalibration
+            | Self::NoInstruments { .. }
             | Self::NoInjection(_)
             | Self::SessionLogSetup(_)
             | Self::WhichInstrument { .. }

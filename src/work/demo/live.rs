@@ -22,7 +22,7 @@ use crate::work::runs::judge;
 use crate::work::shelf::{Shelf, stamped};
 
 /// How many times as fast as the machine's the clock goes.
-const TIMES: f64 = 12.0;
+const TIMES: f64 = 8.0;
 /// Levels that are set, bar gauge, and for how long each is held.
 const LEVELS_BAR: [f64; 6] = [5.0, 8.0, 11.0, 12.5, 9.5, 6.5];
 const HELD_S: f64 = 28.0;
