@@ -442,3 +442,69 @@ pub fn shown_json(shown: &ShownCertificate) -> String {
     }
     json_text(&document)
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn listed() -> ListedCertificate {
+        ListedCertificate {
+            number: "2026-0001".to_owned(),
+            run: RunNumber::new(1).unwrap(),
+            as_found: None,
+            orifice: "CMF-0417".to_owned(),
+            issued: DateTime::parse_from_rfc3339("2026-11-13T09:00:00+11:00").unwrap(),
+            amends: None,
+            amended_by: None,
+            sha256: Some(("a".to_owned(), "b".to_owned())),
+        }
+    }
+
+    #[test]
+    fn a_certificate_in_a_list_says_how_it_stands() {
+        let other = |replaces| Some(("2026-0002".to_owned(), replaces));
+        assert_eq!(listed().state(), "issued");
+        assert_eq!(ListedCertificate { amends: other(false), ..listed() }.state(), "amends 2026-0002");
+        assert_eq!(
+            ListedCertificate { amended_by: other(true), ..listed() }.state(),
+            "replaced by 2026-0002"
+        );
+        // That its files are missing comes first: something has to be done.
+        let missing = ListedCertificate { sha256: None, amended_by: other(true), ..listed() };
+        assert_eq!(missing.state(), "files not written: certificate issue 2026-0001");
+        assert!(list_text(&[listed()], true).contains("--all"));
+    }
+
+    fn checked(outcome: Outcome, here: Here) -> CheckedCertificate {
+        CheckedCertificate {
+            file: "x.xml".to_owned(),
+            number: "2026-0001".to_owned(),
+            outcome,
+            findings: Vec::new(),
+            more: 0,
+            numbers: 1,
+            texts: 2,
+            files: 3,
+            wordings: 0,
+            pages: PagesCompared::None,
+            here,
+        }
+    }
+
+    #[test]
+    fn only_a_check_that_holds_says_what_that_does_not_mean() {
+        let text = check_text(&checked(Outcome::Holds, Here::NoBook));
+        assert!(
+            text.contains("HOLDS") && text.contains("not genuine") && text.contains("1 number, 2 texts"),
+            "{text}"
+        );
+        let text = check_text(&checked(Outcome::DoesNotHold, Here::Differs));
+        assert!(text.contains("DOES NOT HOLD") && !text.contains("genuine"), "{text}");
+        let other = Outcome::NotChecked { method: 9, program: "7.0".to_owned() };
+        let text = check_text(&checked(other.clone(), Here::NoBook));
+        assert!(text.contains("method 9 of version 7.0") && !text.contains("compared:"), "{text}");
+        let json: Value = serde_json::from_str(&check_json(&checked(other, Here::Unknown))).unwrap();
+        assert_eq!((&json["holds"], &json["issued_here"]), (&Value::Null, &Value::Null));
+        assert!(json["why_not"].as_str().unwrap().starts_with("NOT CHECKED"), "{json}");
+    }
+}
