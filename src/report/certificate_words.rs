@@ -160,7 +160,10 @@ pub enum Here {
     /// There is no book.
     NoBook,
     /// The book gave out no such number.
-    Unknown,
+    Unknown {
+        /// Although the certificate bears the name of the shop whose book it is.
+        our_name: bool,
+    },
     /// The book gave it out, and may not have written its files.
     Unfinished,
     /// It is the file that was issued.
@@ -270,7 +273,10 @@ pub fn check_text(checked: &CheckedCertificate) -> String {
 fn here_says(here: &Here) -> String {
     match here {
         Here::NoBook => "no book is here to say whether it was issued".to_owned(),
-        Here::Unknown => "the book here gave out no such number".to_owned(),
+        Here::Unknown { our_name: false } => "the book here gave out no such number".to_owned(),
+        Here::Unknown { our_name: true } => "the book here gave out no such number, although the certificate bears the name of \
+            its shop: if the shop has no other book, it was not issued by it"
+            .to_owned(),
         Here::Unfinished => {
             "the book here gave out this number, but its files were not noted as written: issue it again first".to_owned()
         }
@@ -291,7 +297,7 @@ pub fn check_json(checked: &CheckedCertificate) -> String {
         Outcome::NotChecked { .. } => (Value::Null, Some(check_line(checked))),
     };
     let issued_here = match checked.here {
-        Here::NoBook | Here::Unknown | Here::Unfinished => Value::Null,
+        Here::NoBook | Here::Unknown { .. } | Here::Unfinished => Value::Null,
         Here::Unchanged { .. } => Value::Bool(true),
         Here::Differs => Value::Bool(false),
     };
@@ -503,7 +509,8 @@ mod tests {
         let other = Outcome::NotChecked { method: 9, program: "7.0".to_owned() };
         let text = check_text(&checked(other.clone(), Here::NoBook));
         assert!(text.contains("method 9 of version 7.0") && !text.contains("compared:"), "{text}");
-        let json: Value = serde_json::from_str(&check_json(&checked(other, Here::Unknown))).unwrap();
+        let json: Value =
+            serde_json::from_str(&check_json(&checked(other, Here::Unknown { our_name: true }))).unwrap();
         assert_eq!((&json["holds"], &json["issued_here"]), (&Value::Null, &Value::Null));
         assert!(json["why_not"].as_str().unwrap().starts_with("NOT CHECKED"), "{json}");
     }

@@ -335,6 +335,20 @@ fn what_was_changed_does_not_hold_and_what_is_no_certificate_is_refused() {
             "{json}"
         );
     }
+    // A number that was never given, under the name of this shop.
+    desk.done(&["shop", "edit", "--number-pattern", "X{n}"]);
+    let unknown = shop("certificate-unknown");
+    unknown.done(&["shop", "edit", "--number-pattern", "HOW-{n}"]);
+    let run = judged(&unknown, "A", "2025-06-02", "acceptance", 1.0);
+    unknown.done(&["certificate", "issue", &run]);
+    desk.write("unknown.xml", bytes(&unknown, "HOW-1.xml"));
+    let (said, json) = check(&desk, "book.db", "unknown.xml");
+    assert_eq!(
+        (said.status, &json["holds"], &json["issued_here"]),
+        (0, &json!(true), &Value::Null),
+        "{said:?}"
+    );
+    assert!(json["book_says"].as_str().unwrap().contains("bears the name of its shop"), "{json}");
     // A PDF with one byte changed behind its end.
     let mut pdf = bytes(&desk, &format!("{number}.pdf"));
     pdf.extend_from_slice(b"\n% more\n");
