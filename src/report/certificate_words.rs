@@ -160,7 +160,10 @@ pub enum Here {
     /// There is no book.
     NoBook,
     /// The book gave out no such number.
-    Unknown,
+    Unknown {
+        /// Although the certificate bears the name of the shop whose book it is.
+        our_name: bool,
+    },
     /// The book gave it out, and may not have written its files.
     Unfinished,
     /// It is the file that was issued.
@@ -270,7 +273,10 @@ pub fn check_text(checked: &CheckedCertificate) -> String {
 fn here_says(here: &Here) -> String {
     match here {
         Here::NoBook => "no book is here to say whether it was issued".to_owned(),
-        Here::Unknown => "the book here gave out no such number".to_owned(),
+        Here::Unknown { our_name: false } => "the book here gave out no such number".to_owned(),
+        Here::Unknown { our_name: true } => "the book here gave out no such number, although the certificate bears the name of \
+            its shop: if the shop has no other book, it was not issued by it"
+            .to_owned(),
         Here::Unfinished => {
             "the book here gave out this number, but its files were not noted as written: issue it again first".to_owned()
         }
@@ -291,7 +297,7 @@ pub fn check_json(checked: &CheckedCertificate) -> String {
         Outcome::NotChecked { .. } => (Value::Null, Some(check_line(checked))),
     };
     let issued_here = match checked.here {
-        Here::NoBook | Here::Unknown | Here::Unfinished => Value::Null,
+        Here::NoBook | Here::Unknown { .. } | Here::Unfinished => Value::Null,
         Here::Unchanged { .. } => Value::Bool(true),
         Here::Differs => Value::Bool(false),
     };
@@ -441,4 +447,71 @@ pub fn shown_json(shown: &ShownCertificate) -> String {
         map.insert("text".to_owned(), shown.text.clone().into());
     }
     json_text(&document)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn listed() -> ListedCertificate {
+        ListedCertificate {
+            number: "2026-0001".to_owned(),
+            run: RunNumber::new(1).unwrap(),
+            as_found: None,
+            orifice: "CMF-0417".to_owned(),
+            issued: DateTime::parse_from_rfc3339("2026-11-13T09:00:00+11:00").unwrap(),
+            amends: None,
+            amended_by: None,
+            sha256: Some(("a".to_owned(), "b".to_owned())),
+        }
+    }
+
+    #[test]
+    fn a_certificate_in_a_list_says_how_it_stands() {
+        let other = |replaces| Some(("2026-0002".to_owned(), replaces));
+        assert_eq!(listed().state(), "issued");
+        assert_eq!(ListedCertificate { amends: other(false), ..listed() }.state(), "amends 2026-0002");
+        assert_eq!(
+            ListedCertificate { amended_by: other(true), ..listed() }.state(),
+            "replaced by 2026-0002"
+        );
+        // That its files are missing comes first: something has to be done.
+        let missing = ListedCertificate { sha256: None, amended_by: other(true), ..listed() };
+        assert_eq!(missing.state(), "files not written: certificate issue 2026-0001");
+        assert!(list_text(&[listed()], true).contains("--all"));
+    }
+
+    fn checked(outcome: Outcome, here: Here) -> CheckedCertificate {
+        CheckedCertificate {
+            file: "x.xml".to_owned(),
+            number: "2026-0001".to_owned(),
+            outcome,
+            findings: Vec::new(),
+            more: 0,
+            numbers: 1,
+            texts: 2,
+            files: 3,
+            wordings: 0,
+            pages: PagesCompared::None,
+            here,
+        }
+    }
+
+    #[test]
+    fn only_a_check_that_holds_says_what_that_does_not_mean() {
+        let text = check_text(&checked(Outcome::Holds, Here::NoBook));
+        assert!(
+            text.contains("HOLDS") && text.contains("not genuine") && text.contains("1 number, 2 texts"),
+            "{text}"
+        );
+        let text = check_text(&checked(Outcome::DoesNotHold, Here::Differs));
+        assert!(text.contains("DOES NOT HOLD") && !text.contains("genuine"), "{text}");
+        let other = Outcome::NotChecked { method: 9, program: "7.0".to_owned() };
+        let text = check_text(&checked(other.clone(), Here::NoBook));
+        assert!(text.contains("method 9 of version 7.0") && !text.contains("compared:"), "{text}");
+        let json: Value =
+            serde_json::from_str(&check_json(&checked(other, Here::Unknown { our_name: true }))).unwrap();
+        assert_eq!((&json["holds"], &json["issued_here"]), (&Value::Null, &Value::Null));
+        assert!(json["why_not"].as_str().unwrap().starts_with("NOT CHECKED"), "{json}");
+    }
 }

@@ -76,8 +76,7 @@ CREATE TABLE certificate (
   replaces INTEGER,                                     -- 1 where it replaces that one, 0 where it amends it
   issued   TEXT    NOT NULL                             -- when, RFC 3339 with its offset
 ) STRICT;
-CREATE INDEX certificate_run     ON certificate (run, seq);
-CREATE INDEX certificate_counter ON certificate (year, counter);
+CREATE INDEX        certificate_run    ON certificate (run, seq);
 CREATE UNIQUE INDEX certificate_amends ON certificate (amends) WHERE amends IS NOT NULL;
 
 -- Certificates whose files were written.

@@ -27,10 +27,10 @@ pub fn check(shelf: Option<&Shelf>, file: &Path) -> Result<CheckedCertificate, W
     let bytes = read(file)?;
     let name = tame(&file.display().to_string());
     let checked = check_bytes(&bytes, &name).map_err(CertificateError::from)?;
-    let Checked { findings, xml, .. } = &checked;
+    let findings = &checked.findings;
     let here = match shelf {
         None => Here::NoBook,
-        Some(shelf) => here(shelf, &findings.number, &bytes, xml)?,
+        Some(shelf) => here(shelf, &bytes, &checked)?,
     };
     Ok(said(name, findings, here))
 }
@@ -65,14 +65,17 @@ fn read(path: &Path) -> Result<Vec<u8>, WorkError> {
 }
 
 /// What the book says of it, if there is one.
-fn here(shelf: &Shelf, number: &str, bytes: &[u8], xml: &[u8]) -> Result<Here, WorkError> {
+fn here(shelf: &Shelf, bytes: &[u8], checked: &Checked) -> Result<Here, WorkError> {
+    let Checked { findings, xml, again } = checked;
     let book = match shelf.to_read() {
         Ok(book) => book,
         Err(WorkError::Book(BookError::NoBook { .. })) => return Ok(Here::NoBook),
         Err(error) => return Err(error),
     };
-    let Some(GivenCertificate { files, amended_by, .. }) = book.certificate(number)? else {
-        return Ok(Here::Unknown);
+    let Some(GivenCertificate { files, amended_by, .. }) = book.certificate(&findings.number)? else {
+        let ours = book.shop()?.zip(again.as_ref());
+        let our_name = ours.is_some_and(|(ours, theirs)| ours.entry.name == theirs.issue.shop.name);
+        return Ok(Here::Unknown { our_name });
     };
     let Some(files) = files else { return Ok(Here::Unfinished) };
     let same = digest(xml) == files.xml && (bytes.len() == xml.len() || digest(bytes) == files.pdf);

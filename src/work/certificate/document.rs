@@ -77,7 +77,9 @@ pub(super) fn stated(book: &Book, certificate: &Certificate) -> Result<Issue, Wo
     let shop = book.shop_revision(draft.shop_revision)?.ok_or(WorkError::NoShop)?.entry;
     let orifice = &draft.results.header.orifice;
     let item = book.revision::<Orifice>(orifice, draft.orifice_revision)?;
-    let item = item.ok_or_else(|| WorkError::NoOrifice(orifice.clone()))?.entry;
+    let mut item = item.ok_or_else(|| WorkError::NoOrifice(orifice.clone()))?.entry;
+    // The run has the register's build, or its own where the register knows none.
+    item.build = draft.results.header.build;
     let (seq, link) = certificate.head;
     Ok(Issue {
         number: certificate.number.clone(),

@@ -150,10 +150,17 @@ pub(super) fn new(
     agrees: impl FnOnce(&Certificate) -> Result<(), WorkError>,
 ) -> Result<IssuedCertificate, WorkError> {
     // Everything that can go wrong goes wrong with the number in sight, before it is used.
-    let in_sight = book.number_in_sight(draft.clone())?;
-    let made = make(book, &in_sight)?;
-    make_folder(into)?;
-    not_another(into, &made)?;
+    let (in_sight, made) = loop {
+        let in_sight = book.number_in_sight(draft.clone())?;
+        let made = make(book, &in_sight)?;
+        make_folder(into)?;
+        match not_another(into, &made) {
+            Ok(()) => break (in_sight, made),
+            // Another process may have taken the number meanwhile, and the file is its own.
+            Err(_) if book.number_in_sight(draft.clone())?.number != in_sight.number => {}
+            Err(refused) => return Err(refused),
+        }
+    };
     let given = stamped(|stamp| book.give_number(draft.clone(), stamp))??;
     if given.draft != draft {
         agrees(&given)?;
