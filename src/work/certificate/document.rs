@@ -104,6 +104,7 @@ pub(super) fn stated(book: &Book, certificate: &Certificate) -> Result<Issue, Wo
         chain_head: Some(Head { seq, link }.to_string()),
         amends: draft.amends.as_ref().map(|amends| Amendment {
             replaces: amends.number.clone(),
+            instead: amends.replaces,
             what: amends.what.clone(),
             why: amends.why.clone(),
             digest: amends.xml.map(|digest| hex(&digest)),
