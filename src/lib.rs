@@ -58,6 +58,7 @@ pub mod record;
 pub mod book;
 pub mod instrument;
 pub mod rig;
+pub mod logger;
 pub mod certificate;
 pub mod work;
 pub mod cli;

@@ -23,7 +23,7 @@ const MOST_LINES: usize = 700;
 const MOST_LINES_FOR_DEVELOPERS: usize = 200;
 /// Longer sources, each with the lines it may have and its reason.
 const LONGER: &[(&str, usize, &str)] =
-    &[("tests/published_stats.rs", 750, "a table of published examples, one check after another")];
+    &[("tests/published/published_stats.rs", 750, "a table of published examples, one check after another")];
 
 fn root() -> &'static Path {
     Path::new(env!("CARGO_MANIFEST_DIR"))

@@ -5,17 +5,15 @@
 
 use std::borrow::Cow;
 
-use chrono::{DateTime, FixedOffset};
-use rusqlite::types::Value;
-
 use super::canonical::{self, Bytes, Canonical, Reader, Unreadable, Writer, session_header};
 use super::registers::Entry;
 use super::runs::{Origin, SourceFiles};
 use super::sessions::{Extent, FileRole};
 use crate::entry::{
-    Decision, Diver, Event, FirstStage, Instrument, LeftOut, Orifice, PointReading, Readings, Run, RunNumber,
-    Session, SessionLeftOut, SessionNumber, Shop,
+    Decision, Diver, Event, FirstStage, Instrument, LeftOut, LiveNote, LivePoint, LiveReadings, LoggingBegun,
+    Orifice, PointReading, Readings, Run, RunNumber, Session, SessionLeftOut, SessionNumber, Shop,
 };
+use chrono::{DateTime, FixedOffset};
 
 /// First byte of every payload: the form of the bytes that follow it.
 ///
@@ -45,6 +43,10 @@ pub(super) enum Kind {
     Shop = 15,
     Erasure = 16,
     CopyMade = 17,
+    LoggingBegun = 18,
+    LiveReadings = 19,
+    PointTaken = 20,
+    LiveNote = 21,
     Diver = 1000,
     Session = 1001,
     SessionReadings = 1002,
@@ -57,10 +59,12 @@ pub(super) enum Kind {
     SessionRowStruck = 1009,
     SessionRestated = 1010,
     SessionFinished = 1011,
+    SessionLoggingBegun = 1012,
+    SessionNote = 1013,
 }
 
 impl Kind {
-    const ALL: [Self; 29] = [
+    const ALL: [Self; 35] = [
         Self::Begun,
         Self::Run,
         Self::Readings,
@@ -78,6 +82,10 @@ impl Kind {
         Self::Shop,
         Self::Erasure,
         Self::CopyMade,
+        Self::LoggingBegun,
+        Self::LiveReadings,
+        Self::PointTaken,
+        Self::LiveNote,
         Self::Diver,
         Self::Session,
         Self::SessionReadings,
@@ -90,6 +98,8 @@ impl Kind {
         Self::SessionRowStruck,
         Self::SessionRestated,
         Self::SessionFinished,
+        Self::SessionLoggingBegun,
+        Self::SessionNote,
     ];
 
     /// The kind of a number, if this program knows it.
@@ -135,6 +145,14 @@ pub(super) enum Body<'a> {
     LeftOut { run: RunNumber, left_out: LeftOut, by: Option<String> },
     /// A run was decided upon.
     Decided { run: RunNumber, decision: Box<Decision> },
+    /// A process began to log a run, or went on.
+    LoggingBegun { run: RunNumber, begun: LoggingBegun },
+    /// Readings of one instrument of a logged run.
+    LiveReadings { run: RunNumber, readings: Cow<'a, LiveReadings> },
+    /// The next point of a logged run.
+    PointTaken { run: RunNumber, point: LivePoint },
+    /// Something that happened to an instrument of a logged run.
+    LiveNote { run: RunNumber, note: Cow<'a, LiveNote> },
     /// An entry of a register; `replaces` is the record of the revision before.
     Entry { revision: u32, replaces: Option<u64>, entry: Box<Entry> },
     /// A session was recorded or begun; its header, and how far its readings go, none while they still come.
@@ -165,6 +183,10 @@ pub(super) enum Body<'a> {
     SessionRestated { session: SessionNumber, replaces: u64, header: Cow<'a, Session> },
     /// All rows of a session are in: its cells, and how far the readings that stand go.
     SessionFinished { session: SessionNumber, cells: usize, extent: Extent },
+    /// A process began to log a session, or went on.
+    SessionLoggingBegun { session: SessionNumber, begun: LoggingBegun },
+    /// Something that happened to an instrument of a logged session, or an alarm.
+    SessionNote { session: SessionNumber, note: Cow<'a, LiveNote> },
     /// Payloads were erased, among them those of `sessions`, whose numbers stay used.
     Erasure { erased: Vec<u64>, sessions: Vec<SessionNumber>, why: String },
     /// A copy was made.
@@ -176,13 +198,6 @@ pub(super) enum Body<'a> {
 pub(super) struct Record<'a> {
     pub(super) at: DateTime<FixedOffset>,
     pub(super) body: Body<'a>,
-}
-
-/// A row of a table for lists: the table and its columns; the first column is its key.
-#[derive(Debug, Clone, PartialEq)]
-pub(super) struct Row {
-    pub(super) table: &'static str,
-    pub(super) columns: Vec<(&'static str, Value)>,
 }
 
 impl Body<'_> {
@@ -199,6 +214,10 @@ impl Body<'_> {
             Self::RunFinished { .. } => Kind::RunFinished,
             Self::LeftOut { .. } => Kind::LeftOut,
             Self::Decided { .. } => Kind::Decided,
+            Self::LoggingBegun { .. } => Kind::LoggingBegun,
+            Self::LiveReadings { .. } => Kind::LiveReadings,
+            Self::PointTaken { .. } => Kind::PointTaken,
+            Self::LiveNote { .. } => Kind::LiveNote,
             Self::Entry { entry, .. } => entry.register().kind(),
             Self::Session { .. } => Kind::Session,
             Self::SessionReadings { .. } => Kind::SessionReadings,
@@ -211,6 +230,8 @@ impl Body<'_> {
             Self::SessionRowStruck { .. } => Kind::SessionRowStruck,
             Self::SessionRestated { .. } => Kind::SessionRestated,
             Self::SessionFinished { .. } => Kind::SessionFinished,
+            Self::SessionLoggingBegun { .. } => Kind::SessionLoggingBegun,
+            Self::SessionNote { .. } => Kind::SessionNote,
             Self::Erasure { .. } => Kind::Erasure,
             Self::CopyMade { .. } => Kind::CopyMade,
         }
@@ -227,7 +248,11 @@ impl Body<'_> {
             | Self::RunRestated { run, .. }
             | Self::RunFinished { run }
             | Self::LeftOut { run, .. }
-            | Self::Decided { run, .. } => Some(*run),
+            | Self::Decided { run, .. }
+            | Self::LoggingBegun { run, .. }
+            | Self::LiveReadings { run, .. }
+            | Self::PointTaken { run, .. }
+            | Self::LiveNote { run, .. } => Some(*run),
             _ => None,
         }
     }
@@ -245,7 +270,9 @@ impl Body<'_> {
             | Self::SessionEventCorrected { session, .. }
             | Self::SessionRowStruck { session, .. }
             | Self::SessionRestated { session, .. }
-            | Self::SessionFinished { session, .. } => Some(*session),
+            | Self::SessionFinished { session, .. }
+            | Self::SessionLoggingBegun { session, .. }
+            | Self::SessionNote { session, .. } => Some(*session),
             _ => None,
         }
     }
@@ -299,6 +326,22 @@ pub(super) fn write(record: &Record<'_>) -> Vec<u8> {
         Body::Decided { run, decision } => {
             run.write(out);
             decision.write(out);
+        }
+        Body::LoggingBegun { run, begun } => {
+            run.write(out);
+            begun.write(out);
+        }
+        Body::LiveReadings { run, readings } => {
+            run.write(out);
+            readings.write(out);
+        }
+        Body::PointTaken { run, point } => {
+            run.write(out);
+            point.write(out);
+        }
+        Body::LiveNote { run, note } => {
+            run.write(out);
+            note.write(out);
         }
         Body::Entry { revision, replaces, entry } => {
             revision.write(out);
@@ -370,6 +413,14 @@ pub(super) fn write(record: &Record<'_>) -> Vec<u8> {
             cells.write(out);
             extent.write(out);
         }
+        Body::SessionLoggingBegun { session, begun } => {
+            session.write(out);
+            begun.write(out);
+        }
+        Body::SessionNote { session, note } => {
+            session.write(out);
+            note.write(out);
+        }
         Body::Erasure { erased, sessions, why } => {
             erased.write(out);
             sessions.write(out);
@@ -436,6 +487,16 @@ pub(super) fn read(kind: u16, bytes: &[u8]) -> Result<Record<'static>, Unreadabl
         Kind::Decided => {
             Body::Decided { run: Canonical::read(from)?, decision: Box::new(Canonical::read(from)?) }
         }
+        Kind::LoggingBegun => {
+            Body::LoggingBegun { run: Canonical::read(from)?, begun: Canonical::read(from)? }
+        }
+        Kind::LiveReadings => {
+            Body::LiveReadings { run: Canonical::read(from)?, readings: Cow::Owned(Canonical::read(from)?) }
+        }
+        Kind::PointTaken => Body::PointTaken { run: Canonical::read(from)?, point: Canonical::read(from)? },
+        Kind::LiveNote => {
+            Body::LiveNote { run: Canonical::read(from)?, note: Cow::Owned(Canonical::read(from)?) }
+        }
         Kind::Orifice => entry(from, |from| Orifice::read(from).map(Entry::Orifice))?,
         Kind::Instrument => entry(from, |from| Instrument::read(from).map(Entry::Instrument))?,
         Kind::FirstStage => entry(from, |from| FirstStage::read(from).map(Entry::FirstStage))?,
@@ -497,6 +558,12 @@ pub(super) fn read(kind: u16, bytes: &[u8]) -> Result<Record<'static>, Unreadabl
             cells: Canonical::read(from)?,
             extent: Canonical::read(from)?,
         },
+        Kind::SessionLoggingBegun => {
+            Body::SessionLoggingBegun { session: Canonical::read(from)?, begun: Canonical::read(from)? }
+        }
+        Kind::SessionNote => {
+            Body::SessionNote { session: Canonical::read(from)?, note: Cow::Owned(Canonical::read(from)?) }
+        }
         Kind::Erasure => Body::Erasure {
             erased: Canonical::read(from)?,
             sessions: Canonical::read(from)?,
@@ -516,149 +583,7 @@ fn entry(
     Ok(Body::Entry { revision, replaces, entry: Box::new(read(from)?) })
 }
 
-/// The rows by which a record is found.
-pub(super) fn rows(seq: u64, record: &Record<'_>) -> Vec<Row> {
-    let Record { at, body } = record;
-    let mut rows = Vec::new();
-    let kind = Value::Integer(i64::from(body.kind().number()));
-    if let Some(run) = body.run() {
-        let columns = vec![("seq", place(seq)), ("run", number(run.get())), ("kind", kind)];
-        rows.push(Row { table: "of_run", columns });
-    } else if let Some(session) = body.session() {
-        let columns = vec![("seq", place(seq)), ("session", number(session.get())), ("kind", kind)];
-        rows.push(Row { table: "of_session", columns });
-    }
-    match body {
-        Body::Run { number: run, origin, source, header } => {
-            let columns = vec![
-                ("seq", place(seq)),
-                ("number", number(run.get())),
-                ("orifice", text(header.orifice.as_str())),
-                ("orifice_key", text(&super::registers::key_of(header.orifice.as_str()))),
-                ("gas", code(&header.gas)),
-                ("purpose", code(&header.purpose)),
-                ("taken", text(&header.taken.to_rfc3339())),
-                ("taken_s", Value::Integer(header.taken.timestamp())),
-                ("technician", header.technician.as_deref().map_or(Value::Null, text)),
-                ("origin", code(origin)),
-                ("source", digest(*source)),
-            ];
-            rows.push(Row { table: "run", columns });
-        }
-        Body::Decided { run, decision } => {
-            let figures = &decision.figures;
-            let columns = vec![
-                ("seq", place(seq)),
-                ("run", number(run.get())),
-                ("verdict", code(&decision.verdict)),
-                ("method", Value::Integer(i64::from(figures.method_revision))),
-                ("ip_pa", real(figures.ip.as_pa())),
-                ("flow_l_min", real(figures.flow_l_min)),
-                ("expanded_l_min", real(figures.expanded_l_min())),
-                ("decided", text(&decision.at.to_rfc3339())),
-            ];
-            rows.push(Row { table: "decision", columns });
-        }
-        Body::Entry { revision, entry, .. } => {
-            let columns = vec![
-                ("seq", place(seq)),
-                ("register", Value::Integer(entry.register().number())),
-                ("key", text(&super::registers::key_of(entry.name()))),
-                ("id", text(entry.name())),
-                ("revision", Value::Integer(i64::from(*revision))),
-            ];
-            rows.push(Row { table: "register", columns });
-        }
-        Body::Session { number: session, origin, source, extent, header } => {
-            let columns = vec![
-                ("seq", place(seq)),
-                ("number", number(session.get())),
-                ("diver", text(header.diver.as_str())),
-                ("diver_key", text(&super::registers::key_of(header.diver.as_str()))),
-                ("place", code(&header.place)),
-                ("kept", code(&header.kept)),
-                ("taken", text(&header.taken.to_rfc3339())),
-                ("recorded", text(&at.to_rfc3339())),
-                ("origin", code(origin)),
-                ("first_s", extent.map_or(Value::Null, |extent| real(extent.first_s))),
-                ("last_s", extent.map_or(Value::Null, |extent| real(extent.last_s))),
-                ("cells", count(header.readings.cells.len())),
-                ("readings", extent.map_or(Value::Null, |extent| count(extent.rows))),
-                ("source", digest(*source)),
-            ];
-            rows.push(Row { table: "session", columns });
-        }
-        Body::SessionLeftOut { session, left_out } => {
-            let (from, to) = left_out.stretch_s.unzip();
-            let columns = vec![
-                ("seq", place(seq)),
-                ("session", number(session.get())),
-                ("whole", Value::Integer(i64::from(left_out.stretch_s.is_none()))),
-                ("from_s", from.map_or(Value::Null, real)),
-                ("to_s", to.map_or(Value::Null, real)),
-            ];
-            rows.push(Row { table: "session_left_out", columns });
-        }
-        Body::SessionFinished { session, cells, extent } => {
-            let columns = vec![
-                ("seq", place(seq)),
-                ("session", number(session.get())),
-                ("cells", count(*cells)),
-                ("readings", count(extent.rows)),
-                ("first_s", real(extent.first_s)),
-                ("last_s", real(extent.last_s)),
-            ];
-            rows.push(Row { table: "session_finished", columns });
-        }
-        Body::Erasure { erased, sessions, .. } => {
-            for session in sessions {
-                let columns = vec![("number", number(session.get())), ("erasure", place(seq))];
-                rows.push(Row { table: "session_erased", columns });
-            }
-            for target in erased {
-                let columns = vec![("seq", place(*target)), ("erasure", place(seq))];
-                rows.push(Row { table: "erased", columns });
-            }
-        }
-        _ => {}
-    }
-    rows
-}
-
-/// A place in the chain as SQLite keeps it; SQLite counts rows to 2⁶³ − 1, and a place comes from there.
-pub(super) fn place(seq: u64) -> Value {
-    Value::Integer(i64::try_from(seq).unwrap_or(i64::MAX))
-}
-
-fn number(number: u32) -> Value {
-    Value::Integer(i64::from(number))
-}
-
-fn count(count: usize) -> Value {
-    Value::Integer(i64::try_from(count).unwrap_or(i64::MAX))
-}
-
-fn digest(digest: Option<[u8; 32]>) -> Value {
-    digest.map_or(Value::Null, |digest| Value::Blob(digest.to_vec()))
-}
-
-fn text(text: &str) -> Value {
-    Value::Text(text.to_owned())
-}
-
-/// SQLite has no NaN; unknown stays unknown.
-fn real(figure: f64) -> Value {
-    if figure.is_nan() { Value::Null } else { Value::Real(figure) }
-}
-
-/// The byte of a choice, the same as in the canonical bytes.
-fn code(choice: &impl Canonical) -> Value {
-    let mut out = Writer::default();
-    choice.write(&mut out);
-    Value::Integer(out.into_bytes().first().copied().map_or(0, i64::from))
-}
-
-canonical::choice!(Origin, "origin" { Imported = 1, Entered = 2 });
+canonical::choice!(Origin, "origin" { Imported = 1, Entered = 2, Logged = 3 });
 canonical::choice!(CopyKind, "copy" { Backup = 1, Export = 2 });
 
 impl Canonical for SourceFiles {

@@ -14,7 +14,8 @@ use chrono::{DateTime, FixedOffset};
 use rusqlite::{Connection, OptionalExtension, Transaction, params, params_from_iter};
 use sha2::{Digest, Sha256};
 
-use super::body::{self, Body, Record, Row};
+use super::body::{self, Body, Record};
+use super::body_rows::{self, Row};
 use super::error::Inside;
 
 /// When something is written, and where the salts come from.
@@ -130,7 +131,7 @@ impl<'t, 's, 'f> Writing<'t, 's, 'f> {
         let salt = (self.stamp.salt)();
         let digest = payload_digest(&salt, &bytes);
         let head = self.head.followed_by(kind, &digest);
-        let place = body::place(head.seq);
+        let place = body_rows::place(head.seq);
         let mut chain = self
             .transaction
             .prepare_cached("INSERT INTO record (seq, kind, digest, link) VALUES (?, ?, ?, ?)")?;
@@ -138,7 +139,7 @@ impl<'t, 's, 'f> Writing<'t, 's, 'f> {
         let mut payload =
             self.transaction.prepare_cached("INSERT INTO payload (seq, salt, bytes) VALUES (?, ?, ?)")?;
         payload.execute(params![place, salt, bytes])?;
-        for row in body::rows(head.seq, &record) {
+        for row in body_rows::rows(head.seq, &record) {
             insert(&self.transaction, &row)?;
         }
         self.head = head;
@@ -151,7 +152,7 @@ impl<'t, 's, 'f> Writing<'t, 's, 'f> {
             let mut head = self
                 .transaction
                 .prepare_cached("INSERT OR REPLACE INTO head (one, seq, link) VALUES (1, ?, ?)")?;
-            head.execute(params![body::place(self.head.seq), self.head.link])?;
+            head.execute(params![body_rows::place(self.head.seq), self.head.link])?;
         }
         Ok(self.transaction.commit()?)
     }
@@ -186,7 +187,7 @@ pub(super) fn record_at(connection: &Connection, seq: u64) -> Result<Option<Reco
     let sql = "SELECT kind, bytes FROM record JOIN payload USING (seq) WHERE seq = ?";
     let mut statement = connection.prepare_cached(sql)?;
     let found = statement
-        .query_row([body::place(seq)], |row| Ok((row.get::<_, u16>(0)?, row.get::<_, Vec<u8>>(1)?)))
+        .query_row([body_rows::place(seq)], |row| Ok((row.get::<_, u16>(0)?, row.get::<_, Vec<u8>>(1)?)))
         .optional()?;
     found
         .map(|(kind, bytes)| body::read(kind, &bytes).map_err(|why| Inside::Unreadable(seq, why)))

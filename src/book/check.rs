@@ -14,7 +14,8 @@ use std::collections::BTreeMap;
 use rusqlite::types::Value;
 use rusqlite::{Connection, OptionalExtension, params};
 
-use super::body::{self, Body, FIRST_PERSONAL_KIND, Record, Row};
+use super::body::{self, Body, FIRST_PERSONAL_KIND, Record};
+use super::body_rows::{self, Row};
 use super::chain::{Head, payload_digest, stored_head};
 use super::erasure::ErasureNote;
 use super::error::{BookError, Inside};
@@ -219,7 +220,7 @@ fn record(
     if body::write(&record) != bytes {
         return Ok(Some(Wrong::Unreadable(seq, "it has another form than the canonical one".into())));
     }
-    for row in body::rows(seq, &record) {
+    for row in body_rows::rows(seq, &record) {
         if !is_listed(connection, &row)? {
             return Ok(Some(Wrong::List { seq, table: row.table }));
         }

@@ -7,7 +7,8 @@
 
 use rusqlite::{Connection, params};
 
-use super::body::{Body, FIRST_PERSONAL_KIND, Kind, Record, place};
+use super::body::{Body, FIRST_PERSONAL_KIND, Kind, Record};
+use super::body_rows::place;
 use super::chain::{Stamp, record_at};
 use super::error::{BookError, Inside};
 use super::lists::{CopyMade, copies, count};

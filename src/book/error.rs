@@ -6,6 +6,7 @@ use chrono::{DateTime, FixedOffset};
 use rusqlite::ErrorCode;
 
 use super::canonical::Unreadable;
+use super::lease::Logged;
 use super::registers::Register;
 use crate::entry::{RunNumber, SessionNumber};
 
@@ -150,6 +151,36 @@ pub enum BookError {
     /// A run to be entered that brings a time series.
     #[error("a run that is entered has points, not a time series")]
     NotPoints,
+    /// A run or session that another process logs.
+    #[error(
+        "{what} is being logged by another process (number {process}), which holds its instruments: stop that one first, or watch"
+    )]
+    Held {
+        /// What.
+        what: Logged,
+        /// The process, as its system counts it.
+        process: u32,
+    },
+    /// The lease of a run or session lapsed while it was logged.
+    #[error(
+        "{what} was not heard of for too long and could have been taken up by another process: resume it"
+    )]
+    LeaseLost {
+        /// What.
+        what: Logged,
+    },
+    /// A run without instruments.
+    #[error("run {run} was typed, not logged: it goes on at the keyboard")]
+    NotLogged {
+        /// The run.
+        run: RunNumber,
+    },
+    /// A session without instruments.
+    #[error("session {session} was not logged from instruments, so that it goes on at the keyboard")]
+    SessionNotLogged {
+        /// The session.
+        session: SessionNumber,
+    },
     /// A session that was never recorded.
     #[error("there is no session {session} in {}", path.display())]
     NoSuchSession {
@@ -315,6 +346,10 @@ impl BookError {
             | Self::TooLarge { .. }
             | Self::NoSuchRun { .. }
             | Self::NoSuchPoint { .. }
+            | Self::Held { .. }
+            | Self::LeaseLost { .. }
+            | Self::NotLogged { .. }
+            | Self::SessionNotLogged { .. }
             | Self::AlreadyLeftOut { .. }
             | Self::Complete { .. }
             | Self::Incomplete { .. }

@@ -108,7 +108,7 @@ pub struct CopyMade {
 }
 
 const COLUMNS: &str = "SELECT number, orifice, gas, purpose, taken, technician, origin, \
-    origin = 2 AND NOT EXISTS (SELECT 1 FROM of_run WHERE of_run.run = number AND of_run.kind = 8) AS open, \
+    origin <> 1 AND NOT EXISTS (SELECT 1 FROM of_run WHERE of_run.run = number AND of_run.kind = 8) AS open, \
     decision.seq, verdict, method, ip_pa, flow_l_min, expanded_l_min, decided \
     FROM run LEFT JOIN decision ON decision.seq = (SELECT max(seq) FROM decision AS d WHERE d.run = number)";
 
@@ -120,7 +120,7 @@ impl Book {
     pub fn runs(&self, query: &RunQuery) -> Result<Vec<RunRow>, BookError> {
         let RunQuery { before, limit, open_only } = *query;
         self.read(|connection| {
-            let only = if open_only { "AND origin = 2 AND open" } else { "" };
+            let only = if open_only { "AND origin <> 1 AND open" } else { "" };
             let sql = format!("{COLUMNS} WHERE number < ? {only} ORDER BY number DESC LIMIT ?");
             let mut statement = connection.prepare_cached(&sql)?;
             let before = before.map_or(i64::from(u32::MAX) + 1, |number| i64::from(number.get()));

@@ -235,7 +235,7 @@ pub(super) fn connect(path: &Path, options: &Options, access: OpenFlags) -> Resu
 }
 
 /// Begins a write at once, or waits until the others let it.
-fn begin_write(connection: &Connection, busy: Duration) -> Result<Transaction<'_>, Inside> {
+pub(super) fn begin_write(connection: &Connection, busy: Duration) -> Result<Transaction<'_>, Inside> {
     connection.busy_timeout(Duration::ZERO)?;
     let mut waited = Duration::ZERO;
     let begun = loop {

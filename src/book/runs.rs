@@ -24,6 +24,8 @@ pub enum Origin {
     Imported,
     /// Typed, point by point.
     Entered,
+    /// Logged from instruments.
+    Logged,
 }
 
 /// The files a run was imported from, to the byte.
@@ -303,7 +305,7 @@ fn import_one(writing: &mut Writing<'_, '_, '_>, item: ToImport<'_>) -> Result<R
 }
 
 /// Puts the orifice of a run into the register where it is unknown; whether it was.
-fn orifice_of(writing: &mut Writing<'_, '_, '_>, run: &Run) -> Result<bool, Inside> {
+pub(super) fn orifice_of(writing: &mut Writing<'_, '_, '_>, run: &Run) -> Result<bool, Inside> {
     let unknown = registers::latest(&writing.transaction, Register::Orifice, run.orifice.as_str())?.is_none();
     if unknown {
         registers::append(writing, Entry::Orifice(Orifice::bare(run.orifice.clone())), None)?;
@@ -311,7 +313,8 @@ fn orifice_of(writing: &mut Writing<'_, '_, '_>, run: &Run) -> Result<bool, Insi
     Ok(unknown)
 }
 
-fn header(
+/// Puts the header of a new run at the end of the chain; its number.
+pub(super) fn header(
     writing: &mut Writing<'_, '_, '_>,
     run: &Run,
     origin: Origin,
@@ -420,6 +423,11 @@ impl Assembled {
                 self.header_seq = seq;
                 self.changes.push(Change::Restated { at });
             }
+            Body::PointTaken { point, .. } => {
+                let Readings::Points(points) = &mut self.header.readings else { return Err(wrong()) };
+                points.push(point.reading);
+                self.holders.push(seq);
+            }
             Body::RunFinished { .. } => self.state = RunState::Complete,
             Body::LeftOut { left_out, by, .. } => {
                 let (point, why) = (left_out.point, left_out.why.clone());
@@ -440,9 +448,12 @@ impl Assembled {
 /// The run of a number from its records, in their order; the files it came from are not read.
 pub(super) fn assemble(connection: &Connection, number: RunNumber) -> Result<Assembled, Inside> {
     exists(connection, number)?;
-    let sql = "SELECT seq FROM of_run WHERE run = ? AND kind <> ? ORDER BY seq";
+    // Files and raw readings are large and no part of what a run says.
+    let sql = "SELECT seq FROM of_run WHERE run = ? AND kind NOT IN (?, ?, ?, ?) ORDER BY seq";
+    let apart = [Kind::Source, Kind::LiveReadings, Kind::LiveNote, Kind::LoggingBegun].map(Kind::number);
     let mut statement = connection.prepare_cached(sql)?;
-    let seqs = statement.query_map(params![number.get(), Kind::Source.number()], |row| row.get(0))?;
+    let of = params![number.get(), apart[0], apart[1], apart[2], apart[3]];
+    let seqs = statement.query_map(of, |row| row.get(0))?;
     let mut run: Option<Assembled> = None;
     for seq in seqs.collect::<Result<Vec<u64>, _>>()? {
         let lost = || Inside::Damaged(format!("record {seq} of run {number} is not there"));

@@ -79,19 +79,7 @@ impl Book {
         line_run: Option<&Run>,
         stamp: &mut Stamp<'_>,
     ) -> Result<SessionRecorded, BookError> {
-        self.write(stamp, |writing| {
-            let header = Session { events: Vec::new(), ..session.clone() };
-            let recorded = head(writing, &header, Origin::Entered, None, None)?;
-            let session_number = recorded.number;
-            if let Some(run) = line_run {
-                writing.append(Body::SessionLine { session: session_number, run: Cow::Borrowed(run) })?;
-            }
-            add_blocks(writing, session_number, &session.readings)?;
-            for event in &session.events {
-                writing.append(Body::SessionEvent { session: session_number, event: *event })?;
-            }
-            Ok(recorded)
-        })
+        self.write(stamp, |writing| begin(writing, session, line_run, Origin::Entered))
     }
 
     /// Adds rows of readings to an open session. The first ones say which columns there are, unless it was begun with
@@ -106,18 +94,7 @@ impl Book {
         readings: &SessionReadings,
         stamp: &mut Stamp<'_>,
     ) -> Result<(), BookError> {
-        self.write(stamp, |writing| {
-            let (seq, header) = open_header(&writing.transaction, number)?;
-            if !same_columns(&header.readings, readings) {
-                if has_columns(&header.readings) || has_readings(&writing.transaction, number)? {
-                    return Err(BookError::OtherColumns { session: number }.into());
-                }
-                let header = Session { readings: emptied(readings), ..header };
-                let header = Cow::Owned(header);
-                writing.append(Body::SessionRestated { session: number, replaces: seq, header })?;
-            }
-            add_blocks(writing, number, readings)
-        })
+        self.write(stamp, |writing| add_readings(writing, number, readings))
     }
 
     /// Adds something that happened to an open session.
@@ -247,6 +224,44 @@ impl Book {
     }
 }
 
+/// Puts the header of a session that is recorded row by row at the end of the chain, with what it has already.
+pub(super) fn begin(
+    writing: &mut Writing<'_, '_, '_>,
+    session: &Session,
+    line_run: Option<&Run>,
+    origin: Origin,
+) -> Result<SessionRecorded, Inside> {
+    let header = Session { events: Vec::new(), ..session.clone() };
+    let recorded = head(writing, &header, origin, None, None)?;
+    let session_number = recorded.number;
+    if let Some(run) = line_run {
+        writing.append(Body::SessionLine { session: session_number, run: Cow::Borrowed(run) })?;
+    }
+    add_blocks(writing, session_number, &session.readings)?;
+    for event in &session.events {
+        writing.append(Body::SessionEvent { session: session_number, event: *event })?;
+    }
+    Ok(recorded)
+}
+
+/// Puts rows of readings of an open session at the end of the chain.
+pub(super) fn add_readings(
+    writing: &mut Writing<'_, '_, '_>,
+    number: SessionNumber,
+    readings: &SessionReadings,
+) -> Result<(), Inside> {
+    let (seq, header) = open_header(&writing.transaction, number)?;
+    if !same_columns(&header.readings, readings) {
+        if has_columns(&header.readings) || has_readings(&writing.transaction, number)? {
+            return Err(BookError::OtherColumns { session: number }.into());
+        }
+        let header = Session { readings: emptied(readings), ..header };
+        let header = Cow::Owned(header);
+        writing.append(Body::SessionRestated { session: number, replaces: seq, header })?;
+    }
+    add_blocks(writing, number, readings)
+}
+
 /// Whether rows may still come to a session that is there.
 pub(super) fn is_open(connection: &Connection, number: SessionNumber) -> Result<bool, Inside> {
     let sql = "SELECT 1 FROM session WHERE number = ?1 AND readings IS NULL \
@@ -254,7 +269,7 @@ pub(super) fn is_open(connection: &Connection, number: SessionNumber) -> Result<
     Ok(connection.prepare_cached(sql)?.exists([number.get()])?)
 }
 
-fn refuse_complete(connection: &Connection, number: SessionNumber) -> Result<(), Inside> {
+pub(super) fn refuse_complete(connection: &Connection, number: SessionNumber) -> Result<(), Inside> {
     exists(connection, number)?;
     if is_open(connection, number)? {
         Ok(())
@@ -294,8 +309,8 @@ fn by_rows(connection: &Connection, number: SessionNumber) -> Result<ByRows, Ins
     let mut found: Option<ByRows> = None;
     for seq in seqs.collect::<Result<Vec<u64>, _>>()? {
         match (&mut found, record_of(connection, seq, number)?) {
-            (None, Record { at, body: Body::Session { header, .. } }) => {
-                found = Some(ByRows::begun(number, seq, at, header.into_owned()));
+            (None, Record { at, body: Body::Session { origin, header, .. } }) => {
+                found = Some(ByRows::begun(number, seq, at, origin, header.into_owned()));
             }
             (Some(found), record) => found.take(seq, record)?,
             (None, _) => break,
@@ -360,6 +375,7 @@ pub(super) struct ByRows {
     header_seq: u64,
     line_run: Option<Run>,
     recorded: DateTime<FixedOffset>,
+    origin: Origin,
     /// How far its readings go as it was finished.
     finished: Option<Extent>,
     rows: Vec<KeptRow>,
@@ -375,6 +391,7 @@ impl ByRows {
         number: SessionNumber,
         seq: u64,
         recorded: DateTime<FixedOffset>,
+        origin: Origin,
         header: Session,
     ) -> Self {
         Self {
@@ -383,6 +400,7 @@ impl ByRows {
             header_seq: seq,
             line_run: None,
             recorded,
+            origin,
             finished: None,
             rows: Vec::new(),
             holders: Vec::new(),
@@ -441,6 +459,8 @@ impl ByRows {
             Body::SessionFinished { extent, .. } => self.finished = Some(extent),
             Body::SessionLine { run, .. } => self.line_run = Some(run.into_owned()),
             Body::SessionLeftOut { left_out, .. } => self.left_out.push(left_out),
+            // What happened to the instruments is no row of the session.
+            Body::SessionLoggingBegun { .. } | Body::SessionNote { .. } => {}
             _ => return Err(wrong()),
         }
         Ok(())
@@ -516,7 +536,7 @@ impl ByRows {
             number: self.number,
             session,
             line_run: self.line_run,
-            origin: Origin::Entered,
+            origin: self.origin,
             state: if self.finished.is_some() { RunState::Complete } else { RunState::Open },
             recorded: self.recorded,
             left_out: self.left_out,

@@ -425,7 +425,7 @@ pub(super) fn assemble(connection: &Connection, number: SessionNumber) -> Result
     };
     let session = header.into_owned();
     let Some(extent) = extent else {
-        let mut by_rows = ByRows::begun(number, seq, recorded, session);
+        let mut by_rows = ByRows::begun(number, seq, recorded, origin, session);
         for seq in seqs {
             by_rows.take(seq, record_of(connection, seq, number)?)?;
         }

@@ -7,7 +7,7 @@ use super::{Ended, note, say, units};
 use crate::report::layout::wrapped;
 use crate::report::{Units, bench_fit, json_text, session_uptake, setting};
 use crate::work::ExitStatus;
-use crate::work::demo::{DemoDiver, DemoRun, DemoShop, demo as run_demo};
+use crate::work::demo::{DemoDiver, DemoLogged, DemoRun, DemoShop, demo as run_demo};
 
 pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ended> {
     let units = units(global);
@@ -16,7 +16,8 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
     let (runs, shop, diver) = (&demonstration.runs, &demonstration.shop, &demonstration.diver);
     if global.json {
         let runs = runs.iter().map(Named::of).collect();
-        let left = Left { runs, shop: NamedShop::of(shop), diver: NamedDiver::of(diver) };
+        let logged = demonstration.logged.as_ref().map(NamedLogged::of);
+        let left = Left { runs, shop: NamedShop::of(shop), diver: NamedDiver::of(diver), logged };
         return say(&json_text(&left), ExitStatus::Done);
     }
     let mut text =
@@ -47,6 +48,7 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
         "The files are the same on every machine. The book is not to the byte: when something was recorded, and the salts \
          of its chain, are its own.",
     ));
+    text.push_str(&logged_text(demonstration.logged.as_ref()));
     text.push_str(&diver_text(diver, &units));
     text.push_str("\nTry one yourself (where ebbline is not installed: cargo run --release -- …):\n");
     if let Some(first) = runs.first() {
@@ -65,6 +67,27 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
         diver.on
     ));
     say(&text, ExitStatus::Done)
+}
+
+/// What was logged, if the system has what it takes.
+fn logged_text(logged: Option<&DemoLogged>) -> String {
+    let Some(logged) = logged else {
+        return wrapped(
+            "\n",
+            "  ",
+            "No run was logged: this system has no pseudo-terminals for a simulated bench.",
+        );
+    };
+    let run = logged.run.map_or_else(|| "no run".to_owned(), |run| run.to_string());
+    let about = format!(
+        "{run}, logged from a simulated bench over its serial ports by a clock that was hastened, {} points; it is another \
+         each time:",
+        logged.points
+    );
+    let mut text = String::from("\n");
+    text.push_str(&wrapped(&format!("{}: ", logged.orifice), "  ", &about));
+    text.push_str(&wrapped("  ", "    ", &logged.says));
+    text
 }
 
 /// What was made of the diver, and the files it stands in.
@@ -99,6 +122,27 @@ struct Left {
     runs: Vec<Named>,
     shop: NamedShop,
     diver: NamedDiver,
+    logged: Option<NamedLogged>,
+}
+
+/// What it says of the logged run.
+#[derive(Serialize)]
+struct NamedLogged {
+    run: Option<String>,
+    orifice: &'static str,
+    points: usize,
+    says: String,
+}
+
+impl NamedLogged {
+    fn of(logged: &DemoLogged) -> Self {
+        Self {
+            run: logged.run.map(|run| run.to_string()),
+            orifice: logged.orifice,
+            points: logged.points,
+            says: logged.says.clone(),
+        }
+    }
 }
 
 /// What it says of the diver.

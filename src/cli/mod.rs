@@ -11,6 +11,8 @@ mod demo;
 pub mod enter;
 mod instrument;
 mod interrupt;
+pub mod live;
+mod log;
 mod manual;
 mod registers;
 mod rig;
@@ -78,7 +80,8 @@ fn verb(arguments: &Arguments) -> Result<ExitStatus, Ended> {
         Command::Demo(demo) => demo::demo(demo, &arguments.global),
         Command::Bench(verb) => match verb {
             Bench::Enter(enter) => enter::enter(enter, &arguments.global),
-            Bench::Resume(resume) => enter::resume(resume, &arguments.global),
+            Bench::Log(bench_log) => log::bench(bench_log, &arguments.global),
+            Bench::Resume(resume) => log::resume_bench(resume, &arguments.global),
             Bench::Import(import) => bench::import(import, &arguments.global),
             Bench::Fit(fit) => bench::fit(fit, &arguments.global),
             Bench::LeaveOut(leave_out) => bench::leave_out(leave_out, &arguments.global),

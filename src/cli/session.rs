@@ -15,7 +15,8 @@ use crate::work::uptake::{UptakeRequest, session_uptake as work_out};
 pub(super) fn session(verb: &Sessions, global: &Global) -> Result<ExitStatus, Ended> {
     match verb {
         Sessions::Enter(arguments) => super::enter::session::enter(arguments, global),
-        Sessions::Resume(arguments) => super::enter::session::resume(arguments, global),
+        Sessions::Log(arguments) => super::log::session(arguments, global),
+        Sessions::Resume(arguments) => super::log::resume_session(arguments, global),
         Sessions::Import(arguments) => import(arguments, global),
         Sessions::List(arguments) => list(arguments, global),
         Sessions::Show(arguments) => show(arguments, global),

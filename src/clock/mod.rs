@@ -10,7 +10,7 @@ use std::time::SystemTime;
 
 use chrono::{DateTime, FixedOffset, Utc};
 
-pub use ticks::{Monotonic, Ticks, Virtual};
+pub use ticks::{Hastened, Monotonic, Ticks, Virtual};
 
 /// The time now, in UTC, to the millisecond.
 #[must_use]

@@ -15,6 +15,7 @@ mod first_stage;
 mod diver;
 mod shop;
 mod session;
+mod live;
 
 pub use acceptance::{Acceptance, Limits, Rule, Tolerance};
 pub use diver::{Diluent, Diver};
@@ -24,6 +25,7 @@ pub use instrument::{
     Instrument, InstrumentPapers, Measures, ModbusNumber, ModbusTable, Protocol, Socket, WordOrder,
 };
 pub use judgement::{Decision, StoredFigures, StoredPart, StoredVerdict};
+pub use live::{LiveNote, LiveNoteKind, LivePoint, LiveReadings, LoggingBegun};
 pub use number::{RunNumber, SessionNumber};
 pub use orifice::Orifice;
 pub use papers::{Amount, FloatScale, Meter, MeterKind, Papers, Transducer};

@@ -7,8 +7,10 @@ use super::split::{LONGEST_LINE, Piece, Splitter};
 use super::streamed::shared;
 use super::text_line::{LineReader, without_echo};
 
-/// Seconds without a byte after which a line nobody asked for is over.
+/// Seconds without a byte after which a line nobody asked for is over, where there is time for so many.
 const UNASKED_S: f64 = GAP_S / 2.0;
+/// Where there is not, the part of the time from one question to the next that has to be quiet.
+const UNASKED_PART: f64 = 0.25;
 
 /// A question and those who read its answer.
 #[derive(Debug)]
@@ -185,11 +187,12 @@ impl Conversation for Asked {
             return None;
         }
         // A question in the middle of a line would take its rest, "2.5" of "12.5", for the answer.
-        if now_s < unasked_s + UNASKED_S {
-            self.state = State::Pausing(Pause::of(now_s, UNASKED_S));
+        let asking = self.questions.get_mut(question)?;
+        let quiet_s = UNASKED_S.min(UNASKED_PART * asking.schedule.every_s());
+        if now_s < unasked_s + quiet_s {
+            self.state = State::Pausing(Pause::of(now_s, quiet_s));
             return None;
         }
-        let asking = self.questions.get_mut(question)?;
         asking.schedule.asked(now_s);
         if std::mem::take(&mut self.restless) {
             asking.splitter.join();

@@ -67,6 +67,10 @@ impl Schedule {
         (self.due_s, self.silences) = (now_s, 0);
     }
 
+    pub(super) const fn every_s(&self) -> f64 {
+        self.every_s
+    }
+
     pub(super) const fn due_s(&self) -> f64 {
         self.due_s
     }

@@ -38,8 +38,9 @@ pub use run::{
     read_run_and_files, read_run_with,
 };
 pub use session::{
-    SessionFiles, SessionRefusal, SessionSetup, When, elapsed_or_time, event_from, parse_session,
-    read_session, read_session_and_files, read_session_setup, session_setup_from, write_session,
+    CellCalibration, SessionFiles, SessionRefusal, SessionSetup, When, elapsed_or_time, event_from,
+    parse_session, read_cell_calibration, read_session, read_session_and_files, read_session_setup,
+    session_setup_from, write_session,
 };
 pub use setup::{Setup, read_setup};
 pub use write::write_run;

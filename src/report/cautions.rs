@@ -56,6 +56,14 @@ pub const SESSION: [&str; 6] = [
     "Epilepsy, a pregnancy, an illness of heart or lungs: a physician's word first.",
 ];
 
+/// While a session is logged, always in sight: short, so that it stands in one line.
+pub const SESSION_LIVE: &str =
+    "No life-support alarm. Never alone: the second person watches the PO2 display.";
+
+/// With every alarm of a session that is raised.
+pub const SESSION_ALARM: &str =
+    "no life-support alarm: look at the diver, and at the diver's own PO2 display";
+
 /// Beside an uptake.
 pub const UPTAKE: [&str; 4] = [
     "This is the least a diver burns: any effort asks for several times as much, and rest is not the same every day. A \

@@ -5,6 +5,7 @@
 
 pub mod bench_fit;
 pub mod bench_json;
+pub mod bench_live;
 pub mod book;
 pub mod cautions;
 pub mod check_sentences;
@@ -13,6 +14,7 @@ pub mod enter_words;
 pub mod export;
 pub mod instrument_trial;
 pub mod layout;
+pub mod live_parts;
 pub mod number;
 pub mod orifice_history;
 pub mod port_list;
@@ -33,6 +35,7 @@ pub mod session_enter_questions;
 pub mod session_enter_words;
 pub mod session_limits;
 pub mod session_list;
+pub mod session_live;
 pub mod session_shown;
 pub mod session_uptake;
 pub mod typed;

@@ -89,6 +89,7 @@ pub fn begun(rig: &RigShown, commands: &str) -> String {
     let first = rig.instruments.first().map_or("", |one| one.profile.as_str());
     text.push_str(&format!("Register them:  ebbline instrument add {folder}/*.toml\n"));
     text.push_str(&format!("Try one:        ebbline instrument try {}\n", tame(&shell_word(first))));
+    text.push_str(&format!("Log a session:  ebbline session log D-1 --from {folder}/couch/session.toml\n"));
     text.push_str(&format!("What was sent:  {}\n", tame(&rig.log)));
     text.push_str(&wrapped(
         "",

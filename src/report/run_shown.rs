@@ -20,8 +20,8 @@ pub struct ShownRun {
     pub listed: ListedRun,
     /// What was recorded.
     pub run: Run,
-    /// Whether it was typed; else it was imported.
-    pub typed: bool,
+    /// How it came into the book.
+    pub came: Came,
     /// When it was recorded.
     pub recorded: DateTime<FixedOffset>,
     /// What was changed since, in order, each with its time.
@@ -32,18 +32,53 @@ pub struct ShownRun {
     pub changed_since: bool,
 }
 
+/// How a run came into the book.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub enum Came {
+    /// From files.
+    Imported,
+    /// Typed.
+    Typed,
+    /// Logged from instruments.
+    Logged(Vec<Heard>),
+}
+
+/// What came of an instrument while a run was logged.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Heard {
+    /// Its name.
+    pub instrument: String,
+    /// Raw readings.
+    pub readings: usize,
+    /// What else happened, with how often.
+    pub notes: Vec<(&'static str, usize)>,
+}
+
+impl Came {
+    const fn word(&self) -> &'static str {
+        match self {
+            Self::Imported => "imported",
+            Self::Typed => "typed",
+            Self::Logged(_) => "logged",
+        }
+    }
+}
+
 /// The run as text.
 #[must_use]
 pub fn text(shown: &ShownRun, units: &Units) -> String {
     let (run, listed) = (&shown.run, &shown.listed);
     let state = if listed.open { "open: points may still come" } else { "complete" };
-    let how = if shown.typed { "typed" } else { "imported" };
+    let how = shown.came.word();
     let mut text = wrapped("", "  ", &format!("{} — {}, {state}", listed.number, run.orifice));
     let who = run.technician.as_ref().map(|t| format!(", {t}")).unwrap_or_default();
     let line = format!("{}, {}, taken {}{who}", run.gas.name(), run.purpose.name(), run.taken.to_rfc3339());
     text.push_str(&wrapped("  ", "  ", &line));
     text.push_str(&wrapped("  ", "  ", &format!("{how} {}", shown.recorded.to_rfc3339())));
     text.push_str(&wrapped("  ", "  ", &instruments(run)));
+    if let Came::Logged(heard) = &shown.came {
+        text.push_str(&wrapped("  ", "  ", &heard_words(heard)));
+    }
     text.push('\n');
     text.push_str(&readings(run, units));
     if !shown.changes.is_empty() {
@@ -66,6 +101,17 @@ pub fn text(shown: &ShownRun, units: &Units) -> String {
     }
     text.push_str(&wrapped("\n", "  ", &format!("The line and its checks: bench fit {}", listed.number)));
     text
+}
+
+/// What came of the instruments, in a line.
+fn heard_words(heard: &[Heard]) -> String {
+    let one = |heard: &Heard| {
+        let notes: Vec<String> =
+            heard.notes.iter().map(|(what, times)| format!("{what} {times} times")).collect();
+        let notes = if notes.is_empty() { String::new() } else { format!(" ({})", notes.join(", ")) };
+        format!("{} {} raw readings{notes}", heard.instrument, heard.readings)
+    };
+    format!("heard: {}", heard.iter().map(one).collect::<Vec<_>>().join("; "))
 }
 
 /// The run as JSON.
@@ -281,7 +327,7 @@ impl Document {
         let (meter, transducer) = (&run.meter, &run.transducer);
         Self {
             row: Row::of(&shown.listed),
-            origin: if shown.typed { "typed" } else { "imported" },
+            origin: shown.came.word(),
             recorded: shown.recorded.to_rfc3339(),
             meter: papers(&meter.id, Some(meter.kind.name()), &meter.papers.certificate, meter.papers.due),
             transducer: papers(&transducer.id, None, &transducer.papers.certificate, transducer.papers.due),

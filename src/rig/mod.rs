@@ -47,5 +47,5 @@ pub use port::{PortSettings, Wiring};
 pub use regulator::{RegulatorSettings, Script};
 #[cfg(unix)]
 pub use serve::Served;
-pub use time::{JumpingTime, RealTime, Settable, Time, VirtualTime};
+pub use time::{JumpingTime, OfTicks, RealTime, Settable, Time, VirtualTime};
 pub use transport::{SharedRig, Transport};

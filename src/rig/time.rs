@@ -3,6 +3,8 @@
 use std::sync::{Arc, Mutex, PoisonError};
 use std::time::Duration;
 
+use crate::clock::Ticks;
+
 /// A clock in seconds from any beginning, and a way to wait by it.
 pub trait Time: Send + Sync {
     /// Seconds now.
@@ -19,6 +21,20 @@ impl<T: Time + ?Sized> Time for Arc<T> {
 
     fn sleep(&self, s: f64) {
         (**self).sleep(s);
+    }
+}
+
+/// The time of a clock of [`crate::clock`], in seconds since 1970 by its beginning.
+#[derive(Clone)]
+pub struct OfTicks(pub Arc<dyn Ticks>);
+
+impl Time for OfTicks {
+    fn now_s(&self) -> f64 {
+        self.0.started().timestamp_millis() as f64 / 1e3 + self.0.now_s()
+    }
+
+    fn sleep(&self, s: f64) {
+        self.0.sleep(s);
     }
 }
 

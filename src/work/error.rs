@@ -102,6 +102,58 @@ pub enum WorkError {
         /// What was measured.
         span_bar_gauge: (f64, f64),
     },
+    /// Instruments that cannot log a run.
+    #[error(transparent)]
+    LogSetup(#[from] crate::logger::SetupError),
+    /// Instruments that cannot log a session.
+    #[error(transparent)]
+    SessionLogSetup(#[from] crate::logger::SessionSetupError),
+    /// Several instruments, or none, where one is needed and none is named.
+    #[error("name the instrument that measures {measures} (there: {there})")]
+    WhichInstrument {
+        /// What it measures.
+        measures: &'static str,
+        /// Those there are.
+        there: String,
+    },
+    /// An instrument that cannot be logged from.
+    #[error("{id} {why}: name an instrument that measures {measures} (there: {there})")]
+    NoSuchInstrument {
+        /// Its name as typed.
+        id: String,
+        /// Why.
+        why: String,
+        /// What it should measure.
+        measures: &'static str,
+        /// Those there are.
+        there: String,
+    },
+    /// Cells that show volts, and no calibration.
+    #[error(
+        "a cell that shows mV needs its calibration: name a session file whose [cells] has air, oxygen and calibrated_at \
+         (--from FILE.toml)"
+    )]
+    NoCellCalibration,
+    /// A text that is no injection.
+    #[error("\"{}\" is no injection: write a flow as in \"0.31 L/min\", an IP as in \"9.4 bar\", or off", .0.escape_debug())]
+    NoInjection(String),
+    /// Nothing was heard of any instrument.
+    #[error(
+        "no reading came within {for_s:.0} s, so that nothing was recorded: check cables and power, and try each instrument \
+         (instrument try ID)"
+    )]
+    NothingHeard {
+        /// For how long it was listened.
+        for_s: f64,
+    },
+    /// The last readings could not be kept.
+    #[error("the last {things} readings and notes are not in the book: {why}")]
+    NotSaved {
+        /// How many.
+        things: usize,
+        /// Why.
+        why: String,
+    },
     /// A setting is asked for wrongly.
     #[error(transparent)]
     Setting(SettingError),
@@ -332,6 +384,12 @@ impl WorkError {
             | Self::NotReplaced { .. }
             | Self::Profile(_)
             | Self::ListenFor(_)
+            | Self::LogSetup(_)
+            | Self::NoCellCalibration
+            | Self::NoInjection(_)
+            | Self::SessionLogSetup(_)
+            | Self::WhichInstrument { .. }
+            | Self::NoSuchInstrument { .. }
             | Self::RigScript(_)
             | Self::NoDataFolder
             | Self::Trials(_)
@@ -342,6 +400,8 @@ impl WorkError {
             Self::Port(_)
             | Self::NoPseudoTerminals
             | Self::StillHeld { .. }
+            | Self::NothingHeard { .. }
+            | Self::NotSaved { .. }
             | Self::NoRandomNumbers
             | Self::Png(_)
             | Self::Write { .. } => ExitStatus::Failed,

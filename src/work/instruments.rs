@@ -135,7 +135,8 @@ fn faults<'f>(all: impl Iterator<Item = &'f Fault>) -> Vec<FaultShown> {
     kinds
 }
 
-const fn said(kind: FaultKind) -> TrialFault {
+/// A kind of fault as the report knows it.
+pub(super) const fn said(kind: FaultKind) -> TrialFault {
     match kind {
         FaultKind::Empty => TrialFault::Empty,
         FaultKind::Garbage => TrialFault::Garbage,

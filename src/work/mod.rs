@@ -12,6 +12,7 @@ pub mod fit;
 pub mod history;
 pub mod instruments;
 pub mod lines;
+pub mod log;
 pub mod output;
 pub mod png;
 pub mod registers;

@@ -18,6 +18,20 @@ use crate::rig::{Command, Fault, Rig, RigError, Script, Settings};
 
 /// How commands are written.
 pub const COMMANDS: &str = Command::KNOWN;
+/// The setup of a session with the rig's cells, in a folder of its own: the profiles beside it are all for the register.
+const COUCH: &str = "couch/session.toml";
+/// What stands in it. The cells of the rig give 48 mV a bar; a dry calibration at the standard atmosphere in air with
+/// 20.9476 % of oxygen (U.S. Standard Atmosphere, 1976, table 3) and in oxygen.
+const COUCH_SETUP: &str = r#"record = "session"
+place = "couch"
+loop = "held"
+
+[cells]
+gain = "4 %"
+air = ["10.188 mV", "10.188 mV", "10.188 mV"]
+oxygen = ["48.636 mV", "48.636 mV", "48.636 mV"]
+calibrated_at = { barometer = "1013.25 hPa", temperature = "20 °C", humidity = "0 %", oxygen = "100 %" }
+"#;
 /// The log in the folder.
 const LOG: &str = "sent.jsonl";
 /// Seconds between two looks at what was typed, at the clock, and at trouble.
@@ -116,6 +130,9 @@ pub fn start(request: &RigRequest) -> Result<Running, WorkError> {
         let text = write_register(&RegisterEntry::Instrument(one.instrument));
         write_whole(Path::new(&one.profile), format!("{SIMULATED}{text}").as_bytes())?;
     }
+    let couch = running.folder.join(COUCH);
+    make_folder(couch.parent().unwrap_or(&running.folder))?;
+    write_whole(&couch, format!("{SIMULATED}{COUCH_SETUP}").as_bytes())?;
     Ok(running)
 }
 
@@ -262,6 +279,10 @@ fn may_be_written(folder: &Path, rig: &Rig) -> Result<(), WorkError> {
             }
             ours = true;
         }
+    }
+    let couch = folder.join(COUCH);
+    if couch.exists() && !std::fs::read(&couch).unwrap_or_default().starts_with(SIMULATED.as_bytes()) {
+        return refuse(couch, "is a file that no rig wrote, and stays as it is");
     }
     let log = folder.join(LOG);
     if log.exists() && !ours {

@@ -1,5 +1,6 @@
 //! Runs of the book: imported, listed, shown, judged.
 
+use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 
 use chrono::{DateTime, FixedOffset};
@@ -14,14 +15,15 @@ use crate::bench::{Analysis, METHOD_REVISION, Questions, Verdict, analyse};
 use crate::book::{Book, Change, Origin, RunQuery, RunRow, RunState, SourceFiles, ToImport};
 use crate::clock;
 use crate::entry::{
-    Acceptance, Build, Decision, Orifice, Readings, Run, RunNumber, StoredFigures, StoredPart, StoredVerdict,
+    Acceptance, Build, Decision, LiveNoteKind, Orifice, Readings, Run, RunNumber, StoredFigures, StoredPart,
+    StoredVerdict,
 };
 use crate::gas::Species;
 use crate::record::read_run_and_files;
 use crate::report::bench_fit::source_name;
 use crate::report::check_sentences::name_key_unit;
 use crate::report::run_list::{ListedJudgement, ListedRun};
-use crate::report::run_shown::ShownRun;
+use crate::report::run_shown::{Came, Heard, ShownRun};
 
 /// Most runs a list shows unless all are asked for.
 pub const LISTED: u32 = 50;
@@ -114,7 +116,13 @@ pub fn list(shelf: &Shelf, all: bool) -> Result<(Vec<ListedRun>, bool), WorkErro
 /// A name that is no run's, a run that is not there, a book that cannot be read.
 pub fn show(shelf: &Shelf, run: &str) -> Result<ShownRun, WorkError> {
     let number = number_of(run)?;
-    let record = shelf.to_read()?.run(number)?;
+    let book = shelf.to_read()?;
+    let record = book.run(number)?;
+    let came = match record.origin {
+        Origin::Imported => Came::Imported,
+        Origin::Entered => Came::Typed,
+        Origin::Logged => Came::Logged(heard(&book, number)?),
+    };
     let judged = record.decisions.last().map(|decision| ListedJudgement {
         verdict: decision.verdict,
         method_revision: decision.figures.method_revision,
@@ -135,13 +143,36 @@ pub fn show(shelf: &Shelf, run: &str) -> Result<ShownRun, WorkError> {
     };
     Ok(ShownRun {
         listed,
-        typed: record.origin == Origin::Entered,
+        came,
         recorded: record.recorded,
         changes: record.changes.iter().map(change).collect(),
         decisions: record.decisions,
         changed_since: record.changed_since_decision,
         run: record.run,
     })
+}
+
+/// What came of the instruments of a logged run.
+fn heard(book: &Book, number: RunNumber) -> Result<Vec<Heard>, WorkError> {
+    let mut all: BTreeMap<String, (usize, BTreeMap<LiveNoteKind, usize>)> = BTreeMap::new();
+    for readings in book.live_readings(number)? {
+        all.entry(readings.instrument.to_string()).or_default().0 += readings.shown.len();
+    }
+    for note in book.live_notes(number)? {
+        // That a port was opened once is nothing to tell.
+        let name = note.instrument.map(|id| id.to_string()).unwrap_or_default();
+        *all.entry(name).or_default().1.entry(note.kind).or_default() += 1;
+    }
+    let heard = all.into_iter().map(|(instrument, (readings, notes))| Heard {
+        instrument,
+        readings,
+        notes: notes
+            .into_iter()
+            .filter(|(kind, times)| *kind != LiveNoteKind::Connected || *times > 1)
+            .map(|(kind, times)| (kind.name(), times))
+            .collect(),
+    });
+    Ok(heard.collect())
 }
 
 /// A row of the book for `report`; a judgement without figures (of a run whose flow could not be told) is none.

@@ -1,5 +1,6 @@
 //! Sessions of the book: imported, listed, shown, left out.
 
+use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 
 use super::WorkError;
@@ -12,11 +13,12 @@ use crate::book::{
     Book, LineSource, RowContent, RunState, SessionChange, SessionQuery, SessionRecord, SessionRow,
     SessionSource, SessionToImport,
 };
-use crate::entry::{Id, LineReference, Run, Session, SessionNumber};
+use crate::entry::{Id, LineReference, LiveNote, LiveNoteKind, Run, Session, SessionNumber};
 use crate::record::{read_run_and_files, read_session_and_files};
 use crate::report::session_changes::{Before, Change, Changed};
 use crate::report::session_list::Row;
 use crate::report::session_shown::Shown;
+use crate::report::typed::clock;
 
 /// Most sessions a list shows unless all are asked for.
 pub const LISTED: u32 = 50;
@@ -176,6 +178,8 @@ pub struct KeptSession {
     pub files: Vec<String>,
     /// What was corrected or struck since, in order.
     pub changes: Vec<Change>,
+    /// What happened to its instruments while it was logged, and its alarms; empty for any other.
+    pub heard: Vec<String>,
 }
 
 impl KeptSession {
@@ -188,7 +192,7 @@ impl KeptSession {
             recorded: self.record.recorded,
             left_out: &self.record.left_out,
             files: &self.files,
-            notes: &[],
+            notes: &self.heard,
             open: self.record.state == RunState::Open,
             changes: &self.changes,
         }
@@ -208,7 +212,31 @@ pub fn show(shelf: &Shelf, session: &str) -> Result<KeptSession, WorkError> {
         [Some(source.session_file_name), Some(source.readings_name), line].into_iter().flatten().collect()
     });
     let changes = record.changes.iter().map(|change| changed(change, &record)).collect();
-    Ok(KeptSession { record, files: files.unwrap_or_default(), changes })
+    let heard = heard(&book.session_notes(number)?);
+    Ok(KeptSession { record, files: files.unwrap_or_default(), changes, heard })
+}
+
+/// Alarms one by one, and how often anything else happened, in sentences.
+fn heard(notes: &[LiveNote]) -> Vec<String> {
+    let name = |note: &LiveNote| note.instrument.as_ref().map(|id| format!("{id}: ")).unwrap_or_default();
+    let mut counts: BTreeMap<(String, LiveNoteKind), (usize, String)> = BTreeMap::new();
+    let mut said = Vec::new();
+    for note in notes {
+        match note.kind {
+            LiveNoteKind::AlarmRaised | LiveNoteKind::AlarmCleared => {
+                said.push(format!("{} {} ({})", clock(note.at_s), note.kind.name(), note.says));
+            }
+            LiveNoteKind::Connected => {}
+            kind => {
+                let count = counts.entry((name(note), kind)).or_insert((0, note.says.clone()));
+                count.0 += 1;
+            }
+        }
+    }
+    said.extend(counts.into_iter().map(|((name, kind), (times, says))| {
+        format!("{name}{} {times} times while logging ({says})", kind.name())
+    }));
+    said
 }
 
 /// A change for `report`.

@@ -3,6 +3,8 @@
 //! A path such as `printed.slope` or `printed.beta.0` names a value in the file. Figures are kept as text, because the
 //! digits printed say how far a result may be off.
 
+#![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
+
 use std::path::Path;
 use toml::{Table, Value};
 

@@ -1,5 +1,7 @@
 //! Sessions to simulate: the truth drawn, what the diver does, and the record as the diver would write it.
 
+#![allow(clippy::unwrap_used, reason = "a test may panic, also in what it calls")]
+
 use super::{Act, Dice, Feed, Keeping, Log, Truth, run};
 use chrono::DateTime;
 use ebbline::entry::{

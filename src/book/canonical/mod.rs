@@ -19,6 +19,7 @@ mod papers;
 mod acceptance;
 mod run;
 mod session;
+mod live;
 mod judgement;
 mod orifice;
 mod instrument;

@@ -1,6 +1,6 @@
 //! Version 1: the chain of records, and the tables by which they are found.
 //!
-//! `record` and `payload` are the record. Every other table but `head` and `wiping` repeats what stands in payloads so that it can be
+//! `record` and `payload` are the record. Every other table but `head`, `wiping` and `lease` repeats what stands in payloads so that it can be
 //! found without reading them all; `check` derives each of those rows again from its payload and compares.
 
 use super::Migration;
@@ -34,12 +34,12 @@ CREATE TABLE run (
   taken       TEXT    NOT NULL,                         -- when it was taken, RFC 3339 with the offset as given
   taken_s     INTEGER NOT NULL,                         -- the same in seconds since 1970-01-01T00:00:00Z
   technician  TEXT,                                     -- who took it
-  origin      INTEGER NOT NULL,                         -- 1 imported, 2 entered
+  origin      INTEGER NOT NULL,                         -- 1 imported, 2 entered, 3 logged
   source      BLOB                                      -- SHA-256 of the files of an imported run
 ) STRICT;
 CREATE UNIQUE INDEX run_source  ON run (source) WHERE source IS NOT NULL;
 CREATE INDEX        run_orifice ON run (orifice_key, taken_s, number);
-CREATE INDEX        run_entered ON run (number) WHERE origin = 2;
+CREATE INDEX        run_entered ON run (number) WHERE origin <> 1;
 
 -- Every record of a run, in order of seq: its header, readings, files, corrections, judgements.
 CREATE TABLE of_run (
@@ -82,7 +82,7 @@ CREATE TABLE session (
   kept      INTEGER NOT NULL,                           -- how the loop is kept at first: 1 sealed, 2 held, 3 topped
   taken     TEXT    NOT NULL,                           -- when it was begun, RFC 3339 with the offset as given
   recorded  TEXT    NOT NULL,                           -- when it was recorded, RFC 3339 with its offset
-  origin    INTEGER NOT NULL,                           -- 1 imported, 2 entered
+  origin    INTEGER NOT NULL,                           -- 1 imported, 2 entered, 3 logged
   first_s   REAL,                                       -- earliest reading, s on the time column
   last_s    REAL,                                       -- latest reading, s on the time column
   cells     INTEGER NOT NULL,                           -- oxygen cells
@@ -144,6 +144,17 @@ CREATE TABLE head (
 CREATE TABLE wiping (
   one INTEGER PRIMARY KEY CHECK (one = 1)               -- always 1
 ) STRICT;
+
+-- Who holds the ports of a run or session that is being logged: written anew all the time, no part of the record.
+CREATE TABLE lease (
+  what    INTEGER NOT NULL CHECK (what IN (1, 2)),      -- 1 run, 2 session
+  number  INTEGER NOT NULL,                             -- its number
+  holder  BLOB    NOT NULL CHECK (length(holder) = 16), -- drawn by the process that logs it
+  host    TEXT    NOT NULL,                             -- name of the machine it runs on
+  process INTEGER NOT NULL,                             -- its number there
+  beat_ms INTEGER NOT NULL,                             -- when it was last heard of, ms since 1970-01-01T00:00:00Z
+  PRIMARY KEY (what, number)
+) STRICT, WITHOUT ROWID;
 
 -- Nothing recorded is changed, whatever the form of the statement.
 CREATE TRIGGER record_stays    BEFORE UPDATE ON record   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;

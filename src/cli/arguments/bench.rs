@@ -7,7 +7,7 @@ use clap::{Args, Subcommand};
 use crate::quantity::text;
 use crate::quantity::unit::{Kind, Unit, lookup};
 use crate::quantity::{
-    AbsolutePressure, GaugePressure, PressureDifference, QuantityError, StpdFlow, Uncertain,
+    AbsolutePressure, GaugePressure, PressureDifference, QuantityError, Span, StpdFlow, Uncertain,
 };
 
 /// Verbs of bench runs.
@@ -15,7 +15,9 @@ use crate::quantity::{
 pub enum Bench {
     /// Types a run, point by point, at a prompt or from a pipe
     Enter(Box<Enter>),
-    /// Goes on with a run that was left open
+    /// Logs a run live from serial instruments
+    Log(Box<BenchLog>),
+    /// Goes on with a run that was left open, typed or live; shows one that another process logs
     Resume(Resume),
     /// Takes runs from files into the book
     Import(Import),
@@ -75,12 +77,67 @@ pub struct Enter {
     pub typed: Typed,
 }
 
+/// Options of `bench log`.
+#[derive(Debug, Args)]
+pub struct BenchLog {
+    /// The orifice; one that is not in the register yet is created with its name only
+    #[arg(value_name = "ORIFICE")]
+    pub orifice: String,
+    /// oxygen, air, nitrogen or helium (else oxygen)
+    #[arg(long, value_name = "GAS")]
+    pub gas: Option<String>,
+    /// Oxygen in the oxygen (else "99.5 % ± 0.3 %")
+    #[arg(long, value_name = "SHARE")]
+    pub oxygen: Option<String>,
+    /// The flow meter, by its name in the register (else the only one with a port)
+    #[arg(long, value_name = "ID")]
+    pub meter: Option<String>,
+    /// The pressure transducer, by its name in the register (else the only one with a port)
+    #[arg(long, value_name = "ID")]
+    pub transducer: Option<String>,
+    /// A barometer by its name in the register, or a value as in "1009.2 hPa ± 1.0 hPa" (else the only one with a port)
+    #[arg(long, value_name = "ID|PRESSURE", allow_hyphen_values = true)]
+    pub barometer: Option<String>,
+    /// A thermometer by its name in the register, or a value as in "21.0 °C ± 1.0 °C" (else the only one with a port)
+    #[arg(long, value_name = "ID|TEMPERATURE", allow_hyphen_values = true)]
+    pub temperature: Option<String>,
+    /// acceptance, as-found, as-left or check (else check)
+    #[arg(long, value_name = "PURPOSE")]
+    pub purpose: Option<String>,
+    /// Who turns the regulator
+    #[arg(long, value_name = "NAME")]
+    pub technician: Option<String>,
+    /// The limits, by their name in the register, or none
+    #[arg(long, value_name = "NAME")]
+    pub acceptance: Option<String>,
+    /// How it is logged
+    #[command(flatten)]
+    pub length: LogLength,
+}
+
+/// How long a run is logged, and who takes its points.
+#[derive(Debug, Args)]
+pub struct LogLength {
+    /// Ends after this time, as in "10 min" (else when it is finished or left)
+    #[arg(long = "for", value_name = "DURATION", allow_hyphen_values = true, value_parser = text::value::<Span>)]
+    pub lasts: Option<Span>,
+    /// Ends with this many points
+    #[arg(long, value_name = "N")]
+    pub points: Option<usize>,
+    /// Takes steady points by itself and prints a line a second, as it does without a terminal
+    #[arg(long)]
+    pub by_itself: bool,
+}
+
 /// Options of `bench resume`.
 #[derive(Debug, Args)]
 pub struct Resume {
     /// A run of the book that is still open
     #[arg(value_name = "RUN")]
     pub run: String,
+    /// How a live run is logged
+    #[command(flatten)]
+    pub length: LogLength,
     /// How numbers without a unit are read
     #[command(flatten)]
     pub typed: Typed,

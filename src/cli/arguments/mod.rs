@@ -10,7 +10,9 @@ mod setting;
 
 use std::path::PathBuf;
 
-pub use bench::{Accept, Bench, Enter, Fit, Import, LeaveOut, List, Resume, Show, Typed};
+pub use bench::{
+    Accept, Bench, BenchLog, Enter, Fit, Import, LeaveOut, List, LogLength, Resume, Show, Typed,
+};
 pub use book::{Backup, Book, Check, Export};
 use clap::{Args, Parser, Subcommand};
 pub use registers::{
@@ -20,8 +22,8 @@ pub use registers::{
 pub use rig::Rig;
 
 pub use session::{
-    EnterSession, ImportSessions, LeaveOutSession, ListSessions, ResumeSession, Sessions, ShowSession,
-    UptakeOf,
+    EnterSession, ImportSessions, LeaveOutSession, ListSessions, ResumeSession, SessionLog, Sessions,
+    ShowSession, UptakeOf,
 };
 pub use setting::{Setting, Water};
 

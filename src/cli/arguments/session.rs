@@ -4,12 +4,16 @@ use std::path::PathBuf;
 
 use clap::{Args, Subcommand};
 
+use crate::quantity::{Span, text};
+
 /// Verbs of couch and pool sessions.
 #[derive(Debug, Subcommand)]
 pub enum Sessions {
     /// Types a session, row by row, at a prompt or from a pipe
     Enter(Box<EnterSession>),
-    /// Goes on with a session that was left open
+    /// Logs a session live from oxygen cells
+    Log(Box<SessionLog>),
+    /// Goes on with a session that was left open, typed or live
     Resume(ResumeSession),
     /// Takes sessions from files into the book
     Import(ImportSessions),
@@ -24,7 +28,7 @@ pub enum Sessions {
 }
 
 /// Options of `session enter`; what is not given is asked for, or stays unsaid.
-#[derive(Debug, Args)]
+#[derive(Debug, Clone, Args)]
 pub struct EnterSession {
     /// The diver, by code; one that is not in the register yet is created with the code only
     #[arg(value_name = "DIVER")]
@@ -73,12 +77,32 @@ pub struct EnterSession {
     pub taken: Option<String>,
 }
 
+/// Options of `session log`: those of `session enter`, and the instruments.
+#[derive(Debug, Args)]
+pub struct SessionLog {
+    /// The session
+    #[command(flatten)]
+    pub session: EnterSession,
+    /// An oxygen cell, by its name in the register; repeat, in their order (else every cell with a port)
+    #[arg(long, value_name = "ID")]
+    pub cell: Vec<String>,
+    /// What is injected at the beginning, as in "0.31 L/min" (STPD), "9.4 bar" (IP through the orifice's line) or off
+    #[arg(long, value_name = "FLOW|IP|off")]
+    pub injection: Option<String>,
+    /// How long, as in "40 min" (else until it is finished or left)
+    #[arg(long = "for", value_name = "DURATION", allow_hyphen_values = true, value_parser = text::value::<Span>)]
+    pub lasts: Option<Span>,
+}
+
 /// Options of `session resume`.
 #[derive(Debug, Args)]
 pub struct ResumeSession {
     /// A session of the book that is still open
     #[arg(value_name = "SESSION")]
     pub session: String,
+    /// How long a live one goes on, as in "40 min"
+    #[arg(long = "for", value_name = "DURATION", allow_hyphen_values = true, value_parser = text::value::<Span>)]
+    pub lasts: Option<Span>,
 }
 
 /// Options of `session import`.

@@ -89,7 +89,7 @@ fn hold(
     }
 }
 
-fn end(desk: &Desk, asks: bool, global: &Global) -> Result<ExitStatus, Ended> {
+pub(super) fn end(desk: &Desk, asks: bool, global: &Global) -> Result<ExitStatus, Ended> {
     if desk.is_open() || global.json {
         return left(Some(desk), asks, global);
     }
@@ -105,7 +105,7 @@ fn end(desk: &Desk, asks: bool, global: &Global) -> Result<ExitStatus, Ended> {
 }
 
 /// The document, or what became of a run that was left.
-fn left(desk: Option<&Desk>, asks: bool, global: &Global) -> Result<ExitStatus, Ended> {
+pub(super) fn left(desk: Option<&Desk>, asks: bool, global: &Global) -> Result<ExitStatus, Ended> {
     let number = desk.and_then(Desk::number);
     if number.is_none() && !asks {
         return Err(EnterError::NothingTyped.into());

@@ -17,6 +17,11 @@ use crate::work::enter_session::{SessionDesk, SessionEnterError, SessionStart};
 
 pub(in crate::cli) fn enter(arguments: &EnterSession, global: &Global) -> Result<ExitStatus, Ended> {
     let asks = io::stdin().is_terminal();
+    hold(SessionBeginning::New(Box::new(start(arguments, global)?)), asks, global)
+}
+
+/// The session as far as options say.
+pub(in crate::cli) fn start(arguments: &EnterSession, global: &Global) -> Result<SessionStart, Ended> {
     let mut start = SessionStart::new(shelf(global)?, &arguments.diver)?;
     // What was said goes before what the file says; the place first, because a pool is asked more.
     for (question, text) in [
@@ -41,7 +46,7 @@ pub(in crate::cli) fn enter(arguments: &EnterSession, global: &Global) -> Result
     if let Some(file) = &arguments.from {
         start.take_from(file)?;
     }
-    hold(SessionBeginning::New(Box::new(start)), asks, global)
+    Ok(start)
 }
 
 pub(in crate::cli) fn resume(arguments: &ResumeSession, global: &Global) -> Result<ExitStatus, Ended> {
@@ -69,7 +74,7 @@ fn hold(beginning: SessionBeginning, asks: bool, global: &Global) -> Result<Exit
     }
 }
 
-fn end(desk: &SessionDesk, asks: bool, global: &Global) -> Result<ExitStatus, Ended> {
+pub(in crate::cli) fn end(desk: &SessionDesk, asks: bool, global: &Global) -> Result<ExitStatus, Ended> {
     if desk.is_open() || global.json {
         return left(Some(desk), asks, global);
     }
@@ -88,7 +93,11 @@ fn end(desk: &SessionDesk, asks: bool, global: &Global) -> Result<ExitStatus, En
 }
 
 /// The document, or what became of a session that was left.
-fn left(desk: Option<&SessionDesk>, asks: bool, global: &Global) -> Result<ExitStatus, Ended> {
+pub(in crate::cli) fn left(
+    desk: Option<&SessionDesk>,
+    asks: bool,
+    global: &Global,
+) -> Result<ExitStatus, Ended> {
     let number = desk.and_then(SessionDesk::number);
     if number.is_none() && !asks {
         return Err(SessionEnterError::NothingTyped.into());

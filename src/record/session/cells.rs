@@ -22,7 +22,11 @@ pub(super) struct Papers {
 
 /// Reads the table; `whole` is the file, for what is missing when there is no table.
 pub(super) fn papers(whole: &Table<'_>, cells: &[Cell]) -> Result<Papers, RecordError> {
-    let in_volts = cells.iter().filter(|cell| cell.in_volts).count();
+    papers_of(whole, cells.iter().filter(|cell| cell.in_volts).count())
+}
+
+/// The table for so many cells that are read in volts.
+fn papers_of(whole: &Table<'_>, in_volts: usize) -> Result<Papers, RecordError> {
     let Some(table) = whole.table("cells")? else {
         return match in_volts {
             0 => Ok(Papers::default()),
@@ -54,6 +58,32 @@ pub(super) fn papers(whole: &Table<'_>, cells: &[Cell]) -> Result<Papers, Record
         return Err(oxygen_field.refuse(SessionRefusal::AirAboveOxygen.into()));
     }
     Ok(Papers { common: CellPapers { gain, calibrated_at }, points })
+}
+
+/// The calibration of cells that are read in mV.
+#[derive(Debug, Clone, PartialEq)]
+pub struct CellCalibration {
+    /// Volts in air and in oxygen of each such cell, in their order.
+    pub points: Vec<(f64, f64)>,
+    /// The state at the calibration.
+    pub at: CalibratedAt,
+}
+
+/// The calibration that a session file has for `in_volts` cells; none when its `[cells]` names none.
+///
+/// # Errors
+/// As for the table of a session file with such cells.
+pub(super) fn calibration(
+    whole: &Table<'_>,
+    in_volts: usize,
+) -> Result<Option<CellCalibration>, RecordError> {
+    let Some(table) = whole.table("cells")? else { return Ok(None) };
+    if table.field("air").is_none() && table.field("oxygen").is_none() {
+        return Ok(None);
+    }
+    let papers = papers_of(whole, in_volts)?;
+    let at = papers.common.calibrated_at;
+    Ok(at.map(|at| CellCalibration { points: papers.points, at }))
 }
 
 const AIR: &str = r#"air = ["10.1 mV", "10.4 mV"]"#;

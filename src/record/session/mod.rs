@@ -31,10 +31,11 @@ use crate::entry::{
 };
 use crate::gas::Species;
 
+pub use cells::CellCalibration;
 pub use events::event_from;
 pub use moment::{When, elapsed_or_time};
 pub use refusal::SessionRefusal;
-pub use setup::{SessionSetup, read_session_setup, session_setup_from};
+pub use setup::{SessionSetup, read_cell_calibration, read_session_setup, session_setup_from};
 pub use write::write_session;
 
 const KEYS: [&str; 21] = [

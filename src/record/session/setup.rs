@@ -13,8 +13,8 @@ use super::super::registers::{diluent, positive};
 use super::super::run::{purity, read_toml};
 use super::super::write::quoted;
 use super::{
-    KEYS, LOOPS, PLACES, SessionRefusal, actual_volume, around, assumptions, leak_test, line, session_text,
-    spread,
+    CellCalibration, KEYS, LOOPS, PLACES, SessionRefusal, actual_volume, around, assumptions, leak_test,
+    line, session_text, spread,
 };
 use crate::entry::{
     Assumptions, CellPapers, Cylinder, Diluent, Id, LeakTest, LineReference, LoopKept, Place, Purity, Rest,
@@ -73,6 +73,17 @@ pub fn read_session_setup(path: &Path) -> Result<Loaded<SessionSetup>, RecordErr
     }
     let value = setup(&file)?;
     Ok(Loaded { value, notes: source.into_notes() })
+}
+
+/// The calibration that a session file has for so many cells that are read in mV; none when it names none.
+///
+/// # Errors
+/// As [`read_session_setup`], and those of its table of cells.
+pub fn read_cell_calibration(path: &Path, in_volts: usize) -> Result<Option<CellCalibration>, RecordError> {
+    let (name, bytes) = read_toml(path)?;
+    let source = Source::new(&name, session_text(&name, &bytes)?.trim_start_matches('\u{FEFF}'));
+    let parsed = source.parse()?;
+    super::cells::calibration(&source.whole(&parsed), in_volts)
 }
 
 /// What single answers say: keys as a file has them, behind the name of their table and a dot where they have one

@@ -6,6 +6,7 @@
 
 mod breath;
 mod diver;
+mod live;
 mod model;
 mod shop;
 
@@ -23,6 +24,7 @@ use crate::stats::monte_carlo::Random;
 use model::{Around, Bench, Day, Errors, Hole};
 
 pub use diver::DemoDiver;
+pub use live::DemoLogged;
 pub use shop::DemoShop;
 
 /// First line of every file.
@@ -69,6 +71,8 @@ pub struct Demonstration {
     pub shop: DemoShop,
     /// The diver's sessions, uptake and setting.
     pub diver: DemoDiver,
+    /// The run that was logged from the simulated bench; none where the system has no pseudo-terminals.
+    pub logged: Option<DemoLogged>,
 }
 
 /// Fills `folder`: fits single orifices from their files, keeps the book of the shop, and rests its diver.
@@ -82,8 +86,8 @@ pub fn demo(folder: &Path, units: Units) -> Result<Demonstration, WorkError> {
     let orifices = invented().into_iter().enumerate();
     let runs =
         orifices.map(|(i, orifice)| one(folder, units, i as u64, &orifice)).collect::<Result<_, _>>()?;
-    let (shop, diver) = shop::keep(folder, units)?;
-    Ok(Demonstration { runs, shop, diver })
+    let (shop, diver, logged) = shop::keep(folder, units)?;
+    Ok(Demonstration { runs, shop, diver, logged })
 }
 
 /// An orifice of the invented shop, and how its run is taken.

@@ -10,6 +10,7 @@ use std::path::{Path, PathBuf};
 use chrono::{DateTime, Duration, FixedOffset, NaiveDate};
 
 use super::diver::{self, DemoDiver};
+use super::live::{self, DemoLogged};
 use super::model::{self, Around, Bench, Day, Errors, Hole};
 use super::{
     ERRORS, GOOD, INVENTED, METER_CERTIFICATE, METER_DUE, SEED, TRANSDUCER_CERTIFICATE, TRANSDUCER_DUE, id,
@@ -103,7 +104,10 @@ pub(super) fn may_be_written(folder: &Path) -> Result<(), WorkError> {
 ///
 /// # Errors
 /// When the folder cannot be written; another error would be a defect of the program.
-pub(super) fn keep(folder: &Path, units: Units) -> Result<(DemoShop, DemoDiver), WorkError> {
+pub(super) fn keep(
+    folder: &Path,
+    units: Units,
+) -> Result<(DemoShop, DemoDiver, Option<DemoLogged>), WorkError> {
     let (book, files) = (book_in(folder), folder.join("shop"));
     let scratch = folder.join(format!(".book.db.{}.part", std::process::id()));
     remove(&scratch);
@@ -114,19 +118,21 @@ pub(super) fn keep(folder: &Path, units: Units) -> Result<(DemoShop, DemoDiver),
         let (_, history) = history::show(&Shelf::at(&scratch), &request)?;
         let warnings = history.warnings(&units);
         let diver = diver::rest(folder, &Shelf::at(&scratch), units)?;
+        let logged = live::logged(folder, &Shelf::at(&scratch), units)?;
+        let more = usize::from(logged.as_ref().is_some_and(|logged| logged.run.is_some()));
         let failed = |source| WorkError::Write { path: book.clone(), source };
         remove(&book);
         fs::rename(&scratch, &book).map_err(failed)?;
         let shop = DemoShop {
             book: book.clone(),
             files: files.clone(),
-            orifices: orifices + 1,
-            runs: runs + 1,
+            orifices: orifices + 1 + more,
+            runs: runs + 1 + more,
             clogging: CLOGGING,
             plot,
             warnings,
         };
-        Ok((shop, diver))
+        Ok((shop, diver, logged))
     });
     remove(&scratch);
     kept

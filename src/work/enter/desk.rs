@@ -120,6 +120,27 @@ impl Desk {
         Ok(desk)
     }
 
+    /// A run of the book that is being logged, however far it is.
+    ///
+    /// # Errors
+    /// A run that is not there, a book that cannot be read.
+    pub fn of_logged(shelf: Shelf, number: RunNumber) -> Result<Self, WorkError> {
+        let book = shelf.to_change()?;
+        let record = book.run(number)?;
+        let mut desk = Self {
+            shelf,
+            book: Some(book),
+            number: Some(number),
+            run: record.run.clone(),
+            header: record.run,
+            open: true,
+            analysed: None,
+            said: None,
+        };
+        desk.read_again()?;
+        Ok(desk)
+    }
+
     /// Its number; none before the first point.
     #[must_use]
     pub const fn number(&self) -> Option<RunNumber> {
@@ -368,7 +389,10 @@ impl Desk {
     }
 
     /// Reads the run from the book and analyses it again.
-    fn read_again(&mut self) -> Result<(), WorkError> {
+    ///
+    /// # Errors
+    /// A book that cannot be read.
+    pub fn read_again(&mut self) -> Result<(), WorkError> {
         let (Some(number), Some(book)) = (self.number, &self.book) else { return Ok(()) };
         let record = book.run(number)?;
         self.open = record.state == RunState::Open;

@@ -56,6 +56,8 @@ pub struct Start {
     technician: Answer<String>,
     conditions: Conditions,
     taken: Option<DateTime<FixedOffset>>,
+    /// Conditions that an instrument reads with each point.
+    read_along: Vec<Question>,
     before: ZeroAndLeak,
     zero_skipped: bool,
     leak_skipped: bool,
@@ -93,7 +95,8 @@ pub(super) struct Last {
 #[derive(Debug)]
 pub struct Ready {
     pub(super) shelf: Shelf,
-    pub(super) run: Run,
+    /// The run, without points.
+    pub run: Run,
     /// What was said on the way.
     pub notes: Vec<String>,
     /// Unit of the pressure column of the run file, if one was taken.
@@ -138,6 +141,7 @@ impl Start {
             technician: Answer::Open,
             conditions: Conditions::default(),
             taken: None,
+            read_along: Vec::new(),
             before: ZeroAndLeak::default(),
             zero_skipped: false,
             leak_skipped: false,
@@ -212,6 +216,11 @@ impl Start {
         Ok(())
     }
 
+    /// Barometer or temperature is read with each point, by an instrument; no value holds for the whole run.
+    pub fn is_read_along(&mut self, question: Question) {
+        self.read_along.push(question);
+    }
+
     /// The orifice.
     #[must_use]
     pub const fn orifice(&self) -> &Id {
@@ -251,8 +260,12 @@ impl Start {
             Question::Transducer => self.transducer.is_some(),
             Question::Acceptance => self.acceptance != Answer::Open,
             Question::Technician => self.technician != Answer::Open,
-            Question::Barometer => self.conditions.barometer.value.is_some(),
-            Question::Temperature => self.conditions.temperature.value.is_some(),
+            Question::Barometer => {
+                self.conditions.barometer.value.is_some() || self.read_along.contains(&question)
+            }
+            Question::Temperature => {
+                self.conditions.temperature.value.is_some() || self.read_along.contains(&question)
+            }
             Question::Taken => self.taken.is_some(),
             Question::ZeroBefore => self.before.zero.is_some() || self.zero_skipped,
             Question::LeakBefore => self.before.leak_pa_s.is_some() || self.leak_skipped,
@@ -450,7 +463,7 @@ impl Start {
             acceptance: self.acceptance.given(),
             left_out: Vec::new(),
         };
-        refused_conditions(&run)?;
+        refused_conditions(&with_usual_conditions(run.clone()))?;
         Ok(Ready {
             shelf: self.shelf,
             run,
@@ -469,10 +482,7 @@ impl Start {
     /// Whether a bench can have such conditions, as far as the rest is known.
     fn check(&self, conditions: &Conditions) -> Result<(), WorkError> {
         let (Some(meter), Some(transducer)) = (&self.meter, &self.transducer) else { return Ok(()) };
-        let mut conditions = conditions.clone();
-        conditions.barometer.value.get_or_insert(AbsolutePressure::STANDARD_ATMOSPHERE);
-        conditions.temperature.value.get_or_insert(Temperature::from_c(20.0));
-        refused_conditions(&Run {
+        refused_conditions(&with_usual_conditions(Run {
             orifice: self.orifice.clone(),
             build: Build::Unknown,
             gas: self.gas.unwrap_or(Species::Oxygen),
@@ -481,15 +491,22 @@ impl Start {
             taken: DateTime::UNIX_EPOCH.fixed_offset(),
             technician: None,
             readings: Readings::Points(Vec::new()),
-            conditions,
+            conditions: conditions.clone(),
             before: ZeroAndLeak::default(),
             after: ZeroAndLeak::default(),
             meter: meter.clone(),
             transducer: transducer.clone(),
             acceptance: None,
             left_out: Vec::new(),
-        })
+        }))
     }
+}
+
+/// The run with the usual barometer and temperature where it has no value of its own, so that the rest can be checked.
+fn with_usual_conditions(mut run: Run) -> Run {
+    run.conditions.barometer.value.get_or_insert(AbsolutePressure::STANDARD_ATMOSPHERE);
+    run.conditions.temperature.value.get_or_insert(Temperature::from_c(20.0));
+    run
 }
 
 /// A meter's zero at no flow.

@@ -119,6 +119,30 @@ impl SessionDesk {
         Ok(desk)
     }
 
+    /// A session of the book that is being logged, whatever its columns.
+    ///
+    /// # Errors
+    /// A session that is not there or cannot be read.
+    pub fn of_logged(shelf: Shelf, number: SessionNumber) -> Result<Self, WorkError> {
+        let book = shelf.to_change()?;
+        let record = book.session(number)?;
+        let line = line_of(&shelf, &record.session, record.line_run.as_ref())?;
+        let mut desk = Self {
+            shelf,
+            book: Some(book),
+            number: Some(number),
+            session: record.session.clone(),
+            rows: Vec::new(),
+            left_out: Vec::new(),
+            line_run: record.line_run.clone(),
+            line,
+            open: record.state == RunState::Open,
+            worked: None,
+        };
+        desk.take(record);
+        Ok(desk)
+    }
+
     /// Its number; none before the first row.
     #[must_use]
     pub const fn number(&self) -> Option<SessionNumber> {

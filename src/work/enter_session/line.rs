@@ -4,11 +4,13 @@
 //! are brought to the texts a session file has and read by its rules; only minutes:seconds, which no file has, are this
 //! dialogue's own. Left out: decimal commas, which are refused with the number as it should stand.
 
+use chrono::DateTime;
+
 use super::{SessionEnterError, refused};
-use crate::entry::{Event, Session};
+use crate::entry::{Event, Session, What};
 use crate::quantity::text::{uncertain, value};
 use crate::quantity::{AbsolutePressure, GaugePressure, QuantityError, StpdFlow};
-use crate::record::{elapsed_or_time, event_from};
+use crate::record::{When, elapsed_or_time, event_from};
 use crate::report::session_enter_questions::SessionQuestion;
 
 /// What was typed.
@@ -131,6 +133,30 @@ fn row_of(at: &str, what: &str, session: &Session) -> Result<Row, SessionEnterEr
     let mut texts: Vec<(&str, &str)> = vec![("at", &at)];
     texts.extend(pairs.iter().map(|(key, text)| (*key, text.as_str())));
     Ok(Row::Event(event_from(&texts, session.taken).map_err(refused)?))
+}
+
+/// What happened, as it is typed behind its time: "oxygen add 0.4 L", "injection 9.4 bar", "make-up held mark".
+///
+/// # Errors
+/// What is nothing that can happen, or not as a session file has it, in one sentence.
+pub fn happened(text: &str) -> Result<What, SessionEnterError> {
+    let pairs = happening(text)?;
+    let mut texts: Vec<(&str, &str)> = vec![("at", "00:00:00")];
+    texts.extend(pairs.iter().map(|(key, text)| (*key, text.as_str())));
+    // No time of day is read here, so that the beginning does not matter.
+    let begun = DateTime::UNIX_EPOCH.fixed_offset();
+    Ok(event_from(&texts, begun).map_err(refused)?.what)
+}
+
+/// A time on the time column as it is typed: minutes and seconds, hours with them, or seconds alone.
+///
+/// # Errors
+/// What is none; a time of day.
+pub fn seconds(text: &str) -> Result<f64, SessionEnterError> {
+    match elapsed_or_time(&moment(text)?) {
+        Ok(When::Elapsed(seconds)) => Ok(seconds),
+        _ => Err(SessionEnterError::Moment(text.to_owned())),
+    }
 }
 
 /// What happened, as the keys of an event of a file with their texts.
@@ -319,6 +345,7 @@ fn is_meant(name: &str) -> String {
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::entry::Injection;
 
     #[test]
     fn times_are_those_of_a_watch() {
@@ -354,6 +381,21 @@ mod tests {
         for bad in ["0,95 0,94", "0.95 nan", "1e999", "-0.5", "0.95 V"] {
             assert!(cells(bad).is_err(), "{bad}");
         }
+    }
+
+    #[test]
+    fn what_happened_now_is_read_without_a_time() {
+        assert_eq!(happened("injection off"), Ok(What::Injection(Injection::Off)));
+        assert_eq!(happened("oxygen add"), Ok(What::OxygenAdd(None)));
+        let Ok(What::OxygenAdd(Some(metered))) = happened("oxygen add 0.4 L at 25 °C, 101.3 kPa") else {
+            panic!("not metered")
+        };
+        assert!((metered.volume.value.as_l() - 0.4).abs() < 1e-12 && metered.reads_at.is_some());
+        for bad in ["oxygen add 0,4 L", "oxygen add soon", "injection", "injection 0.31", "make-up open"] {
+            assert!(happened(bad).is_err(), "{bad}");
+        }
+        assert_eq!(seconds("10:30").map(f64::to_bits), Ok(630.0_f64.to_bits()));
+        assert!(seconds("2026-11-20T18:05:00+11:00").is_err() && seconds("soon").is_err());
     }
 
     #[test]

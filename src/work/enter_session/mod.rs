@@ -17,7 +17,7 @@ use crate::quantity::QuantityError;
 use crate::record::RecordError;
 
 pub use desk::{RowAdded, SessionDesk};
-pub use line::{Row, Typed, read};
+pub use line::{Row, Typed, happened, read, seconds};
 pub use so_far::SoFar;
 pub use start::{SessionReady, SessionStart};
 

@@ -45,8 +45,10 @@ pub struct SessionStart {
 #[derive(Debug)]
 pub struct SessionReady {
     pub(super) shelf: Shelf,
-    pub(super) session: Session,
-    pub(super) line_run: Option<Run>,
+    /// The session, without rows.
+    pub session: Session,
+    /// The run of the run file that its setup names.
+    pub line_run: Option<Run>,
     pub(super) line: Option<FoundLine>,
     /// What was said on the way.
     pub notes: Vec<String>,

@@ -12,6 +12,7 @@
 
 mod decisions;
 mod folder;
+mod live_files;
 mod run_files;
 mod session_files;
 mod sessions;
@@ -26,7 +27,7 @@ use super::WorkError;
 use super::book::{place_of, said_copy};
 use super::registers::{Found, RegisterKind, command, revisions};
 use super::shelf::{Shelf, meter_of, stamped, transducer_of};
-use crate::book::{Book, CopyKind, Kept, RunQuery, RunState};
+use crate::book::{Book, CopyKind, Kept, Origin, RunQuery, RunState};
 use crate::entry::{Acceptance, Diver, FirstStage, Id, Instrument, Meter, Orifice, RunNumber, Transducer};
 use crate::record::{RegisterEntry, Registers, write_register};
 use crate::report::export::{self as words, Exported, Form};
@@ -242,6 +243,12 @@ fn runs(folder: &mut Folder, book: &Book, exported: &mut Exported) -> Result<(),
         let toml_file = format!("{place}/{number}.toml");
         folder.write(&toml_file, &files.toml)?;
         folder.write(&format!("{place}/{}", files.readings_name), &files.readings)?;
+        if record.origin == Origin::Logged
+            && let Some((raw, live)) = live_files::of(book, number)?
+        {
+            folder.write(&format!("{place}/{number}-raw.csv"), raw.as_bytes())?;
+            folder.write(&format!("{place}/{number}-live.toml"), live.as_bytes())?;
+        }
         if record.state == RunState::Open {
             exported.notes.push(format!("{number} is still open: an import takes it as complete"));
         }
