@@ -17,6 +17,7 @@ pub mod issue;
 pub mod pages;
 pub mod paper;
 pub mod rounding;
+pub mod sheet;
 pub mod stated;
 
 pub use check::{CheckError, Checked, check};

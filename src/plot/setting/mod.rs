@@ -16,6 +16,9 @@ mod layout;
 mod margin;
 mod depth_panel;
 mod ip_panel;
+mod small;
+
+pub use small::small_setting_plot;
 
 use super::ink::PAPER;
 use super::svg::{Head, Svg, tame_prefix};
