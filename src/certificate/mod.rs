@@ -11,6 +11,7 @@
 pub mod check;
 pub mod compare;
 pub mod complete;
+pub mod conformance;
 pub mod content;
 pub mod dcc;
 pub mod issue;

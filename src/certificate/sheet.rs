@@ -4,8 +4,8 @@
 //! stands in drawings of the width of the text (`plot::card`), the way one lays out a card: what is set in running blocks needs two pages of A5.
 //! Each drawing carries all of its words for those who do not see it, and its letters are text.
 //!
-//! Where not everything fits on one page the plots become smaller; then they go overleaf, then the warnings, at last the
-//! cautions, and the first page says so in a plain sentence. No warning and no caution is ever left out. A4 has the proportions of
+//! Where not everything fits on one page the plots become smaller; then they go overleaf, with the warnings, at last with the
+//! cautions too, and the first page says so in a plain sentence. No warning and no caution is ever left out. A4 has the proportions of
 //! A5, so the same card is set larger.
 //!
 //! Left out: an attachment, a shop's letterhead, a signature: the sheet certifies nothing.
@@ -13,7 +13,9 @@
 use chrono::{FixedOffset, NaiveTime, TimeZone as _};
 
 use super::paper::{Block, Document, Figure, Paper, faults};
-use crate::plot::{CARD_WIDTH, CardDrawing, SettingPlot, card_front, card_paragraphs, small_setting_plot};
+use crate::plot::{
+    BEFORE_PLOTS, CARD_WIDTH, CardDrawing, SettingPlot, card_front, card_paragraphs, small_setting_plot,
+};
 use crate::report::Units;
 use crate::report::setting::Reported;
 use crate::report::sheet_card::{Card, card};
@@ -34,10 +36,13 @@ const BETWEEN: f64 = 12.0;
 /// A figure takes at most this share of the height of a page's text (`paper`), whole.
 const TALLEST: f64 = 0.81;
 /// Heights of the plots at the width of the card, points: the most and the least that is legible.
-const PLOTS: (f64, f64) = (112.0, 66.0);
+const PLOTS: (f64, f64) = (112.0, 64.0);
 /// Height of the plots where they have a page to themselves.
 const OVERLEAF: f64 = 190.0;
 
+/// Titles of the warnings and of the cautions.
+const TO_KNOW: &str = "To know";
+const CAUTIONS: &str = "Cautions";
 /// What the first page says when the plots alone stand on the second, and when more does.
 const PLOTS_OVERLEAF: &str = "Continued overleaf: the plots.";
 const WARNINGS_OVERLEAF: &str =
@@ -102,33 +107,29 @@ impl Page {
     /// Drawings page by page.
     fn laid(&self, card: &Card, plots: impl Fn(f64) -> CardDrawing) -> Vec<Vec<CardDrawing>> {
         let highest = TALLEST * self.height;
-        let to_know = card_paragraphs("To know", &card.to_know, highest);
-        let cautions = card_paragraphs("Cautions", &card.cautions, highest);
-        let with = |front: CardDrawing, more: &[&[CardDrawing]]| -> Vec<CardDrawing> {
-            std::iter::once(front).chain(more.iter().flat_map(|d| d.iter().cloned())).collect()
+        let (know, warn): (&[String], &[String]) = (&card.to_know, &card.cautions);
+        let words = |sections: &[(&str, &[String])]| card_paragraphs(sections, highest);
+        let both = words(&[(TO_KNOW, know), (CAUTIONS, warn)]);
+        let page = |front: CardDrawing, more: &[CardDrawing]| -> Vec<CardDrawing> {
+            std::iter::once(front).chain(more.iter().cloned()).collect()
         };
-        let words = with(card_front(card, None), &[&to_know, &cautions]);
-        let left = self.height - self.needed(&words) - self.between;
+        let left = self.height - self.needed(&page(card_front(card, None, None), &both)) - BEFORE_PLOTS;
         if left >= PLOTS.1 {
-            let mut page = words;
-            page.insert(1, plots(left.min(PLOTS.0)));
-            return vec![page];
+            return vec![page(card_front(card, Some(&plots(left.min(PLOTS.0))), None), &both)];
         }
-        let choices: [(&str, Vec<&[CardDrawing]>, Vec<&[CardDrawing]>); 3] = [
-            (PLOTS_OVERLEAF, vec![&to_know, &cautions], vec![]),
-            (WARNINGS_OVERLEAF, vec![&cautions], vec![&to_know]),
-            (ALL_OVERLEAF, vec![], vec![&to_know, &cautions]),
-        ];
-        let last = choices.len() - 1;
-        for (i, (says, here, overleaf)) in choices.into_iter().enumerate() {
-            let first = with(card_front(card, Some(says)), &here);
-            if self.needed(&first) <= self.height || i == last {
-                let mut rest: Vec<CardDrawing> = overleaf.iter().flat_map(|d| d.iter().cloned()).collect();
-                rest.push(plots(OVERLEAF));
-                return vec![first, rest];
-            }
-        }
-        Vec::new()
+        let fits = |says, more: &[CardDrawing]| {
+            let page = page(card_front(card, None, Some(says)), more);
+            (self.needed(&page) <= self.height).then_some(page)
+        };
+        let (first, mut overleaf) = if let Some(first) = fits(PLOTS_OVERLEAF, &both) {
+            (first, Vec::new())
+        } else if let Some(first) = fits(WARNINGS_OVERLEAF, &words(&[(CAUTIONS, warn)])) {
+            (first, words(&[(TO_KNOW, know)]))
+        } else {
+            (page(card_front(card, None, Some(ALL_OVERLEAF)), &[]), both)
+        };
+        overleaf.push(plots(OVERLEAF));
+        vec![first, overleaf]
     }
 
     fn needed(&self, drawings: &[CardDrawing]) -> f64 {

@@ -10,6 +10,8 @@
 
 use super::ink::{BRICK, INK, SAND};
 use super::letters::{Weight, clean, width};
+use super::number::coordinate;
+use super::setting::SMALL_PLOT_POINTS;
 use super::svg::{Anchor, Head, Svg, Text};
 use crate::report::sheet_card::{Card, CardTable, Large, Part};
 
@@ -21,14 +23,18 @@ const CONDENSED: f64 = 0.9;
 /// Width in letters that are not condensed.
 const WIDE: f64 = CARD_WIDTH / CONDENSED;
 /// Smallest letters, and the distance of their lines.
-const SIZE: f64 = 6.6;
-const LEADING: f64 = 8.0;
+const SIZE: f64 = 6.5;
+const LEADING: f64 = 7.6;
+/// Letters of a title over sentences or a table.
+const HEADING: f64 = 7.2;
 /// Between two columns.
 const GUTTER: f64 = 14.0;
 /// Letters of the title, and of the numbers that matter.
 const TITLE: f64 = 10.0;
 const LARGE: f64 = 25.0;
 const BESIDE: f64 = 9.0;
+/// Space above the plots.
+pub const BEFORE_PLOTS: f64 = 4.0;
 /// Most lines of a line about where the numbers come from: it holds the name of a file.
 const MOST_ABOUT: usize = 3;
 
@@ -43,9 +49,10 @@ pub struct CardDrawing {
     pub alt: String,
 }
 
-/// Title, numbers, sentences and tables; `continued` is what the foot says when there is more overleaf.
+/// Title, numbers, sentences, tables and the plots of [`super::small_setting_plot`], where they stand there; `continued` is what the foot
+/// says when there is more overleaf.
 #[must_use]
-pub fn card_front(card: &Card, continued: Option<&str>) -> CardDrawing {
+pub fn card_front(card: &Card, plots: Option<&CardDrawing>, continued: Option<&str>) -> CardDrawing {
     let mut ink = Drawing::new();
     ink.paragraph((0.0, WIDE), TITLE, &[(&card.title, Weight::Bold)]);
     for line in &card.about {
@@ -59,7 +66,7 @@ pub fn card_front(card: &Card, continued: Option<&str>) -> CardDrawing {
         }
     }
     ink.said(&card.about);
-    ink.rule(2.0, INK, 1.0);
+    ink.rule(1.5, INK, 1.0);
     match &card.none {
         Some(why) => {
             ink.space(LARGE * 0.95);
@@ -73,11 +80,17 @@ pub fn card_front(card: &Card, continued: Option<&str>) -> CardDrawing {
         }
         None => ink.large(&card.large),
     }
-    ink.rule(3.0, INK, 0.5);
+    ink.rule(2.0, INK, 0.5);
     ink.parts(&card.parts);
     if !card.tables.is_empty() {
-        ink.rule(2.5, SAND, 0.6);
+        ink.rule(2.0, SAND, 0.6);
         ink.tables(&card.tables);
+    }
+    if let Some(plots) = plots {
+        ink.space(BEFORE_PLOTS);
+        ink.svg.push(Ink::Picture { y: ink.y, svg: plots.svg.clone() });
+        ink.said.push(plots.alt.clone());
+        ink.y += plots.height;
     }
     if let Some(continued) = continued {
         ink.space(4.0);
@@ -86,20 +99,27 @@ pub fn card_front(card: &Card, continued: Option<&str>) -> CardDrawing {
     ink.finish("sheet-front", "Setting, numbers and tables")
 }
 
-/// Paragraphs under a title in two columns, as many drawings as are needed when each may be at most `highest`.
+/// Paragraphs under titles in two columns, as many drawings as are needed when each may be at most `highest`.
 #[must_use]
-pub fn card_paragraphs(title: &str, paragraphs: &[String], highest: f64) -> Vec<CardDrawing> {
+pub fn card_paragraphs(sections: &[(&str, &[String])], highest: f64) -> Vec<CardDrawing> {
+    let mut rest: Vec<Item<'_>> = Vec::new();
+    for (title, paragraphs) in sections.iter().filter(|(_, paragraphs)| !paragraphs.is_empty()) {
+        rest.push(Item { text: title, title: true });
+        rest.extend(paragraphs.iter().map(|text| Item { text, title: false }));
+    }
     let mut drawings = Vec::new();
-    let mut rest: Vec<String> = paragraphs.to_vec();
     while !rest.is_empty() {
         let mut count = rest.len();
         let drawing = loop {
-            let ink = paragraphs_drawn(title, rest.get(..count).unwrap_or_default());
+            let ink = paragraphs_drawn(rest.get(..count).unwrap_or_default());
             if ink.y <= highest || count == 1 {
-                break ink.finish("sheet-words", title);
+                break ink.finish("sheet-words", "To know");
             }
-            // A paragraph less at a time: there are few.
+            // An item less at a time: there are few. A title does not end a drawing.
             count -= 1;
+            while count > 1 && rest.get(count - 1).is_some_and(|item| item.title) {
+                count -= 1;
+            }
         };
         rest.drain(..count);
         drawings.push(drawing);
@@ -107,34 +127,35 @@ pub fn card_paragraphs(title: &str, paragraphs: &[String], highest: f64) -> Vec<
     drawings
 }
 
-fn paragraphs_drawn(title: &str, paragraphs: &[String]) -> Drawing {
+/// A title or a paragraph.
+#[derive(Clone, Copy)]
+struct Item<'a> {
+    text: &'a str,
+    title: bool,
+}
+
+/// Where a paragraph begins behind its dash.
+const INDENT: f64 = 7.0;
+/// Space after a paragraph.
+const AFTER: f64 = 0.9;
+/// Space above a title that does not begin a column.
+const ABOVE_TITLE: f64 = 2.5;
+
+fn paragraphs_drawn(items: &[Item<'_>]) -> Drawing {
     let column = 0.5 * (WIDE - GUTTER);
     let mut ink = Drawing::new();
     ink.rule(0.0, BRICK, 1.2);
-    ink.paragraph((0.0, WIDE), BESIDE - 1.0, &[(title, Weight::Bold)]);
-    ink.space(1.0);
-    let room = column - 7.0;
-    let set: Vec<Vec<Line>> =
-        paragraphs.iter().map(|text| broken(&line_pieces(&[(text, Weight::Regular)]), SIZE, room)).collect();
-    ink.said(paragraphs);
-    let top = ink.y;
-    let half = halves(&set.iter().map(|lines| lines.len() as f64 * LEADING + 1.8).collect::<Vec<_>>());
-    let (mut lowest, mut x) = (top, 0.0);
-    for (i, lines) in set.iter().enumerate() {
-        if i == half {
-            (x, ink.y) = (column + GUTTER, top);
-        }
-        for (j, line) in lines.iter().enumerate() {
-            if j == 0 {
-                let dash = [("–".to_owned(), Weight::Regular)];
-                ink.at(x, SIZE, INK, Anchor::Start, &dash);
-            }
-            ink.line(x + 7.0, SIZE, INK, Anchor::Start, line);
-        }
-        ink.y += 1.8;
-        lowest = f64::max(lowest, ink.y);
-    }
-    ink.y = lowest;
+    ink.space(1.5);
+    let set: Vec<(Vec<Line>, bool)> = items
+        .iter()
+        .map(|item| {
+            let (size, weight, indent) =
+                if item.title { (HEADING, Weight::Bold, 0.0) } else { (SIZE, Weight::Regular, INDENT) };
+            (broken(&line_pieces(&[(item.text, weight)]), size, column - indent), item.title)
+        })
+        .collect();
+    ink.said(&items.iter().map(|item| item.text).collect::<Vec<_>>());
+    ink.in_columns(&set);
     ink
 }
 
@@ -237,9 +258,30 @@ struct Drawing {
 }
 
 enum Ink {
-    Text { x: f64, y: f64, size: f64, fill: &'static str, anchor: Anchor, line: Line },
-    Rule { y: f64, fill: &'static str, height: f64 },
-    Ground { x: f64, y: f64, width: f64, height: f64 },
+    Text {
+        x: f64,
+        y: f64,
+        size: f64,
+        fill: &'static str,
+        anchor: Anchor,
+        line: Line,
+    },
+    Rule {
+        y: f64,
+        fill: &'static str,
+        height: f64,
+    },
+    /// The small plots, as they are.
+    Picture {
+        y: f64,
+        svg: String,
+    },
+    Ground {
+        x: f64,
+        y: f64,
+        width: f64,
+        height: f64,
+    },
 }
 
 impl Drawing {
@@ -302,7 +344,11 @@ impl Drawing {
                 line: vec![(number.number.clone(), Weight::Bold)],
             });
             self.y += 3.5;
-            self.line(x, BESIDE, fill, Anchor::Start, &[(number.beside.clone(), Weight::Regular)]);
+            let size = BESIDE.min((column - 8.0) / width(&number.beside, 1.0, Weight::Regular).max(1e-3));
+            let y = self.y + 0.86 * BESIDE;
+            let line = vec![(number.beside.clone(), Weight::Regular)];
+            self.svg.push(Ink::Text { x, y, size, fill, anchor: Anchor::Start, line });
+            self.y += 1.22 * BESIDE;
             self.said.push(format!("{}: {}, {}.", number.label, number.number, number.beside));
         }
     }
@@ -312,45 +358,48 @@ impl Drawing {
         let column = 0.5 * (WIDE - GUTTER);
         let mut set: Vec<(Vec<Line>, bool)> = Vec::new();
         for part in parts {
-            set.push((broken(&line_pieces(&[(&part.title, Weight::Bold)]), SIZE + 0.6, column), true));
+            set.push((broken(&line_pieces(&[(&part.title, Weight::Bold)]), HEADING, column), true));
             self.said.push(format!("{}.", part.title));
-            let facts = part.facts.iter();
-            for (label, text) in facts {
+            for (label, text) in &part.facts {
                 let pieces = [(*label, Weight::Bold), (text.as_str(), Weight::Regular)];
-                set.push((broken(&line_pieces(&pieces), SIZE, column), false));
+                set.push((broken(&line_pieces(&pieces), SIZE, column - INDENT), false));
                 self.said.push(format!("{label} {text}.").trim().to_owned());
             }
         }
+        self.in_columns(&set);
+    }
+
+    /// Titles and paragraphs, each on its lines, in two columns of about the same height.
+    fn in_columns(&mut self, set: &[(Vec<Line>, bool)]) {
+        let column = 0.5 * (WIDE - GUTTER);
         let height = |(lines, title): &(Vec<Line>, bool)| {
-            lines.len() as f64 * LEADING + if *title { 3.2 } else { 0.9 }
+            lines.len() as f64 * LEADING + AFTER + if *title { ABOVE_TITLE } else { 0.0 }
         };
         let mut half = halves(&set.iter().map(height).collect::<Vec<_>>());
         // A title does not stand at the foot of a column.
-        if half > 0 && set.get(half - 1).is_some_and(|(_, title)| *title) {
+        if half > 0 && half < set.len() && set.get(half - 1).is_some_and(|(_, title)| *title) {
             half -= 1;
         }
         let (top, mut lowest, mut x) = (self.y, self.y, 0.0);
         for (i, (lines, title)) in set.iter().enumerate() {
-            if i == half {
+            if i == half && i > 0 {
                 (x, self.y) = (column + GUTTER, top);
             }
-            if *title {
-                self.y += if self.y > top { 2.2 } else { 0.0 };
+            if *title && self.y > top {
+                self.y += ABOVE_TITLE;
             }
-            for line in lines {
-                let size = if *title { SIZE + 0.6 } else { SIZE };
+            let (size, indent) = if *title { (HEADING, 0.0) } else { (SIZE, INDENT) };
+            for (j, line) in lines.iter().enumerate() {
                 let y = self.y + 0.86 * size;
-                self.svg.push(Ink::Text {
-                    x,
-                    y,
-                    size,
-                    fill: INK,
-                    anchor: Anchor::Start,
-                    line: line.to_vec(),
-                });
+                if j == 0 && !*title {
+                    let dash = vec![("–".to_owned(), Weight::Regular)];
+                    self.svg.push(Ink::Text { x, y, size, fill: INK, anchor: Anchor::Start, line: dash });
+                }
+                let line = line.clone();
+                self.svg.push(Ink::Text { x: x + indent, y, size, fill: INK, anchor: Anchor::Start, line });
                 self.y += LEADING;
             }
-            self.y += if *title { 1.0 } else { 0.9 };
+            self.y += AFTER;
             lowest = f64::max(lowest, self.y);
         }
         self.y = lowest;
@@ -372,8 +421,8 @@ impl Drawing {
     fn table(&mut self, table: &CardTable, left: f64, room: f64) {
         let pieces = line_pieces(&[(&table.title, Weight::Bold)]);
         self.said.push(format!("{}.", table.title));
-        for line in broken(&pieces, SIZE + 0.6, room) {
-            self.line(left, SIZE + 0.6, INK, Anchor::Start, &line);
+        for line in broken(&pieces, HEADING, room) {
+            self.line(left, HEADING, INK, Anchor::Start, &line);
         }
         let natural: Vec<f64> = table
             .heads
@@ -443,6 +492,7 @@ impl Drawing {
         svg.group("card", &[("transform", "scale(0.9 1)")]);
         for ink in &self.svg {
             match ink {
+                Ink::Picture { .. } => {}
                 Ink::Text { x, y, size, fill, anchor, line } => {
                     let pieces: Vec<(&str, Weight)> = line.iter().map(|(t, w)| (t.as_str(), *w)).collect();
                     svg.text(&Text {
@@ -463,6 +513,15 @@ impl Drawing {
             }
         }
         svg.end();
+        for ink in &self.svg {
+            if let Ink::Picture { y, svg: inner } = ink {
+                let scale = coordinate(1000.0 * SMALL_PLOT_POINTS);
+                let place = format!("translate(0 {}) scale(0.001) scale({scale})", coordinate(*y));
+                svg.group("card-plots", &[("transform", &place)]);
+                svg.inside(inner);
+                svg.end();
+            }
+        }
         CardDrawing { svg: svg.finish(), height, alt: self.said.join(" ") }
     }
 }

@@ -27,7 +27,7 @@ mod session;
 mod setting;
 mod card;
 
-pub use card::{CARD_WIDTH, CardDrawing, card_front, card_paragraphs};
+pub use card::{BEFORE_PLOTS, CARD_WIDTH, CardDrawing, card_front, card_paragraphs};
 pub use history::{History, HistoryPlot, HistoryRun, Leaving, Trend, TrendPlace, history_plot};
 pub use run::{RunPlot, run_plot};
 pub use session::{SessionPlot, session_plot};

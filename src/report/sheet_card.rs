@@ -5,19 +5,20 @@
 //! what was compared, the budget.
 
 use super::Units;
-use super::number::fixed;
-use super::number::shortest;
+use super::number::{fixed, shortest};
 use super::setting::Reported;
-use super::setting_parts::{another_day, depths, drift, injected, proof};
+use super::setting_parts::{Line, another_day, short, window};
 use super::setting_sentences::{against, max_depth, water_name, why_not_without_ip};
 use super::setting_words::{
-    bar_on_gauge, chance, data, depth_shown, depth_symbol, down, first_stage, injection, ip_given, minutes,
-    psi_on_gauge, rate, share_down,
+    bar_on_gauge, chance, data, depth, depth_shown, depth_symbol, down, first_stage, injection, ip_given,
+    limit, minutes, psi_on_gauge, rate, share_down, share_up, temperature, up,
 };
-use crate::setting::{DepthPoint, Described, FirstStageKind, HYPOXIA_BAR, OrificeSetting};
+use crate::bench::choke::Origin;
+use crate::quantity::show::reference_to_text;
+use crate::setting::{DepthPoint, Described, FirstStageKind, HYPOXIA_BAR, METHOD_REVISION, OrificeSetting};
 
 /// Rows of the table over IP on each side of the setting.
-const AROUND: usize = 2;
+const AROUND: usize = 1;
 /// Most sessions that are named; more are counted.
 const MOST_SESSIONS: usize = 4;
 
@@ -121,6 +122,11 @@ fn about(reported: &Reported<'_>) -> Vec<String> {
             format!("orifice {}{from}", orifice.orifice)
         })
         .collect();
+    let holds = format!("holds on {}; method revision {}", reported.on, METHOD_REVISION);
+    match lines.as_mut_slice() {
+        [one] => one.push_str(&format!("; {holds}")),
+        _ => lines.push(holds),
+    }
     let sessions: Vec<String> = reported.sessions.iter().map(|s| data(s)).collect();
     match sessions.as_slice() {
         [] => {}
@@ -131,11 +137,6 @@ fn about(reported: &Reported<'_>) -> Vec<String> {
             lines.push(format!("uptake from {} sessions, {first} to {last}", many.len()));
         }
     }
-    lines.push(format!(
-        "holds on {}, worked out by method revision {}",
-        reported.on,
-        crate::setting::METHOD_REVISION
-    ));
     lines
 }
 
@@ -153,7 +154,10 @@ fn large(reported: &Reported<'_>, described: &Described, units: &Units) -> Vec<L
     let (text, _) = injection(surface.nominal_l_min, surface.u_l_min, units);
     let (number, beside) = text.split_once(" ± ").map_or_else(
         || (text.clone(), "STPD".to_owned()),
-        |(value, u)| (format!("{value} {}", units.flow_symbol()), format!("± {u} STPD (k = 2)")),
+        |(value, u)| {
+            let symbol = units.flow_symbol();
+            (format!("{value} {symbol}"), format!("± {} STPD, k = 2", u.trim_end_matches(symbol).trim()))
+        },
     );
     large.push(Large { label: "injects", number, beside, limit: false });
     large
@@ -162,15 +166,184 @@ fn large(reported: &Reported<'_>, described: &Described, units: &Units) -> Vec<L
 fn parts(reported: &Reported<'_>, described: &Described, units: &Units) -> Vec<Part> {
     let part = |title: &str, facts| Part { title: title.to_owned(), facts };
     let mut proofs = proof(described, units);
-    if described.expected_reading.is_none() {
-        let none = "none was named: measure the flow and compare with the injection above";
-        proofs.push(("flow meter", none.to_owned()));
-    }
+    proofs.extend(choke_and_gauge(reported, described, units));
     vec![
         part("Injection, STPD (0 °C, 101.325 kPa, dry)", injected(reported, described, units)),
         part("PO2 sinks", drift(reported, described)),
         part("Proof, before the dive", proofs),
     ]
+}
+
+/// As in the text sheet, without what the large numbers say.
+fn injected(reported: &Reported<'_>, described: &Described, units: &Units) -> Vec<Line> {
+    let (setting, used, at) = (reported.setting, &reported.setting.used, &described.at);
+    let decimals = injection(at.surface.nominal_l_min, at.surface.u_l_min, units).1;
+    let rich = |l_min: f64| up(units.flow(l_min), decimals);
+    let lean = |l_min: f64| down(units.flow(l_min), decimals);
+    let symbol = units.flow_symbol();
+    let (warm, cold) = (temperature(used.warmest_k, units), temperature(used.coldest_k, units));
+    let (of_warm, of_cold) = if warm == cold {
+        (String::new(), format!("), gas of {cold}"))
+    } else {
+        (format!(" (gas of {warm})"), format!(", gas of {cold})"))
+    };
+    let mut facts = vec![(
+        "from",
+        format!(
+            "{} at its leanest{of_warm} to {} {symbol} at its richest (IP up by {}{of_cold}",
+            lean(at.surface.leanest_l_min),
+            rich(at.surface.richest_l_min),
+            units.pressure_text(used.ip_spread_bar)
+        ),
+    )];
+    let compensated = used.first_stage == FirstStageKind::Compensated;
+    if compensated {
+        facts.push((
+            "at depth",
+            format!(
+                "at {}: {} {symbol}, {} to {}",
+                max_depth(setting, units),
+                fixed(units.flow(at.held.nominal_l_min), decimals),
+                lean(at.held.leanest_l_min),
+                rich(at.held.richest_l_min)
+            ),
+        ));
+    }
+    facts.push(("uptake at rest", another_day(reported, units)));
+    let nominal = match &setting.uptake {
+        Some(uptake) if at.shortfall_l_min >= 0.0 => {
+            format!("{} of that", share_down(at.shortfall_l_min / uptake.uptake_l_min))
+        }
+        _ => "NONE".to_owned(),
+    };
+    let place = if compensated { format!("; at {}", max_depth(setting, units)) } else { ";".to_owned() };
+    facts.push((
+        "short by",
+        format!(
+            "{nominal}{place} {} at its richest, {} at its leanest",
+            short(at.least_shortfall, share_down),
+            short(at.largest_shortfall, share_up)
+        ),
+    ));
+    facts.push((
+        "overfeeds",
+        format!(
+            "with a chance of {}; {} is allowed",
+            chance(at.overfeed_chance, used.chance),
+            limit(used.chance)
+        ),
+    ));
+    facts
+}
+
+fn drift(reported: &Reported<'_>, described: &Described) -> Vec<Line> {
+    let used = &reported.setting.used;
+    let Some(drift) = &described.at.drift else {
+        return vec![("at rest", "not known, because the loop volume is not: give --loop-volume".to_owned())];
+    };
+    let (high, low) = (shortest(used.po2_high_bar, 4), shortest(used.po2_low_bar, 4));
+    let verb = if drift.held_bar_min < 0.0 { "sinks" } else { "RISES" };
+    let sealed = drift.sealed_bar_min.map_or_else(String::new, |bar_min| {
+        format!(", {} sealed at the surface and {low} bar", rate(bar_min.abs()))
+    });
+    let rest = drift.minutes_high_to_low.map_or_else(
+        || "PO2 does not sink: this is no setting to rest with".to_owned(),
+        |m| format!("{high} to {low} bar in {} min", minutes(m)),
+    );
+    let work = drift.minutes_to_hypoxia_at_work.map_or_else(
+        || "the injection covers it".to_owned(),
+        |m| {
+            format!(
+                "from {low} to {HYPOXIA_BAR} bar in {} min if nobody adds oxygen; sooner on ascent",
+                minutes(m)
+            )
+        },
+    );
+    vec![
+        (
+            "at rest",
+            format!(
+                "{verb} by {} bar/min in a loop of {} L held by diluent{sealed}; {rest} (best estimates)",
+                rate(drift.held_bar_min.abs()),
+                shortest(used.loop_volume_l.unwrap_or(f64::NAN), 4)
+            ),
+        ),
+        ("at work", format!("of {} L/min: {work}", shortest(used.work_l_min, 4))),
+    ]
+}
+
+/// The check with the contents gauge, and the flow a meter should show.
+fn proof(described: &Described, units: &Units) -> Vec<Line> {
+    let mut facts = Vec::new();
+    if let Some(patency) = &described.patency {
+        let decimals = if patency.seconds < 20.0 { 1 } else { 0 };
+        facts.push((
+            "does gas flow?",
+            format!(
+                "valve shut, {} to {} takes {} s, {} s to {} s (95 %). Sooner: a leak or larger hole; later: a \
+                 blockage. Either way do not dive",
+                units.pressure_text(patency.from_bar),
+                units.pressure_text(patency.to_bar),
+                fixed(patency.seconds, decimals),
+                up(patency.low_seconds, decimals),
+                down(patency.high_seconds, decimals)
+            ),
+        ));
+    }
+    let Some(reading) = &described.expected_reading else {
+        facts.push((
+            "flow meter",
+            "none was named: measure the flow on the assembled unit and compare".to_owned(),
+        ));
+        return facts;
+    };
+    let name = reading.meter.as_ref().map_or_else(|| "the meter".to_owned(), |id| data(id.as_str()));
+    let litres = reading.reads_at.map_or_else(
+        || "the volume that passes, gas of 20 °C".to_owned(),
+        |at| format!("litres of {}", reference_to_text(at)),
+    );
+    let range = if reading.out_of_range { "; that leaves its range" } else { "" };
+    facts.push((
+        "flow meter",
+        format!(
+            "{name} ({}, {litres}): {}; cylinder nearly empty: {}{range}",
+            reading.kind,
+            window(&reading.full, units),
+            window(&reading.nearly_empty, units)
+        ),
+    ));
+    facts
+}
+
+fn choke_and_gauge(reported: &Reported<'_>, described: &Described, units: &Units) -> Vec<Line> {
+    let (used, limits) = (&reported.setting.used, &described.depth);
+    let known = match limits.choke_ratio_origin {
+        Origin::Measured => "measured",
+        Origin::Bounded => "bounded",
+    };
+    let mut facts = vec![(
+        "choke ratio",
+        format!("{known}; depths take its low end, {}", fixed(limits.choke_ratio_low, 2)),
+    )];
+    match limits.first_stage {
+        FirstStageKind::Uncompensated => {
+            let error_bar = used.gauge_error_expanded_bar;
+            let moved = used.depth_of(used.dive_at_bar_abs + error_bar);
+            facts.push((
+                "gauge",
+                format!(
+                    "off by {}, the flow stops {} {} elsewhere",
+                    units.pressure_text(error_bar),
+                    up(depth_shown(moved, units), 0),
+                    depth_symbol(units)
+                ),
+            ));
+        }
+        FirstStageKind::Compensated => facts.extend(limits.known_to_m.map(|end| {
+            ("known to", format!("{}: 10 % beyond what the bench run measured", depth(end, units)))
+        })),
+    }
+    facts
 }
 
 fn ip_table(reported: &Reported<'_>, orifice: &OrificeSetting, units: &Units) -> CardTable {
@@ -195,7 +368,7 @@ fn ip_table(reported: &Reported<'_>, orifice: &OrificeSetting, units: &Units) ->
             fixed(units.flow(at.surface.nominal_l_min), decimals),
             share_down(share).trim_end_matches(" %").to_owned(),
             chance(at.overfeed_chance, used.chance).trim_end_matches(" %").to_owned(),
-            or_dash(drift.map(|d| rate(d.held_bar_min))),
+            or_dash(drift.map(|d| rate(d.held_bar_min).replace('-', "\u{2212}"))),
             or_dash(drift.and_then(|d| d.minutes_high_to_low).map(minutes)),
             or_dash(drift.and_then(|d| d.minutes_to_hypoxia_at_work).map(minutes)),
             if is_set {
@@ -230,8 +403,8 @@ fn ip_table(reported: &Reported<'_>, orifice: &OrificeSetting, units: &Units) ->
         rows: rows.collect(),
         strong: Some(centre - from),
         notes: vec![format!(
-            "short of another day's uptake; chance to overfeed{held}; rest: from PO2 {high} to {low} bar; work of {} L/min: \
-             from {low} to {HYPOXIA_BAR} bar if nobody adds oxygen",
+            "short of uptake; chance to overfeed{held}; rest: PO2 {high} to {low} bar; work of {} L/min: {low} to \
+             {HYPOXIA_BAR} bar",
             shortest(used.work_l_min, 4)
         )],
     }
@@ -265,25 +438,22 @@ fn depth_table(reported: &Reported<'_>, described: &Described, units: &Units) ->
             point("flow stops", limits.stops),
         ],
         FirstStageKind::Compensated => vec![
-            from("overfeeds, chance past its limit", limits.overtakes_at_m),
-            from("overfeeds, best estimates", limits.overtakes_at_best_estimate_m),
+            from("overfeeds (chance)", limits.overtakes_at_m),
+            from("overfeeds (best estimate)", limits.overtakes_at_best_estimate_m),
             point("1 % of the flow lost", limits.one_percent),
         ],
     };
     let stage = reported.first_stage.map_or_else(String::new, |name| format!("{}, ", data(name)));
-    let mut notes = vec![format!("first stage {stage}{}", first_stage(limits.first_stage))];
+    let mut note = format!("first stage {stage}{}", first_stage(limits.first_stage));
     if used.max_depth_m.is_some() {
-        notes.push(format!("maximum depth {}", max_depth(reported.setting, units)));
+        note.push_str(&format!("; maximum depth {}", max_depth(reported.setting, units)));
     }
-    let told = depths(reported, described, units);
-    let told = told.into_iter().filter(|(label, _)| matches!(*label, "choke ratio" | "gauge" | "known to"));
-    notes.extend(told.map(|(label, text)| format!("{label} {text}")));
     CardTable {
         title: format!("Depth, {} water", water_name(limits.water)),
-        heads: vec![("", String::new()), ("depth", symbol.to_owned()), ("around", "bar abs".to_owned())],
+        heads: vec![("", String::new()), ("depth", symbol.to_owned()), ("ambient", "bar abs".to_owned())],
         rows,
         strong: None,
-        notes,
+        notes: vec![note],
     }
 }
 

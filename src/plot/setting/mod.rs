@@ -18,6 +18,7 @@ mod depth_panel;
 mod ip_panel;
 mod small;
 
+pub(super) use small::POINTS as SMALL_PLOT_POINTS;
 pub use small::small_setting_plot;
 
 use super::ink::PAPER;

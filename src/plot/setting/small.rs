@@ -19,7 +19,7 @@ use crate::setting::Setting;
 /// Size of body text in pixels; labels of ticks have the least size there is, 9 pixels.
 const BODY: f64 = 9.8;
 /// Points to a pixel, so that 9 pixels are 6.5 points.
-const POINTS: f64 = 6.5 / 9.0;
+pub(in super::super) const POINTS: f64 = 6.5 / 9.0;
 /// At most about so many labels on level axes and on upright ones.
 const MOST_LABELS: (f64, f64) = (7.0, 5.0);
 
