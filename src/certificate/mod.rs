@@ -11,12 +11,14 @@
 pub mod check;
 pub mod compare;
 pub mod complete;
+pub mod conformance;
 pub mod content;
 pub mod dcc;
 pub mod issue;
 pub mod pages;
 pub mod paper;
 pub mod rounding;
+pub mod sheet;
 pub mod stated;
 
 pub use check::{CheckError, Checked, check};

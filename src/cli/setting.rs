@@ -1,10 +1,10 @@
 //! `setting` on the terminal.
 
-use super::arguments::{Global, Setting, Water};
+use super::arguments::{Global, Setting, SheetPaper as PaperAsked, Water};
 use super::{Ended, note, say, units};
 use crate::report::{setting as words, setting_json};
 use crate::work::ExitStatus;
-use crate::work::setting::{Asked, SettingRequest, make_setting};
+use crate::work::setting::{Asked, SettingRequest, SheetPaper, make_setting};
 
 pub(super) fn setting(arguments: &Setting, global: &Global) -> Result<ExitStatus, Ended> {
     let units = units(global);
@@ -19,6 +19,10 @@ pub(super) fn setting(arguments: &Setting, global: &Global) -> Result<ExitStatus
         book: global.book.clone(),
         plot: arguments.plot.clone(),
         sheet: arguments.sheet.clone(),
+        paper: arguments.paper.map(|paper| match paper {
+            PaperAsked::A5 => SheetPaper::A5,
+            PaperAsked::A4 => SheetPaper::A4,
+        }),
         units,
     })?;
     let named = outcome.named();

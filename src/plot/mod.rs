@@ -25,8 +25,10 @@ mod run;
 mod history;
 mod session;
 mod setting;
+mod card;
 
+pub use card::{BEFORE_PLOTS, CARD_WIDTH, CardDrawing, card_front, card_paragraphs};
 pub use history::{History, HistoryPlot, HistoryRun, Leaving, Trend, TrendPlace, history_plot};
 pub use run::{RunPlot, run_plot};
 pub use session::{SessionPlot, session_plot};
-pub use setting::{SettingPlot, depth_plot, ip_plot, setting_plot};
+pub use setting::{SettingPlot, depth_plot, ip_plot, setting_plot, small_setting_plot};

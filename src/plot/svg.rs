@@ -85,6 +85,11 @@ impl Svg {
         self.open.push("g");
     }
 
+    /// Another whole picture of this room, at the place of the group it stands in.
+    pub(super) fn inside(&mut self, picture: &str) {
+        self.out.push_str(picture);
+    }
+
     /// Ends the innermost group.
     pub(super) fn end(&mut self) {
         if let Some(tag) = self.open.pop() {

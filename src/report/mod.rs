@@ -31,6 +31,7 @@ mod setting_parts;
 pub mod setting_sentences;
 mod setting_words;
 pub mod sheet;
+pub mod sheet_card;
 pub mod session_changes;
 pub mod session_enter_questions;
 pub mod session_enter_words;

@@ -104,7 +104,7 @@ pub(super) fn injected(reported: &Reported<'_>, described: &Described, units: &U
 }
 
 /// A shortfall as a share, in percent; below nought it is too much.
-fn short(share: f64, rounded: impl Fn(f64) -> String) -> String {
+pub(super) fn short(share: f64, rounded: impl Fn(f64) -> String) -> String {
     if share >= 0.0 { rounded(share) } else { format!("{} too much", share_up(-share)) }
 }
 
@@ -321,7 +321,8 @@ fn patency_sentence(patency: &Patency, units: &Units) -> String {
     )
 }
 
-fn window(window: &ReadingWindow, units: &Units) -> String {
+/// A reading with the window that proves the setting.
+pub(super) fn window(window: &ReadingWindow, units: &Units) -> String {
     let value = super::number::figures(units.flow(window.value_l_min), 3);
     let decimals = decimals_of(&value);
     let symbol = units.flow_symbol();

@@ -230,11 +230,17 @@ pub enum WorkError {
     #[error("there is no flow meter {0} in the register: add it with instrument add")]
     NoMeter(Id),
     /// A sheet's file name has another ending.
-    #[error("{0}: the sheet is written as .txt, name the file so")]
+    #[error("{0}: the sheet is written as .pdf or .txt, name the file so")]
     SheetKind(PathBuf),
     /// Certificates.
     #[error(transparent)]
     Certificate(#[from] CertificateError),
+    /// A size of paper, and no page to print on it.
+    #[error("--paper is the paper of a sheet as PDF: give --sheet FILE.pdf with it, or leave it out")]
+    PaperWithoutSheet,
+    /// A sheet that cannot be set in pages; a fault of this program.
+    #[error("the sheet cannot be set as PDF: {0}; write it as .txt instead")]
+    SheetNotSet(String),
     /// The book.
     #[error(transparent)]
     Book(#[from] BookError),
@@ -386,6 +392,8 @@ impl WorkError {
             | Self::NoFirstStage(_)
             | Self::NoMeter(_)
             | Self::SheetKind(_)
+            | Self::PaperWithoutSheet
+            | Self::SheetNotSet(_)
             | Self::Text { .. }
             | Self::NoName(_)
             | Self::NothingGiven

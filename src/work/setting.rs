@@ -13,6 +13,8 @@ use super::shelf::{Shelf, meter_of};
 use super::uptake::{GatheredSession, gather, named, work_out};
 use super::{ExitStatus, WorkError};
 use crate::book::Book;
+use crate::certificate;
+use crate::certificate::paper::{Paper, render};
 use crate::clock;
 use crate::entry::{Diluent, Diver, FirstStage, Id, Purity};
 use crate::gas::Water;
@@ -66,10 +68,28 @@ pub struct SettingRequest {
     pub book: Option<PathBuf>,
     /// Where to draw it, `.svg` or `.png`.
     pub plot: Option<PathBuf>,
-    /// Where to write the sheet a diver keeps, `.txt`.
+    /// Where to write the sheet a diver keeps, `.pdf` or `.txt`.
     pub sheet: Option<PathBuf>,
+    /// The paper of the sheet; else A5. Without a sheet that is a PDF it is refused.
+    pub paper: Option<SheetPaper>,
     /// The units of plot and sheet.
     pub units: Units,
+}
+
+/// The paper of a sheet.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum SheetPaper {
+    /// 148 mm by 210 mm.
+    A5,
+    /// 210 mm by 297 mm.
+    A4,
+}
+
+/// What a sheet is written as.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+enum SheetKind {
+    Text,
+    Pdf(Paper),
 }
 
 /// What was said of first stage, gauge, place and loop, each as [`SettingOptions`] has it.
@@ -210,9 +230,7 @@ impl SettingOutcome {
 /// A file or entry that is missing or refused, a call that is wrong, a plot or sheet that cannot be written.
 pub fn make_setting(request: &SettingRequest) -> Result<SettingOutcome, WorkError> {
     let kind = request.plot.as_deref().map(plot_kind).transpose()?;
-    if let Some(path) = request.sheet.as_deref().filter(|path| !is_text(path)) {
-        return Err(WorkError::SheetKind(path.to_owned()));
-    }
+    let sheet = sheet_kind(request)?;
     if request.orifices.is_empty() {
         return Err(WorkError::Setting(crate::setting::SettingError::NoOrifice));
     }
@@ -276,24 +294,62 @@ pub fn make_setting(request: &SettingRequest) -> Result<SettingOutcome, WorkErro
         on,
         notes,
     };
-    if let Some(path) = &request.sheet {
-        let named = outcome.named();
-        write_whole(path, sheet::text(&outcome.reported(&named), &request.units).as_bytes())?;
+    if let (Some(kind), Some(path)) = (sheet, &request.sheet) {
+        write_whole(path, &sheet_bytes(&outcome, kind, &request.units)?)?;
     }
     if let (Some(kind), Some(path)) = (kind, &request.plot) {
-        let named = outcome.named();
-        let why_not = words::why_not(&outcome.reported(&named));
-        let why_not = why_not.map(|why| why.strip_prefix("no setting: ").map_or(why.clone(), str::to_owned));
+        let why_not = why_not_drawn(&outcome);
         let plot = SettingPlot { units: request.units, why_not, ..SettingPlot::default() };
         write_plot(&setting_plot(&outcome.setting, &plot), kind, path)?;
     }
     Ok(outcome)
 }
 
-fn is_text(path: &Path) -> bool {
-    path.extension()
-        .and_then(|ending| ending.to_str())
-        .is_some_and(|ending| ending.eq_ignore_ascii_case("txt"))
+/// Why there is no setting, as the plots say it.
+fn why_not_drawn(outcome: &SettingOutcome) -> Option<String> {
+    let named = outcome.named();
+    let why_not = words::why_not(&outcome.reported(&named));
+    why_not.map(|why| why.strip_prefix("no setting: ").map_or(why.clone(), str::to_owned))
+}
+
+/// What the sheet's name and the paper ask for.
+fn sheet_kind(request: &SettingRequest) -> Result<Option<SheetKind>, WorkError> {
+    let Some(path) = request.sheet.as_deref() else {
+        return match request.paper {
+            Some(_) => Err(WorkError::PaperWithoutSheet),
+            None => Ok(None),
+        };
+    };
+    let ending = path.extension().and_then(|ending| ending.to_str()).unwrap_or_default();
+    if ending.eq_ignore_ascii_case("pdf") {
+        let paper = match request.paper {
+            None | Some(SheetPaper::A5) => Paper::A5,
+            Some(SheetPaper::A4) => Paper::A4,
+        };
+        Ok(Some(SheetKind::Pdf(paper)))
+    } else if ending.eq_ignore_ascii_case("txt") {
+        if request.paper.is_some() {
+            return Err(WorkError::PaperWithoutSheet);
+        }
+        Ok(Some(SheetKind::Text))
+    } else {
+        Err(WorkError::SheetKind(path.to_owned()))
+    }
+}
+
+fn sheet_bytes(outcome: &SettingOutcome, kind: SheetKind, units: &Units) -> Result<Vec<u8>, WorkError> {
+    let named = outcome.named();
+    let reported = outcome.reported(&named);
+    match kind {
+        SheetKind::Text => Ok(sheet::text(&reported, units).into_bytes()),
+        SheetKind::Pdf(paper) => {
+            let document = certificate::sheet::document(&reported, units, why_not_drawn(outcome), paper);
+            render(&document).map_err(|problems| {
+                let all: Vec<String> = problems.iter().map(ToString::to_string).collect();
+                WorkError::SheetNotSet(all.join("; "))
+            })
+        }
+    }
 }
 
 /// A book that is opened when something of it is first asked for.

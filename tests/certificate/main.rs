@@ -8,5 +8,6 @@ mod runs;
 mod check;
 mod contents;
 mod pages;
+mod paper;
 mod support;
 mod xml;

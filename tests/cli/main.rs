@@ -22,6 +22,7 @@ mod cli_registers;
 mod cli_rig;
 mod cli_session;
 mod cli_setting;
+mod cli_sheet;
 mod demo;
 mod export;
 mod export_sessions;

@@ -30,7 +30,7 @@ pub use session::{
     EnterSession, ImportSessions, LeaveOutSession, ListSessions, ResumeSession, SessionLog, Sessions,
     ShowSession, UptakeOf,
 };
-pub use setting::{Setting, Water};
+pub use setting::{Setting, SheetPaper, Water};
 
 use crate::quantity::Shown;
 

@@ -103,9 +103,21 @@ pub struct Setting {
     /// Draw injection against depth and against IP; the ending says how
     #[arg(long, value_name = "FILE.svg|.png")]
     pub plot: Option<PathBuf>,
-    /// Write the sheet a diver keeps
-    #[arg(long, value_name = "FILE.txt")]
+    /// Write the sheet a diver keeps: one page to laminate, or text; the ending says which
+    #[arg(long, value_name = "FILE.pdf|.txt")]
     pub sheet: Option<PathBuf>,
+    /// Paper of the sheet (else a5)
+    #[arg(long, value_name = "a5|a4")]
+    pub paper: Option<SheetPaper>,
+}
+
+/// The paper of a sheet.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub enum SheetPaper {
+    /// 148 mm by 210 mm
+    A5,
+    /// 210 mm by 297 mm
+    A4,
 }
 
 /// What is dived in.

@@ -124,6 +124,21 @@ impl Layout {
         }
     }
 
+    /// Of a picture without head and margin, whose panels stand where the caller puts them.
+    pub(super) fn bare((width, height): (f64, f64), body: f64, transparent: bool) -> Self {
+        Self {
+            width,
+            height,
+            body,
+            transparent,
+            depth: None,
+            ip: None,
+            margin_width: 0.0,
+            beside: false,
+            margin: Column::new(body, width),
+        }
+    }
+
     /// What the picture is of.
     pub(super) fn draw_head(&self, svg: &mut Svg, words: &Words) {
         let beside = if self.beside { self.margin_width + GUTTER * self.body } else { 0.0 };

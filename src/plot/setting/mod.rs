@@ -16,6 +16,10 @@ mod layout;
 mod margin;
 mod depth_panel;
 mod ip_panel;
+mod small;
+
+pub(super) use small::POINTS as SMALL_PLOT_POINTS;
+pub use small::small_setting_plot;
 
 use super::ink::PAPER;
 use super::svg::{Head, Svg, tame_prefix};

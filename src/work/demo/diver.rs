@@ -121,7 +121,7 @@ pub(super) fn rest(folder: &Path, shelf: &Shelf, units: Units) -> Result<DemoDiv
         units,
     })?;
     let on = on();
-    let (setting_plot, sheet) = (folder.join("demo-setting.svg"), folder.join("demo-sheet.txt"));
+    let (setting_plot, sheet) = (folder.join("demo-setting.svg"), folder.join("demo-sheet.pdf"));
     let setting = make_setting(&SettingRequest {
         orifices: DemoDiver::ORIFICES.map(str::to_owned).to_vec(),
         diver: Some(DIVER.to_owned()),

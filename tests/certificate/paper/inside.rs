@@ -3,8 +3,8 @@
 use ebbline::certificate::paper::read::read;
 use ebbline::certificate::paper::*;
 
-use crate::samples::{bare, certificate};
-use crate::set;
+use super::samples::{bare, certificate};
+use super::set;
 
 #[test]
 fn attachments_come_out_as_they_went_in() {

@@ -2,8 +2,8 @@
 
 use ebbline::certificate::paper::*;
 
-use crate::samples::{LOGO_SVG, bare, certificate, letterhead, moment, pair, points};
-use crate::{set, written};
+use super::samples::{LOGO_SVG, bare, certificate, letterhead, moment, pair, points};
+use super::{set, written};
 
 /// What stands in the way, in words.
 fn refused(document: &Document) -> Vec<String> {

@@ -2,9 +2,9 @@
 
 use ebbline::certificate::paper::*;
 
-use crate::samples::{bare, certificate, names, on, pair, points};
-use crate::tools::{ask, letters};
-use crate::{set, written};
+use super::samples::{bare, certificate, names, on, pair, points};
+use super::tools::{ask, letters};
+use super::{set, written};
 
 /// Every text of a document, in the order of its blocks; a strip of a text is what has to be found.
 fn texts(blocks: &[Block]) -> Vec<String> {

@@ -7,8 +7,8 @@ use flate2::Compression;
 use flate2::write::ZlibEncoder;
 use proptest::prelude::*;
 
-use crate::samples::certificate;
-use crate::set;
+use super::samples::certificate;
+use super::set;
 
 /// A file of objects, numbered from 1, with a table that fits them.
 fn pdf(objects: &[Vec<u8>], trailer: &str) -> Vec<u8> {
