@@ -209,7 +209,7 @@ fn numbers_follow_the_pattern_and_none_is_given_twice() {
     let folder = Folder::new("numbers");
     let mut book = begin(&folder);
     let (draft, _) = drafts();
-    let mut give = |book: &mut Book, run, issued: &str| {
+    let give = |book: &mut Book, run, issued: &str| {
         stamped(|stamp| book.give_number(of_run(&draft, run, issued), stamp)).unwrap().number
     };
     // A shop that was never named, and each year from one.
