@@ -99,7 +99,7 @@ fn shows(screen: &[String], printed: &str) -> bool {
 #[test]
 fn every_screen_is_what_the_program_prints() {
     let (folder, names) = written();
-    assert_eq!(names, ["my-orifice.csv", "my-orifice.toml", "couch-1.csv", "couch-1.toml"]);
+    assert_eq!(names, ["my-orifice.csv", "my-orifice.toml", "fm-01.toml", "couch-1.csv", "couch-1.toml"]);
     let mut shown = 0;
     for block in readme().iter().filter(|block| block.kind == "text") {
         let mut status = None;
@@ -130,6 +130,17 @@ fn every_screen_is_what_the_program_prints() {
         }
     }
     assert!(shown >= 3, "only {shown} commands are shown");
+}
+
+#[test]
+fn the_profile_it_shows_can_be_registered() {
+    let (folder, _) = written();
+    let book = folder.join("profile.db");
+    let _ = fs::remove_file(&book);
+    let mut program = Command::new(env!("CARGO_BIN_EXE_ebbline"));
+    let added = program.args(["instrument", "add", "fm-01.toml"]).current_dir(&folder);
+    let added = added.env("EBBLINE_BOOK", &book).output().unwrap();
+    assert!(added.status.success(), "{}", String::from_utf8_lossy(&added.stderr));
 }
 
 #[test]

@@ -6,12 +6,14 @@
 use std::borrow::Cow;
 
 use super::canonical::{self, Bytes, Canonical, Reader, Unreadable, Writer, session_header};
+use super::certificates::CertificateFiles;
 use super::registers::Entry;
 use super::runs::{Origin, SourceFiles};
 use super::sessions::{Extent, FileRole};
 use crate::entry::{
-    Decision, Diver, Event, FirstStage, Instrument, LeftOut, LiveNote, LivePoint, LiveReadings, LoggingBegun,
-    Orifice, PointReading, Readings, Run, RunNumber, Session, SessionLeftOut, SessionNumber, Shop,
+    Certificate, Decision, Diver, Event, FirstStage, Instrument, LeftOut, LiveNote, LivePoint, LiveReadings,
+    LoggingBegun, Orifice, PointReading, Readings, Run, RunNumber, Session, SessionLeftOut, SessionNumber,
+    Shop,
 };
 use chrono::{DateTime, FixedOffset};
 
@@ -47,6 +49,8 @@ pub(super) enum Kind {
     LiveReadings = 19,
     PointTaken = 20,
     LiveNote = 21,
+    Certificate = 22,
+    CertificateFiles = 23,
     Diver = 1000,
     Session = 1001,
     SessionReadings = 1002,
@@ -64,7 +68,7 @@ pub(super) enum Kind {
 }
 
 impl Kind {
-    const ALL: [Self; 35] = [
+    const ALL: [Self; 37] = [
         Self::Begun,
         Self::Run,
         Self::Readings,
@@ -86,6 +90,8 @@ impl Kind {
         Self::LiveReadings,
         Self::PointTaken,
         Self::LiveNote,
+        Self::Certificate,
+        Self::CertificateFiles,
         Self::Diver,
         Self::Session,
         Self::SessionReadings,
@@ -153,6 +159,10 @@ pub(super) enum Body<'a> {
     PointTaken { run: RunNumber, point: LivePoint },
     /// Something that happened to an instrument of a logged run.
     LiveNote { run: RunNumber, note: Cow<'a, LiveNote> },
+    /// A number was given to a certificate.
+    Certificate(Box<Certificate>),
+    /// The files of a certificate, whose record is named, were written.
+    CertificateFiles { certificate: u64, files: CertificateFiles },
     /// An entry of a register; `replaces` is the record of the revision before.
     Entry { revision: u32, replaces: Option<u64>, entry: Box<Entry> },
     /// A session was recorded or begun; its header, and how far its readings go, none while they still come.
@@ -218,6 +228,8 @@ impl Body<'_> {
             Self::LiveReadings { .. } => Kind::LiveReadings,
             Self::PointTaken { .. } => Kind::PointTaken,
             Self::LiveNote { .. } => Kind::LiveNote,
+            Self::Certificate(_) => Kind::Certificate,
+            Self::CertificateFiles { .. } => Kind::CertificateFiles,
             Self::Entry { entry, .. } => entry.register().kind(),
             Self::Session { .. } => Kind::Session,
             Self::SessionReadings { .. } => Kind::SessionReadings,
@@ -342,6 +354,11 @@ pub(super) fn write(record: &Record<'_>) -> Vec<u8> {
         Body::LiveNote { run, note } => {
             run.write(out);
             note.write(out);
+        }
+        Body::Certificate(certificate) => certificate.write(out),
+        Body::CertificateFiles { certificate, files } => {
+            certificate.write(out);
+            files.write(out);
         }
         Body::Entry { revision, replaces, entry } => {
             revision.write(out);
@@ -496,6 +513,10 @@ pub(super) fn read(kind: u16, bytes: &[u8]) -> Result<Record<'static>, Unreadabl
         Kind::PointTaken => Body::PointTaken { run: Canonical::read(from)?, point: Canonical::read(from)? },
         Kind::LiveNote => {
             Body::LiveNote { run: Canonical::read(from)?, note: Cow::Owned(Canonical::read(from)?) }
+        }
+        Kind::Certificate => Body::Certificate(Box::new(Canonical::read(from)?)),
+        Kind::CertificateFiles => {
+            Body::CertificateFiles { certificate: Canonical::read(from)?, files: Canonical::read(from)? }
         }
         Kind::Orifice => entry(from, |from| Orifice::read(from).map(Entry::Orifice))?,
         Kind::Instrument => entry(from, |from| Instrument::read(from).map(Entry::Instrument))?,

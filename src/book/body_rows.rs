@@ -4,6 +4,7 @@ use rusqlite::types::Value;
 
 use super::body::{Body, Record};
 use super::canonical::{Canonical, Writer};
+use crate::entry::Certificate;
 
 /// A row of a table for lists: the table and its columns; the first column is its key.
 #[derive(Debug, Clone, PartialEq)]
@@ -54,6 +55,36 @@ pub(super) fn rows(seq: u64, record: &Record<'_>) -> Vec<Row> {
                 ("decided", text(&decision.at.to_rfc3339())),
             ];
             rows.push(Row { table: "decision", columns });
+        }
+        Body::Certificate(given) => {
+            let Certificate { number: given_number, counter, year, draft, .. } = given.as_ref();
+            let amends = draft.amends.as_ref();
+            let columns = vec![
+                ("seq", place(seq)),
+                ("number", text(given_number)),
+                ("key", text(&super::registers::key_of(given_number))),
+                ("year", Value::Integer(i64::from(*year))),
+                ("counter", number(*counter)),
+                ("run", number(draft.results.run.get())),
+                ("as_found", draft.as_found.as_ref().map_or(Value::Null, |found| number(found.run.get()))),
+                ("orifice", text(draft.results.header.orifice.as_str())),
+                (
+                    "amends",
+                    amends.map_or(Value::Null, |amends| text(&super::registers::key_of(&amends.number))),
+                ),
+                ("replaces", amends.map_or(Value::Null, |amends| Value::Integer(i64::from(amends.replaces)))),
+                ("issued", text(&draft.issued.to_rfc3339())),
+            ];
+            rows.push(Row { table: "certificate", columns });
+        }
+        Body::CertificateFiles { certificate, files } => {
+            let columns = vec![
+                ("seq", place(seq)),
+                ("certificate", place(*certificate)),
+                ("pdf", digest(Some(files.pdf))),
+                ("xml", digest(Some(files.xml))),
+            ];
+            rows.push(Row { table: "certificate_files", columns });
         }
         Body::Entry { revision, entry, .. } => {
             let columns = vec![

@@ -123,6 +123,11 @@ impl<'t, 's, 'f> Writing<'t, 's, 'f> {
         Ok(Self { transaction, head, stamp })
     }
 
+    /// The end of the chain as it stands within this transaction.
+    pub(super) const fn head(&self) -> Head {
+        self.head
+    }
+
     /// Puts a record at the end, with the rows by which it is found; its place.
     pub(super) fn append(&mut self, body: Body<'_>) -> Result<u64, Inside> {
         let record = Record { at: self.stamp.at, body };

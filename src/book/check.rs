@@ -111,10 +111,12 @@ impl Book {
     }
 }
 
-const LISTS: [&str; 10] = [
+const LISTS: [&str; 12] = [
     "run",
     "of_run",
     "decision",
+    "certificate",
+    "certificate_files",
     "register",
     "session",
     "of_session",

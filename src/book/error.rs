@@ -153,7 +153,8 @@ pub enum BookError {
     NotPoints,
     /// A run or session that another process logs.
     #[error(
-        "{what} is being logged by another process (number {process}), which holds its instruments: stop that one first, or watch"
+        "{what} is being logged by another process (number {process}), which holds its instruments: stop that one first{}",
+        or_watch(*what)
     )]
     Held {
         /// What.
@@ -294,6 +295,28 @@ pub enum BookError {
         /// The name asked for.
         id: String,
     },
+    /// A certificate whose number was never given out.
+    #[error("there is no certificate {number} in {}: certificate list shows those there are", path.display())]
+    NoSuchCertificate {
+        /// The book.
+        path: PathBuf,
+        /// The number asked for.
+        number: String,
+    },
+    /// A shop's pattern that makes no numbers.
+    #[error("the shop's number_pattern {pattern:?} makes no certificate numbers: set it anew (shop edit)")]
+    NoNumbers {
+        /// The pattern.
+        pattern: String,
+    },
+    /// A second certificate that amends the same one.
+    #[error("certificate {number} is amended by {by} already: amend that one")]
+    AmendedAlready {
+        /// The certificate.
+        number: String,
+        /// The one that amends it.
+        by: String,
+    },
     /// A file where the copy would go.
     #[error("{} is there already: name another file, or say that it may be replaced (a book in use never is)", path.display())]
     CopyThere {
@@ -308,6 +331,14 @@ pub enum BookError {
         /// What was found.
         what: String,
     },
+}
+
+/// That a run can be watched meanwhile; a session cannot yet.
+const fn or_watch(what: Logged) -> &'static str {
+    match what {
+        Logged::Run(_) => ", or watch it (bench resume)",
+        Logged::Session(_) => "",
+    }
 }
 
 /// What a file is that is no book.
@@ -368,6 +399,9 @@ impl BookError {
             | Self::NoReason { .. }
             | Self::Taken { .. }
             | Self::Unknown { .. }
+            | Self::NoSuchCertificate { .. }
+            | Self::NoNumbers { .. }
+            | Self::AmendedAlready { .. }
             | Self::CopyThere { .. } => true,
         }
     }

@@ -1,7 +1,7 @@
 //! Who logs an open run or session: the process that holds the ports owns it, the others watch.
 //!
 //! A lease is no part of the record. Its holder says four times a second that it is there; who has not been heard of for
-//! [`LEASE_LASTS`] has lost it, whatever the reason, and another may go on. A holder that lost its lease is refused at
+//! [`LEASE_LASTS`] counts as gone, unless it is known to be there, and another may go on. A holder that lost its lease is refused at
 //! its next word, so that never two write into one run. Times are those of the system clock: one that was set by more
 //! than that looks like a holder that is gone, and a holder notices at its next word.
 
@@ -135,9 +135,8 @@ pub(super) fn renew(
     match lease(connection, what, now)? {
         Some(lease) if lease.id == holder.id => {}
         Some(lease) if take && holder.displaces == Some(lease.id) => {}
-        Some(lease) if lease.holds() || !take => {
-            return Err(BookError::Held { what, process: lease.process }.into());
-        }
+        // Whether its holder is gone is known by who asks, who then names it.
+        Some(lease) => return Err(BookError::Held { what, process: lease.process }.into()),
         None if !take => return Err(BookError::LeaseLost { what }.into()),
         _ => {}
     }

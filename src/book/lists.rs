@@ -88,6 +88,8 @@ pub struct Info {
     pub runs: u64,
     /// Sessions that were not erased.
     pub sessions: u64,
+    /// Certificates whose number was given out.
+    pub certificates: u64,
     /// Names in each register.
     pub entries: Vec<(Register, u64)>,
     /// Records whose payload was erased.
@@ -173,6 +175,7 @@ impl Book {
                 begun: first.at,
                 runs: count(connection, "SELECT count(*) FROM run")?,
                 sessions: count(connection, "SELECT count(*) FROM session")?,
+                certificates: count(connection, "SELECT count(*) FROM certificate")?,
                 entries,
                 erased: count(connection, "SELECT count(*) FROM erased")?,
                 file_bytes: count(connection, bytes)?,

@@ -26,6 +26,7 @@ mod session_rows;
 mod live;
 mod lease;
 mod judgements;
+mod certificates;
 mod lists;
 mod session_list;
 mod check;
@@ -33,9 +34,12 @@ mod backup;
 mod erasure;
 
 #[cfg(test)]
+mod certificate_tests;
+#[cfg(test)]
 mod tests;
 
 pub use body::CopyKind;
+pub use certificates::{CertificateFiles, CertificateQuery, CertificateRow, GivenCertificate};
 pub use chain::{Head, NoHead, Stamp};
 pub use check::{Check, Wrong};
 pub use erasure::{ErasureNote, Forgotten};

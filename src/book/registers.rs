@@ -244,15 +244,29 @@ impl Book {
     /// # Errors
     /// Those of every read.
     pub fn revisions<T: Kept>(&self, id: &Id) -> Result<Vec<Registered<T>>, BookError> {
-        self.read(|connection| {
-            let sql = "SELECT seq FROM register WHERE register = ? AND key = ? ORDER BY revision DESC";
-            let mut statement = connection.prepare_cached(sql)?;
-            let seqs =
-                statement.query_map(params![T::REGISTER.number(), key_of(id.as_str())], |row| row.get(0))?;
-            let seqs: Vec<u64> = seqs.collect::<Result<_, _>>()?;
-            seqs.into_iter().map(|seq| revision_at(connection, seq)).collect()
-        })
+        self.read(|connection| revisions(connection, id.as_str()))
     }
+
+    /// All revisions of the shop, the newest first.
+    ///
+    /// # Errors
+    /// Those of every read.
+    pub fn shop_revisions(&self) -> Result<Vec<Registered<Shop>>, BookError> {
+        self.read(|connection| revisions(connection, SHOP))
+    }
+}
+
+fn revisions<T: Kept>(connection: &Connection, name: &str) -> Result<Vec<Registered<T>>, Inside> {
+    let sql = "SELECT seq FROM register WHERE register = ? AND key = ? ORDER BY revision DESC";
+    let mut statement = connection.prepare_cached(sql)?;
+    let seqs = statement.query_map(params![T::REGISTER.number(), key_of(name)], |row| row.get(0))?;
+    let seqs: Vec<u64> = seqs.collect::<Result<_, _>>()?;
+    seqs.into_iter().map(|seq| revision_at(connection, seq)).collect()
+}
+
+/// The shop as it stands within a transaction.
+pub(super) fn shop_in(connection: &Connection) -> Result<Option<Registered<Shop>>, Inside> {
+    registered(connection, SHOP)
 }
 
 /// The form of a name that is the same for all ways to write it.

@@ -534,6 +534,8 @@ fn sample_records() -> Vec<Record<'static>> {
             left_out: LeftOut { point: 1, why: "hose kinked".into() },
             by: Some("I. Varga".into()),
         },
+        Body::Certificate(Box::new(certificate_tests::sample(sample_run(), decision.figures.clone()))),
+        Body::CertificateFiles { certificate: 42, files: CertificateFiles { pdf: [3; 32], xml: [4; 32] } },
         Body::Decided { run, decision: Box::new(decision) },
         entry(Entry::Orifice(Orifice {
             customer: Some("Club".into()),

@@ -129,6 +129,7 @@ struct FileItem {
 #[serde(deny_unknown_fields)]
 struct FileAmendment {
     replaces: String,
+    instead: bool,
     what: String,
     why: String,
     digest: Option<String>,
@@ -207,6 +208,7 @@ pub fn written(issue: &Issue, results: &Measured<'_>, as_found: Option<&Measured
         },
         amends: issue.amends.as_ref().map(|a| FileAmendment {
             replaces: a.replaces.clone(),
+            instead: a.instead,
             what: a.what.clone(),
             why: a.why.clone(),
             digest: a.digest.clone(),
@@ -311,6 +313,7 @@ pub fn read(bytes: &[u8]) -> Result<Stated, StatedError> {
             chain_head: file.chain_head,
             amends: file.amends.map(|a| Amendment {
                 replaces: a.replaces,
+                instead: a.instead,
                 what: a.what,
                 why: a.why,
                 digest: a.digest,

@@ -7,7 +7,7 @@ use super::{Ended, note, say, units};
 use crate::report::layout::wrapped;
 use crate::report::{Units, bench_fit, json_text, session_uptake, setting};
 use crate::work::ExitStatus;
-use crate::work::demo::{DemoDiver, DemoLogged, DemoRun, DemoShop, demo as run_demo};
+use crate::work::demo::{DemoCertificate, DemoDiver, DemoLogged, DemoRun, DemoShop, demo as run_demo};
 
 pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ended> {
     let units = units(global);
@@ -17,7 +17,13 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
     if global.json {
         let runs = runs.iter().map(Named::of).collect();
         let logged = demonstration.logged.as_ref().map(NamedLogged::of);
-        let left = Left { runs, shop: NamedShop::of(shop), diver: NamedDiver::of(diver), logged };
+        let left = Left {
+            runs,
+            shop: NamedShop::of(shop),
+            certificate: demonstration.certificate.as_ref().map(NamedCertificate::of),
+            diver: NamedDiver::of(diver),
+            logged,
+        };
         return say(&json_text(&left), ExitStatus::Done);
     }
     let mut text =
@@ -48,6 +54,7 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
         "The files are the same on every machine. The book is not to the byte: when something was recorded, and the salts \
          of its chain, are its own.",
     ));
+    text.push_str(&certificate_text(demonstration.certificate.as_ref()));
     text.push_str(&logged_text(demonstration.logged.as_ref()));
     text.push_str(&diver_text(diver, &units));
     text.push_str("\nTry one yourself (where ebbline is not installed: cargo run --release -- …):\n");
@@ -57,6 +64,9 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
     let book = shop.book.display();
     text.push_str(&format!("  ebbline --book {book} orifice list\n"));
     text.push_str(&format!("  ebbline --book {book} orifice show {}\n", shop.clogging));
+    if let Some((file, _)) = demonstration.certificate.as_ref().and_then(|issued| issued.files.first()) {
+        text.push_str(&format!("  ebbline --book {book} certificate check {}\n", file.display()));
+    }
     text.push_str(&format!("  ebbline --book {book} session uptake {}\n", DemoDiver::DIVER));
     text.push_str(&format!(
         "  ebbline --book {book} setting --orifice {} --diver {} --first-stage {} \\\n    {} --on {}\n",
@@ -67,6 +77,23 @@ pub(super) fn demo(arguments: &Demo, global: &Global) -> Result<ExitStatus, Ende
         diver.on
     ));
     say(&text, ExitStatus::Done)
+}
+
+/// The certificate and its amendment.
+fn certificate_text(issued: Option<&DemoCertificate>) -> String {
+    let Some(issued) = issued else { return String::new() };
+    let about = format!(
+        "came in dirty, was cleaned and measured again: certificate {}, its amendment {} (an address was wrong), all files \
+         checked:",
+        issued.number, issued.amendment
+    );
+    let mut text = String::from("\n");
+    text.push_str(&wrapped(&format!("{}: ", issued.orifice), "  ", &about));
+    for (path, says) in &issued.files {
+        text.push_str(&format!("  {:<9} {}\n", "file", path.display()));
+        text.push_str(&wrapped("            ", "              ", says));
+    }
+    text
 }
 
 /// What was logged, if the system has what it takes.
@@ -121,8 +148,31 @@ fn diver_text(diver: &DemoDiver, units: &Units) -> String {
 struct Left {
     runs: Vec<Named>,
     shop: NamedShop,
+    certificate: Option<NamedCertificate>,
     diver: NamedDiver,
     logged: Option<NamedLogged>,
+}
+
+/// What it says of the certificate.
+#[derive(Serialize)]
+struct NamedCertificate {
+    orifice: &'static str,
+    number: String,
+    amendment: String,
+    files: Vec<String>,
+    hold: bool,
+}
+
+impl NamedCertificate {
+    fn of(issued: &DemoCertificate) -> Self {
+        Self {
+            orifice: issued.orifice,
+            number: issued.number.clone(),
+            amendment: issued.amendment.clone(),
+            files: issued.files.iter().map(|(path, _)| path.display().to_string()).collect(),
+            hold: issued.hold,
+        }
+    }
 }
 
 /// What it says of the logged run.

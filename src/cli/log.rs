@@ -54,7 +54,7 @@ pub(super) fn resume_bench(arguments: &Resume, global: &Global) -> Result<ExitSt
     let ended = before_bench(arguments.length.by_itself, &stop, global, |face| {
         let wires = Wires::of_the_system();
         if held {
-            log::watch(&shelf, &arguments.run, how.units, &wires, face, &stopped)
+            log::watch(&shelf, &arguments.run, how, &wires, face, &stopped)
         } else {
             log::resume(&shelf, &arguments.run, how, &wires, face, &stopped)
         }

@@ -7,6 +7,7 @@
 pub mod arguments;
 mod bench;
 mod book;
+mod certificate;
 mod demo;
 pub mod enter;
 mod instrument;
@@ -91,6 +92,7 @@ fn verb(arguments: &Arguments) -> Result<ExitStatus, Ended> {
         },
         Command::Session(verb) => session::session(verb, &arguments.global),
         Command::Setting(arguments_of) => setting::setting(arguments_of, &arguments.global),
+        Command::Certificate(verb) => certificate::certificate(verb, &arguments.global),
         Command::Orifice(verb) => registers::orifice(verb, &arguments.global),
         Command::Instrument(verb) => registers::instrument(verb, &arguments.global),
         Command::FirstStage(verb) => registers::first_stage(verb, &arguments.global),

@@ -16,8 +16,12 @@ mod diver;
 mod shop;
 mod session;
 mod live;
+mod certificate;
 
 pub use acceptance::{Acceptance, Limits, Rule, Tolerance};
+pub use certificate::{
+    Certificate, CertificateAmends, CertificateDraft, CertificateTexts, CertifiedRun, Sheet,
+};
 pub use diver::{Diluent, Diver};
 pub use first_stage::FirstStage;
 pub use id::{Id, IdError};

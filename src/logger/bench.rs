@@ -29,6 +29,8 @@ pub struct BenchOptions {
     pub began_s: Option<f64>,
     /// Points that the run has already.
     pub points_before: usize,
+    /// Pressure in pascals and sweep of the last of them, if it has any.
+    pub last: Option<(f64, Option<Sweep>)>,
 }
 
 impl Default for BenchOptions {
@@ -39,6 +41,7 @@ impl Default for BenchOptions {
             by_itself: true,
             began_s: None,
             points_before: 0,
+            last: None,
         }
     }
 }
@@ -158,10 +161,10 @@ impl BenchLogger {
             seen: None,
             origin_s: options.began_s,
             points: Vec::new(),
-            left_s: Some(f64::NEG_INFINITY),
+            left_s: if options.last.is_some() { None } else { Some(f64::NEG_INFINITY) },
             used_to_s: f64::NEG_INFINITY,
-            level_pa: None,
-            sweep: None,
+            level_pa: options.last.map(|(pressure_pa, _)| pressure_pa),
+            sweep: options.last.and_then(|(_, sweep)| sweep),
             outbox: Outbox::new(),
         })
     }
@@ -198,6 +201,15 @@ impl BenchLogger {
         Some(self.take(&held, By::Itself))
     }
 
+    /// Another logger has taken a point: this one only shows the run.
+    pub fn was_taken(&mut self, pressure_pa: f64, sweep: Option<Sweep>) {
+        self.options.last = Some((pressure_pa, sweep));
+        self.options.points_before += 1;
+        self.left_s = None;
+        self.level_pa = Some(pressure_pa);
+        self.sweep = sweep.or(self.sweep);
+    }
+
     /// Whether points are taken by themselves.
     #[must_use]
     pub const fn takes_by_itself(&self) -> bool {
@@ -219,9 +231,9 @@ impl BenchLogger {
 
     /// Whether a pressure is not that of the last point.
     fn is_away(&self, pressure_pa: f64) -> bool {
-        self.points.last().is_none_or(|last| {
-            (pressure_pa - last.reading.pressure.shown_pa()).abs() > self.options.new_level_pa
-        })
+        let here = self.points.last().map(|last| last.reading.pressure.shown_pa());
+        let last_pa = here.or(self.options.last.map(|(last_pa, _)| last_pa));
+        last_pa.is_none_or(|last_pa| (pressure_pa - last_pa).abs() > self.options.new_level_pa)
     }
 
     /// Time passed: says what has become stale.
@@ -412,6 +424,12 @@ impl BenchLogger {
         let pressure_pa = held.steady.pressure.mean;
         if pressure_pa <= self.options.new_level_pa {
             return Err(NotSteady::NoPressure { pressure_pa });
+        }
+        // The regulator was just turned: what was steady is over, though the window has not seen enough of it.
+        let now_pa = self.channels.iter().find(|one| one.role == Role::Pressure).and_then(|one| one.last);
+        if now_pa.is_some_and(|now| (now.reading.si - pressure_pa).abs() > self.options.new_level_pa) {
+            let rate_pa_s = self.window.rates().0.unwrap_or(0.0);
+            return Err(NotSteady::PressureMoves { rate_pa_s });
         }
         for channel in &self.channels {
             let readings = match channel.role {

@@ -491,7 +491,10 @@ impl SessionLogger {
             },
             AlarmKind::NoPo2 => {
                 let for_s = now_s - self.started_s.unwrap_or(now_s);
-                let waited = self.origin_s.is_some()
+                let heard =
+                    |cell: &Cell| self.channels.get(cell.instrument).is_some_and(|one| one.last.is_some());
+                // A session that goes on has an origin before it has heard a cell.
+                let waited = (self.origin_s.is_some() && self.cells.iter().any(heard))
                     || self.cells.iter().all(|cell| self.is_missing(cell.instrument, now_s));
                 match cells().next() {
                     Some(_) => Condition::Over,

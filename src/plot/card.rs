@@ -229,7 +229,7 @@ fn broken(words: &[(String, Weight)], size: f64, room: f64) -> Vec<Line> {
 
 /// Bold letters as wide as they are at the most in these texts; see [`width`], whose bound holds for any letter.
 fn bold_or_not(text: &str, size: f64, weight: Weight) -> f64 {
-    let plain = text.chars().all(|c| c.is_ascii());
+    let plain = text.is_ascii();
     match weight {
         Weight::Bold if plain => BOLD_DIGITS * width(text, size, Weight::Regular),
         weight => width(text, size, weight),

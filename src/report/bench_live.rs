@@ -270,6 +270,13 @@ pub fn bench_parts(view: &BenchView) -> Vec<String> {
         format!("{}{waits}", sign_words(view)),
         progress_words(view),
     ];
+    for dial in [&view.pressure, &view.flow].into_iter().chain(&view.around) {
+        if dial.faults > 0 || (!dial.is_alive() && dial.trouble.is_some()) {
+            let last =
+                dial.trouble.as_deref().map(|why| format!(" (last: {})", tame(why))).unwrap_or_default();
+            parts.push(format!("{}: {} faults{last}", tame(&dial.instrument), dial.faults));
+        }
+    }
     if view.saved != Saved::All {
         parts.push(view.saved.words("reading"));
     }

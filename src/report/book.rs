@@ -25,6 +25,8 @@ pub struct BookInfo {
     pub runs: u64,
     /// Its sessions, but for those that were erased.
     pub sessions: u64,
+    /// Its certificates.
+    pub certificates: u64,
     /// Names in each register, with the words for the register.
     pub entries: Vec<(&'static str, u64)>,
     /// Records whose content was erased.
@@ -106,6 +108,7 @@ pub fn info_text(info: &BookInfo) -> String {
     row("records", &info.records.to_string());
     row("runs", &info.runs.to_string());
     row("sessions", &info.sessions.to_string());
+    row("certificates", &info.certificates.to_string());
     for (register, count) in &info.entries {
         row(register, &count.to_string());
     }
@@ -143,6 +146,7 @@ pub fn info_json(info: &BookInfo) -> String {
         "records": info.records,
         "runs": info.runs,
         "sessions": info.sessions,
+        "certificates": info.certificates,
         "entries": entries,
         "erased_records": info.erased,
         "erasures": info.erasures.iter().map(erasure_value).collect::<Vec<_>>(),

@@ -51,6 +51,8 @@ pub struct Exported {
     pub entries: Vec<(&'static str, usize)>,
     /// How many judgements.
     pub judgements: usize,
+    /// How many certificates.
+    pub certificates: usize,
     /// Whether divers are in it.
     pub with_divers: bool,
     /// Whether each thousand of runs has a folder of its own.
@@ -167,6 +169,7 @@ pub fn json(exported: &Exported) -> String {
         "left_out_of_sessions": exported.left_out.iter().map(left_out).collect::<Vec<_>>(),
         "entries": entries,
         "judgements": exported.judgements,
+        "certificates": exported.certificates,
         "with_divers": exported.with_divers,
         "notes": exported.notes,
     }))
@@ -226,6 +229,13 @@ fn what_is_where(text: &mut String, exported: &Exported) {
     }
     if !exported.left_out.is_empty() {
         row("", "sessions/left-out.toml: what was left out of sessions, when, why, by whom");
+    }
+    if exported.certificates > 0 {
+        row(
+            "certificates.toml",
+            "numbers given out, each with its run and the SHA-256 of its files; the files are not here: certificate issue \
+             makes them from the book",
+        );
     }
     row("entries.toml", "which entry stands in which file, its revision, and when that was written");
     row("book.toml", "the book itself: its head, when it was begun, copies it knows of");

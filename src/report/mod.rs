@@ -8,6 +8,7 @@ pub mod bench_json;
 pub mod bench_live;
 pub mod book;
 pub mod cautions;
+pub mod certificate_words;
 pub mod check_sentences;
 pub mod enter_questions;
 pub mod enter_words;

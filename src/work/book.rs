@@ -21,6 +21,7 @@ pub fn info(shelf: &Shelf) -> Result<BookInfo, WorkError> {
         records: info.head.seq,
         runs: info.runs,
         sessions: info.sessions,
+        certificates: info.certificates,
         entries: info.entries.iter().map(|(register, count)| (register.name(), *count)).collect(),
         erased: info.erased,
         erasures: book.erasures()?.into_iter().map(erasure).collect(),

@@ -2,6 +2,7 @@
 
 use std::path::PathBuf;
 
+use super::certificate::CertificateError;
 use super::enter::EnterError;
 use super::enter_session::SessionEnterError;
 use super::png::PngError;
@@ -116,6 +117,15 @@ pub enum WorkError {
         /// Those there are.
         there: String,
     },
+    /// No register to look an instrument up in.
+    #[error(
+        "there is no book at {}, and so no instrument in its register: ebbline instrument add FILE.toml registers one, and \
+         ebbline rig simulates a bench to try", book.display()
+    )]
+    NoInstruments {
+        /// Where the book would be.
+        book: PathBuf,
+    },
     /// An instrument that cannot be logged from.
     #[error("{id} {why}: name an instrument that measures {measures} (there: {there})")]
     NoSuchInstrument {
@@ -222,6 +232,9 @@ pub enum WorkError {
     /// A sheet's file name has another ending.
     #[error("{0}: the sheet is written as .pdf or .txt, name the file so")]
     SheetKind(PathBuf),
+    /// Certificates.
+    #[error(transparent)]
+    Certificate(#[from] CertificateError),
     /// A size of paper, and no page to print on it.
     #[error("--paper is the paper of a sheet as PDF: give --sheet FILE.pdf with it, or leave it out")]
     PaperWithoutSheet,
@@ -394,6 +407,7 @@ impl WorkError {
             | Self::ListenFor(_)
             | Self::LogSetup(_)
             | Self::NoCellCalibration
+            | Self::NoInstruments { .. }
             | Self::NoInjection(_)
             | Self::SessionLogSetup(_)
             | Self::WhichInstrument { .. }
@@ -403,6 +417,7 @@ impl WorkError {
             | Self::Trials(_)
             | Self::NoMonteCarlo(_)
             | Self::PlotKind(_) => ExitStatus::Wrong,
+            Self::Certificate(error) => error.status(),
             Self::Book(error) => book_status(error),
             Self::Rig(error) => rig_status(error),
             Self::Port(_)

@@ -3,6 +3,7 @@
 //! The only place with a sequence of steps, and, with `record`, the only one that touches files.
 
 pub mod book;
+pub mod certificate;
 pub mod demo;
 pub mod enter;
 pub mod enter_session;

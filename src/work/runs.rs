@@ -333,7 +333,7 @@ impl LoadedRun {
     }
 
     /// The run before, where the two flows are of the same thing.
-    fn comparable(&self) -> Option<&Accepted> {
+    pub(super) fn comparable(&self) -> Option<&Accepted> {
         let (_, before) = self.before.as_ref()?;
         let ip = self.run.acceptance.as_ref()?.ip;
         let p1_bar = ip.above(crate::quantity::AbsolutePressure::STANDARD_ATMOSPHERE).as_bar();
@@ -377,7 +377,7 @@ pub(super) fn said<'t>(option: &'static str, text: &'t str) -> Result<&'t str, W
     Ok(text)
 }
 
-fn stored_verdict(analysis: &Analysis) -> StoredVerdict {
+pub(super) fn stored_verdict(analysis: &Analysis) -> StoredVerdict {
     match analysis.judgement.as_ref().map_or(Verdict::None, |j| j.verdict) {
         Verdict::Pass => StoredVerdict::Pass,
         Verdict::Fail => StoredVerdict::Fail,
@@ -386,7 +386,7 @@ fn stored_verdict(analysis: &Analysis) -> StoredVerdict {
     }
 }
 
-fn figures(loaded: &LoadedRun, analysis: &Analysis) -> StoredFigures {
+pub(super) fn figures(loaded: &LoadedRun, analysis: &Analysis) -> StoredFigures {
     let flow = &analysis.nominal.flow;
     let en = analysis.checks.iter().find(|c| c.kind == CheckKind::SameAsBefore).and_then(|c| c.value);
     StoredFigures {

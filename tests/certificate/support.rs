@@ -188,6 +188,7 @@ pub(crate) fn every_content() -> Vec<(&'static str, Content)> {
     let amended = Issue {
         number: "IOW-2026-0008".into(),
         amends: Some(Amendment {
+            instead: true,
             replaces: "IOW-2026-0007".into(),
             what: "address of the customer".into(),
             why: "it was that of a branch".into(),

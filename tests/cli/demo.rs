@@ -31,7 +31,8 @@ fn the_book_of_the_invented_shop_shows_an_orifice_that_clogs_before_it_fails() {
     let sheet = std::fs::read(desk.folder.join("out/demo-sheet.pdf")).unwrap();
     assert_eq!(ebbline::certificate::paper::read::read(&sheet).unwrap().pages.len(), 1, "of A5");
     let shop = &left["shop"];
-    assert_eq!(shop["orifices"], 13);
+    // The one that is logged from the simulated bench among them, where there are pseudo-terminals.
+    assert_eq!(shop["orifices"], if cfg!(unix) { 14 } else { 13 });
     let book = shop["book"].as_str().unwrap();
     let said = |arguments: &[&str]| -> Value {
         let said = desk.call_on(book, &[arguments, &["--json"]].concat());
@@ -52,7 +53,11 @@ fn the_book_of_the_invented_shop_shows_an_orifice_that_clogs_before_it_fails() {
         let significant = history["trend"]["significant"] == json!(true);
         assert_eq!(significant, id == clogging, "{id}: {}", history["trend"]);
         let last = history["runs"][0]["verdict"].as_str().unwrap();
-        assert!(last == "pass" || history["runs"].as_array().unwrap().len() == 1, "{id}: {last}");
+        // What is logged is not the same twice: with so few points it may stay undecided.
+        assert!(
+            id == "demo-live" || last == "pass" || history["runs"].as_array().unwrap().len() == 1,
+            "{id}: {last}"
+        );
     }
     let history = said(&["orifice", "show", clogging, "--all"]);
     let runs = history["runs"].as_array().unwrap();
@@ -76,6 +81,36 @@ fn the_book_of_the_invented_shop_shows_an_orifice_that_clogs_before_it_fails() {
 }
 
 #[test]
+fn a_run_of_the_invented_shop_is_certified_and_the_certificate_amended() {
+    let desk = Desk::new("demo-certificate");
+    let left: Value = serde_json::from_str(&desk.done(&["demo", "--into", "out", "--json"])).unwrap();
+    let issued = &left["certificate"];
+    assert_eq!(
+        (&issued["number"], &issued["amendment"]),
+        (&json!("DEMO-2026-0001"), &json!("DEMO-2026-0002"))
+    );
+    assert_eq!(issued["hold"], true);
+    let files: Vec<&str> = issued["files"].as_array().unwrap().iter().map(|f| f.as_str().unwrap()).collect();
+    assert_eq!(files.len(), 4);
+    for file in files {
+        for (book, here) in [("out/book.db", json!(true)), ("none.db", Value::Null)] {
+            let said = desk.call_on(book, &["certificate", "check", file, "--json"]);
+            let json: Value = serde_json::from_str(&said.stdout).unwrap();
+            assert_eq!(
+                (said.status, &json["holds"], &json["issued_here"]),
+                (0, &json!(true), &here),
+                "{said:?}"
+            );
+        }
+    }
+    // Somebody issues another one from it: the book stays as it is.
+    let book = "out/book.db";
+    let said = desk.call_on(book, &["certificate", "issue", "R0001", "--into", "mine"]);
+    assert_eq!(said.status, 0, "{said:?}");
+    desk.refused(&["demo", "--into", "out"], 2, "DEMO-");
+}
+
+#[test]
 fn a_second_time_gives_the_same_files_and_another_book() {
     let desk = Desk::new("demo-twice");
     desk.done(&["demo", "--into", "out"]);
@@ -84,8 +119,9 @@ fn a_second_time_gives_the_same_files_and_another_book() {
     let second = bytes(&desk.folder.join("out"));
     assert_eq!(first.keys().collect::<Vec<_>>(), second.keys().collect::<Vec<_>>());
     for (path, bytes) in &first {
-        let book = path.ends_with("book.db");
-        assert_eq!(*bytes == second[path], !book, "{}", path.display());
+        // A certificate prints the head of the chain, whose salts are drawn anew.
+        let of_book = path.ends_with("book.db") || path.parent().unwrap().ends_with("certificates");
+        assert_eq!(*bytes == second[path], !of_book, "{}", path.display());
     }
 }
 

@@ -14,6 +14,7 @@ mod loop_simulator;
 
 mod bench_enter;
 mod bench_enter_killed;
+mod certificates;
 mod cli_book;
 mod cli_fit;
 mod cli_refusals;

@@ -20,6 +20,7 @@ mod acceptance;
 mod run;
 mod session;
 mod live;
+mod certificate;
 mod judgement;
 mod orifice;
 mod instrument;

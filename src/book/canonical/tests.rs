@@ -89,7 +89,7 @@ proptest! {
 
     #[test]
     fn any_bytes_are_either_refused_or_written_again_as_they_were(
-        kind in prop_oneof![1..18_u16, 1000..1013_u16],
+        kind in prop_oneof![1..24_u16, 1000..1014_u16],
         bytes in proptest::collection::vec(any::<u8>(), 0..200),
         form in any::<bool>(),
     ) {

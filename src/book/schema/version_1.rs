@@ -62,6 +62,31 @@ CREATE TABLE decision (
 ) STRICT;
 CREATE INDEX decision_run ON decision (run, seq);
 
+-- Certificates whose number was given out, for lists.
+CREATE TABLE certificate (
+  seq      INTEGER PRIMARY KEY REFERENCES record (seq), -- the record
+  number   TEXT    NOT NULL,                            -- its number as printed
+  key      TEXT    NOT NULL UNIQUE,                     -- the same in lower case
+  year     INTEGER NOT NULL,                            -- the year of its number
+  counter  INTEGER NOT NULL,                            -- the running part of its number
+  run      INTEGER NOT NULL,                            -- number of the run it rests on
+  as_found INTEGER,                                     -- number of the run before the work, where there is one
+  orifice  TEXT    NOT NULL,                            -- name of the orifice as given
+  amends   TEXT,                                        -- key of the certificate it amends or replaces
+  replaces INTEGER,                                     -- 1 where it replaces that one, 0 where it amends it
+  issued   TEXT    NOT NULL                             -- when, RFC 3339 with its offset
+) STRICT;
+CREATE INDEX        certificate_run    ON certificate (run, seq);
+CREATE UNIQUE INDEX certificate_amends ON certificate (amends) WHERE amends IS NOT NULL;
+
+-- Certificates whose files were written.
+CREATE TABLE certificate_files (
+  seq         INTEGER PRIMARY KEY REFERENCES record (seq), -- the record that says so
+  certificate INTEGER NOT NULL UNIQUE REFERENCES record (seq), -- the record of the certificate
+  pdf         BLOB    NOT NULL CHECK (length(pdf) = 32), -- SHA-256 of the PDF
+  xml         BLOB    NOT NULL CHECK (length(xml) = 32)  -- SHA-256 of the XML
+) STRICT;
+
 -- Entries of the registers; the highest revision of a key is the one that holds.
 CREATE TABLE register (
   seq      INTEGER PRIMARY KEY REFERENCES record (seq), -- the record
@@ -162,6 +187,10 @@ CREATE TRIGGER payload_stays   BEFORE UPDATE ON payload  BEGIN SELECT RAISE(ABOR
 CREATE TRIGGER run_stays       BEFORE UPDATE ON run      BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER of_run_stays    BEFORE UPDATE ON of_run   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER decision_stays  BEFORE UPDATE ON decision BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER certificate_stays BEFORE UPDATE ON certificate
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER certificate_files_stays BEFORE UPDATE ON certificate_files
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER register_stays  BEFORE UPDATE ON register BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER session_stays          BEFORE UPDATE ON session
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
@@ -179,6 +208,10 @@ CREATE TRIGGER record_kept     BEFORE DELETE ON record   BEGIN SELECT RAISE(ABOR
 CREATE TRIGGER run_kept        BEFORE DELETE ON run      BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER of_run_kept     BEFORE DELETE ON of_run   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER decision_kept   BEFORE DELETE ON decision BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER certificate_kept BEFORE DELETE ON certificate
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER certificate_files_kept BEFORE DELETE ON certificate_files
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER session_erased_kept BEFORE DELETE ON session_erased
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER erased_kept     BEFORE DELETE ON erased   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
@@ -218,6 +251,12 @@ CREATE TRIGGER of_run_new      BEFORE INSERT ON of_run
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER decision_new    BEFORE INSERT ON decision
   WHEN EXISTS (SELECT 1 FROM decision WHERE seq = NEW.seq)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER certificate_new BEFORE INSERT ON certificate
+  WHEN EXISTS (SELECT 1 FROM certificate WHERE seq = NEW.seq OR key = NEW.key)
+  BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
+CREATE TRIGGER certificate_files_new BEFORE INSERT ON certificate_files
+  WHEN EXISTS (SELECT 1 FROM certificate_files WHERE seq = NEW.seq OR certificate = NEW.certificate)
   BEGIN SELECT RAISE(ABORT, 'the record is append-only'); END;
 CREATE TRIGGER register_new    BEFORE INSERT ON register
   WHEN EXISTS (SELECT 1 FROM register WHERE seq = NEW.seq

@@ -58,11 +58,13 @@ pub struct Customer {
     pub contact: Option<String>,
 }
 
-/// What an amendment says of the certificate it replaces.
+/// What an amendment says of the certificate it amends or replaces.
 #[derive(Debug, Clone, PartialEq, Eq)]
 pub struct Amendment {
-    /// Number of the certificate that is replaced.
+    /// Number of that certificate.
     pub replaces: String,
+    /// Whether this one takes its place; else it amends it.
+    pub instead: bool,
     /// What changed.
     pub what: String,
     /// Why.

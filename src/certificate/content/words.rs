@@ -132,7 +132,8 @@ pub(super) fn statements(issue: &Issue, run: &Run, judged: Option<(Rule, Verdict
     }));
     all.extend(issue.amends.as_ref().map(|amends| {
         let text = format!(
-            "This certificate replaces certificate {}. Changed: {}. Reason: {}.",
+            "This certificate {} certificate {}. Changed: {}. Reason: {}.",
+            if amends.instead { "replaces" } else { "amends" },
             amends.replaces,
             amends.what.trim_end_matches('.'),
             amends.why.trim_end_matches('.')

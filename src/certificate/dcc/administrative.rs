@@ -72,7 +72,7 @@ fn core_data(content: &Content) -> Element {
         children.push(Element::of(
             "dcc:reportAmendedSubstituted",
             vec![
-                Element::fact("dcc:typeOfChange", "substituted"),
+                Element::fact("dcc:typeOfChange", if amends.instead { "substituted" } else { "amended" }),
                 Element::fact("dcc:replacedUniqueIdentifier", &amends.replaces),
             ],
         ));
@@ -80,7 +80,10 @@ fn core_data(content: &Content) -> Element {
             Element::of(
                 "dcc:previousReport",
                 vec![
-                    Element::facts("dcc:referral", ["the certificate that this one replaces, as XML"]),
+                    Element::facts(
+                        "dcc:referral",
+                        ["the certificate that this one amends or replaces, as XML"],
+                    ),
                     Element::fact("dcc:referralID", &amends.replaces),
                     Element::fact("dcc:procedure", "SHA-256"),
                     Element::fact("dcc:value", digest),

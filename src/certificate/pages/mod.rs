@@ -93,7 +93,10 @@ fn first_page(content: &Content) -> Vec<Block> {
         pair("Certificate", Text::bold(&issue.number)),
         pair("Date of issue", issue.issued.date_naive().to_string()),
     ];
-    pairs.extend(issue.amends.as_ref().map(|amends| pair("Replaces", Text::bold(&amends.replaces))));
+    pairs.extend(issue.amends.as_ref().map(|amends| {
+        let head = if amends.instead { "Replaces" } else { "Amends" };
+        pair(head, Text::bold(&amends.replaces))
+    }));
     pairs.push(pair("Calibrated", days(content)));
     pairs.extend(issue.received.map(|day| pair("Received", day.to_string())));
     pairs.push(pair("Place of the work", content.place.as_str()));

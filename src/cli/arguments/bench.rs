@@ -10,6 +10,9 @@ use crate::quantity::{
     AbsolutePressure, GaugePressure, PressureDifference, QuantityError, Span, StpdFlow, Uncertain,
 };
 
+/// Most points of a run.
+const MOST_POINTS: usize = 5_000;
+
 /// Verbs of bench runs.
 #[derive(Debug, Subcommand)]
 pub enum Bench {
@@ -122,7 +125,7 @@ pub struct LogLength {
     #[arg(long = "for", value_name = "DURATION", allow_hyphen_values = true, value_parser = text::value::<Span>)]
     pub lasts: Option<Span>,
     /// Ends with this many points
-    #[arg(long, value_name = "N")]
+    #[arg(long, value_name = "N", value_parser = points)]
     pub points: Option<usize>,
     /// Takes steady points by itself and prints a line a second, as it does without a terminal
     #[arg(long)]
@@ -155,6 +158,11 @@ pub struct Typed {
     /// The transducer shows absolute pressure (else gauge)
     #[arg(long)]
     pub absolute: bool,
+}
+
+fn points(text: &str) -> Result<usize, String> {
+    let points = text.parse().ok().filter(|points| (1..=MOST_POINTS).contains(points));
+    points.ok_or_else(|| format!("a run has 1 to {MOST_POINTS} points"))
 }
 
 fn pressure_unit(text: &str) -> Result<Unit, QuantityError> {

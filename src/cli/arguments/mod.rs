@@ -2,6 +2,7 @@
 
 mod bench;
 mod book;
+mod certificate;
 mod keys;
 mod registers;
 mod rig;
@@ -14,6 +15,10 @@ pub use bench::{
     Accept, Bench, BenchLog, Enter, Fit, Import, LeaveOut, List, LogLength, Resume, Show, Typed,
 };
 pub use book::{Backup, Book, Check, Export};
+pub use certificate::{
+    AmendCertificate, Certificates, CheckCertificate, IssueCertificate, ListCertificates, Paper,
+    ShowCertificate, Stated, Written,
+};
 use clap::{Args, Parser, Subcommand};
 pub use registers::{
     Acceptances, Add, Divers, Edit, EditShop, Entries, FirstStages, Forget, Instruments, One, Orifices,
@@ -37,7 +42,7 @@ use crate::quantity::Shown;
     version,
     disable_help_subcommand = true,
     max_term_width = 80,
-    after_help = "Exit status: 0 done and favourable; 1 done, and the verdict is fail, undecided, no uptake or no setting; 2 the input or the call \
+    after_help = "Exit status: 0 done and favourable; 1 done, and the verdict is fail, undecided, no uptake or no setting, or a certificate or a book does not hold; 2 the input or the call \
                   is wrong; 3 a port, a disk or an output file failed.\n\nAn aid to trained people, no life-support monitor. \
                   Training, the unit's manual, the regulator maker's limits and local rules come first."
 )]
@@ -80,6 +85,9 @@ pub enum Command {
     Session(Sessions),
     /// The intermediate pressure to set: through which orifice, how PO2 then sinks, and to which depth it holds
     Setting(Box<Setting>),
+    /// Calibration certificates: issued from judged runs, amended, checked whoever issued them
+    #[command(subcommand)]
+    Certificate(Box<Certificates>),
     /// Orifices: their register, and their history
     #[command(subcommand)]
     Orifice(Orifices),

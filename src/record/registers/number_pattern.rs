@@ -79,6 +79,19 @@ impl NumberPattern {
         Ok(pattern)
     }
 
+    /// The pattern of a shop that named none: `{year}-{n:4}`.
+    #[must_use]
+    pub fn usual() -> Self {
+        let dash = Piece::Text("-".to_owned());
+        Self(vec![Piece::Year, dash, Piece::Counter { width: 4 }])
+    }
+
+    /// Whether the running number begins anew each year, which it does where the number shows the year.
+    #[must_use]
+    pub fn counts_by_year(&self) -> bool {
+        self.0.contains(&Piece::Year)
+    }
+
     /// The number of the `n`-th certificate in a year.
     #[must_use]
     pub fn number(&self, year: i32, n: u32) -> String {

@@ -8,20 +8,21 @@ use std::path::Path;
 use std::sync::Arc;
 
 use crate::book::Entry;
-use crate::clock::{Hastened, Ticks};
+use crate::clock::{self, Hastened, Ticks};
 use crate::entry::{Instrument, Measures, RunNumber};
 use crate::instrument::{Hurried, SystemPorts};
-use crate::quantity::Span;
+use crate::quantity::{Length, Span};
 use crate::report::Units;
-use crate::report::bench_fit::verdict_line;
 use crate::report::bench_live::BenchView;
-use crate::rig::{OfTicks, Rig, Script, Settings};
+use crate::report::enter_words::running;
+use crate::rig::{Hole, OfTicks, Rig, Script, Settings};
 use crate::work::WorkError;
 use crate::work::log::{BenchFace, BenchLogRequest, BenchWish, HowLong, Wires, log};
+use crate::work::runs::judge;
 use crate::work::shelf::{Shelf, stamped};
 
 /// How many times as fast as the machine's the clock goes.
-const TIMES: f64 = 12.0;
+const TIMES: f64 = 8.0;
 /// Levels that are set, bar gauge, and for how long each is held.
 const LEVELS_BAR: [f64; 6] = [5.0, 8.0, 11.0, 12.5, 9.5, 6.5];
 const HELD_S: f64 = 28.0;
@@ -58,12 +59,14 @@ pub(super) fn logged(folder: &Path, shelf: &Shelf, units: Units) -> Result<Optio
     done.map(Some)
 }
 
-/// The name of the orifice.
+/// The name of the orifice, and of the limits it is judged by.
 const ORIFICE: &str = "demo-live";
+const LIMITS: &str = "demo-0.48";
 
 #[cfg(unix)]
 fn over(ports: &Path, clock: &Arc<Hastened>, shelf: &Shelf, units: Units) -> Result<DemoLogged, WorkError> {
     let mut settings = Settings::standard(SEED)?;
+    settings.bench.hole = Hole { diameter: Length::from_um(73.6), choke_ratio: 0.50, k: 2.0 };
     settings.bench.script = Script::of_bar(&LEVELS_BAR, HELD_S);
     let ticks: Arc<dyn Ticks> = Arc::<Hastened>::clone(clock);
     let served = Rig::new(settings)?.serve(Arc::new(OfTicks(Arc::clone(&ticks))), Some(ports))?;
@@ -77,6 +80,7 @@ fn over(ports: &Path, clock: &Arc<Hastened>, shelf: &Shelf, units: Units) -> Res
         meter: ids(Measures::Flow),
         transducer: ids(Measures::Pressure),
         technician: Some("nobody: a simulated bench".to_owned()),
+        acceptance: Some(LIMITS.to_owned()),
         how: HowLong {
             by_itself: true,
             lasts: Some(Span::from_s(LONGEST_S)),
@@ -102,9 +106,17 @@ fn over(ports: &Path, clock: &Arc<Hastened>, shelf: &Shelf, units: Units) -> Res
         return Ok(DemoLogged { run: None, orifice: ORIFICE, points: 0, says });
     };
     let says = match desk.line() {
-        Some((analysis, low)) => verdict_line(&desk.fitted(analysis, low.as_ref()), &units),
+        Some((analysis, low)) => {
+            let said = running(&desk.fitted(analysis, low.as_ref()), None, None, &units);
+            let said = said.split_whitespace().collect::<Vec<_>>().join(" ");
+            said.split("; crossing").next().unwrap_or_default().to_owned()
+        }
         None => "too few levels were held on this machine for a line; the run stays open".to_owned(),
     };
+    if let (Some(number), false) = (desk.number(), desk.is_open()) {
+        let mut book = shelf.to_change()?;
+        judge(&mut book, number, Some("B. Invented"), None, clock::now())?;
+    }
     Ok(DemoLogged { run: desk.number(), orifice: ORIFICE, points: desk.points().len(), says })
 }
 

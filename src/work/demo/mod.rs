@@ -5,6 +5,7 @@
 //! files are read and fitted like anybody's.
 
 mod breath;
+mod certificate;
 mod diver;
 mod live;
 mod model;
@@ -23,6 +24,7 @@ use crate::report::Units;
 use crate::stats::monte_carlo::Random;
 use model::{Around, Bench, Day, Errors, Hole};
 
+pub use certificate::DemoCertificate;
 pub use diver::DemoDiver;
 pub use live::DemoLogged;
 pub use shop::DemoShop;
@@ -69,6 +71,8 @@ pub struct Demonstration {
     pub runs: Vec<DemoRun>,
     /// The book of the shop.
     pub shop: DemoShop,
+    /// The certificate of one of its runs, and the amendment.
+    pub certificate: Option<DemoCertificate>,
     /// The diver's sessions, uptake and setting.
     pub diver: DemoDiver,
     /// The run that was logged from the simulated bench; none where the system has no pseudo-terminals.
@@ -86,8 +90,8 @@ pub fn demo(folder: &Path, units: Units) -> Result<Demonstration, WorkError> {
     let orifices = invented().into_iter().enumerate();
     let runs =
         orifices.map(|(i, orifice)| one(folder, units, i as u64, &orifice)).collect::<Result<_, _>>()?;
-    let (shop, diver, logged) = shop::keep(folder, units)?;
-    Ok(Demonstration { runs, shop, diver, logged })
+    let shop::KeptShop { shop, certificate, diver, logged } = shop::keep(folder, units)?;
+    Ok(Demonstration { runs, shop, certificate, diver, logged })
 }
 
 /// An orifice of the invented shop, and how its run is taken.

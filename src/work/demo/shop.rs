@@ -9,13 +9,14 @@ use std::path::{Path, PathBuf};
 
 use chrono::{DateTime, Duration, FixedOffset, NaiveDate};
 
+use super::certificate::{self, DemoCertificate};
 use super::diver::{self, DemoDiver};
 use super::live::{self, DemoLogged};
 use super::model::{self, Around, Bench, Day, Errors, Hole};
 use super::{
     ERRORS, GOOD, INVENTED, METER_CERTIFICATE, METER_DUE, SEED, TRANSDUCER_CERTIFICATE, TRANSDUCER_DUE, id,
 };
-use crate::book::{Book, BookError, Options, RunQuery, SessionQuery};
+use crate::book::{Book, BookError, CertificateQuery, Options, RunQuery, SessionQuery};
 use crate::entry::{
     Build, Diluent, Diver, FirstStage, Instrument, InstrumentPapers, Measures, Orifice, Purpose, Shop,
     Signatory,
@@ -90,6 +91,13 @@ pub(super) fn may_be_written(folder: &Path) -> Result<(), WorkError> {
             other.number, other.diver
         ));
     }
+    let issued = book.certificates(&CertificateQuery::default())?;
+    if let Some(other) = issued.first().filter(|_| issued.len() > certificate::ISSUED) {
+        return refuse(format!(
+            "is the book of a demonstration, but somebody issued certificate {} from it, so it stays",
+            other.number
+        ));
+    }
     if let Some(other) = book.runs(&RunQuery::default())?.iter().find(|run| of_others(&run.orifice)) {
         return refuse(format!(
             "is the book of a demonstration, but somebody recorded run {} of {} in it, so it stays",
@@ -99,15 +107,20 @@ pub(super) fn may_be_written(folder: &Path) -> Result<(), WorkError> {
     Ok(())
 }
 
-/// Writes the files of the shop and of its diver, takes them into a book, judges every run, draws the history of the one
+/// Everything that comes of keeping the book.
+pub(super) struct KeptShop {
+    pub(super) shop: DemoShop,
+    pub(super) certificate: Option<DemoCertificate>,
+    pub(super) diver: DemoDiver,
+    pub(super) logged: Option<DemoLogged>,
+}
+
+/// Writes the files of the shop and of its diver, takes them into a book, judges every run, issues a certificate, draws the history of the one
 /// that clogs, and works out the diver's setting.
 ///
 /// # Errors
 /// When the folder cannot be written; another error would be a defect of the program.
-pub(super) fn keep(
-    folder: &Path,
-    units: Units,
-) -> Result<(DemoShop, DemoDiver, Option<DemoLogged>), WorkError> {
+pub(super) fn keep(folder: &Path, units: Units) -> Result<KeptShop, WorkError> {
     let (book, files) = (book_in(folder), folder.join("shop"));
     let scratch = folder.join(format!(".book.db.{}.part", std::process::id()));
     remove(&scratch);
@@ -117,6 +130,7 @@ pub(super) fn keep(
             HistoryRequest { orifice: CLOGGING.to_owned(), all: true, plot: Some(plot.clone()), units };
         let (_, history) = history::show(&Shelf::at(&scratch), &request)?;
         let warnings = history.warnings(&units);
+        let certificate = certificate::certify(folder, &Shelf::at(&scratch))?;
         let diver = diver::rest(folder, &Shelf::at(&scratch), units)?;
         let logged = live::logged(folder, &Shelf::at(&scratch), units)?;
         let more = usize::from(logged.as_ref().is_some_and(|logged| logged.run.is_some()));
@@ -132,7 +146,7 @@ pub(super) fn keep(
             plot,
             warnings,
         };
-        Ok((shop, diver, logged))
+        Ok(KeptShop { shop, certificate, diver, logged })
     });
     remove(&scratch);
     kept
@@ -239,12 +253,16 @@ struct Visit {
 fn orifices() -> Vec<Kept> {
     use Story::{Cleaned, Clogs, New, Rejected, Stays};
     let (block, valve) = ("restrictor of a left-hand block", "leaky valve, whole");
-    let (club, school, none) = ("Tern Club (invented)", "Reef School (invented)", "the shop's own");
+    let (club, school, none) = (
+        "Tern Club (invented), 2 Quay Street, Nowhere",
+        "Reef School (invented), 12 Bay Road, Nowhere",
+        "the shop's own",
+    );
     [
         (block, club, 0.48, 1.004, Stays),
         (valve, school, 0.70, 0.988, Stays),
         (block, club, 0.48, 1.011, Stays),
-        (block, none, 0.48, 0.997, Cleaned(6, 0.80)),
+        (block, club, 0.48, 0.997, Cleaned(6, 0.80)),
         (block, school, 0.48, 1.008, Stays),
         (valve, club, 0.70, 1.013, Stays),
         (block, school, 0.48, 0.984, Clogs(LOST_IN_A_YEAR)),
@@ -426,11 +444,11 @@ fn entries(orifices: &[Kept]) -> Vec<RegisterEntry> {
         }),
         RegisterEntry::Shop(Shop {
             name: SHOP.to_owned(),
-            address: "1 Slip Road\nNowhere".to_owned(),
+            address: "1 Slip Road\nNowhere\nAQ".to_owned(),
             contact: None,
             logo: None,
             accent: None,
-            number_pattern: None,
+            number_pattern: Some(certificate::PATTERN.to_owned()),
             signatories: vec![Signatory { name: "B. Invented".to_owned(), role: None }],
             statements: Vec::new(),
         }),
@@ -438,6 +456,7 @@ fn entries(orifices: &[Kept]) -> Vec<RegisterEntry> {
     entries.extend(orifices.iter().map(|orifice| {
         RegisterEntry::Orifice(Orifice {
             description: Some(orifice.description.to_owned()),
+            serial: Some(format!("invented-{}", orifice.id.trim_start_matches(PREFIX))),
             maker: Some("invented".to_owned()),
             customer: Some(orifice.customer.to_owned()),
             build: Build::ShortTube,

@@ -20,7 +20,9 @@ use crate::entry::{
 use crate::gas::Species;
 use crate::quantity::text::{uncertain, value, zero_reading};
 use crate::quantity::unit::Unit;
-use crate::quantity::{AbsolutePressure, IndicatedFlow, PressureRate, Quantity, Share, Temperature};
+use crate::quantity::{
+    AbsolutePressure, IndicatedFlow, PressureDifference, PressureRate, Quantity, Share, Temperature,
+};
 use crate::record::{DEFAULT_PURITY, Note, Setup, meter_suits, read_setup};
 use crate::report::enter_questions::{Question, asked_for, bench_words};
 use crate::report::enter_words::stands;
@@ -216,9 +218,13 @@ impl Start {
         Ok(())
     }
 
-    /// Barometer or temperature is read with each point, by an instrument; no value holds for the whole run.
-    pub fn is_read_along(&mut self, question: Question) {
+    /// Barometer or temperature is read with each point, by an instrument; no value holds for the whole run. `expanded` is
+    /// the barometer's uncertainty by its papers (k = 2), if they say any.
+    pub fn is_read_along(&mut self, question: Question, expanded: Option<PressureDifference>) {
         self.read_along.push(question);
+        if question == Question::Barometer {
+            self.conditions.barometer.expanded = expanded;
+        }
     }
 
     /// The orifice.

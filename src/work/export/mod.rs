@@ -10,6 +10,7 @@
 //! Left out: salts and links (a backup keeps them), sessions and divers unless they were asked for, readings of a point
 //! as they were before a correction but for pressure and flow.
 
+mod certificates;
 mod decisions;
 mod folder;
 mod live_files;
@@ -70,6 +71,7 @@ fn fill(folder: &mut Folder, book: &Book, to: &Path, with_divers: bool) -> Resul
         left_out: Vec::new(),
         entries: Vec::new(),
         judgements: 0,
+        certificates: 0,
         with_divers,
         blocks: false,
         session_blocks: false,
@@ -85,6 +87,7 @@ fn fill(folder: &mut Folder, book: &Book, to: &Path, with_divers: bool) -> Resul
     }
     folder.write("entries.toml", toml_text(&Listed { entry: listed }).as_bytes())?;
     runs(folder, book, &mut exported)?;
+    exported.certificates = certificates::write(folder, book)?;
     let info = book.info()?;
     if with_divers {
         sessions::sessions(folder, book, &mut exported)?;
@@ -231,24 +234,24 @@ fn runs(folder: &mut Folder, book: &Book, exported: &mut Exported) -> Result<(),
         let record = book.run(number)?;
         decisions.take(&record);
         let source = book.source_of(number)?;
-        let Some(files) = run_files::of(&record, source.as_ref(), &AsTheyStand(book)) else {
-            exported.notes.push(format!("{number} is open and has no point yet: it is not exported"));
-            continue;
-        };
         let place = if exported.blocks {
             format!("runs/{:07}/{number}", number.get() / 1000 * 1000)
         } else {
             format!("runs/{number}")
         };
-        let toml_file = format!("{place}/{number}.toml");
-        folder.write(&toml_file, &files.toml)?;
-        folder.write(&format!("{place}/{}", files.readings_name), &files.readings)?;
         if record.origin == Origin::Logged
             && let Some((raw, live)) = live_files::of(book, number)?
         {
             folder.write(&format!("{place}/{number}-raw.csv"), raw.as_bytes())?;
             folder.write(&format!("{place}/{number}-live.toml"), live.as_bytes())?;
         }
+        let Some(files) = run_files::of(&record, source.as_ref(), &AsTheyStand(book)) else {
+            exported.notes.push(format!("{number} is open and has no point yet: it is not exported"));
+            continue;
+        };
+        let toml_file = format!("{place}/{number}.toml");
+        folder.write(&toml_file, &files.toml)?;
+        folder.write(&format!("{place}/{}", files.readings_name), &files.readings)?;
         if record.state == RunState::Open {
             exported.notes.push(format!("{number} is still open: an import takes it as complete"));
         }

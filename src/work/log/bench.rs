@@ -14,10 +14,10 @@ use super::ledger::{Kept, RunLedger, Tie, holder, is_alive, seconds_after};
 use super::view::{BenchState, bench_view};
 use crate::book::{Book, Holder, Lease, Logged};
 use crate::clock::{self, Monotonic, Ticks};
-use crate::entry::{Instrument, LoggingBegun, Measures, Run, RunNumber};
+use crate::entry::{Instrument, InstrumentPapers, LoggingBegun, Measures, Run, RunNumber, Sweep};
 use crate::instrument::{Heard, Opener, Streams, SystemPorts, What, listen};
 use crate::logger::{BenchLogger, BenchOptions, Refusal};
-use crate::quantity::Span;
+use crate::quantity::{AbsolutePressure, PressureDifference, Span};
 use crate::report::Units;
 use crate::report::bench_live::BenchView;
 use crate::report::enter_questions::Question;
@@ -28,7 +28,7 @@ use crate::work::instruments::said;
 use crate::work::runs::number_of;
 use crate::work::shelf::{Shelf, stamped};
 
-use super::instruments::{Chosen, choose, condition_instrument};
+use super::instruments::{Chosen, book_with_instruments, choose, condition_instrument};
 
 /// How often what is due is looked for, seconds.
 const TURN_S: f64 = 0.05;
@@ -141,7 +141,7 @@ pub fn log(
     if let Some(oxygen) = &request.oxygen {
         start.take_purity(oxygen)?;
     }
-    let book = shelf.to_read()?;
+    let book = book_with_instruments(shelf)?;
     let mut instruments = Vec::new();
     let roles = [
         (Question::Meter, Measures::Flow, &request.meter),
@@ -162,7 +162,7 @@ pub fn log(
     for (question, measures, given) in conditions {
         match condition_instrument(&book, measures, given.as_deref())? {
             Some(instrument) => {
-                start.is_read_along(question);
+                start.is_read_along(question, expanded(&instrument));
                 instruments.push(instrument);
             }
             None => start.answer(question, given.as_deref().unwrap_or_default())?,
@@ -173,6 +173,19 @@ pub fn log(
     notes.iter().for_each(|note| face.say(note));
     let driver = Driver::new(shelf, instruments, wires, request.how, run, None)?;
     driver.run(None, face, stop)
+}
+
+/// The expanded uncertainty (k = 2) that the papers of a barometer give it; none where it has none.
+fn expanded(instrument: &Instrument) -> Option<PressureDifference> {
+    let Some(InstrumentPapers::Transducer(transducer)) = &instrument.papers else { return None };
+    let papers = &transducer.papers;
+    let zero_pa = papers.zero.map(PressureDifference::as_pa);
+    let gain_pa = papers.gain.map(|gain| gain * AbsolutePressure::STANDARD_ATMOSPHERE.as_pa());
+    if zero_pa.is_none() && gain_pa.is_none() {
+        return None;
+    }
+    let both_pa = libm::hypot(zero_pa.unwrap_or(0.0), gain_pa.unwrap_or(0.0));
+    Some(PressureDifference::from_pa(2.0 * both_pa / papers.coverage))
 }
 
 /// Goes on with a logged run.
@@ -210,8 +223,9 @@ pub fn resume(
         crate::entry::Readings::Points(points) => points.len(),
         crate::entry::Readings::Series(_) => 0,
     };
+    let last = points.last().map(|point| (point.reading.pressure.shown_pa(), point.reading.sweep));
     let driver =
-        Driver::new(shelf, instruments, wires, how, there.run, Some(Again { taken, last_s, before }))?;
+        Driver::new(shelf, instruments, wires, how, there.run, Some(Again { taken, last_s, before, last }))?;
     driver.run(Some(number), face, stop)
 }
 
@@ -229,6 +243,8 @@ pub(super) struct Again {
     pub(super) last_s: f64,
     /// Points it has.
     pub(super) before: usize,
+    /// Pressure and sweep of the last of them.
+    pub(super) last: Option<(f64, Option<Sweep>)>,
 }
 
 impl Again {
@@ -265,8 +281,10 @@ impl<'a> Driver<'a> {
     ) -> Result<Self, WorkError> {
         let started_s = wires.ticks.now_s();
         let began_s = again.as_ref().map(|again| again.began_s(&*wires.ticks, started_s));
+        let last = again.as_ref().and_then(|again| again.last);
         let options = BenchOptions {
             by_itself: how.by_itself,
+            last,
             began_s,
             points_before: again.map_or(0, |again| again.before),
             ..BenchOptions::default()
@@ -408,7 +426,7 @@ impl<'a> Driver<'a> {
             units: self.how.units,
             hold: Hold::Ours,
             wanted: self.how.points,
-            elapsed_s: now_s - self.began_s.unwrap_or(now_s),
+            elapsed_s: now_s - self.began_s.unwrap_or(self.started_s),
             left_s: self.how.lasts.map(|lasts| (lasts.as_s() - (now_s - self.started_s)).max(0.0)),
         })
     }
@@ -529,7 +547,7 @@ pub(super) fn keep_the_rest(
 }
 
 fn refused(refusal: &Refusal) -> String {
-    format!("no point was taken: {refusal}")
+    refusal.to_string()
 }
 
 /// Shows a run that another process logs, from the book, until it is let go or left.
@@ -539,16 +557,17 @@ fn refused(refusal: &Refusal) -> String {
 pub fn watch(
     shelf: &Shelf,
     run: &str,
-    units: Units,
+    how: HowLong,
     wires: &Wires,
     face: &mut dyn BenchFace,
     stop: &dyn Fn() -> bool,
 ) -> Result<BenchEnded, WorkError> {
     let number = number_of(run)?;
     let mut watched = super::watch::Watched::new(shelf, number)?;
+    let began_s = wires.ticks.now_s();
     loop {
         let lease = watched.look()?;
-        face.show(&watched.view(units, lease.as_ref()));
+        face.show(&watched.view(how.units, lease.as_ref()));
         let left = face.wishes().into_iter().any(|wish| match wish {
             BenchWish::LeaveOpen => true,
             _ => {
@@ -557,7 +576,9 @@ pub fn watch(
             }
         });
         let held = lease.as_ref().is_some_and(is_alive);
-        if left || stop() || !held || !watched.is_open() {
+        let timed = how.lasts.is_some_and(|lasts| wires.ticks.now_s() - began_s >= lasts.as_s());
+        let all = how.points.is_some_and(|points| watched.points() >= points);
+        if left || stop() || timed || all || !held || !watched.is_open() {
             let why = if watched.is_open() { Why::LeftOpen } else { Why::Finished };
             return Ok(BenchEnded { desk: Some(watched.into_desk()), why });
         }
@@ -574,7 +595,8 @@ fn face_says_watching(face: &mut dyn BenchFace) {
 /// # Errors
 /// A run that is not there, a book that cannot be read.
 pub fn run_was_logged(shelf: &Shelf, run: &str) -> Result<bool, WorkError> {
-    Ok(shelf.to_read()?.logging_begun(number_of(run)?)?.is_some())
+    let number = number_of(run)?;
+    Ok(shelf.to_read()?.logging_begun(number)?.is_some())
 }
 
 /// The holder of a lease whose process is known to be gone.

@@ -81,6 +81,17 @@ pub fn names_an_instrument(shelf: &Shelf, text: Option<&str>) -> Result<bool, Wo
     }
 }
 
+/// The book, for its register of instruments.
+///
+/// # Errors
+/// Where there is none, that instruments are missing; a book that cannot be read.
+pub(super) fn book_with_instruments(shelf: &Shelf) -> Result<Book, WorkError> {
+    match shelf.to_read() {
+        Err(WorkError::Book(BookError::NoBook { path })) => Err(WorkError::NoInstruments { book: path }),
+        opened => opened,
+    }
+}
+
 /// The instruments of a kind that have a port.
 fn with_port(book: &Book, measures: Measures) -> Result<Vec<Instrument>, WorkError> {
     let all = book.entries::<Instrument>(None, None)?;

@@ -278,10 +278,17 @@ fn host() -> String {
     std::env::var("COMPUTERNAME").unwrap_or_default()
 }
 
-/// Whether somebody logs under this lease, as far as can be known: it has not lapsed, and its process, where it is one of
-/// this machine, is still there.
+/// How long a process of this machine that is still there may be silent before it is taken to be another one with the same
+/// number, seconds: a machine that stands still for some seconds has not lost its run (common practice, no source).
+const SILENT_S: u64 = 60;
+
+/// Whether somebody logs under this lease, as far as can be known: of this machine, whether the process is there; of
+/// another one, whether the lease has not lapsed.
 pub(super) fn is_alive(lease: &Lease) -> bool {
-    lease.holds() && (lease.host.is_empty() || lease.host != host() || process_is_there(lease.process))
+    if lease.host.is_empty() || lease.host != host() {
+        return lease.holds();
+    }
+    process_is_there(lease.process) && lease.age_ms.unsigned_abs() < SILENT_S * 1000
 }
 
 #[cfg(unix)]

@@ -9,7 +9,7 @@ use std::sync::Arc;
 
 use super::bench::{Again, Why, Wires};
 use super::face::{SessionFace, SessionWish};
-use super::instruments::choose;
+use super::instruments::{book_with_instruments, choose};
 use super::ledger::{SessionBookLedger, Tie, holder, is_alive};
 use super::session_view::{SessionState, session_view};
 use crate::book::{Book, BookError, Holder, Logged};
@@ -89,7 +89,7 @@ pub fn log_session(
 ) -> Result<SessionEnded, WorkError> {
     let SessionLogRequest { start, from, cells, depth, loop_temperature, injection, how } = request;
     let SessionReady { mut session, line_run, notes, .. } = start.ready()?;
-    let book = shelf.to_read()?;
+    let book = book_with_instruments(shelf)?;
     let mut instruments = chosen_cells(&book, &cells, face)?;
     if let Some(name) = &depth {
         instruments.push(choose(&book, Measures::Depth, Some(name))?.instrument);
@@ -144,7 +144,7 @@ pub fn resume_session(
     };
     let scales = there.session.readings.cells.iter().map(scale).collect();
     let last_s = there.session.readings.time_s.iter().copied().fold(0.0, f64::max);
-    let again = Again { taken: there.session.taken, last_s, before: 0 };
+    let again = Again { taken: there.session.taken, last_s, before: 0, last: None };
     let plan = Plan { session: there.session, line_run: there.line_run, instruments, scales, how };
     Driver::new(shelf, plan, wires, Some(again))?.run(Some(number), face, stop)
 }
@@ -164,7 +164,8 @@ pub fn is_session_held(shelf: &Shelf, session: &str) -> Result<bool, WorkError> 
 /// # Errors
 /// A session that is not there, a book that cannot be read.
 pub fn was_logged(shelf: &Shelf, session: &str) -> Result<bool, WorkError> {
-    Ok(shelf.to_read()?.session_logging_begun(number_of(session)?)?.is_some())
+    let number = number_of(session)?;
+    Ok(shelf.to_read()?.session_logging_begun(number)?.is_some())
 }
 
 /// The cells that are named, or all that have a port.

@@ -37,7 +37,10 @@ impl Watched {
         let LoggingBegun { instruments, .. } =
             begun.ok_or(crate::book::BookError::NotLogged { run: number })?;
         let options = BenchOptions { by_itself: false, began_s: Some(0.0), ..BenchOptions::default() };
-        let logger = BenchLogger::new(&instruments, options)?;
+        let mut logger = BenchLogger::new(&instruments, options)?;
+        for point in desk.points() {
+            logger.was_taken(point.pressure.shown_pa(), point.sweep);
+        }
         let points = desk.points().len();
         Ok(Self { desk, book, number, instruments, logger, seen: SeenTo::default(), points })
     }
@@ -61,6 +64,9 @@ impl Watched {
         }
         if self.book.live_points(self.number)?.len() != self.points || !self.desk.is_open() {
             self.desk.read_again()?;
+            for point in self.desk.points().iter().skip(self.points) {
+                self.logger.was_taken(point.pressure.shown_pa(), point.sweep);
+            }
             self.points = self.desk.points().len();
         }
         let lease = self.book.lease(Logged::Run(self.number), clock::now())?;
@@ -68,6 +74,10 @@ impl Watched {
             self.desk.read_again()?;
         }
         Ok(lease)
+    }
+
+    pub(super) const fn points(&self) -> usize {
+        self.points
     }
 
     pub(super) const fn is_open(&self) -> bool {

@@ -7,6 +7,7 @@ use ebbline::instrument::FaultKind::{
 };
 use ebbline::instrument::text_line::LineReader;
 use ebbline::instrument::{Found, KEPT_BYTES, alone, buses};
+use ebbline::quantity::Span;
 use proptest::prelude::*;
 
 use super::support::{NUMBER, Talk, asked, lines, to_16_bar};
@@ -236,6 +237,27 @@ fn an_asked_instrument_is_asked_in_time_and_its_echo_is_no_answer() {
         talk.hear(b"0.5\r\n");
     }
     assert!((talk.now_s - before_s - 1.0).abs() < 0.01, "{}", talk.now_s - before_s);
+}
+
+#[test]
+fn an_instrument_asked_a_hundred_times_a_second_is_not_made_to_wait_for_silence() {
+    let mut flow = asked("FM-1", Measures::Flow, "READ?\n", NUMBER, "L/min");
+    if let Some(Protocol::Lines { every, .. }) = &mut flow.protocol {
+        *every = Some(Span::from_s(0.01));
+    }
+    let mut bus = alone(&flow).unwrap();
+    let mut talk = Talk::open(bus.conversation.as_mut());
+    talk.until_sent();
+    let from_s = talk.now_s;
+    for _ in 0..100 {
+        // Two milliseconds to the answer.
+        talk.now_s += 0.002;
+        talk.hear(b"0.512\r\n");
+        talk.until_sent();
+    }
+    let lasted_s = talk.now_s - from_s;
+    assert!((0.99..1.2).contains(&lasted_s), "{lasted_s} s");
+    assert_eq!(short(&talk.take()), vec!["0:0.512"; 100]);
 }
 
 #[test]
