@@ -51,7 +51,11 @@ pub fn small_setting_plot(setting: &Setting, options: &SettingPlot, height: f64)
     let (depth_of, ip_of) = (words.depth_axis.last(), words.ip_axis.last());
     let against = |flow: Option<&String>, place: &str, of: Option<&String>| {
         let (flow, of) = (flow.map_or("", String::as_str), of.map_or("", String::as_str));
-        [format!("injection{place}, {flow}, against {of}"), format!("{flow}, against {of}")]
+        [
+            format!("injection{place}, {flow}, against {of}"),
+            format!("injection, {flow}, against {of}"),
+            format!("{flow} against {of}"),
+        ]
     };
     // One line says both axes: a title under each panel would take a third of its height.
     for (left, choice) in
