@@ -40,7 +40,7 @@
 //! | 7.8.6.1 | a documented decision rule that weighs the risk | enforced | guarded or simple acceptance (`Conformity::rule`), with the probability of conformity beside it; choosing the rule is for shop and customer |
 //! | 7.8.6.2 | which results, which limits met or not, which rule | enforced | `Conformity`: the judged flow, its limits, the guarded limits, the verdict with its reason; `StatementKind::DecisionRule` |
 //! | 7.8.8.1 | what changed and why, in the new document | enforced | `Amendment::what` and `Amendment::why`, on the first page |
-//! | 7.8.8.2 | changed only by a further document | enforced | `Amendment::replaces` names the first, which nothing here can change; that it stays is the book's |
+//! | 7.8.8.2 | changed only by a further document | enforced | `Amendment::replaces` names the first and `Amendment::instead` says whether it is replaced or amended; that it stays as it was is the book's |
 //! | 7.8.8.3 | a whole new one has its own number and names what it replaces | enforced | `complete` refuses an amendment that replaces itself, or says nothing of what or why |
 //!
 //! # Digital calibration certificate, schema 3.3.0

@@ -36,7 +36,7 @@ const BETWEEN: f64 = 12.0;
 /// A figure takes at most this share of the height of a page's text (`paper`), whole.
 const TALLEST: f64 = 0.81;
 /// Heights of the plots at the width of the card, points: the most and the least that is legible.
-const PLOTS: (f64, f64) = (112.0, 64.0);
+const PLOTS: (f64, f64) = (112.0, 60.0);
 /// Height of the plots where they have a page to themselves.
 const OVERLEAF: f64 = 190.0;
 
@@ -59,7 +59,7 @@ pub fn document(reported: &Reported<'_>, units: &Units, why_not: Option<String>,
     let options = SettingPlot {
         units: *units,
         why_not,
-        transparent: true,
+        transparent: false,
         id_prefix: "card".to_owned(),
         ..SettingPlot::default()
     };

@@ -30,11 +30,11 @@ const HEADING: f64 = 7.2;
 /// Between two columns.
 const GUTTER: f64 = 14.0;
 /// Letters of the title, and of the numbers that matter.
-const TITLE: f64 = 10.0;
+const TITLE: f64 = 9.6;
 const LARGE: f64 = 25.0;
 const BESIDE: f64 = 9.0;
 /// Space above the plots.
-pub const BEFORE_PLOTS: f64 = 4.0;
+pub const BEFORE_PLOTS: f64 = 3.0;
 /// Most lines of a line about where the numbers come from: it holds the name of a file.
 const MOST_ABOUT: usize = 3;
 

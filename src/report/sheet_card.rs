@@ -211,16 +211,14 @@ fn injected(reported: &Reported<'_>, described: &Described, units: &Units) -> Ve
     }
     facts.push(("uptake at rest", another_day(reported, units)));
     let nominal = match &setting.uptake {
-        Some(uptake) if at.shortfall_l_min >= 0.0 => {
-            format!("{} of that", share_down(at.shortfall_l_min / uptake.uptake_l_min))
-        }
+        Some(uptake) if at.shortfall_l_min >= 0.0 => share_down(at.shortfall_l_min / uptake.uptake_l_min),
         _ => "NONE".to_owned(),
     };
-    let place = if compensated { format!("; at {}", max_depth(setting, units)) } else { ";".to_owned() };
+    let place = if compensated { format!("at {}: ", max_depth(setting, units)) } else { String::new() };
     facts.push((
         "short by",
         format!(
-            "{nominal}{place} {} at its richest, {} at its leanest",
+            "{nominal} ({place}{} richest, {} leanest)",
             short(at.least_shortfall, share_down),
             short(at.largest_shortfall, share_up)
         ),
@@ -317,14 +315,13 @@ fn proof(described: &Described, units: &Units) -> Vec<Line> {
 
 fn choke_and_gauge(reported: &Reported<'_>, described: &Described, units: &Units) -> Vec<Line> {
     let (used, limits) = (&reported.setting.used, &described.depth);
+    let low = fixed(limits.choke_ratio_low, 2);
+    // Where it is only bounded a warning says what that means.
     let known = match limits.choke_ratio_origin {
         Origin::Measured => "measured",
         Origin::Bounded => "bounded",
     };
-    let mut facts = vec![(
-        "choke ratio",
-        format!("{known}; depths take its low end, {}", fixed(limits.choke_ratio_low, 2)),
-    )];
+    let mut facts = vec![("choke ratio", format!("{known}; depths take its low end, {low}"))];
     match limits.first_stage {
         FirstStageKind::Uncompensated => {
             let error_bar = used.gauge_error_expanded_bar;

@@ -28,6 +28,8 @@ fn bytes(folder: &Path) -> BTreeMap<PathBuf, Vec<u8>> {
 fn the_book_of_the_invented_shop_shows_an_orifice_that_clogs_before_it_fails() {
     let desk = Desk::new("demo");
     let left: Value = serde_json::from_str(&desk.done(&["demo", "--into", "out", "--json"])).unwrap();
+    let sheet = std::fs::read(desk.folder.join("out/demo-sheet.pdf")).unwrap();
+    assert_eq!(ebbline::certificate::paper::read::read(&sheet).unwrap().pages.len(), 1, "of A5");
     let shop = &left["shop"];
     // The one that is logged from the simulated bench among them, where there are pseudo-terminals.
     assert_eq!(shop["orifices"], if cfg!(unix) { 14 } else { 13 });

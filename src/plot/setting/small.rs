@@ -47,14 +47,21 @@ pub fn small_setting_plot(setting: &Setting, options: &SettingPlot, height: f64)
     ip_panel::draw(&mut svg, &seen, &words, &ip, &layout);
     svg.group("plot-axis-titles", &[]);
     let size = tick_size(BODY);
-    for (panel, left, flow, below) in [
-        (&depth, 0.0, &words.flow_axis, &words.depth_axis),
-        (&ip, half, &words.surface_flow_axis, &words.ip_axis),
-    ] {
-        let frame = panel.frame();
-        title(&mut svg, flow, (left, 0.9 * size), Anchor::Start, size, half - BODY);
-        let middle = (0.5 * (frame.left + frame.right), h - 0.3 * size);
-        title(&mut svg, below, middle, Anchor::Middle, size, frame.width());
+    let (flow, surface) = (words.flow_axis.last(), words.surface_flow_axis.last());
+    let (depth_of, ip_of) = (words.depth_axis.last(), words.ip_axis.last());
+    let against = |flow: Option<&String>, place: &str, of: Option<&String>| {
+        let (flow, of) = (flow.map_or("", String::as_str), of.map_or("", String::as_str));
+        [
+            format!("injection{place}, {flow}, against {of}"),
+            format!("injection, {flow}, against {of}"),
+            format!("{flow} against {of}"),
+        ]
+    };
+    // One line says both axes: a title under each panel would take a third of its height.
+    for (left, choice) in
+        [(0.0, against(flow, "", depth_of)), (half, against(surface, " at the surface", ip_of))]
+    {
+        title(&mut svg, &choice, (left, 0.9 * size), Anchor::Start, size, half - BODY);
     }
     svg.end();
     layout.depth = Some(depth);
@@ -64,7 +71,7 @@ pub fn small_setting_plot(setting: &Setting, options: &SettingPlot, height: f64)
 
 fn panel((left, right): (f64, f64), height: f64, x: (f64, f64), y: (f64, f64)) -> Panel {
     let size = tick_size(BODY);
-    let (top, bottom) = (1.7 * size, height - label_room(BODY) - 1.3 * size);
+    let (top, bottom) = (1.7 * size, height - label_room(BODY) - 1.0);
     let bottom = bottom.max(top + BODY);
     let upright = Scale::new(y.0, y.1, bottom, top);
     let ticks = upright.ticks(|_| (1.6 * size).max((bottom - top) / MOST_LABELS.1));
